@@ -1,0 +1,85 @@
+//! What a recognised chain is, for every later stage.
+
+use crate::netlist::{Bit, Signal};
+
+/// What a chain computes.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub enum Kind {
+    /// `a + b + carry-in`.
+    Adder,
+    /// `a - b`, as `a + ~b + carry-in`.
+    Subtractor,
+    /// `a + carry-in`.
+    Incrementer,
+    /// `a - 1 + carry-in`.
+    Decrementer,
+}
+
+impl Kind {
+    /// The word used in records and reports.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Adder => "adder",
+            Self::Subtractor => "subtractor",
+            Self::Incrementer => "incrementer",
+            Self::Decrementer => "decrementer",
+        }
+    }
+}
+
+/// Whether the port the carry leaves by shows a carry or a borrow.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub enum CarryForm {
+    /// A carry.
+    Carry,
+    /// A borrow: 1 when `a < b`.
+    Borrow,
+}
+
+/// How a chain is built today.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub enum BuiltAs {
+    /// Every carry is made from the carry just below it.
+    Ripple,
+    /// Anything else.
+    Mixed,
+}
+
+/// One bit position of a chain, least significant first.
+///
+/// With `c` the carry into the position (the chain's carry-in at position 0),
+/// it is proven that every signal of `sums` equals `a ⊕ b ⊕ c` and every signal
+/// of `carries` equals the majority of `a`, `b` and `c`. Both `a` and `b` are
+/// what enters the *addition*: of a subtractor, `b` is the inverted subtrahend;
+/// of an incrementer `b` is constant 0, of a decrementer constant 1.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Position {
+    /// First addend.
+    pub a: Bit,
+    /// Second addend.
+    pub b: Bit,
+    /// Every net proven equal to the sum, in either polarity; the preferred
+    /// name first. Never empty.
+    pub sums: Vec<Signal>,
+    /// Every net proven equal to the carry out of this position, in either
+    /// polarity; empty when no net carries it.
+    pub carries: Vec<Signal>,
+}
+
+/// A proven carry chain.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Chain {
+    /// What it computes.
+    pub kind: Kind,
+    /// The positions, least significant first.
+    pub positions: Vec<Position>,
+    /// The carry into position 0, in the polarity of the addition.
+    pub carry_in: Bit,
+    /// Whether something outside the chain reads the carry out of the last
+    /// position; its nets are the last position's `carries`.
+    pub has_carry_out: bool,
+    /// Carry or borrow at the carry-out.
+    pub carry_form: CarryForm,
+    /// How it is built today.
+    pub built_as: BuiltAs,
+}

@@ -1,0 +1,3 @@
+//! The carrywise command.
+
+fn main() {}

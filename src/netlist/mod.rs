@@ -1,0 +1,27 @@
+//! The netlist: a plain, compact value that every later stage reads.
+//!
+//! Struct of arrays with 32-bit ids; the fan-ins of all gates lie in one flat
+//! array, functions are interned, names are interned and optional. A netlist
+//! knows no file format and no delay; it is built by [`NetlistBuilder`] and not
+//! changed afterwards.
+//!
+//! Invariants: every id held by a netlist is in range; the number of fan-ins of
+//! a gate equals the inputs of its function; a net with [`Driver::Many`] is
+//! listed in [`Netlist::contended`] with every one of its drivers.
+
+mod builder;
+pub mod function;
+mod graph;
+mod id;
+mod model;
+mod names;
+
+pub use builder::{NetlistBuilder, TooLarge};
+pub use function::{Cover, Function, Shape, TruthTable};
+pub use graph::{NetGraph, Readers, Topology};
+pub use id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
+pub use model::{
+    Bit, BlackBox, Contention, Driver, Initial, Netlist, Output, Property, PropertyKind, Register,
+    Signal, Trigger,
+};
+pub use names::{NameId, Names};
