@@ -22,6 +22,7 @@
 //! and do not know each other; `prove` stands on `subject`; `chain` joins
 //! `subject` and `prove`; `plan` joins `chain`, `network` and `timing`.
 
+pub mod audit;
 pub mod chain;
 pub mod netlist;
 pub mod network;
