@@ -26,3 +26,4 @@ pub mod audit;
 pub mod chain;
 pub mod netlist;
 pub mod network;
+pub mod report;
