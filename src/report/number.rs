@@ -46,6 +46,15 @@ pub fn range(first: i64, last: i64) -> String {
     }
 }
 
+/// `41`, or `41–120`: line numbers, which people search for, without commas.
+pub fn lines(first: u64, last: u64) -> String {
+    if first == last {
+        first.to_string()
+    } else {
+        format!("{first}–{last}")
+    }
+}
+
 /// At most `bars` bars of equal width over the values, each `(values, count)`;
 /// one bar per value where they are few. `values` ascend.
 pub fn equal_bars(values: &[(i64, u64)], bars: usize) -> Vec<(String, u64)> {

@@ -7,7 +7,7 @@
 //! Invariant: every text in an outline has passed [`super::text`], so it is
 //! bounded in length and holds no character that could mislead.
 
-use super::number::{counted, depth_in, grouped, listed};
+use super::number::{counted, depth_in, grouped};
 use super::sections;
 use super::text::clipped;
 use crate::audit::record::{Audit, DelayModelFacts, NetlistFacts, Seen, Settings, Tool, Verdict};
@@ -101,12 +101,12 @@ impl Outline {
         let sections = [
             sections::paths(by_path_kind, caps),
             sections::chains(chains, arrays, *recurrences_not_listed, caps),
-            sections::rebuild(chains, recommended_set, caps),
-            sections::findings(findings, *findings_left_out, caps),
             sections::undecided(unproven, caps),
+            sections::rebuild(chains, recommended_set, caps),
             sections::measures(depth, fan_in, fan_out, caps),
-            sections::longest_path(depth, caps),
             sections::ports(depth, caps),
+            sections::longest_path(depth, caps),
+            sections::findings(findings, *findings_left_out, caps),
             sections::assumed(assumed, caps),
         ];
         Self {
@@ -220,7 +220,7 @@ fn settings_sentence(
          proof; pattern seed {patterns_seed}{assumed}.",
         tool.name,
         tool.version,
-        listed(&source),
+        source.join(", "),
         clipped(new_gates_reason, caps.sentence),
         counted(*min_bits, "bit", "bits"),
         counted(*effort, "solver conflict", "solver conflicts"),

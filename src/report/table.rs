@@ -15,6 +15,9 @@ const CAPS: Caps = Caps {
     sentence: 900,
 };
 
+/// What sets a table off from the sentences around it.
+const INDENT: &str = "  ";
+
 /// The terminal form of `audit`.
 pub fn render(audit: &Audit, page: Page) -> String {
     let outline = Outline::of(audit, CAPS);
@@ -97,7 +100,7 @@ fn table(text: &mut String, grid: &Grid, width: usize) {
     table
         .load_style(comfy_table::presets::NOTHING)
         .set_content_arrangement(ContentArrangement::Dynamic)
-        .set_width(u16::try_from(width).unwrap_or(u16::MAX))
+        .set_width(u16::try_from(width - INDENT.len()).unwrap_or(u16::MAX))
         .force_no_tty()
         .set_header(grid.columns.iter().map(|(title, _)| *title));
     table.add_rows(grid.rows.iter());
@@ -110,6 +113,7 @@ fn table(text: &mut String, grid: &Grid, width: usize) {
         }
     }
     for line in table.lines() {
+        text.push_str(INDENT);
         text.push_str(line.trim_end());
         text.push('\n');
     }

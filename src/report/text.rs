@@ -24,27 +24,32 @@ pub fn visible(text: &str) -> String {
 }
 
 /// [`visible`], and cut in the middle when longer than `most` characters: the
-/// two ends of a long name tell it from its neighbours.
+/// two ends of a long name tell it from its neighbours. No escape is cut.
 pub fn clipped(text: &str, most: usize) -> String {
-    // A name can be megabytes long; look only at what can be shown.
-    let shown = match (text.char_indices().nth(most), text.len()) {
-        (Some((head, _)), _) => {
-            let tail = text.char_indices().rev().nth(most).map_or(0, |(i, _)| i);
-            if tail > head {
-                format!("{}…{}", visible(&text[..head]), visible(&text[tail..]))
-            } else {
-                visible(text)
-            }
+    // A name can be megabytes long; only what can be shown is looked at.
+    if text.chars().nth(most).is_none() {
+        let whole = visible(text);
+        if whole.chars().count() <= most {
+            return whole;
         }
-        (None, _) => visible(text),
-    };
-    let length = shown.chars().count();
-    if length <= most {
-        return shown;
     }
-    let front = most.saturating_sub(1).div_ceil(2);
-    let back = most.saturating_sub(1) / 2;
-    let head: String = shown.chars().take(front).collect();
-    let tail: String = shown.chars().skip(length - back).collect();
-    format!("{head}…{tail}")
+    let room = most.saturating_sub(1);
+    let head = kept(text.chars(), room.div_ceil(2));
+    let mut tail = kept(text.chars().rev(), room / 2);
+    tail.reverse();
+    format!("{}…{}", head.concat(), tail.concat())
+}
+
+/// The visible forms of as many leading characters as fit into `room`.
+fn kept(characters: impl Iterator<Item = char>, mut room: usize) -> Vec<String> {
+    let mut forms = Vec::new();
+    for c in characters {
+        let form = visible(c.encode_utf8(&mut [0; 4]));
+        let Some(rest) = room.checked_sub(form.chars().count()) else {
+            break;
+        };
+        room = rest;
+        forms.push(form);
+    }
+    forms
 }

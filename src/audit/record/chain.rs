@@ -55,11 +55,12 @@ pub struct ChainRecord {
     pub place: Place,
     /// When its nets settle.
     pub depth: ChainDepth,
-    /// Whether a longest path of the block runs through it.
+    /// Whether a longest path of the block runs through one of its carries, or
+    /// through its gates when no net carries them.
     pub on_longest_path: bool,
     /// How much later its carries could be without lengthening the longest
-    /// path of their kind.
-    pub slack: i64,
+    /// path of their kind; null when no path leads through it.
+    pub slack: Option<i64>,
     /// Why no rebuild was tried; null when some were.
     pub not_planned: Option<NotPlanned>,
     /// The rebuilds worth choosing between.

@@ -5,7 +5,9 @@ use crate::audit::record::{
     ArrayRecord, BuiltAsRecord, ChainDepth, ChainRecord, NotPlanned, Place, ProposalRecord,
     RecommendedSet,
 };
-use crate::report::number::{change, counted, grouped, grouped_signed, listed, range, signed};
+use crate::report::number::{
+    change, counted, grouped, grouped_signed, lines as lines_of, listed, or_dash, range, signed,
+};
 use crate::report::outline::{Caps, Grid, Section};
 use crate::report::text::clipped;
 
@@ -126,12 +128,12 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
         what.push_str(&format!(", in {}", clipped(&instance.join("/"), caps.name)));
     }
     let lines = match (line_first, line_last) {
-        (Some(first), Some(last)) => range(*first as i64, *last as i64),
+        (Some(first), Some(last)) => lines_of(*first, *last),
         _ => "-".to_owned(),
     };
     let spare = match slack {
-        0 if *on_longest_path => "none".to_owned(),
-        _ => grouped_signed(*slack),
+        Some(0) if *on_longest_path => "none".to_owned(),
+        _ => or_dash(slack.map(grouped_signed)),
     };
     vec![
         what,
@@ -223,7 +225,6 @@ pub fn rebuild(chains: &[ChainRecord], set: &RecommendedSet, caps: Caps) -> Opti
         ("gates", true),
         ("fan-in", true),
         ("fan-out", true),
-        ("above bound", true),
     ];
     blocks.extend(cut(columns, rows, total, caps.rows, "proposals"));
     blocks.extend(afterwards.into_iter().map(Block::Text));
@@ -256,7 +257,7 @@ fn proposal_row(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> V
         largest_fan_in,
         largest_fan_out,
         wire_tracks: _,
-        above_bound,
+        above_bound: _,
         carries: _,
         network: _,
     } = proposal;
@@ -284,7 +285,6 @@ fn proposal_row(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> V
         format!("+{} -{}", grouped(*gates_added), grouped(*gates_removed)),
         grouped(*largest_fan_in),
         grouped(*largest_fan_out),
-        above_bound.map_or("-".to_owned(), grouped_signed),
     ]
 }
 
@@ -302,6 +302,16 @@ fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Opti
         "{} gate equivalents",
         signed(proposal.gate_equivalents_added)
     ));
+    if let Some(levels) = proposal.above_bound {
+        parts.push(match levels {
+            0 => "as shallow as any network of such gates".to_owned(),
+            1 => "1 level above what any network of such gates needs".to_owned(),
+            n => format!(
+                "{} levels above what any network of such gates needs",
+                grouped_signed(n)
+            ),
+        });
+    }
     if let Some(path) = &proposal.takes_over {
         parts.push(format!(
             "afterwards the longest path is {}",

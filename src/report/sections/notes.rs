@@ -2,7 +2,7 @@
 
 use super::{Block, cut};
 use crate::audit::record::{Finding, UnprovenRecord};
-use crate::report::number::{grouped, listed, or_dash};
+use crate::report::number::{grouped, lines, listed, or_dash};
 use crate::report::outline::{Caps, Section};
 use crate::report::text::clipped;
 
@@ -44,7 +44,7 @@ pub fn findings(findings: &[Finding], left_out: u64, caps: Caps) -> Option<Secti
         rows.push(vec![
             format!("{}{accepted}", severity.word()),
             clipped(rule, caps.name),
-            or_dash(line.map(grouped)),
+            or_dash(line.map(|line| lines(line, line))),
             format!("{chain}{}", clipped(message, caps.sentence)),
         ]);
     }
@@ -55,7 +55,7 @@ pub fn findings(findings: &[Finding], left_out: u64, caps: Caps) -> Option<Secti
         blocks.push(Block::Text(format!("{rule}: {what}")));
     }
     blocks.push(Block::Text(
-        "`carrywise explain RULE` tells the rest about a rule.".to_owned(),
+        "More about a rule: carrywise explain RULE.".to_owned(),
     ));
     Some(Section {
         heading: "Findings",

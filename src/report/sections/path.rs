@@ -3,7 +3,7 @@
 
 use super::Block;
 use crate::audit::record::{Depth, PathStep};
-use crate::report::number::{counted, grouped, or_dash, range};
+use crate::report::number::{counted, grouped, lines as lines_of, or_dash, range};
 use crate::report::outline::{Caps, Grid, Section};
 use crate::report::text::clipped;
 
@@ -87,7 +87,7 @@ fn step_row(step: &PathStep, caps: Caps) -> Vec<String> {
         name,
         clipped(gate, caps.name),
         or_dash(fan_in.map(grouped)),
-        or_dash(line.map(grouped)),
+        or_dash(line.map(|line| lines_of(line, line))),
     ]
 }
 
@@ -110,7 +110,10 @@ fn stretch_row(steps: &[PathStep], chain: &str, caps: Caps) -> Vec<String> {
         format!("{}{place}", clipped(chain, caps.name)),
         counted(steps.len() as u64, "gate", "gates"),
         most(fan_ins().min(), fan_ins().max()),
-        most(lines().min(), lines().max()),
+        match (lines().min(), lines().max()) {
+            (Some(low), Some(high)) => lines_of(low, high),
+            _ => "-".to_owned(),
+        },
     ]
 }
 
