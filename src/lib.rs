@@ -27,3 +27,4 @@ pub mod chain;
 pub mod netlist;
 pub mod network;
 pub mod report;
+pub mod timing;

@@ -12,6 +12,8 @@
 mod builder;
 pub mod function;
 mod graph;
+pub mod health;
+pub mod histogram;
 mod id;
 mod model;
 mod names;
