@@ -23,5 +23,7 @@
 //! `subject` and `prove`; `plan` joins `chain`, `network` and `timing`.
 
 pub mod chain;
+pub mod format;
 pub mod netlist;
 pub mod network;
+pub mod source;
