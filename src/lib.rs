@@ -24,7 +24,9 @@
 
 pub mod audit;
 pub mod chain;
+pub mod format;
 pub mod netlist;
 pub mod network;
 pub mod report;
+pub mod source;
 pub mod timing;
