@@ -25,3 +25,4 @@
 pub mod chain;
 pub mod netlist;
 pub mod network;
+pub mod subject;
