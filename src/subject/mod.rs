@@ -14,4 +14,5 @@ mod signature;
 pub use cuts::{LinearSet, linear_sets};
 pub use graph::{Literal, NodeId, NodeKind, Subject};
 pub use patterns::Patterns;
+pub(crate) use signature::Running;
 pub use signature::{Hash, Signatures, Simulation};
