@@ -27,6 +27,8 @@ pub mod chain;
 pub mod format;
 pub mod netlist;
 pub mod network;
+pub mod prove;
 pub mod report;
 pub mod source;
+pub mod subject;
 pub mod timing;
