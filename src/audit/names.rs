@@ -1,0 +1,130 @@
+//! Names of operands: many nets told as one bus.
+//!
+//! A bus is read from the spelling of its bits (`a[3]`, `a<3>`, `a(3)`, `a_3_`,
+//! `a_3`, `a3`; common practice, no source) and told as `a[15:0]`, most
+//! significant bit first, only when every bit agrees and the indices run up or
+//! down by one. Anything else is told by its first and last bit, so that no name
+//! claims an order the netlist does not have.
+
+use super::record::{Operand, Wire};
+use crate::netlist::{Bit, NetId, Netlist, Signal};
+
+/// A bit as it is written in a record.
+pub fn wire(netlist: &Netlist, bit: Bit) -> Wire {
+    match bit {
+        Bit::Constant(value) => Wire::Constant(u8::from(value)),
+        Bit::Signal(signal) => Wire::Net(netlist.signal_name(signal)),
+    }
+}
+
+/// An operand, least significant bit first.
+pub fn operand(netlist: &Netlist, bits: &[Bit]) -> Operand {
+    Operand {
+        name: word_name(netlist, bits),
+        nets: bits.iter().map(|&bit| wire(netlist, bit)).collect(),
+    }
+}
+
+/// The name of a word; constant bits do not take part in it.
+fn word_name(netlist: &Netlist, bits: &[Bit]) -> String {
+    let signals: Vec<Signal> = bits.iter().filter_map(|bit| bit.signal()).collect();
+    let (Some(&first), Some(&last)) = (signals.first(), signals.last()) else {
+        return constant_name(bits);
+    };
+    if signals.len() == 1 {
+        return netlist.signal_name(first);
+    }
+    if let Some(name) = bus_name(netlist, &signals) {
+        return name;
+    }
+    format!("{}…{}", netlist.signal_name(first), netlist.signal_name(last))
+}
+
+fn constant_name(bits: &[Bit]) -> String {
+    let digit = |bit: &Bit| if *bit == Bit::Constant(true) { '1' } else { '0' };
+    let digits: String = bits.iter().rev().map(digit).collect();
+    format!("0b{digits}")
+}
+
+fn bus_name(netlist: &Netlist, signals: &[Signal]) -> Option<String> {
+    let inverted = signals[0].inverted;
+    let mut base = String::new();
+    let mut indices = Vec::with_capacity(signals.len());
+    for signal in signals {
+        let name = named(netlist, signal.net)?;
+        let (stem, index) = split(&name)?;
+        if signal.inverted != inverted || (!indices.is_empty() && stem != base) {
+            return None;
+        }
+        if indices.is_empty() {
+            stem.clone_into(&mut base);
+        }
+        indices.push(index);
+    }
+    let step = indices[1] - indices[0];
+    if step.abs() != 1 || indices.windows(2).any(|pair| pair[1] - pair[0] != step) {
+        return None;
+    }
+    let mark = if inverted { "~" } else { "" };
+    let (low, high) = (indices[0], indices[indices.len() - 1]);
+    Some(format!("{mark}{base}[{high}:{low}]"))
+}
+
+/// The net's name, unless it is only its number.
+fn named(netlist: &Netlist, net: NetId) -> Option<String> {
+    netlist.local_name(net).map(|_| netlist.net_name(net))
+}
+
+/// `a[3]` and its other spellings as `a` and 3.
+pub fn split(name: &str) -> Option<(&str, i64)> {
+    for (open, close) in [('[', ']'), ('<', '>'), ('(', ')')] {
+        if let Some((stem, index)) = name.strip_suffix(close).and_then(|n| n.rsplit_once(open)) {
+            return index_of(index).filter(|_| !stem.is_empty()).map(|i| (stem, i));
+        }
+    }
+    let bare = name.strip_suffix('_').unwrap_or(name);
+    let stem = bare.trim_end_matches(|c: char| c.is_ascii_digit());
+    let index = index_of(&bare[stem.len()..])?;
+    let stem = match stem.strip_suffix('_') {
+        Some(before) => before,
+        // A trailing underscore belongs to `a_3_` only.
+        None if bare.len() < name.len() => return None,
+        None => stem,
+    };
+    (!stem.is_empty() && !stem.ends_with('/')).then_some((stem, index))
+}
+
+fn index_of(digits: &str) -> Option<i64> {
+    let plain = !digits.is_empty() && digits.bytes().all(|b| b.is_ascii_digit());
+    if plain { digits.parse().ok() } else { None }
+}
+
+/// Ports grouped into buses in the order they are listed: the name of each bus
+/// and the indices of its ports. A bus is a run of neighbours.
+pub fn port_buses(names: &[String]) -> Vec<(String, std::ops::Range<usize>)> {
+    let mut buses: Vec<(String, std::ops::Range<usize>)> = Vec::new();
+    let mut start = 0;
+    while start < names.len() {
+        let mut end = start + 1;
+        let mut name = names[start].clone();
+        if let Some((stem, first)) = split(&names[start]) {
+            let mut step = 0;
+            let mut last = first;
+            while let Some((next, index)) = names.get(end).and_then(|name| split(name)) {
+                let by = index - last;
+                if next != stem || by.abs() != 1 || (step != 0 && by != step) {
+                    break;
+                }
+                (step, last) = (by, index);
+                end += 1;
+            }
+            if end > start + 1 {
+                let (low, high) = (first.min(last), first.max(last));
+                name = format!("{stem}[{high}:{low}]");
+            }
+        }
+        buses.push((name, start..end));
+        start = end;
+    }
+    buses
+}
