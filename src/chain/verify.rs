@@ -62,7 +62,7 @@ impl Run<'_, '_> {
             let literal = node.literal();
             let literal = literal.xor(self.first(literal) != value);
             let own = self.prover.literal(literal);
-            if self.prover.equal(own, fact) == Answer::Proven {
+            if self.prover.equal_nearby(own, fact) == Answer::Proven {
                 equal.push(literal);
             }
         }
