@@ -29,7 +29,7 @@ impl Default for Options {
     fn default() -> Self {
         Self {
             min_bits: 4,
-            effort: 100_000,
+            effort: 10_000,
             seed: 1,
         }
     }
@@ -181,9 +181,14 @@ impl Search<'_> {
                 });
             }
         }
-        self.accept(outcome.theorem);
-        let rest = candidate.path.get(proven + usize::from(proven == 0)..)?;
-        (outcome.undecided.is_some() && rest.len() >= 2).then(|| rest.to_vec())
+        let mut theorem = outcome.theorem;
+        let free = independent_positions(self.subject, &theorem);
+        theorem.truncate(free);
+        let settled = if free < proven { free.max(1) } else { proven };
+        self.accept(theorem);
+        let open = outcome.undecided.is_some() || free < proven;
+        let rest = candidate.path.get(settled + usize::from(settled == 0)..)?;
+        (open && rest.len() >= 2).then(|| rest.to_vec())
     }
 
     fn accept(&mut self, mut theorem: Theorem) {
@@ -354,6 +359,45 @@ impl Search<'_> {
             built_as: built_as(self.subject, theorem),
         }
     }
+}
+
+/// Nodes looked at below the operands of one chain before they are taken as
+/// independent; the planner checks again.
+const DEPENDENCE_NODES: usize = 1 << 18;
+
+/// How many positions, from the low end, have operands that depend on none of
+/// the chain's own sums and carries below them. A chain that feeds itself is
+/// true, but its positions cannot work side by side.
+fn independent_positions(subject: &Subject, theorem: &Theorem) -> usize {
+    let mut own: FxHashMap<NodeId, usize> = FxHashMap::default();
+    for (i, literals) in theorem.sums.iter().enumerate() {
+        for literal in literals.iter().chain(&theorem.carries[i]) {
+            own.entry(literal.node()).or_insert(i);
+        }
+    }
+    let Some(lowest) = own.keys().min().copied() else {
+        return 0;
+    };
+    let mut seen: FxHashSet<NodeId> = FxHashSet::default();
+    let mut stack = Vec::new();
+    for (i, bits) in theorem.bits.iter().enumerate() {
+        stack.extend([bits.a.node(), bits.b.node()]);
+        while let Some(node) = stack.pop() {
+            // Fan-ins have lower numbers: nothing below `lowest` is the chain's.
+            if node < lowest || !seen.insert(node) || seen.len() > DEPENDENCE_NODES {
+                continue;
+            }
+            if own.contains_key(&node) {
+                return i;
+            }
+            match subject.kind(node) {
+                NodeKind::And(x, y) => stack.extend([x.node(), y.node()]),
+                NodeKind::Xor(x, y) => stack.extend([x, y]),
+                NodeKind::False | NodeKind::Free(_) => {}
+            }
+        }
+    }
+    theorem.bits.len()
 }
 
 /// How many lower positions use `operand` as an operand.

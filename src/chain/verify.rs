@@ -22,6 +22,15 @@ pub(super) struct Theorem {
     pub(super) carries: Vec<Vec<Literal>>,
 }
 
+impl Theorem {
+    /// Keeps the lowest `positions` positions.
+    pub(super) fn truncate(&mut self, positions: usize) {
+        self.bits.truncate(positions);
+        self.sums.truncate(positions);
+        self.carries.truncate(positions);
+    }
+}
+
 /// What became of a candidate.
 pub(super) struct Outcome {
     /// The positions proven from the low end.

@@ -230,9 +230,9 @@ impl<'a> Prover<'a> {
     }
 
     fn solve(&mut self, assumption: batsat::Lit) -> lbool {
-        self.solver.cb_mut().spent = 0;
+        let before = self.solver.cb().spent;
         let result = self.solver.solve_limited(&[assumption]);
-        self.conflicts += self.solver.cb().spent;
+        self.conflicts += self.solver.cb().spent - before;
         result
     }
 
@@ -250,6 +250,7 @@ impl<'a> Prover<'a> {
 
     fn ask(&mut self, left: Fact, right: Fact, deepest: usize) -> Answer {
         let differ = self.xor(left, right).0;
+        self.solver.cb_mut().spent = 0;
         let mut levels = 0;
         loop {
             if !self.grow(levels) {
