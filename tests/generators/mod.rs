@@ -20,6 +20,7 @@ mod circuit;
 mod disguise;
 mod embedding;
 mod fast;
+pub mod gauge;
 mod hierarchy;
 mod large;
 pub mod negatives;
