@@ -137,12 +137,39 @@ impl Context<'_> {
             wanted.insert(self.entries.key(entry, self.signatures));
             wanted.insert(self.signatures.hash(self.entries.sum[entry as usize]));
         }
+        if let Some(&second) = path.get(1) {
+            let siblings = self.entries.siblings(second);
+            wanted.extend(siblings.map(|entry| self.entries.key(entry, self.signatures)));
+        }
         if let Some(&last) = path.last() {
             for variant in Variant::ALL {
                 wanted.insert(self.entries.carry_out(last, variant, self.signatures));
             }
         }
         wanted.remove(&0);
+    }
+
+    /// Drops a first position whose carry out is on no net, when the second
+    /// can begin the chain in another reading: the lower one was a coincidence
+    /// of signatures, true but no part of what was built.
+    pub(super) fn drop_unlikely_start(&self, path: &mut Vec<EntryId>, lookup: &Lookup) {
+        let is_on_net = |entry| {
+            let key = self.entries.key(entry, self.signatures);
+            key == 0 || !lookup.nodes(key).is_empty()
+        };
+        while let [_, second, third, ..] = path[..] {
+            if is_on_net(second) {
+                return;
+            }
+            let better = self
+                .entries
+                .siblings(second)
+                .find(|&entry| is_on_net(entry) && self.links.between(entry, third).is_some());
+            let Some(better) = better else { return };
+            path.remove(0);
+            path[0] = better;
+            self.settle_start(path);
+        }
     }
 
     /// Makes a path definite. First positions whose carry-in is on no net are

@@ -11,7 +11,7 @@ use super::model::{CarryForm, Chain, Kind, Position};
 use super::verify::{Theorem, verify};
 use crate::netlist::{Bit, Driver, NetId, Netlist, Signal, Topology};
 use crate::prove::Effort;
-use crate::subject::{Literal, NodeId, NodeKind, Patterns, Signatures, Subject};
+use crate::subject::{Hash, Literal, NodeId, NodeKind, Patterns, Signatures, Subject};
 use rustc_hash::{FxHashMap, FxHashSet};
 
 /// What to look for, and how hard.
@@ -29,7 +29,7 @@ impl Default for Options {
     fn default() -> Self {
         Self {
             min_bits: 4,
-            effort: 100_000,
+            effort: 10_000,
             seed: 1,
         }
     }
@@ -108,12 +108,16 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
         theorems: Vec::new(),
         unproven: Vec::new(),
     };
+    for path in &mut waiting {
+        context.drop_unlikely_start(path, &lookup);
+    }
     waiting.reverse();
     while let Some(path) = waiting.pop() {
         if let Some(rest) = search.settle(&path) {
             waiting.push(rest);
         }
     }
+    search.trim_shared_tops();
     search.collect()
 }
 
@@ -147,7 +151,7 @@ struct Search<'a> {
     lookup: &'a Lookup,
     options: Options,
     inverted_copies: FxHashSet<NodeId>,
-    theorems: Vec<(Kind, Theorem)>,
+    theorems: Vec<Theorem>,
     unproven: Vec<Unproven>,
 }
 
@@ -181,9 +185,14 @@ impl Search<'_> {
                 });
             }
         }
-        self.accept(outcome.theorem);
-        let rest = candidate.path.get(proven + usize::from(proven == 0)..)?;
-        (outcome.undecided.is_some() && rest.len() >= 2).then(|| rest.to_vec())
+        let mut theorem = outcome.theorem;
+        let free = independent_positions(self.subject, &theorem);
+        theorem.truncate(free);
+        let settled = if free < proven { free.max(1) } else { proven };
+        self.accept(theorem);
+        let open = outcome.undecided.is_some() || free < proven;
+        let rest = candidate.path.get(settled + usize::from(settled == 0)..)?;
+        (open && rest.len() >= 2).then(|| rest.to_vec())
     }
 
     fn accept(&mut self, mut theorem: Theorem) {
@@ -195,37 +204,75 @@ impl Search<'_> {
         if live_bits(&theorem.bits) < self.options.min_bits {
             return;
         }
-        let (kind, mut theorem) = read(self.subject, self.context.labels, theorem);
-        if kind != Kind::Subtractor {
-            order_operands(self.context.labels, &mut theorem);
-        }
-        self.theorems.push((kind, theorem));
+        self.theorems.push(theorem);
     }
 
-    /// Drops a top position that is true but means nothing: a single operand
-    /// on top of a two-operand chain which continues no operand's bus and is no
-    /// operand's repeated top bit (a carry-out combined with a control signal).
+    /// Drops a top position that is true but means nothing: on top of a
+    /// two-operand chain a single operand that continues no operand's bus and
+    /// is no operand's repeated top bit (a carry-out combined with a control
+    /// signal); or an operand that is an input where no other position has one
+    /// and no carry leaves (the sign of a recoded multiplier row).
     fn trim_top(&self, theorem: &mut Theorem) {
         let is_two = |bits: &Bits| bits.b.node() != NodeId::FALSE;
-        let [.., below, top] = theorem.bits.as_slice() else {
+        let is_free = |l: Literal| matches!(self.subject.kind(l.node()), NodeKind::Free(_));
+        let [rest @ .., below, top] = theorem.bits.as_slice() else {
             return;
         };
-        if is_two(top) || !is_two(below) {
+        if !is_two(below) {
             return;
         }
         let labels = self.context.labels;
-        let operand = top.a.node();
-        let follows =
-            |lower: Literal| labels.follows(lower.node(), operand) > 0 || lower.node() == operand;
-        let fresh = matches!(self.subject.kind(operand), NodeKind::Free(_))
-            && labels.port(top.sum.node()).is_some()
-            && theorem.carry_in.node() != operand
-            && below_uses(theorem, operand) == 0;
-        if !follows(below.a) && !follows(below.b) && !fresh {
-            theorem.bits.pop();
-            theorem.sums.pop();
-            theorem.carries.pop();
+        let follows = |upper: Literal| {
+            let continues = |lower: Literal| {
+                labels.follows(lower.node(), upper.node()) > 0 || lower.node() == upper.node()
+            };
+            continues(below.a) || continues(below.b)
+        };
+        let meaningless = if is_two(top) {
+            let stray = |l: Literal| is_free(l) && !follows(l);
+            let open = theorem.carries.last().is_some_and(Vec::is_empty);
+            let inner = |bits: &Bits| !is_free(bits.a) && !is_free(bits.b);
+            open && (stray(top.a) || stray(top.b)) && inner(below) && rest.iter().all(inner)
+        } else {
+            let fresh = is_free(top.a)
+                && labels.port(top.sum.node()).is_some()
+                && theorem.carry_in.node() != top.a.node()
+                && below_uses(theorem, top.a.node()) == 0;
+            !follows(top.a) && !fresh
+        };
+        if meaningless {
+            theorem.truncate(theorem.bits.len() - 1);
         }
+    }
+
+    /// Drops a top position whose sum is only the first exclusive or of some
+    /// other chain's position (two of its three inputs), as where the carry of
+    /// one array row enters a cell of the next.
+    fn trim_shared_tops(&mut self) {
+        let signatures = self.context.signatures;
+        let hash = |literal: Literal| signatures.hash(literal.node());
+        let mut partial: FxHashSet<Hash> = FxHashSet::default();
+        for bits in self.theorems.iter().flat_map(|theorem| &theorem.bits) {
+            let (sum, a, b) = (hash(bits.sum), hash(bits.a), hash(bits.b));
+            // The exclusive or of two inputs is the sum's with the third.
+            let carry = sum ^ a ^ b;
+            if carry != 0 && a != 0 && b != 0 {
+                partial.extend([a ^ b, sum ^ a, sum ^ b]);
+            }
+        }
+        for theorem in &mut self.theorems {
+            while let [_, .., top] = theorem.bits[..] {
+                let open = theorem.carries.last().is_some_and(Vec::is_empty);
+                let shown = self.context.labels.port(top.sum.node()).is_some();
+                if !open || shown || !partial.contains(&hash(top.sum)) {
+                    break;
+                }
+                theorem.truncate(theorem.bits.len() - 1);
+            }
+        }
+        let min_bits = self.options.min_bits;
+        self.theorems
+            .retain(|theorem| live_bits(&theorem.bits) >= min_bits);
     }
 
     /// Adds the lowest bit of an incrementer or decrementer, whose sum is an
@@ -260,9 +307,19 @@ impl Search<'_> {
     }
 
     /// Collects the nets of all theorems in one pass over the netlist.
-    fn collect(self) -> Found {
+    fn collect(mut self) -> Found {
+        let theorems: Vec<(Kind, Theorem)> = std::mem::take(&mut self.theorems)
+            .into_iter()
+            .map(|theorem| {
+                let (kind, mut theorem) = read(self.subject, self.context.labels, theorem);
+                if kind != Kind::Subtractor {
+                    order_operands(self.context.labels, &mut theorem);
+                }
+                (kind, theorem)
+            })
+            .collect();
         let mut nets: FxHashMap<NodeId, Vec<NetId>> = FxHashMap::default();
-        for (_, theorem) in &self.theorems {
+        for (_, theorem) in &theorems {
             for literal in theorem.sums.iter().chain(&theorem.carries).flatten() {
                 nets.entry(literal.node()).or_default();
             }
@@ -272,8 +329,7 @@ impl Search<'_> {
                 list.push(net);
             }
         }
-        let mut chains: Vec<Chain> = self
-            .theorems
+        let mut chains: Vec<Chain> = theorems
             .iter()
             .map(|(kind, theorem)| self.chain(*kind, theorem, &nets))
             .collect();
@@ -354,6 +410,45 @@ impl Search<'_> {
             built_as: built_as(self.subject, theorem),
         }
     }
+}
+
+/// Nodes looked at below the operands of one chain before they are taken as
+/// independent; the planner checks again.
+const DEPENDENCE_NODES: usize = 1 << 18;
+
+/// How many positions, from the low end, have operands that depend on none of
+/// the chain's own sums and carries below them. A chain that feeds itself is
+/// true, but its positions cannot work side by side.
+fn independent_positions(subject: &Subject, theorem: &Theorem) -> usize {
+    let mut own: FxHashMap<NodeId, usize> = FxHashMap::default();
+    for (i, literals) in theorem.sums.iter().enumerate() {
+        for literal in literals.iter().chain(&theorem.carries[i]) {
+            own.entry(literal.node()).or_insert(i);
+        }
+    }
+    let Some(lowest) = own.keys().min().copied() else {
+        return 0;
+    };
+    let mut seen: FxHashSet<NodeId> = FxHashSet::default();
+    let mut stack = Vec::new();
+    for (i, bits) in theorem.bits.iter().enumerate() {
+        stack.extend([bits.a.node(), bits.b.node()]);
+        while let Some(node) = stack.pop() {
+            // Fan-ins have lower numbers: nothing below `lowest` is the chain's.
+            if node < lowest || !seen.insert(node) || seen.len() > DEPENDENCE_NODES {
+                continue;
+            }
+            if own.contains_key(&node) {
+                return i;
+            }
+            match subject.kind(node) {
+                NodeKind::And(x, y) => stack.extend([x.node(), y.node()]),
+                NodeKind::Xor(x, y) => stack.extend([x, y]),
+                NodeKind::False | NodeKind::Free(_) => {}
+            }
+        }
+    }
+    theorem.bits.len()
 }
 
 /// How many lower positions use `operand` as an operand.

@@ -71,7 +71,15 @@ impl Links {
             let sum = entries.sum[entry as usize];
             for variant in Variant::ALL {
                 let key = entries.carry_out(entry, variant, signatures);
-                if key == 0 {
+                // A carry equal to one of its own inputs is no majority of
+                // independent bits, only a coincidence that goes on.
+                let i = entry as usize;
+                let inputs = [
+                    signatures.hash(entries.a[i]),
+                    signatures.hash(entries.b[i]),
+                    entries.key(entry, signatures),
+                ];
+                if key == 0 || inputs.contains(&key) {
                     continue;
                 }
                 let found = index

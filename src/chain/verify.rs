@@ -22,6 +22,15 @@ pub(super) struct Theorem {
     pub(super) carries: Vec<Vec<Literal>>,
 }
 
+impl Theorem {
+    /// Keeps the lowest `positions` positions.
+    pub(super) fn truncate(&mut self, positions: usize) {
+        self.bits.truncate(positions);
+        self.sums.truncate(positions);
+        self.carries.truncate(positions);
+    }
+}
+
 /// What became of a candidate.
 pub(super) struct Outcome {
     /// The positions proven from the low end.
@@ -62,7 +71,7 @@ impl Run<'_, '_> {
             let literal = node.literal();
             let literal = literal.xor(self.first(literal) != value);
             let own = self.prover.literal(literal);
-            if self.prover.equal(own, fact) == Answer::Proven {
+            if self.prover.equal_nearby(own, fact) == Answer::Proven {
                 equal.push(literal);
             }
         }

@@ -25,6 +25,9 @@ impl std::ops::Not for Fact {
     }
 }
 
+/// Levels below the stops that an optional question may reach.
+const NEARBY: usize = 8;
+
 /// Values of free nodes under which a claimed equality fails.
 pub type Counterexample = Vec<(NodeId, bool)>;
 
@@ -194,41 +197,63 @@ impl<'a> Prover<'a> {
         }
     }
 
-    /// Encodes everything discovered down to the stops and free nodes. Returns
-    /// whether anything was added, or `None` past the node limit.
-    fn grow(&mut self, below_stops: bool) -> Option<bool> {
-        let mut grown = false;
+    /// Encodes what has been discovered: everything down to the stops, then
+    /// `levels` levels of what lies below them. Returns `false` past the node
+    /// limit.
+    fn grow(&mut self, levels: usize) -> bool {
         let mut waiting = Vec::new();
         while let Some(node) = self.frontier.pop() {
             if self.encoded.len() >= self.effort.nodes {
                 self.frontier.push(node);
-                return None;
+                return false;
             }
-            if self.stops.contains(&node) && !below_stops {
+            if self.stops.contains(&node) {
                 waiting.push(node);
-                continue;
+            } else {
+                self.encode(node);
             }
-            grown |= !matches!(self.subject.kind(node), NodeKind::Free(_));
-            self.encode(node);
         }
+        for _ in 0..levels {
+            for node in std::mem::take(&mut waiting) {
+                if self.encoded.len() >= self.effort.nodes {
+                    return false;
+                }
+                self.stops.remove(&node);
+                self.encode(node);
+            }
+            std::mem::swap(&mut waiting, &mut self.frontier);
+        }
+        // What waits now is where encoding pauses from here on.
+        self.stops.extend(waiting.iter().copied());
         self.frontier = waiting;
-        Some(grown)
+        true
     }
 
     fn solve(&mut self, assumption: batsat::Lit) -> lbool {
-        self.solver.cb_mut().spent = 0;
+        let before = self.solver.cb().spent;
         let result = self.solver.solve_limited(&[assumption]);
-        self.conflicts += self.solver.cb().spent;
+        self.conflicts += self.solver.cb().spent - before;
         result
     }
 
     /// Asks whether two facts are equal. What is proven is kept and helps the
     /// questions that follow.
     pub fn equal(&mut self, left: Fact, right: Fact) -> Answer {
+        self.ask(left, right, usize::MAX)
+    }
+
+    /// As [`Self::equal`], but looks no further than a few levels below the
+    /// stops: for equalities that are welcome and not needed.
+    pub fn equal_nearby(&mut self, left: Fact, right: Fact) -> Answer {
+        self.ask(left, right, NEARBY)
+    }
+
+    fn ask(&mut self, left: Fact, right: Fact, deepest: usize) -> Answer {
         let differ = self.xor(left, right).0;
-        let mut below_stops = false;
+        self.solver.cb_mut().spent = 0;
+        let mut levels = 0;
         loop {
-            if self.grow(below_stops).is_none() {
+            if !self.grow(levels) {
                 return Answer::Undecided;
             }
             let result = self.solve(differ);
@@ -242,8 +267,12 @@ impl<'a> Prover<'a> {
             if self.frontier.is_empty() {
                 return Answer::Refuted(self.counterexample());
             }
-            // The model may rest on an operand being freer than it is.
-            below_stops = true;
+            // The model may rest on an operand being freer than it is: look
+            // twice as far below.
+            levels = (2 * levels).max(2);
+            if levels > deepest {
+                return Answer::Undecided;
+            }
         }
     }
 
