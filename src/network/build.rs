@@ -1,7 +1,18 @@
 //! From a carry network to gates, through a caller's [`GateSink`].
+//!
+//! Leaves are `g = a·b` and `p = a + b` or `a ⊕ b`; a sum is `(a ⊕ b) ⊕ c`, with
+//! `c` the carry into its position. Nodes are taken in the network's order, by
+//! loops alone, so equal calls make equal gates in equal order whatever the depth.
+//! Invariant: only what some carry needs is made, and no gate has more inputs
+//! than the limit.
+//!
+//! The forms are those of carry-lookahead (A. Weinberger and J. L. Smith, "A
+//! Logic for High-Speed Addition", National Bureau of Standards Circular 591,
+//! 1958).
 
-use super::carry_network::CarryNetwork;
-use crate::netlist::Function;
+use super::carry_network::{CarryNetwork, Node, NodeId};
+use super::gates::Gates;
+use crate::netlist::{Function, TruthTable};
 
 /// Where the builder's gates go. Inversion of a signal is free: a sink whose
 /// format needs a gate for it makes one only where an inverted net is read
@@ -15,10 +26,13 @@ pub trait GateSink {
     /// AND of two signals or more, within the limit on gate inputs. The sink
     /// folds constants, repeated and opposite inputs, and shares equal gates.
     fn and(&mut self, inputs: &[Self::Signal]) -> Self::Signal;
-    /// XOR of two signals.
+    /// XOR of two signals. A sink that makes it from ANDs takes
+    /// `(l + r)·~(l·r)`, which shares a position's g and p.
     fn xor(&mut self, left: Self::Signal, right: Self::Signal) -> Self::Signal;
-    /// One gate of any function, pin 0 first; only asked for with
-    /// [`Limits::covers`].
+    /// One gate of three to six inputs that is no product, pin 0 first; only
+    /// asked for with [`Limits::covers`]. The inputs are no constants, differ
+    /// from one another and from each other's complement, and all matter. The
+    /// sink shares equal gates.
     fn cover(&mut self, function: &Function, inputs: &[Self::Signal]) -> Self::Signal;
     /// When the signal is ready, in ticks of the caller's delay model.
     fn arrival(&self, signal: Self::Signal) -> i32;
@@ -30,7 +44,8 @@ pub struct Limits {
     /// Most inputs of one gate; at least 2.
     pub gate_inputs: usize,
     /// Whether a gate may have any function (`cover`) or is one product or one
-    /// XOR (`single-operator`).
+    /// XOR (`single-operator`). Covers have at most six inputs, products may
+    /// be wider.
     pub covers: bool,
 }
 
@@ -64,12 +79,192 @@ pub struct Built<S> {
 }
 
 /// Builds every sum and carry of `network`.
+///
+/// With single-operator gates, `G` of a combine node of `k` parts is an OR of
+/// `k` terms and `P` one AND; a gate wider than the limit is a tree by arrival.
+/// With covers, see [`super::cover`]. `P` is made only where some parent needs
+/// it. A carry no other gate reads is made all the same: what ends up unread is
+/// the sink's to sweep.
+///
+/// Panics when the addends do not fit the network, or the network is not
+/// complete.
 pub fn build<K: GateSink>(
-    _network: &CarryNetwork,
-    _addends: &Addends<K::Signal>,
-    _limits: Limits,
-    _propagate: Propagate,
-    _sink: &mut K,
+    network: &CarryNetwork,
+    addends: &Addends<K::Signal>,
+    limits: Limits,
+    propagate: Propagate,
+    sink: &mut K,
 ) -> Built<K::Signal> {
-    unimplemented!("written next")
+    let positions = network.positions();
+    assert!(addends.a.len() == positions && addends.b.len() == positions);
+    assert!(addends.carry_in.is_some() == network.carry_in().is_some());
+    assert!(
+        network.is_complete(),
+        "a carry of the network is not stated"
+    );
+    let mut spans = Spans::new(network, addends, limits, propagate, sink);
+    let needs = spans.needs();
+    for node in network.nodes() {
+        if let Node::Combine(parts) = network.node(node) {
+            let need = needs[node.index()];
+            if need.generate {
+                let signal = spans.make_generate(node, parts);
+                spans.generate[node.index()] = Some(signal);
+            }
+            if need.propagate {
+                let signal = spans.make_propagate(node, parts);
+                spans.propagate[node.index()] = Some(signal);
+            }
+        }
+    }
+    let carries = (0..positions).map(|i| spans.generate(network.carry(i)));
+    let carries: Vec<_> = carries.collect();
+    let sums = (0..positions).map(|i| spans.make_sum(i)).collect();
+    Built { sums, carries }
+}
+
+/// What of a combine node has to be made.
+#[derive(Clone, Copy, Default)]
+pub(super) struct Need {
+    generate: bool,
+    propagate: bool,
+}
+
+/// G and P of the spans, as far as they are made.
+pub(super) struct Spans<'a, K: GateSink> {
+    pub(super) network: &'a CarryNetwork,
+    pub(super) addends: &'a Addends<K::Signal>,
+    pub(super) gates: Gates<'a, K>,
+    pub(super) rule: Propagate,
+    /// Widest cover, where covers are of use.
+    pub(super) cover_width: Option<usize>,
+    generate: Vec<Option<K::Signal>>,
+    propagate: Vec<Option<K::Signal>>,
+}
+
+impl<'a, K: GateSink> Spans<'a, K> {
+    fn new(
+        network: &'a CarryNetwork,
+        addends: &'a Addends<K::Signal>,
+        limits: Limits,
+        rule: Propagate,
+        sink: &'a mut K,
+    ) -> Self {
+        let nodes = network.nodes().len();
+        let width = limits.gate_inputs.min(TruthTable::MAX_INPUTS);
+        Self {
+            network,
+            addends,
+            gates: Gates::new(sink, limits.gate_inputs),
+            rule,
+            // `g + p·c` alone takes three inputs.
+            cover_width: (limits.covers && width >= 3).then_some(width),
+            generate: vec![None; nodes],
+            propagate: vec![None; nodes],
+        }
+    }
+
+    /// A P is needed where the part is not the lowest of some combine node, and
+    /// of all parts of a node whose P is needed: so never with the carry-in in.
+    fn needs(&self) -> Vec<Need> {
+        let mut needs = vec![Need::default(); self.network.nodes().len()];
+        for position in 0..self.network.positions() {
+            needs[self.network.carry(position).index()].generate = true;
+        }
+        for node in self.network.nodes().rev() {
+            let need = needs[node.index()];
+            let Node::Combine(parts) = self.network.node(node) else {
+                break;
+            };
+            if self.is_direct(node) {
+                continue;
+            }
+            for (i, part) in parts.iter().enumerate() {
+                let part = &mut needs[part.index()];
+                part.generate |= need.generate;
+                part.propagate |= need.propagate || need.generate && i + 1 < parts.len();
+            }
+        }
+        needs
+    }
+
+    /// The G of a node made before; of a leaf, made now if need be.
+    pub(super) fn generate(&mut self, node: NodeId) -> K::Signal {
+        if let Some(signal) = self.generate[node.index()] {
+            return signal;
+        }
+        let signal = match self.network.node(node) {
+            Node::CarryIn => self.addends.carry_in.expect("checked when building began"),
+            Node::Leaf(i) => self.gates.and(&[self.addends.a[i], self.addends.b[i]]),
+            Node::Combine(_) => unreachable!("parts come before what reads them"),
+        };
+        self.generate[node.index()] = Some(signal);
+        signal
+    }
+
+    /// The P of a node made before; of a leaf, made now if need be.
+    pub(super) fn propagate(&mut self, node: NodeId) -> K::Signal {
+        if let Some(signal) = self.propagate[node.index()] {
+            return signal;
+        }
+        let Node::Leaf(i) = self.network.node(node) else {
+            unreachable!("a P is made before it is read, and the carry-in has none");
+        };
+        let (a, b) = (self.addends.a[i], self.addends.b[i]);
+        let signal = match self.rule {
+            Propagate::Or => self.gates.or(&[a, b]),
+            Propagate::Xor => self.gates.xor(a, b),
+        };
+        self.propagate[node.index()] = Some(signal);
+        signal
+    }
+
+    fn make_generate(&mut self, node: NodeId, parts: &[NodeId]) -> K::Signal {
+        if let Some(width) = self.cover_width {
+            return self.cover_generate(node, width);
+        }
+        let mut terms = Vec::with_capacity(parts.len());
+        let mut above = Vec::with_capacity(parts.len());
+        for (i, &part) in parts.iter().enumerate() {
+            above.push(self.generate(part));
+            terms.push(self.gates.and(&above));
+            above.pop();
+            if i + 1 < parts.len() {
+                above.push(self.propagate(part));
+            }
+        }
+        self.gates.or(&terms)
+    }
+
+    fn make_propagate(&mut self, node: NodeId, parts: &[NodeId]) -> K::Signal {
+        if let Some(width) = self.cover_width {
+            return self.cover_propagate(node, width);
+        }
+        let signals: Vec<_> = parts.iter().map(|&part| self.propagate(part)).collect();
+        self.gates.and(&signals)
+    }
+
+    fn make_sum(&mut self, position: usize) -> K::Signal {
+        let into = match position.checked_sub(1) {
+            Some(below) => Some(self.network.carry(below)),
+            None => self.network.carry_in(),
+        };
+        if let (Some(width), Some(node)) = (self.cover_width, into) {
+            return self.cover_sum(position, node, width);
+        }
+        let half = self.half_sum(position);
+        match into {
+            Some(node) => {
+                let carry = self.generate(node);
+                self.gates.xor(half, carry)
+            }
+            None => half,
+        }
+    }
+
+    /// `a ⊕ b` of a position.
+    pub(super) fn half_sum(&mut self, position: usize) -> K::Signal {
+        let (a, b) = (self.addends.a[position], self.addends.b[position]);
+        self.gates.xor(a, b)
+    }
 }

@@ -101,10 +101,8 @@ impl CarryNetwork {
     /// What a node is.
     pub fn node(&self, node: NodeId) -> Node<'_> {
         let i = node.index();
-        let leaves = self.positions + usize::from(self.has_carry_in);
-        if i >= leaves {
-            let (start, end) = (self.part_starts[i], self.part_starts[i + 1]);
-            Node::Combine(&self.parts[start as usize..end as usize])
+        if i >= self.leaf_count() {
+            Node::Combine(self.parts_at(i))
         } else if self.has_carry_in && i == 0 {
             Node::CarryIn
         } else {
@@ -113,7 +111,7 @@ impl CarryNetwork {
     }
 
     /// All nodes; parts come before what is combined from them.
-    pub fn nodes(&self) -> impl ExactSizeIterator<Item = NodeId> + use<> {
+    pub fn nodes(&self) -> impl DoubleEndedIterator<Item = NodeId> + ExactSizeIterator + use<> {
         (0..self.spans.len() as u32).map(NodeId)
     }
 
@@ -135,7 +133,8 @@ impl CarryNetwork {
         let id = NodeId(u32::try_from(self.spans.len()).expect("fewer than 2^32 nodes"));
         self.spans.push(span);
         self.parts.extend_from_slice(parts);
-        self.part_starts.push(self.parts.len() as u32);
+        let end = u32::try_from(self.parts.len()).expect("fewer than 2^32 parts");
+        self.part_starts.push(end);
         id
     }
 
@@ -153,5 +152,86 @@ impl CarryNetwork {
     /// The node whose G is the carry out of `position`.
     pub fn carry(&self, position: usize) -> NodeId {
         self.carries[position]
+    }
+
+    /// Whether every carry spans down to the lowest position, so that a scheme
+    /// has left none as [`Self::new`] put it.
+    pub fn is_complete(&self) -> bool {
+        (0..self.positions).all(|position| {
+            let span = self.span(self.carries[position]);
+            span.high == position as i32 && span.low == self.lowest()
+        })
+    }
+
+    /// For each node, whether some carry is made from it.
+    pub fn used(&self) -> Vec<bool> {
+        let mut used = vec![false; self.spans.len()];
+        for carry in &self.carries {
+            used[carry.index()] = true;
+        }
+        for i in (self.leaf_count()..used.len()).rev() {
+            if used[i] {
+                for part in self.parts_at(i) {
+                    used[part.index()] = true;
+                }
+            }
+        }
+        used
+    }
+
+    /// Combine nodes some carry is made from: the cells of a prefix network.
+    pub fn cells(&self) -> usize {
+        let used = self.used();
+        used[self.leaf_count()..].iter().filter(|&&u| u).count()
+    }
+
+    /// Combine nodes on the longest path to each node.
+    pub fn node_levels(&self) -> Vec<u32> {
+        let mut levels = vec![0; self.spans.len()];
+        for i in self.leaf_count()..levels.len() {
+            let deepest = self.parts_at(i).iter().map(|part| levels[part.index()]);
+            levels[i] = 1 + deepest.max().unwrap_or(0);
+        }
+        levels
+    }
+
+    /// Combine nodes on the longest path to any carry.
+    pub fn levels(&self) -> usize {
+        let levels = self.node_levels();
+        let deepest = self.carries.iter().map(|carry| levels[carry.index()]);
+        deepest.max().unwrap_or(0) as usize
+    }
+
+    /// Most readers of one node: combine nodes that some carry needs, and one
+    /// more where the node is itself a carry (its sum reads it). Drawn networks
+    /// put buffers between rows; here there are none.
+    pub fn largest_fan_out(&self) -> usize {
+        let used = self.used();
+        let mut readers = vec![0usize; self.spans.len()];
+        for carry in &self.carries {
+            readers[carry.index()] += 1;
+        }
+        for i in (self.leaf_count()..used.len()).filter(|&i| used[i]) {
+            for part in self.parts_at(i) {
+                readers[part.index()] += 1;
+            }
+        }
+        readers.into_iter().max().unwrap_or(0)
+    }
+
+    /// Most parts of one combine node some carry needs; 1 when there is none.
+    pub fn largest_valency(&self) -> usize {
+        let used = self.used();
+        let combines = (self.leaf_count()..used.len()).filter(|&i| used[i]);
+        combines.map(|i| self.parts_at(i).len()).max().unwrap_or(1)
+    }
+
+    fn leaf_count(&self) -> usize {
+        self.positions + usize::from(self.has_carry_in)
+    }
+
+    fn parts_at(&self, node: usize) -> &[NodeId] {
+        let (start, end) = (self.part_starts[node], self.part_starts[node + 1]);
+        &self.parts[start as usize..end as usize]
     }
 }

@@ -3,10 +3,16 @@
 //!
 //! This room knows positions and spans, and no netlist: gates are made through
 //! the [`GateSink`] a caller hands in, so that an estimate and a rebuild make
-//! the very same gates.
+//! the very same gates. [`CountingSink`] is the sink for when there is no
+//! netlist at all.
 
 mod build;
 mod carry_network;
+mod counting;
+mod cover;
+mod gates;
+pub mod schemes;
 
 pub use build::{Addends, Built, GateSink, Limits, Propagate, build};
 pub use carry_network::{CarryNetwork, Node, NodeId, Span};
+pub use counting::{CountedSignal, CountingSink, XorForm};

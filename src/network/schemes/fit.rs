@@ -1,0 +1,114 @@
+//! Which schemes are worth trying on a chain: the candidates a planner dry-runs.
+//!
+//! Deterministic: the order of [`all`], then valency, extra levels or group size
+//! ascending; a network equal to an earlier one is left out. Bounded: above
+//! [`MOST_LOG_LINEAR`] positions only schemes of linear size remain, and flat
+//! lookahead stops at its own cap, being cubic.
+
+use super::{CarryNetwork, Growth, Scheme, Settings, all, flat_lookahead, group_lookahead};
+
+/// The widest chain a scheme of n·log n size is proposed for.
+pub const MOST_LOG_LINEAR: usize = 4096;
+
+/// The highest valency proposed, whatever the gate inputs.
+const MOST_VALENCY: usize = 6;
+
+/// Group sizes tried, as far as gate inputs allow; up to four always.
+const GROUPS: [usize; 8] = [2, 3, 4, 5, 6, 8, 16, 32];
+
+/// A scheme fitted to one chain.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Fitted {
+    /// The scheme's name.
+    pub scheme: &'static str,
+    /// Members of one group, for group lookahead.
+    pub group: Option<usize>,
+    /// Levels of lookahead for group lookahead; for every other scheme the
+    /// combine nodes on the longest path.
+    pub levels: usize,
+    /// Most spans one combine node joins.
+    pub valency: usize,
+    /// The carry network.
+    pub network: CarryNetwork,
+}
+
+impl Fitted {
+    /// Fits one scheme.
+    pub fn new(scheme: &Scheme, positions: usize, has_carry_in: bool, settings: Settings) -> Self {
+        let network = scheme.network(positions, has_carry_in, settings);
+        let group = scheme.takes.group.then_some(settings.group);
+        let levels = match group {
+            Some(size) => group_lookahead::lookahead_levels(positions, size),
+            None => network.levels(),
+        };
+        Self {
+            scheme: scheme.name,
+            group,
+            levels,
+            valency: network.largest_valency(),
+            network,
+        }
+    }
+}
+
+/// The sensible proposals for a chain, where a gate may have `gate_inputs`
+/// inputs. The first is always ripple.
+pub fn candidates(positions: usize, has_carry_in: bool, gate_inputs: usize) -> Vec<Fitted> {
+    let mut fitted: Vec<Fitted> = Vec::new();
+    for scheme in all().iter().filter(|scheme| fits(scheme, positions)) {
+        for settings in variations(scheme, positions, gate_inputs) {
+            let next = Fitted::new(scheme, positions, has_carry_in, settings);
+            if fitted.iter().all(|earlier| earlier.network != next.network) {
+                fitted.push(next);
+            }
+        }
+    }
+    fitted
+}
+
+fn fits(scheme: &Scheme, positions: usize) -> bool {
+    match scheme.growth {
+        Growth::Linear => true,
+        Growth::LogLinear => positions <= MOST_LOG_LINEAR,
+        Growth::Cubic => positions <= flat_lookahead::MOST_POSITIONS,
+    }
+}
+
+fn variations(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Settings> {
+    let mut list = vec![Settings::default()];
+    if scheme.takes.valency {
+        let most = gate_inputs.clamp(2, MOST_VALENCY);
+        list = vary(&list, 2..=most, |settings, valency| Settings {
+            valency,
+            ..settings
+        });
+    }
+    if scheme.takes.extra_levels {
+        list = vary(&list, 1..=2, |settings, extra_levels| Settings {
+            extra_levels,
+            ..settings
+        });
+    }
+    if scheme.takes.group {
+        let most = gate_inputs.max(4).min(positions.saturating_sub(1));
+        let sizes = GROUPS.into_iter().filter(|&size| size <= most);
+        list = vary(&list, sizes, |settings, group| Settings {
+            group,
+            ..settings
+        });
+    }
+    list
+}
+
+fn vary(
+    list: &[Settings],
+    values: impl Iterator<Item = usize> + Clone,
+    set: impl Fn(Settings, usize) -> Settings,
+) -> Vec<Settings> {
+    let varied = list
+        .iter()
+        .flat_map(|&settings| values.clone().map(move |value| (settings, value)));
+    varied
+        .map(|(settings, value)| set(settings, value))
+        .collect()
+}

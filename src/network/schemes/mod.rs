@@ -1,0 +1,157 @@
+//! The published ways to build a carry network, one file each and one list.
+//!
+//! A scheme sets the carry of every position of an empty [`CarryNetwork`], for
+//! any number of positions, with and without carry-in. Prefix schemes take the
+//! carry-in as one more item at the low end: that needs ⌈log2(n+1)⌉ levels at
+//! the least, where folding it into position 0 first, or into every carry last,
+//! always needs one more than without (equal only when n is a power of two).
+//! Group lookahead hands it to the top group, as the textbooks do.
+//!
+//! A new scheme is one file and one line in [`all`].
+
+mod brent_kung;
+mod fit;
+mod flat_lookahead;
+mod fold;
+mod group_lookahead;
+mod han_carlson;
+mod kogge_stone;
+mod ladner_fischer;
+mod ripple;
+mod sklansky;
+
+pub use fit::{Fitted, candidates};
+
+use super::carry_network::{CarryNetwork, NodeId};
+
+/// How the number of gates grows with the number of positions.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub enum Growth {
+    /// In proportion.
+    Linear,
+    /// Positions times their logarithm.
+    LogLinear,
+    /// With the third power, counted in gate inputs.
+    Cubic,
+}
+
+/// What a scheme may be varied in. A scheme ignores what it does not take.
+#[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
+pub struct Settings {
+    /// Most spans one combine node joins; at least 2.
+    pub valency: usize,
+    /// Members of one lookahead group; at least 2.
+    pub group: usize,
+    /// Levels spent beyond the fewest possible to save cells.
+    pub extra_levels: usize,
+}
+
+impl Default for Settings {
+    fn default() -> Self {
+        Self {
+            valency: 2,
+            group: 4,
+            extra_levels: 1,
+        }
+    }
+}
+
+/// Which of the [`Settings`] a scheme takes.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct Takes {
+    /// The valency.
+    pub valency: bool,
+    /// The group size.
+    pub group: bool,
+    /// The extra levels.
+    pub extra_levels: bool,
+}
+
+/// A published way to build the carry network.
+pub struct Scheme {
+    /// The scheme's word in reports and options.
+    pub name: &'static str,
+    /// Where it was published.
+    pub source: &'static str,
+    /// How its size grows.
+    pub growth: Growth,
+    /// What it may be varied in.
+    pub takes: Takes,
+    shape: fn(&mut CarryNetwork, Settings),
+}
+
+impl Scheme {
+    /// The scheme's carry network. Panics when there is no position, or a
+    /// valency or group below 2.
+    pub fn network(
+        &self,
+        positions: usize,
+        has_carry_in: bool,
+        settings: Settings,
+    ) -> CarryNetwork {
+        assert!(settings.valency >= 2, "a combine node joins at least two");
+        assert!(settings.group >= 2, "a group has at least two members");
+        let mut network = CarryNetwork::new(positions, has_carry_in);
+        (self.shape)(&mut network, settings);
+        network
+    }
+}
+
+/// Every scheme, in the order proposals are listed.
+pub fn all() -> &'static [Scheme] {
+    &ALL
+}
+
+/// The scheme of that name.
+pub fn by_name(name: &str) -> Option<&'static Scheme> {
+    ALL.iter().find(|scheme| scheme.name == name)
+}
+
+static ALL: [Scheme; 8] = [
+    ripple::SCHEME,
+    sklansky::SCHEME,
+    kogge_stone::SCHEME,
+    brent_kung::SCHEME,
+    ladner_fischer::SCHEME,
+    han_carlson::SCHEME,
+    flat_lookahead::SCHEME,
+    group_lookahead::SCHEME,
+];
+
+const NOTHING: Takes = Takes {
+    valency: false,
+    group: false,
+    extra_levels: false,
+};
+const VALENCY: Takes = Takes {
+    valency: true,
+    ..NOTHING
+};
+
+/// A prefix scheme: from adjacent spans, lowest first, to the spans that reach
+/// from each down to the first.
+type Prefixes = fn(&mut CarryNetwork, &[NodeId], usize) -> Vec<NodeId>;
+
+/// The carry-in, if there is one, and the leaves, lowest first.
+fn items(network: &CarryNetwork) -> Vec<NodeId> {
+    let leaves = (0..network.positions()).map(|position| network.leaf(position));
+    network.carry_in().into_iter().chain(leaves).collect()
+}
+
+/// Sets the carries from the prefixes of [`items`].
+fn set_carries(network: &mut CarryNetwork, prefixes: &[NodeId]) {
+    let first = usize::from(network.carry_in().is_some());
+    for (position, &prefix) in prefixes[first..].iter().enumerate() {
+        network.set_carry(position, prefix);
+    }
+}
+
+/// Joins adjacent spans given lowest first; a single one is itself.
+fn join(network: &mut CarryNetwork, lowest_first: impl IntoIterator<Item = NodeId>) -> NodeId {
+    let mut parts: Vec<NodeId> = lowest_first.into_iter().collect();
+    if let [only] = parts[..] {
+        return only;
+    }
+    parts.reverse();
+    network.combine(&parts)
+}
