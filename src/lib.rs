@@ -25,4 +25,5 @@
 pub mod chain;
 pub mod netlist;
 pub mod network;
+pub mod plan;
 pub mod timing;

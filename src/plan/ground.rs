@@ -6,7 +6,9 @@
 use super::settings::Settings;
 use crate::netlist::histogram::reader_counts;
 use crate::netlist::{Driver, GateId, NetId, Netlist, Readers, Topology};
-use crate::timing::{End, EndClass, NEVER, PathKind, StartClass, Timing, end_arrival, end_net, ends};
+use crate::timing::{
+    End, EndClass, NEVER, PathKind, StartClass, Timing, end_arrival, end_net, ends,
+};
 
 /// See the head of the module.
 pub struct Ground<'a> {

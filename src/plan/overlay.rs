@@ -160,10 +160,7 @@ impl Overlay {
 
     /// Whether the node is a gate, of this overlay or existing.
     pub(super) fn is_gate(&self, node: Node) -> bool {
-        !matches!(
-            self.operator(node),
-            Operator::Constant | Operator::Net(_)
-        )
+        !matches!(self.operator(node), Operator::Constant | Operator::Net(_))
     }
 
     pub(super) fn inputs(&self, node: Node) -> &[Literal] {
@@ -184,6 +181,14 @@ impl Overlay {
         let node = self.push(Operator::Net(net), &[], arrival);
         self.nets.insert(net, node);
         Literal::new(node, false)
+    }
+
+    /// The existing net a literal reads, unless it is a gate or a constant.
+    pub(super) fn net_of(&self, literal: Literal) -> Option<NetId> {
+        match self.operator(literal.node()) {
+            Operator::Net(net) => Some(net),
+            _ => None,
+        }
     }
 
     /// The gate that an existing gate with these inputs would be, in the
@@ -245,9 +250,8 @@ impl Overlay {
         if let Some(&node) = self.index.get(&(operator, inputs.clone())) {
             return node;
         }
-        let arrival = self.gate_arrival(operator, &inputs, |o, node| {
-            o.entries[node.index()].arrival
-        });
+        let arrival =
+            self.gate_arrival(operator, &inputs, |o, node| o.entries[node.index()].arrival);
         let node = self.push(operator, &inputs, arrival);
         self.index.insert((operator, inputs), node);
         node
@@ -336,6 +340,12 @@ impl Overlay {
             times.push(time);
         }
         times
+    }
+
+    /// When a gate node would be ready as a gate of its own.
+    pub(super) fn own_arrival(&self, node: Node, times: &[i32]) -> i32 {
+        let inputs = self.inputs(node);
+        self.priced_arrival(self.operator(node), inputs, |at| times[at.index()])
     }
 
     /// Delay of the gate a real net needs where it equals another net.
@@ -486,8 +496,12 @@ pub(super) fn product_polarities(function: &Function) -> Option<(Vec<bool>, bool
                 *table
             };
             let minterm = column.bits().trailing_zeros();
-            (column.bits().count_ones() == 1)
-                .then(|| ((0..n).map(|pin| minterm >> pin & 1 == 0).collect(), complemented))
+            (column.bits().count_ones() == 1).then(|| {
+                (
+                    (0..n).map(|pin| minterm >> pin & 1 == 0).collect(),
+                    complemented,
+                )
+            })
         }
         Function::Cover(cover) => {
             let mut inverted = vec![false; cover.inputs()];
@@ -530,7 +544,9 @@ fn ascending(table: TruthTable, inputs: &[Literal]) -> (TruthTable, Vec<Literal>
 
 /// The table without pins it does not depend on.
 fn drop_unread(table: TruthTable, mut pins: Vec<Literal>) -> (TruthTable, Vec<Literal>) {
-    let read: Vec<usize> = (0..pins.len()).filter(|&pin| table.depends_on(pin)).collect();
+    let read: Vec<usize> = (0..pins.len())
+        .filter(|&pin| table.depends_on(pin))
+        .collect();
     if read.len() == pins.len() {
         return (table, pins);
     }

@@ -193,8 +193,9 @@ fn default_inputs(netlist: &Netlist, new_gates: NewGates, most: usize) -> (usize
         .unwrap_or(0);
     let kind = new_gates.word();
     if largest > most {
-        let reason =
-            format!("the widest gate of the netlist has {largest}; {most} is the default limit for {kind} gates");
+        let reason = format!(
+            "the widest gate of the netlist has {largest}; {most} is the default limit for {kind} gates"
+        );
         (most, reason)
     } else if largest < 2 {
         (2, "a gate needs at least two".to_owned())
