@@ -23,7 +23,9 @@
 //! `subject` and `prove`; `plan` joins `chain`, `network` and `timing`.
 
 pub mod chain;
+pub mod format;
 pub mod netlist;
 pub mod network;
 pub mod plan;
+pub mod source;
 pub mod timing;

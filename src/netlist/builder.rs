@@ -145,6 +145,16 @@ impl NetlistBuilder {
         self.netlist.drivers[net.index()]
     }
 
+    /// The net of input port `index`.
+    pub fn input(&self, index: usize) -> NetId {
+        self.netlist.inputs[index]
+    }
+
+    /// The net that register `index` drives.
+    pub fn register_output(&self, index: usize) -> NetId {
+        self.netlist.registers[index].output
+    }
+
     fn drive(&mut self, net: NetId, driver: Driver, line: u32) {
         let slot = &mut self.netlist.drivers[net.index()];
         match *slot {

@@ -1,0 +1,529 @@
+//! Logical lines to models.
+//!
+//! One pass: names are interned straight from the bytes of the file and turned
+//! into net numbers of the model at once, so a model's nets need no map. A faulty
+//! line is told and left out, and reading goes on, up to a bound; nothing is
+//! built when there was an error.
+//!
+//! The default rules of the format are kept here: `.model`, `.end` are optional,
+//! `.end` is implied by the next `.model` and by the end of the file. Ports that
+//! are not listed at all are inferred later, when directions are known.
+
+use super::cover::{Remembered, Rows};
+use super::grammar::{self, Called, Fault, LatchLine, Statement, Words};
+use super::lines::Lines;
+use super::model::{Binding, Gate, Instance, Latch, Local, Model, Port};
+use super::tally::{Oddity, Tally};
+use crate::netlist::{NameId, NetlistBuilder};
+use crate::source::{Diagnostic, Place, Source, quote};
+use rustc_hash::FxHashMap;
+
+/// Errors after which reading stops.
+const MOST_ERRORS: usize = 20;
+/// Most distinct names.
+const MOST_NAMES: usize = 1 << 31;
+
+/// What a file holds.
+pub(super) struct Contents {
+    pub(super) models: Vec<Model>,
+    /// The names and functions interned so far; no net yet.
+    pub(super) builder: NetlistBuilder,
+    pub(super) tally: Tally,
+}
+
+/// Which part of the file the lines belong to.
+#[derive(Clone, Copy, PartialEq, Eq)]
+enum Section {
+    /// No model has begun.
+    Start,
+    Logic,
+    DontCares,
+    /// A state table and the line it began on.
+    StateTable(u32),
+    AfterEnd,
+}
+
+/// Whether rows may follow.
+#[derive(Clone, Copy, PartialEq, Eq)]
+enum Block {
+    Closed,
+    /// Rows of a `.names` on this line.
+    Open(u32),
+    /// The `.names` was faulty; its rows are passed over.
+    Faulty,
+}
+
+// Marks of a model's nets in its port lists.
+const INPUT: u8 = 1;
+const OUTPUT: u8 = 2;
+const CLOCK: u8 = 4;
+
+struct Reader<'a> {
+    source: &'a Source,
+    builder: NetlistBuilder,
+    models: Vec<Model>,
+    by_name: FxHashMap<NameId, usize>,
+    /// By name: number of models begun when it was last seen, and its net there.
+    locals: Vec<(u32, Local)>,
+    /// By net of the open model: the port lists it is in.
+    marks: Vec<u8>,
+    section: Section,
+    block: Block,
+    rows: Rows,
+    remembered: Remembered,
+    errors: Vec<Diagnostic>,
+    tally: Tally,
+}
+
+/// Reads all models of a file.
+pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
+    let mut reader = Reader {
+        source,
+        builder: NetlistBuilder::new(),
+        models: Vec::new(),
+        by_name: FxHashMap::default(),
+        locals: Vec::new(),
+        marks: Vec::new(),
+        section: Section::Start,
+        block: Block::Closed,
+        rows: Rows::default(),
+        remembered: Remembered::default(),
+        errors: Vec::new(),
+        tally: Tally::default(),
+    };
+    let mut lines = Lines::new(source);
+    loop {
+        match lines.advance() {
+            Ok(true) => reader.line(&lines),
+            Ok(false) => break,
+            Err(error) => reader.errors.push(error),
+        }
+        if reader.errors.len() >= MOST_ERRORS || reader.too_many_names(&lines) {
+            break;
+        }
+    }
+    reader.close_block();
+    if let Section::StateTable(line) = reader.section {
+        reader.state_table_open(line);
+    }
+    if let Some((line, count)) = lines.glued_comments {
+        let place = || Place::line(line);
+        reader
+            .tally
+            .count(Oddity::GluedComment, b"", count, place);
+    }
+    if reader.errors.is_empty() {
+        Ok(Contents {
+            models: reader.models,
+            builder: reader.builder,
+            tally: reader.tally,
+        })
+    } else {
+        Err(reader.errors)
+    }
+}
+
+impl Reader<'_> {
+    fn too_many_names(&mut self, lines: &Lines<'_>) -> bool {
+        let many = self.builder.names().len() > MOST_NAMES;
+        if many {
+            self.errors.push(Diagnostic::error(
+                &self.source.name,
+                Place::line(lines.line()),
+                format!("expected at most {MOST_NAMES} different names, found more"),
+                "netlists beyond this size are not read",
+            ));
+        }
+        many
+    }
+
+    fn line(&mut self, lines: &Lines<'_>) {
+        let text = lines.text();
+        let is_statement = grammar::is_statement(text);
+        match self.section {
+            Section::Start | Section::Logic => {}
+            Section::StateTable(line) => return self.state_table_line(lines, line),
+            Section::DontCares | Section::AfterEnd if !is_statement => {
+                return self.passed_over(lines);
+            }
+            Section::DontCares | Section::AfterEnd => {}
+        }
+        if !is_statement {
+            return self.row(lines, text);
+        }
+        match grammar::statement(text) {
+            Ok(statement) if self.section == Section::Start || self.section == Section::Logic => {
+                self.statement(lines, text, statement);
+            }
+            Ok(statement) => self.outside(lines, statement),
+            Err(_) if self.section == Section::AfterEnd => self.passed_over(lines),
+            Err(fault) => {
+                self.close_block();
+                self.block = Block::Faulty;
+                self.fault(lines, fault);
+            }
+        }
+    }
+
+    #[cold]
+    fn fault(&mut self, lines: &Lines<'_>, fault: Fault) {
+        self.errors.push(Diagnostic::error(
+            &self.source.name,
+            lines.place(fault.at, fault.length),
+            fault.message,
+            fault.help,
+        ));
+    }
+
+    /// A line of a section that is not read, other than a statement.
+    fn passed_over(&mut self, lines: &Lines<'_>) {
+        if self.section == Section::AfterEnd {
+            let place = || Place::line(lines.line());
+            self.tally.count(Oddity::AfterEnd, b"", 1, place);
+        }
+    }
+
+    /// A statement after `.exdc` or after `.end`.
+    fn outside(&mut self, lines: &Lines<'_>, statement: Statement<'_>) {
+        match statement {
+            Statement::Model(name) => self.begin_model(lines, name),
+            _ if self.section == Section::AfterEnd => self.passed_over(lines),
+            Statement::End(rest) => self.end(lines, rest),
+            Statement::Latch(_) | Statement::Instance { .. } => {
+                self.errors.push(Diagnostic::error(
+                    &self.source.name,
+                    Place::line(lines.line()),
+                    "expected only `.inputs`, `.outputs` and `.names` in a section of \
+                     don't-cares, found a latch or an instance",
+                    "put `.exdc` last in its model, or end the model before this line",
+                ));
+            }
+            _ => {}
+        }
+    }
+
+    fn state_table_line(&mut self, lines: &Lines<'_>, began: u32) {
+        let Ok(statement) = grammar::statement(lines.text()) else {
+            return;
+        };
+        match statement {
+            Statement::EndKiss => self.section = Section::Logic,
+            Statement::Model(name) => {
+                self.state_table_open(began);
+                self.begin_model(lines, name);
+            }
+            _ => {}
+        }
+    }
+
+    #[cold]
+    fn state_table_open(&mut self, began: u32) {
+        self.errors.push(Diagnostic::error(
+            &self.source.name,
+            Place::line(began),
+            "expected `.end_kiss` after `.start_kiss`, found the end of the model",
+            "close the state table, or check whether the file is cut short",
+        ));
+    }
+
+    fn row(&mut self, lines: &Lines<'_>, text: &[u8]) {
+        match self.block {
+            Block::Open(_) => {}
+            Block::Faulty => return,
+            Block::Closed => {
+                let start = text.trim_ascii_start();
+                let end = start.iter().position(u8::is_ascii_whitespace);
+                let word = &start[..end.unwrap_or(start.len())];
+                self.errors.push(Diagnostic::error(
+                    &self.source.name,
+                    lines.place(grammar::offset(text, word), word.len()),
+                    format!(
+                        "expected a word that begins with a dot, found {}",
+                        quote(word)
+                    ),
+                    "cover rows stand right after their `.names`; a list goes on in the next line \
+                     only after a backslash",
+                ));
+                // One message for a whole run of such lines.
+                self.block = Block::Faulty;
+                return;
+            }
+        }
+        let (plane, column) = match grammar::row(text, self.rows.inputs()) {
+            Ok(row) => row,
+            Err(fault) => return self.fault(lines, fault),
+        };
+        if let Err(first) = self.rows.add(plane, column, lines.line()) {
+            let at = text.iter().rposition(|b| matches!(b, b'0' | b'1'));
+            let (now, before) = (u8::from(column), u8::from(!column));
+            self.errors.push(
+                Diagnostic::error(
+                    &self.source.name,
+                    lines.place(at.unwrap_or(0), 1),
+                    format!("expected output column {before} in every row of this cover, found {now}"),
+                    "a cover lists either where its output is 1 or where it is 0, not both",
+                )
+                .and(first, format!("the first row has {before}")),
+            );
+            self.block = Block::Faulty;
+        }
+    }
+
+    /// The open model; begins the unnamed one where there is none.
+    fn model(&mut self, line: u32) -> &mut Model {
+        if self.section == Section::Start {
+            let name = self.builder.name(self.source.stem().as_bytes());
+            self.push_model(name, line);
+        }
+        let last = self.models.len() - 1;
+        &mut self.models[last]
+    }
+
+    fn push_model(&mut self, name: NameId, line: u32) {
+        self.by_name.insert(name, self.models.len());
+        self.models.push(Model::new(name, line));
+        self.marks.clear();
+        self.section = Section::Logic;
+    }
+
+    fn begin_model(&mut self, lines: &Lines<'_>, name: &[u8]) {
+        self.close_block();
+        let id = self.builder.name(name);
+        if let Some(&other) = self.by_name.get(&id) {
+            self.errors.push(
+                Diagnostic::error(
+                    &self.source.name,
+                    Place::line(lines.line()),
+                    format!("expected one model {}, found a second", quote(name)),
+                    "give each model a name of its own",
+                )
+                .and(self.models[other].line, "the first begins here"),
+            );
+        }
+        self.push_model(id, lines.line());
+    }
+
+    fn end(&mut self, lines: &Lines<'_>, mut rest: Words<'_>) {
+        self.close_block();
+        self.model(lines.line());
+        self.section = Section::AfterEnd;
+        if rest.next().is_some() {
+            self.passed_over(lines);
+        }
+    }
+
+    fn statement(&mut self, lines: &Lines<'_>, text: &[u8], statement: Statement<'_>) {
+        self.close_block();
+        let line = lines.line();
+        match statement {
+            Statement::Model(name) => self.begin_model(lines, name),
+            Statement::Names(words) => self.names(lines, text, words),
+            Statement::Latch(latch) => self.latch(line, &latch),
+            Statement::Instance {
+                called,
+                model,
+                bindings,
+            } => self.instance(lines, text, called, model, bindings),
+            Statement::Inputs(words, singular) => {
+                if singular {
+                    self.singular(lines, b".input");
+                }
+                self.model(line).ports_given = true;
+                self.ports(lines, words, INPUT);
+            }
+            Statement::Outputs(words, singular) => {
+                if singular {
+                    self.singular(lines, b".output");
+                }
+                self.model(line).ports_given = true;
+                self.ports(lines, words, OUTPUT);
+            }
+            Statement::Clock(words) => self.ports(lines, words, CLOCK),
+            Statement::Exdc => {
+                self.model(line);
+                self.section = Section::DontCares;
+                let place = || Place::line(line);
+                self.tally.count(Oddity::DontCares, b"", 1, place);
+            }
+            Statement::End(rest) => self.end(lines, rest),
+            Statement::StartKiss => {
+                self.model(line);
+                self.section = Section::StateTable(line);
+                let place = || Place::line(line);
+                self.tally.count(Oddity::StateTable, b"", 1, place);
+            }
+            Statement::EndKiss => self.unknown(lines, b".end_kiss"),
+            Statement::Unknown(word) => self.unknown(lines, word),
+        }
+    }
+
+    fn unknown(&mut self, lines: &Lines<'_>, word: &[u8]) {
+        self.model(lines.line());
+        let place = || Place::line(lines.line());
+        self.tally.count(Oddity::Word, word, 1, place);
+    }
+
+    fn singular(&mut self, lines: &Lines<'_>, word: &[u8]) {
+        let place = || Place::line(lines.line());
+        self.tally.count(Oddity::Singular, word, 1, place);
+    }
+
+    /// The net of a name in the open model.
+    #[inline]
+    fn net(&mut self, name: &[u8]) -> Local {
+        let id = self.builder.name(name);
+        let index = id.0 as usize;
+        if index >= self.locals.len() {
+            self.locals.resize(self.builder.names().len(), (0, 0));
+        }
+        let epoch = self.models.len() as u32;
+        let slot = &mut self.locals[index];
+        if slot.0 != epoch {
+            let model = &mut self.models[epoch as usize - 1];
+            *slot = (epoch, model.nets.len() as Local);
+            model.nets.push(id);
+        }
+        slot.1
+    }
+
+    fn ports(&mut self, lines: &Lines<'_>, words: Words<'_>, list: u8) {
+        let line = lines.line();
+        self.model(line);
+        for word in words {
+            let net = self.net(word);
+            let index = net as usize;
+            if index >= self.marks.len() {
+                self.marks.resize(index + 1, 0);
+            }
+            let mark = self.marks[index];
+            self.marks[index] |= list;
+            // A clock is an input port, listed a second time or not.
+            let same = if list == OUTPUT { OUTPUT } else { INPUT | CLOCK };
+            if mark & same == 0 {
+                let model = self.model(line);
+                let port = Port { net, line };
+                if list == OUTPUT {
+                    model.outputs.push(port);
+                } else {
+                    model.inputs.push(port);
+                }
+            } else if mark & list != 0 && list != CLOCK {
+                let place = || lines.place(grammar::offset(lines.text(), word), word.len());
+                self.tally.count(Oddity::RepeatedPort, word, 1, place);
+            }
+        }
+    }
+
+    fn names(&mut self, lines: &Lines<'_>, text: &[u8], words: Words<'_>) {
+        self.model(lines.line());
+        let mut count = 0;
+        for word in words {
+            let net = self.net(word);
+            self.model(lines.line()).pins.push(net);
+            count += 1;
+        }
+        if count == 0 {
+            self.block = Block::Faulty;
+            let help = "write `.names`, the inputs, and the output last";
+            return self.fault(lines, grammar::missing(text, "the gate's output", help));
+        }
+        self.rows.open(count - 1);
+        self.block = Block::Open(lines.line());
+    }
+
+    /// Ends the rows of the open `.names`, if there is one.
+    fn close_block(&mut self) {
+        let block = std::mem::replace(&mut self.block, Block::Closed);
+        let Block::Open(line) = block else { return };
+        if self.rows.is_empty() && self.rows.inputs() > 0 {
+            let place = || Place::line(line);
+            self.tally.count(Oddity::NoRows, b"", 1, place);
+        }
+        let function = self.remembered.function(&self.rows, &mut self.builder);
+        let model = self.model(line);
+        let end = model.pins.len();
+        match u32::try_from(end) {
+            Ok(end) => model.gates.push(Gate {
+                function,
+                end,
+                line,
+            }),
+            Err(_) => self.too_long(line, "gate pins"),
+        }
+    }
+
+    #[cold]
+    fn too_long(&mut self, line: u32, what: &str) {
+        self.errors.push(Diagnostic::error(
+            &self.source.name,
+            Place::line(line),
+            format!("expected fewer than {} {what} in one model", u32::MAX),
+            "netlists beyond this size are not read",
+        ));
+    }
+
+    fn latch(&mut self, line: u32, latch: &LatchLine<'_>) {
+        self.model(line);
+        let latch = Latch {
+            input: self.net(latch.input),
+            output: self.net(latch.output),
+            trigger: latch.trigger,
+            control: latch.control.map(|name| self.net(name)),
+            initial: latch.initial,
+            line,
+        };
+        self.model(line).latches.push(latch);
+    }
+
+    fn instance(
+        &mut self,
+        lines: &Lines<'_>,
+        text: &[u8],
+        called: Called,
+        model_name: &[u8],
+        words: Words<'_>,
+    ) {
+        let line = lines.line();
+        self.model(line);
+        let model = self.builder.name(model_name);
+        let mut bare = 0;
+        for word in words {
+            // A latch cell names its control and initial value without `=`.
+            if called == Called::LatchCell && !word.contains(&b'=') && bare < 2 {
+                bare += 1;
+                if bare == 1 && word != b"NIL" {
+                    let formal = self.builder.name(b"");
+                    let actual = self.net(word);
+                    self.model(line).bindings.push(Binding { formal, actual });
+                }
+                continue;
+            }
+            match grammar::binding(text, word) {
+                Ok((formal, actual)) => {
+                    let formal = self.builder.name(formal);
+                    let actual = self.net(actual);
+                    self.model(line).bindings.push(Binding { formal, actual });
+                }
+                Err(fault) => self.fault(lines, fault),
+            }
+        }
+        let ordinals = &mut self.model(line).ordinals;
+        let ordinal = ordinals.entry(model).or_insert(0);
+        *ordinal += 1;
+        let suffix = format!("_{ordinal}");
+        let name = self.builder.name(&[model_name, suffix.as_bytes()].concat());
+        let open = self.model(line);
+        let gates_before = open.gates.len() as u32;
+        match u32::try_from(open.bindings.len()) {
+            Ok(end) => open.instances.push(Instance {
+                called,
+                model,
+                name,
+                line,
+                gates_before,
+                end,
+            }),
+            Err(_) => self.too_long(line, "connections"),
+        }
+    }
+}

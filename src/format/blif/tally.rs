@@ -1,0 +1,195 @@
+//! Warnings that would repeat: each kind of oddity is told once, with its number
+//! of occurrences and the first place.
+//!
+//! A file can hold as many different unknown words as it has lines, so the list
+//! itself is bounded; what was left out is counted in a last warning.
+
+use super::grammar::Called;
+use crate::source::{Diagnostic, Place, escape, quote};
+use rustc_hash::FxHashMap;
+
+/// Most warnings of one file.
+const SHOWN: usize = 100;
+
+/// What was odd.
+#[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
+pub(super) enum Oddity {
+    /// A dot-word that is not read.
+    Word,
+    /// `.input` or `.output`.
+    Singular,
+    /// A cover with inputs and without rows.
+    NoRows,
+    /// A don't-care section.
+    DontCares,
+    /// Text between `.end` and the next model.
+    AfterEnd,
+    /// A state table.
+    StateTable,
+    /// A comment right after a character of a word.
+    GluedComment,
+    /// A name twice in one list of ports.
+    RepeatedPort,
+    /// An instance whose function is not in the file.
+    Missing(Called),
+}
+
+struct Entry {
+    oddity: Oddity,
+    subject: Vec<u8>,
+    place: Place,
+    count: u64,
+}
+
+/// The oddities met so far, in the order they were first met.
+#[derive(Default)]
+pub(super) struct Tally {
+    entries: Vec<Entry>,
+    index: FxHashMap<(Oddity, Vec<u8>), usize>,
+}
+
+impl Tally {
+    /// Counts one occurrence; `subject` tells those of one kind apart, `place`
+    /// is asked for the first only.
+    pub(super) fn count(
+        &mut self,
+        oddity: Oddity,
+        subject: &[u8],
+        times: u64,
+        place: impl FnOnce() -> Place,
+    ) {
+        let key = (oddity, subject.to_vec());
+        if let Some(&at) = self.index.get(&key) {
+            self.entries[at].count += times;
+            return;
+        }
+        self.index.insert(key, self.entries.len());
+        self.entries.push(Entry {
+            oddity,
+            subject: subject.to_vec(),
+            place: place(),
+            count: times,
+        });
+    }
+
+    /// The warnings, by line.
+    pub(super) fn into_warnings(mut self, file: &str) -> Vec<Diagnostic> {
+        let line = |entry: &Entry| match entry.place {
+            Place::Line { line, .. } => line,
+            Place::File | Place::Byte(_) => 0,
+        };
+        self.entries.sort_by_key(line);
+        let mut warnings: Vec<_> = self
+            .entries
+            .iter()
+            .take(SHOWN)
+            .map(|entry| entry.warning(file))
+            .collect();
+        if let Some(next) = self.entries.get(SHOWN) {
+            warnings.push(Diagnostic::warning(
+                file,
+                next.place,
+                format!(
+                    "{} more warnings, from here on, are not shown",
+                    self.entries.len() - SHOWN
+                ),
+                "check that this is the file that was meant",
+            ));
+        }
+        warnings
+    }
+}
+
+fn plural(count: u64, one: &str, many: &str) -> String {
+    format!("{count} {}", if count == 1 { one } else { many })
+}
+
+impl Entry {
+    fn warning(&self, file: &str) -> Diagnostic {
+        let subject = quote(&self.subject);
+        let n = self.count;
+        let (message, help) = match self.oddity {
+            Oddity::Word => (
+                format!(
+                    "{subject} is not a word that is read here: {} skipped",
+                    plural(n, "line", "lines")
+                ),
+                "it changes nothing in what is reported",
+            ),
+            Oddity::Singular => (
+                format!(
+                    "expected `{}s`, found {subject} on {}; read as the plural",
+                    escape(&self.subject),
+                    plural(n, "line", "lines")
+                ),
+                "write the plural, which is what the format document defines",
+            ),
+            Oddity::NoRows => (
+                format!(
+                    "expected rows after `.names` with inputs, found none for {}; read as \
+                     constant 0",
+                    plural(n, "gate", "gates")
+                ),
+                "check that the file is not cut short; write a constant without inputs",
+            ),
+            Oddity::DontCares => (
+                format!(
+                    "{} of don't-cares (`.exdc`) skipped",
+                    plural(n, "section", "sections")
+                ),
+                "the logic is read as its covers state it",
+            ),
+            Oddity::AfterEnd => (
+                format!(
+                    "expected `.model` after `.end`, found other text: {} skipped",
+                    plural(n, "line", "lines")
+                ),
+                "begin another model with `.model`, or take the text out",
+            ),
+            Oddity::StateTable => (
+                format!(
+                    "{} (`.start_kiss`) skipped",
+                    plural(n, "state table", "state tables")
+                ),
+                "state machines are read as gates and latches only",
+            ),
+            Oddity::GluedComment => (
+                format!(
+                    "a comment begins right after a character on {}",
+                    plural(n, "line", "lines")
+                ),
+                "`#` cannot be part of a name; put a blank before a comment",
+            ),
+            Oddity::RepeatedPort => (
+                format!(
+                    "expected each port once in its list, found {subject} repeated ({}); it \
+                     counts once",
+                    plural(n, "time", "times")
+                ),
+                "leave the repetition out",
+            ),
+            Oddity::Missing(called) => {
+                let (what, help) = match called {
+                    Called::Model => (
+                        "model",
+                        "a net that nothing else drives is taken as driven by it; put the \
+                         model into the file to see inside",
+                    ),
+                    Called::Cell | Called::LatchCell => (
+                        "cell",
+                        "a net that nothing else drives is taken as driven by it; state the \
+                         function as `.names` or as a model to see inside",
+                    ),
+                };
+                (
+                    format!(
+                        "{what} {subject} is not in the file: {} kept as a black box",
+                        plural(n, "instance", "instances")
+                    ),
+                    help,
+                )
+            }
+        };
+        Diagnostic::warning(file, self.place, message, help)
+    }
+}
