@@ -10,6 +10,7 @@
 //! listed in [`Netlist::contended`] with every one of its drivers.
 
 mod builder;
+pub mod bus;
 pub mod function;
 mod graph;
 pub mod health;

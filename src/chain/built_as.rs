@@ -1,0 +1,85 @@
+//! How a chain is built today: by each carry's distance to the nearest lower
+//! carries it is made from. In a ripple every carry net is made from the carry
+//! one position below and from no other. Everything else is `mixed`.
+
+use super::model::BuiltAs;
+use super::verify::Theorem;
+use crate::subject::{NodeId, NodeKind, Subject};
+use rustc_hash::{FxHashMap, FxHashSet};
+
+/// A carry's own logic in a ripple is a handful of nodes; more is not followed.
+const NEAR: usize = 64;
+
+/// Classifies a proven chain.
+pub(super) fn built_as(subject: &Subject, theorem: &Theorem) -> BuiltAs {
+    let mut position_of: FxHashMap<NodeId, usize> = FxHashMap::default();
+    for (i, carries) in theorem.carries.iter().enumerate() {
+        for literal in carries {
+            position_of.insert(literal.node(), i + 1);
+        }
+    }
+    if theorem.carry_in.node() != NodeId::FALSE {
+        position_of.insert(theorem.carry_in.node(), 0);
+    }
+    let operands: FxHashSet<NodeId> = theorem
+        .bits
+        .iter()
+        .flat_map(|bits| [bits.a.node(), bits.b.node()])
+        .collect();
+    // The carry out of the top position may be on no net.
+    let last = theorem.bits.len() - 1;
+    for (i, carries) in theorem.carries.iter().enumerate() {
+        let Some(carry) = carries.first() else {
+            if i == last {
+                continue;
+            }
+            return BuiltAs::Mixed;
+        };
+        // Without carry-in the carry out of position 0 is made from operands.
+        let from_below = i > 0 || position_of.values().any(|&at| at == 0);
+        match nearest_carries(subject, carry.node(), &position_of, &operands) {
+            Some(found) if found.is_empty() && !from_below => {}
+            Some(found) if from_below && found.iter().all(|&at| at == i) && !found.is_empty() => {}
+            // An incrementer's lowest carries may be operands themselves.
+            Some(found) if found.is_empty() && i <= 1 => {}
+            _ => return BuiltAs::Mixed,
+        }
+    }
+    BuiltAs::Ripple
+}
+
+/// Positions of the carries met first when walking back from `carry`; `None`
+/// past the limit.
+fn nearest_carries(
+    subject: &Subject,
+    carry: NodeId,
+    position_of: &FxHashMap<NodeId, usize>,
+    operands: &FxHashSet<NodeId>,
+) -> Option<Vec<usize>> {
+    let mut found = Vec::new();
+    let mut seen = FxHashSet::default();
+    let mut stack = vec![carry];
+    while let Some(node) = stack.pop() {
+        if !seen.insert(node) || node == NodeId::FALSE {
+            continue;
+        }
+        if node != carry {
+            if let Some(&at) = position_of.get(&node) {
+                found.push(at);
+                continue;
+            }
+            if operands.contains(&node) {
+                continue;
+            }
+        }
+        if seen.len() > NEAR {
+            return None;
+        }
+        match subject.kind(node) {
+            NodeKind::And(x, y) => stack.extend([x.node(), y.node()]),
+            NodeKind::Xor(x, y) => stack.extend([x, y]),
+            NodeKind::False | NodeKind::Free(_) => {}
+        }
+    }
+    Some(found)
+}

@@ -1,0 +1,167 @@
+//! Entries: the bit positions a netlist could be read as having.
+//!
+//! An entry `(s; a, b)` says that `s = a ⊕ b ⊕ c` for some carry `c`, whether or
+//! not a net carries it: the signature of `c` is `hash(s) ⊕ hash(a) ⊕ hash(b)`,
+//! the entry's key. `b` is constant in incrementers. A second pass over the same
+//! patterns computes the signature of `majority(a, b, c)`; the three variants
+//! with one of `a`, `b`, `c` inverted follow by linearity:
+//! `majority(¬a, b, c) = majority(a, b, c) ⊕ b ⊕ c`, and so on.
+
+use crate::subject::{
+    Hash, LinearSet, NodeId, Patterns, Running, Signatures, Simulation, Subject, linear_sets,
+};
+
+/// An entry's index.
+pub(super) type EntryId = u32;
+
+/// Which one of `a`, `b`, `c` is inverted relative to the positive nodes.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(super) enum Variant {
+    Plain,
+    A,
+    B,
+    Carry,
+}
+
+impl Variant {
+    pub(super) const ALL: [Self; 4] = [Self::Plain, Self::A, Self::B, Self::Carry];
+
+    /// Whether `a`, `b`, `c` are inverted.
+    pub(super) fn inverted(self) -> (bool, bool, bool) {
+        (self == Self::A, self == Self::B, self == Self::Carry)
+    }
+}
+
+/// All entries; those of one sum are neighbours.
+pub(super) struct Entries {
+    pub(super) sum: Vec<NodeId>,
+    pub(super) a: Vec<NodeId>,
+    /// [`NodeId::FALSE`] when the entry has one operand.
+    pub(super) b: Vec<NodeId>,
+    majority: Vec<Hash>,
+}
+
+impl Entries {
+    /// Nominates entries from linear sets and hashes their carries.
+    pub(super) fn of(subject: &Subject, signatures: &Signatures, patterns: Patterns) -> Self {
+        let mut entries = Self {
+            sum: Vec::new(),
+            a: Vec::new(),
+            b: Vec::new(),
+            majority: Vec::new(),
+        };
+        linear_sets(subject, |set| entries.nominate(set));
+        entries.sum.shrink_to_fit();
+        entries.a.shrink_to_fit();
+        entries.b.shrink_to_fit();
+        entries.hash_majorities(subject, signatures, patterns);
+        entries
+    }
+
+    fn nominate(&mut self, set: LinearSet) {
+        let mut offer = |a: NodeId, b: NodeId| {
+            if a == NodeId::FALSE && b == NodeId::FALSE {
+                return;
+            }
+            let (a, b) = if a == NodeId::FALSE { (b, a) } else { (a, b) };
+            for i in (0..self.sum.len())
+                .rev()
+                .take_while(|&i| self.sum[i] == set.sum)
+            {
+                if self.a[i] == a && self.b[i] == b {
+                    return;
+                }
+            }
+            self.sum.push(set.sum);
+            self.a.push(a);
+            self.b.push(b);
+        };
+        match *set.leaves() {
+            [x] => offer(x, NodeId::FALSE),
+            [x, y] => {
+                offer(x, y);
+                offer(x, NodeId::FALSE);
+                offer(y, NodeId::FALSE);
+            }
+            [x, y, z] => {
+                offer(x, y);
+                offer(x, z);
+                offer(y, z);
+            }
+            _ => {}
+        }
+    }
+
+    fn hash_majorities(&mut self, subject: &Subject, signatures: &Signatures, patterns: Patterns) {
+        let mut running = vec![Running::default(); self.len()];
+        let mut first = fixedbitset::FixedBitSet::with_capacity(self.len());
+        let mut simulation = Simulation::new(subject, patterns);
+        let mut is_first = true;
+        while let Some(words) = simulation.advance() {
+            for (i, hash) in running.iter_mut().enumerate() {
+                let a = words[self.a[i].index()];
+                let b = words[self.b[i].index()];
+                let c = words[self.sum[i].index()] ^ a ^ b;
+                let majority = (a & b) ^ (c & (a ^ b));
+                hash.feed(majority);
+                if is_first {
+                    first.set(i, majority & 1 == 1);
+                }
+            }
+            is_first = false;
+        }
+        let ones = signatures.ones();
+        self.majority = running
+            .into_iter()
+            .enumerate()
+            .map(|(i, hash)| hash.normalised(first.contains(i), ones))
+            .collect();
+    }
+
+    /// Number of entries.
+    pub(super) fn len(&self) -> usize {
+        self.sum.len()
+    }
+
+    /// The signature of the carry into the position; 0 when it is constant.
+    pub(super) fn key(&self, entry: EntryId, signatures: &Signatures) -> Hash {
+        let i = entry as usize;
+        signatures.hash(self.sum[i]) ^ signatures.hash(self.a[i]) ^ signatures.hash(self.b[i])
+    }
+
+    /// The signature of the carry out of the position.
+    pub(super) fn carry_out(
+        &self,
+        entry: EntryId,
+        variant: Variant,
+        signatures: &Signatures,
+    ) -> Hash {
+        let i = entry as usize;
+        let (a, b) = (signatures.hash(self.a[i]), signatures.hash(self.b[i]));
+        let majority = self.majority[i];
+        match variant {
+            Variant::Plain => majority,
+            Variant::A => majority ^ b ^ self.key(entry, signatures),
+            Variant::B => majority ^ a ^ self.key(entry, signatures),
+            Variant::Carry => majority ^ a ^ b,
+        }
+    }
+
+    /// Whether the entry has two operands.
+    pub(super) fn has_two(&self, entry: EntryId) -> bool {
+        self.b[entry as usize] != NodeId::FALSE
+    }
+
+    /// The entries that share `entry`'s sum, itself among them.
+    pub(super) fn siblings(&self, entry: EntryId) -> std::ops::Range<EntryId> {
+        let sum = self.sum[entry as usize];
+        let (mut start, mut end) = (entry, entry + 1);
+        while start > 0 && self.sum[start as usize - 1] == sum {
+            start -= 1;
+        }
+        while (end as usize) < self.len() && self.sum[end as usize] == sum {
+            end += 1;
+        }
+        start..end
+    }
+}

@@ -1,0 +1,221 @@
+//! The generators, checked before anything relies on them: every word against
+//! integer arithmetic (u128), every written text against the circuit it came
+//! from, by readers that see the text only. Gate counts named here are the
+//! known ones: nine NAND2 per full adder, seven ANDs per full adder and three
+//! per half adder in an AND/inverter graph (textbook, from memory).
+
+mod generators;
+
+use generators::{
+    Addend, Aig, Architecture, Carry, Cell, Circuit, Extension, Generated, Kind, Random, Word,
+    accumulator, adder_hierarchy, adder_subtractor, counter, disguise, gated_operands, negatives,
+    replicated, selected_sums, series, series_adders, with_overflow, witness,
+};
+
+fn must_hold(generated: &Generated) {
+    if let Err(fault) = generated.check(12) {
+        panic!("{fault}");
+    }
+}
+
+/// Outputs and next states by the circuit's own evaluation.
+fn outcome(circuit: &Circuit, inputs: &[u64], state: &[u64]) -> witness::Outcome {
+    let values = circuit.evaluate(inputs, state);
+    let outputs = circuit.outputs.iter().map(|net| values[net.index()]);
+    let next = circuit.registers.iter().map(|r| values[r.next.index()]);
+    (outputs.collect(), next.collect())
+}
+
+/// The three written forms must mean what the circuit means.
+fn texts_agree(circuit: &Circuit) {
+    let mut random = Random::new(3);
+    let inputs: Vec<u64> = circuit.inputs.iter().map(|_| random.word()).collect();
+    let state: Vec<u64> = circuit.registers.iter().map(|_| random.word()).collect();
+    let expected = outcome(circuit, &inputs, &state);
+    let name = &circuit.name;
+    let blif = witness::blif(&circuit.blif(), &inputs, &state);
+    assert_eq!(blif, expected, "BLIF of {name}");
+    let graph = Aig::of(circuit);
+    let ascii = witness::aiger(graph.aag().as_bytes(), &inputs, &state);
+    assert_eq!(ascii, expected, "ASCII AIGER of {name}");
+    let binary = witness::aiger(&graph.aig(), &inputs, &state);
+    assert_eq!(binary, expected, "binary AIGER of {name}");
+}
+
+#[test]
+fn ripple_words_compute_what_they_say_for_every_operand() {
+    for bits in 1..=4 {
+        for word in Word::every_ripple(bits) {
+            must_hold(&word.generate());
+        }
+    }
+}
+
+#[test]
+fn wide_ripple_words_compute_what_they_say() {
+    for bits in [7, 32, 65, 120] {
+        for word in Word::every_ripple(bits) {
+            must_hold(&word.generate());
+        }
+    }
+}
+
+#[test]
+fn other_architectures_compute_what_they_say() {
+    for bits in [1, 2, 3, 4, 5, 9, 16, 64, 101] {
+        for word in Word::every_fast(bits) {
+            must_hold(&word.generate());
+        }
+    }
+}
+
+#[test]
+fn a_wrong_truth_is_noticed() {
+    let mut wrong = Word::new(Kind::Adder, 8, Cell::PropagateXor).generate();
+    wrong.truths[0].kind = Kind::Subtractor;
+    assert!(wrong.check(1).is_err());
+    let mut swapped = Word::new(Kind::Adder, 8, Cell::Nand).generate();
+    swapped.truths[0].sums.swap(2, 3);
+    assert!(swapped.check(1).is_err());
+    let mut carry = Word::new(Kind::Subtractor, 8, Cell::Nor).generate();
+    carry.truths[0].carry_out = Some(carry.truths[0].sums[7]);
+    assert!(carry.check(4).is_err());
+}
+
+#[test]
+fn embedded_words_compute_what_they_say() {
+    for cell in Cell::ALL {
+        for kind in [
+            Kind::Adder,
+            Kind::Subtractor,
+            Kind::Incrementer,
+            Kind::Decrementer,
+        ] {
+            let word = Word::new(kind, 11, cell);
+            must_hold(&gated_operands(word));
+            must_hold(&selected_sums(word));
+        }
+        must_hold(&adder_subtractor(12, cell));
+        must_hold(&with_overflow(10, cell));
+        must_hold(&counter(9, false, cell));
+        must_hold(&counter(9, true, cell));
+        must_hold(&series_adders(8, 4, cell));
+        for extension in [Extension::Zero, Extension::Sign] {
+            must_hold(&accumulator(14, 8, extension, cell));
+        }
+        must_hold(&accumulator(9, 9, Extension::Zero, cell));
+    }
+}
+
+#[test]
+fn disguised_words_compute_the_same_and_keep_no_name() {
+    for (seed, word) in Word::every_ripple(6).into_iter().enumerate() {
+        let mut generated = word.generate();
+        disguise(&mut generated.circuit, seed as u64);
+        must_hold(&generated);
+        texts_agree(&generated.circuit);
+        assert!(!generated.circuit.blif().contains("a[0]"));
+    }
+}
+
+#[test]
+fn written_texts_mean_what_the_circuit_means() {
+    for bits in [1, 5] {
+        for word in Word::every_ripple(bits)
+            .into_iter()
+            .chain(Word::every_fast(bits))
+        {
+            texts_agree(&word.generate().circuit);
+        }
+    }
+    for cell in Cell::ALL {
+        texts_agree(&accumulator(10, 6, Extension::Sign, cell).circuit);
+        texts_agree(&counter(10, true, cell).circuit);
+    }
+    for circuit in negatives::all() {
+        texts_agree(&circuit);
+    }
+    texts_agree(&replicated(3_000, 5));
+    texts_agree(&series(500));
+}
+
+#[test]
+fn instances_of_full_adders_are_the_flat_adder() {
+    for cell in Cell::ALL {
+        if cell == Cell::InvertedCarries {
+            continue;
+        }
+        let hierarchy = adder_hierarchy(9, cell);
+        let word = Word::new(Kind::Adder, 9, cell).generate();
+        let mut random = Random::new(8);
+        let inputs: Vec<u64> = (0..18).map(|_| random.word()).collect();
+        let expected = outcome(&word.circuit, &inputs, &[]);
+        assert_eq!(witness::blif(&hierarchy.blif(), &inputs, &[]), expected);
+        assert_eq!(outcome(&hierarchy.flatten(), &inputs, &[]), expected);
+        assert_eq!(hierarchy.flatten().gate_count(), word.circuit.gate_count());
+    }
+}
+
+#[test]
+fn cells_cost_what_the_textbook_says() {
+    let gates = |cell: Cell| {
+        let mut c = Circuit::new("cell");
+        let (a, b, x) = (c.input("a"), c.input("b"), c.input("c"));
+        cell.step(&mut c, a, Addend::Net(b), Carry::Net(x));
+        c
+    };
+    assert_eq!(gates(Cell::Nand).gate_count(), 9);
+    assert_eq!(gates(Cell::Nor).gate_count(), 9);
+    assert_eq!(gates(Cell::PropagateXor).gate_count(), 5);
+    assert_eq!(gates(Cell::MajorityCover).gate_count(), 2);
+    assert_eq!(Aig::of(&gates(Cell::PropagateXor)).ands.len(), 7);
+    assert_eq!(Aig::of(&gates(Cell::AndInverter)).ands.len(), 7);
+    // n full adders less one half adder, 7 and 3 ANDs; two levels a bit.
+    let ripple = Word::new(Kind::Adder, 128, Cell::PropagateXor).generate();
+    let graph = Aig::of(&ripple.circuit);
+    assert_eq!(graph.ands.len(), 127 * 7 + 3);
+    assert_eq!(ripple.circuit.depth(), 2 * 128 - 1);
+}
+
+#[test]
+fn fast_architectures_are_as_shallow_as_published() {
+    // Hamacher, Vranesic and Zaky's table (from memory): the sum of a 16-bit
+    // adder with two-level lookahead in groups of four is ready after 8 gate
+    // delays with carry-in, that of a 64-bit one after 12.
+    let depth = |architecture, bits| {
+        let word = Word {
+            architecture,
+            carry_in: false,
+            ..Word::new(Kind::Adder, bits, Cell::PropagateXor)
+        };
+        word.generate().circuit.depth()
+    };
+    assert_eq!(depth(Architecture::GroupLookahead(4), 16), 8);
+    assert_eq!(depth(Architecture::GroupLookahead(4), 64), 12);
+    // g and p, then log2 n cells of an AND and an OR to the carry-out; the top
+    // sum reads a carry over one position less, which is an OR earlier.
+    assert_eq!(depth(Architecture::KoggeStone, 64), 1 + 2 * 6);
+}
+
+#[test]
+fn large_netlists_have_the_size_asked_for_and_no_growing_depth() {
+    let small = replicated(10_000, 1);
+    let large = replicated(100_000, 1);
+    assert_eq!(small.gate_count(), 10_000);
+    assert_eq!(large.gate_count(), 100_000);
+    assert!(
+        large.depth() <= small.depth() + 40,
+        "{} {}",
+        large.depth(),
+        small.depth()
+    );
+    assert_eq!(series(100_000).depth(), 100_000);
+    assert_eq!(Aig::of(&series(100_000)).ands.len(), 100_000);
+}
+
+#[test]
+fn generation_is_repeatable() {
+    let text = || replicated(5_000, 9).blif();
+    assert_eq!(text(), text());
+    assert_ne!(text(), replicated(5_000, 10).blif());
+}
