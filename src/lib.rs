@@ -27,6 +27,7 @@ pub mod chain;
 pub mod format;
 pub mod netlist;
 pub mod network;
+pub mod plan;
 pub mod prove;
 pub mod report;
 pub mod source;
