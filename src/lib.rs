@@ -24,6 +24,7 @@
 
 pub mod audit;
 pub mod chain;
+pub mod cli;
 pub mod format;
 pub mod netlist;
 pub mod network;

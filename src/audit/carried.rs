@@ -155,7 +155,10 @@ fn cone(netlist: &Netlist, topology: &Topology, chain: &Chain, rank: &[u32]) -> 
     // What no operand reaches only happens to be read by the chain.
     let mut reached = stops;
     gates.retain(|&gate| {
-        let on_the_way = netlist.fan_ins(gate).iter().any(|net| reached.contains(net));
+        let on_the_way = netlist
+            .fan_ins(gate)
+            .iter()
+            .any(|net| reached.contains(net));
         if on_the_way {
             reached.insert(netlist.gate_output(gate));
         }

@@ -6,9 +6,11 @@
 
 use super::carried::{Cones, operand_nets};
 use super::names::{operand, wire};
+use super::rebuilds;
 use super::record::{BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, Place, Wire};
 use crate::chain::{BuiltAs, CarryForm, Chain, Kind};
-use crate::netlist::{Bit, Driver, NetId, Netlist, ScopeId, Signal, Topology, histogram};
+use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
+use crate::plan::ChainPlan;
 use crate::timing::{NEVER, Timing};
 use rustc_hash::{FxHashMap, FxHashSet};
 use sha2::{Digest, Sha256};
@@ -34,7 +36,9 @@ pub fn id(index: usize) -> String {
 fn bits(chain: &Chain) -> u64 {
     let counts = |bit: Bit| matches!(bit, Bit::Signal(_));
     let positions = chain.positions.iter();
-    positions.filter(|bits| counts(bits.a) || counts(bits.b)).count() as u64
+    positions
+        .filter(|bits| counts(bits.a) || counts(bits.b))
+        .count() as u64
 }
 
 /// What the records of all chains are made from.
@@ -46,9 +50,8 @@ pub struct Sources<'a> {
     readers: Vec<u32>,
     /// Output ports and register inputs that show a net, by net.
     shown_by: FxHashMap<NetId, String>,
-    /// Which register drives a net is known to the netlist; gates that read a
-    /// carry are counted here.
-    pins: FxHashMap<NetId, Vec<crate::netlist::GateId>>,
+    /// By carry net, the gates that read it, once per pin.
+    pins: FxHashMap<NetId, Vec<GateId>>,
 }
 
 impl<'a> Sources<'a> {
@@ -109,8 +112,8 @@ impl<'a> Sources<'a> {
         }
     }
 
-    /// The records of all chains; `chains` in the order of [`ordered`].
-    pub fn records(&self, chains: &[Chain]) -> Vec<ChainRecord> {
+    /// The records of all chains, in the order of [`ordered`], each with its plan.
+    pub fn records(&self, chains: &[Chain], plans: &[ChainPlan]) -> Vec<ChainRecord> {
         let registers: FxHashMap<NetId, usize> = self
             .netlist
             .registers()
@@ -122,7 +125,7 @@ impl<'a> Sources<'a> {
         chains
             .iter()
             .enumerate()
-            .map(|(index, chain)| self.record(index, chain, &registers, &mut prints))
+            .map(|(index, chain)| self.record(index, chain, &plans[index], &registers, &mut prints))
             .collect()
     }
 
@@ -130,12 +133,18 @@ impl<'a> Sources<'a> {
         &self,
         index: usize,
         chain: &Chain,
+        plan: &ChainPlan,
         registers: &FxHashMap<NetId, usize>,
         prints: &mut FxHashMap<String, u32>,
     ) -> ChainRecord {
         let netlist = self.netlist;
         let name = |signal: Signal| netlist.signal_name(signal);
-        let depth = self.depth(chain);
+        let depth = ChainDepth {
+            arrives: i64::from(plan.arrives),
+            leaves: i64::from(plan.leaves),
+            carries: plan.carries.iter().map(|at| at.map(i64::from)).collect(),
+            exercised: None,
+        };
         let own: FxHashSet<_> = self.cones.gates[index].iter().copied().collect();
         ChainRecord {
             id: id(index),
@@ -152,7 +161,11 @@ impl<'a> Sources<'a> {
             .to_owned(),
             carry_out: self.carry_out(chain),
             carry_taps: self.carry_taps(chain, &own),
-            sums: chain.positions.iter().map(|bits| name(bits.sums[0])).collect(),
+            sums: chain
+                .positions
+                .iter()
+                .map(|bits| name(bits.sums[0]))
+                .collect(),
             result: None,
             relation: None,
             signed: None,
@@ -162,11 +175,11 @@ impl<'a> Sources<'a> {
             built_as: self.built_as(index, chain, &depth),
             proven: true,
             place: self.place(chain),
-            on_longest_path: self.on_longest_path(index, chain),
-            slack: self.slack(index, chain),
             depth,
-            not_planned: None,
-            proposals: Vec::new(),
+            on_longest_path: self.on_longest_path(chain),
+            slack: plan.slack.map(|slack| i64::from(slack.ticks)),
+            not_planned: rebuilds::not_planned(plan),
+            proposals: rebuilds::proposals(netlist, plan),
         }
     }
 
@@ -181,9 +194,11 @@ impl<'a> Sources<'a> {
     }
 
     /// Carries below the last with a reader outside the chain.
-    fn carry_taps(&self, chain: &Chain, own: &FxHashSet<crate::netlist::GateId>) -> Vec<String> {
+    fn carry_taps(&self, chain: &Chain, own: &FxHashSet<GateId>) -> Vec<String> {
         let below = chain.positions.len() - 1;
-        let carries = chain.positions[..below].iter().flat_map(|bits| &bits.carries);
+        let carries = chain.positions[..below]
+            .iter()
+            .flat_map(|bits| &bits.carries);
         carries
             .filter(|carry| {
                 let gates = &self.pins[&carry.net];
@@ -193,28 +208,6 @@ impl<'a> Sources<'a> {
             })
             .map(|&carry| self.netlist.signal_name(carry))
             .collect()
-    }
-
-    fn depth(&self, chain: &Chain) -> ChainDepth {
-        let arrival = |net: NetId| self.timing.arrivals.by_net[net.index()].max(0);
-        let bits = chain.positions.iter().flat_map(|bits| [bits.a, bits.b]);
-        let arrives = bits.filter_map(Bit::signal).map(|signal| arrival(signal.net));
-        let carry_at = |bits: &crate::chain::Position| {
-            bits.carries.iter().map(|carry| arrival(carry.net)).min()
-        };
-        let sums = chain.positions.iter().map(|bits| arrival(bits.sums[0].net));
-        let carry_out = chain.positions.last().and_then(carry_at);
-        let carry_out = carry_out.filter(|_| chain.has_carry_out);
-        ChainDepth {
-            arrives: i64::from(arrives.max().unwrap_or(0)),
-            leaves: i64::from(sums.chain(carry_out).max().unwrap_or(0)),
-            carries: chain
-                .positions
-                .iter()
-                .map(|bits| carry_at(bits).map(i64::from))
-                .collect(),
-            exercised: None,
-        }
     }
 
     fn built_as(&self, index: usize, chain: &Chain, depth: &ChainDepth) -> BuiltAsRecord {
@@ -284,30 +277,10 @@ impl<'a> Sources<'a> {
         }
     }
 
-    /// The nets by which a chain is on a path: its carries, else all its gates.
-    fn path_nets(&self, index: usize, chain: &Chain) -> Vec<NetId> {
-        let carries = chain.positions.iter().flat_map(|bits| &bits.carries);
-        let nets: Vec<NetId> = carries.map(|carry| carry.net).collect();
-        if !nets.is_empty() {
-            return nets;
-        }
-        let gates = self.cones.gates[index].iter();
-        gates.map(|&gate| self.netlist.gate_output(gate)).collect()
-    }
-
-    fn on_longest_path(&self, index: usize, chain: &Chain) -> bool {
-        let longest = self.timing.longest();
-        self.path_nets(index, chain).into_iter().any(|net| {
-            let at = self.timing.arrivals.by_net[net.index()];
-            let tail = self.timing.tails.by_net[net.index()];
-            at != NEVER && tail != NEVER && at + tail == longest
-        })
-    }
-
-    fn slack(&self, index: usize, chain: &Chain) -> Option<i64> {
-        let nets = self.path_nets(index, chain).into_iter();
-        let slacks = nets.filter_map(|net| self.timing.slack(net));
-        slacks.map(|slack| i64::from(slack.ticks)).min()
+    fn on_longest_path(&self, chain: &Chain) -> bool {
+        let positions = chain.positions.iter();
+        let mut results = positions.flat_map(|bits| bits.carries.iter().chain(&bits.sums));
+        results.any(|signal| is_on_longest_path(self.timing, signal.net))
     }
 
     /// Whether every operand bit that changes is a register that stores the sum
@@ -380,6 +353,13 @@ impl<'a> Sources<'a> {
         *ordinal += 1;
         hexadecimal(&Sha256::digest(points.as_bytes())[..8])
     }
+}
+
+/// Whether a longest path of the block runs through `net`.
+pub fn is_on_longest_path(timing: &Timing, net: NetId) -> bool {
+    let at = timing.arrivals.by_net[net.index()];
+    let tail = timing.tails.by_net[net.index()];
+    at != NEVER && tail != NEVER && at + tail == timing.longest()
 }
 
 /// Bytes in hexadecimal digits.

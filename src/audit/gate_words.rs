@@ -42,12 +42,20 @@ fn product(function: &Function) -> &'static str {
             // NAND and NOR agree at the ends; one input low tells them apart.
             let mut inputs = vec![true; n];
             inputs[0] = false;
-            if evaluate(function, &inputs) { "NAND" } else { "NOR" }
+            if evaluate(function, &inputs) {
+                "NAND"
+            } else {
+                "NOR"
+            }
         }
         (false, true) => {
             let mut inputs = vec![false; n];
             inputs[0] = true;
-            if evaluate(function, &inputs) { "OR" } else { "AND" }
+            if evaluate(function, &inputs) {
+                "OR"
+            } else {
+                "AND"
+            }
         }
         // Mixed input polarities: one product is 0, its complement 1, at both ends.
         (false, false) => "AND",

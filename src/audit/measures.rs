@@ -74,7 +74,9 @@ pub fn depth(
     let mut bars: BTreeMap<i64, u64> = BTreeMap::new();
     for end in ends(netlist, topology) {
         let at = end_arrival(netlist, &timing.delays, &timing.arrivals.by_net, end);
-        *bars.entry(if at == NEVER { 0 } else { i64::from(at) }).or_insert(0) += 1;
+        *bars
+            .entry(if at == NEVER { 0 } else { i64::from(at) })
+            .or_insert(0) += 1;
     }
     let bar = |(depth, outputs)| DepthBar { depth, outputs };
     let (longest_path, longest_path_left_out) = match longest {
@@ -180,7 +182,11 @@ fn ports(netlist: &Netlist, timing: &Timing) -> Vec<PortDepth> {
     };
     let tails = |class| timing.by_end().find(|&(end, _)| end == class);
     let arrivals = |class| timing.by_start().find(|&(start, _)| start == class);
-    let names: Vec<String> = netlist.inputs().iter().map(|&n| netlist.net_name(n)).collect();
+    let names: Vec<String> = netlist
+        .inputs()
+        .iter()
+        .map(|&n| netlist.net_name(n))
+        .collect();
     let mut ports = Vec::new();
     for (bus, range) in port_buses(&names) {
         let nets = &netlist.inputs()[range];

@@ -7,6 +7,7 @@
 //! claims an order the netlist does not have.
 
 use super::record::{Operand, Wire};
+use crate::netlist::bus::bus_bit;
 use crate::netlist::{Bit, NetId, Netlist, Signal};
 
 /// A bit as it is written in a record.
@@ -37,11 +38,21 @@ fn word_name(netlist: &Netlist, bits: &[Bit]) -> String {
     if let Some(name) = bus_name(netlist, &signals) {
         return name;
     }
-    format!("{}…{}", netlist.signal_name(first), netlist.signal_name(last))
+    format!(
+        "{}…{}",
+        netlist.signal_name(first),
+        netlist.signal_name(last)
+    )
 }
 
 fn constant_name(bits: &[Bit]) -> String {
-    let digit = |bit: &Bit| if *bit == Bit::Constant(true) { '1' } else { '0' };
+    let digit = |bit: &Bit| {
+        if *bit == Bit::Constant(true) {
+            '1'
+        } else {
+            '0'
+        }
+    };
     let digits: String = bits.iter().rev().map(digit).collect();
     format!("0b{digits}")
 }
@@ -76,27 +87,10 @@ fn named(netlist: &Netlist, net: NetId) -> Option<String> {
 }
 
 /// `a[3]` and its other spellings as `a` and 3.
-pub fn split(name: &str) -> Option<(&str, i64)> {
-    for (open, close) in [('[', ']'), ('<', '>'), ('(', ')')] {
-        if let Some((stem, index)) = name.strip_suffix(close).and_then(|n| n.rsplit_once(open)) {
-            return index_of(index).filter(|_| !stem.is_empty()).map(|i| (stem, i));
-        }
-    }
-    let bare = name.strip_suffix('_').unwrap_or(name);
-    let stem = bare.trim_end_matches(|c: char| c.is_ascii_digit());
-    let index = index_of(&bare[stem.len()..])?;
-    let stem = match stem.strip_suffix('_') {
-        Some(before) => before,
-        // A trailing underscore belongs to `a_3_` only.
-        None if bare.len() < name.len() => return None,
-        None => stem,
-    };
-    (!stem.is_empty() && !stem.ends_with('/')).then_some((stem, index))
-}
-
-fn index_of(digits: &str) -> Option<i64> {
-    let plain = !digits.is_empty() && digits.bytes().all(|b| b.is_ascii_digit());
-    if plain { digits.parse().ok() } else { None }
+fn split(name: &str) -> Option<(&str, i64)> {
+    let bit = bus_bit(name)?;
+    // `u_total/3` is a net called 3, not bit 3 of anything.
+    (!bit.base.ends_with('/')).then(|| (bit.base, i64::from(bit.index)))
 }
 
 /// Ports grouped into buses in the order they are listed: the name of each bus

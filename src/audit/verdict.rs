@@ -15,7 +15,7 @@ use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
 use super::words::{counted, depth_in, grouped, grouped_signed, listed};
 use crate::chain::Chain;
 use crate::netlist::{NetId, Netlist, Topology};
-use crate::timing::{KindTiming, NEVER, PathStep, Timing, end_arrival, ends, end_net};
+use crate::timing::{KindTiming, NEVER, PathStep, Timing, end_arrival, end_net, ends};
 use std::cmp::Reverse;
 use std::collections::BTreeMap;
 
@@ -50,7 +50,9 @@ impl Evidence<'_> {
     pub fn verdict(&self) -> Verdict {
         let by_path_kind = self.kinds();
         let longest = i64::from(self.timing.longest());
-        let free = by_path_kind.iter().map(|kind| kind.depth_if_carry_were_free);
+        let free = by_path_kind
+            .iter()
+            .map(|kind| kind.depth_if_carry_were_free);
         let free = free.max().unwrap_or(0);
         let carry = free < longest;
         let hidden = self.hidden(carry);
@@ -64,7 +66,10 @@ impl Evidence<'_> {
             None => (Limit::Elsewhere, seen),
             Some(hidden) => (
                 Limit::Unknown,
-                format!("Unknown, because {hidden}. As far as can be seen: {}", lower(&seen)),
+                format!(
+                    "Unknown, because {hidden}. As far as can be seen: {}",
+                    lower(&seen)
+                ),
             ),
         };
         Verdict {
@@ -119,7 +124,9 @@ impl Evidence<'_> {
             return (None, String::new());
         };
         let levels = levels_by_chain(path, self.map.cones);
-        let Some((&main, &own)) = levels.iter().max_by_key(|&(&chain, &n)| (n, Reverse(chain)))
+        let Some((&main, &own)) = levels
+            .iter()
+            .max_by_key(|&(&chain, &n)| (n, Reverse(chain)))
         else {
             let text = format!(
                 "Carry limits this block: with free carries it would be {free} instead of {} deep.",
@@ -233,13 +240,19 @@ impl Evidence<'_> {
         match loops.filter(|nets| nets.iter().any(reaches_an_end)).count() {
             0 => {}
             1 => parts.push("a loop without a register is cut".to_owned()),
-            n => parts.push(format!("{} loops without a register are cut", grouped(n as u64))),
+            n => parts.push(format!(
+                "{} loops without a register are cut",
+                grouped(n as u64)
+            )),
         }
         let contended = self.netlist.contended().iter();
         match contended.filter(|each| reaches_an_end(&each.net)).count() {
             0 => {}
             1 => parts.push("a net with several drivers is cut".to_owned()),
-            n => parts.push(format!("{} nets with several drivers are cut", grouped(n as u64))),
+            n => parts.push(format!(
+                "{} nets with several drivers are cut",
+                grouped(n as u64)
+            )),
         }
         let arrivals = &self.timing.arrivals.by_net;
         let boxes = self.netlist.boxes().iter().filter(|each| {
@@ -248,7 +261,9 @@ impl Evidence<'_> {
         });
         match boxes.count() {
             0 => {}
-            1 => parts.push("a path may run through an instance without a known function".to_owned()),
+            1 => {
+                parts.push("a path may run through an instance without a known function".to_owned())
+            }
             n => parts.push(format!(
                 "paths may run through {} instances without a known function",
                 grouped(n as u64)
@@ -257,7 +272,10 @@ impl Evidence<'_> {
         if !carry && self.undecided > 0 {
             parts.push(match self.undecided {
                 1 => "a candidate for a carry chain was left undecided".to_owned(),
-                n => format!("{} candidates for carry chains were left undecided", grouped(n as u64)),
+                n => format!(
+                    "{} candidates for carry chains were left undecided",
+                    grouped(n as u64)
+                ),
             });
         }
         (!parts.is_empty()).then(|| listed(&parts))
@@ -309,7 +327,9 @@ pub fn cut_on(
         return Some(net);
     }
     let last = path.last().map(|step| step.net);
-    end_net(netlist, kind.end).or(last).filter(|&net| topology.is_cut(net))
+    end_net(netlist, kind.end)
+        .or(last)
+        .filter(|&net| topology.is_cut(net))
 }
 
 fn lower(sentence: &str) -> String {

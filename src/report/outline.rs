@@ -192,8 +192,9 @@ fn settings_sentence(
     let Settings {
         delay_model: DelayModelFacts { name, unit },
         new_gates,
-        gate_inputs,
         new_gates_reason,
+        gate_inputs,
+        gate_inputs_reason,
         min_bits,
         effort,
         patterns_seed,
@@ -215,13 +216,14 @@ fn settings_sentence(
         Some(hash) => format!("; assumptions SHA-256 {hash}"),
     };
     format!(
-        "{} {}; {}. Depths in {unit} (delay model {name}). A new gate is \
-         {new_gates} with at most {gate_inputs} inputs: {}. Chains from {} up; {} per \
+        "{} {}; {}. Depths in {unit} (delay model {name}). New gates are \
+         {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up; {} per \
          proof; pattern seed {patterns_seed}{assumed}.",
         tool.name,
         tool.version,
         source.join(", "),
         clipped(new_gates_reason, caps.sentence),
+        clipped(gate_inputs_reason, caps.sentence),
         counted(*min_bits, "bit", "bits"),
         counted(*effort, "solver conflict", "solver conflicts"),
     )

@@ -95,7 +95,7 @@ pub fn tide_logger() -> Audit {
         slack: Some(25),
         not_planned: Some(NotPlanned {
             why: "25 gate delays to spare".into(),
-            slack: 25,
+            slack: Some(25),
         }),
         proposals: vec![],
         ..total.clone()
@@ -150,8 +150,9 @@ pub fn tide_logger() -> Audit {
                 unit: "gate delays".into(),
             },
             new_gates: "single-operator".into(),
+            new_gates_reason: "the netlist uses no other function of three or more inputs".into(),
             gate_inputs: 4,
-            new_gates_reason: "the netlist's widest gate has 4 inputs".into(),
+            gate_inputs_reason: "the widest gate of the netlist has 4".into(),
             min_bits: 4,
             effort: 100_000,
             patterns_seed: 1,

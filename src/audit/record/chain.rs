@@ -55,10 +55,9 @@ pub struct ChainRecord {
     pub place: Place,
     /// When its nets settle.
     pub depth: ChainDepth,
-    /// Whether a longest path of the block runs through one of its carries, or
-    /// through its gates when no net carries them.
+    /// Whether a longest path of the block runs through a sum or carry of it.
     pub on_longest_path: bool,
-    /// How much later its carries could be without lengthening the longest
+    /// How much later its results could be without lengthening the longest
     /// path of their kind; null when no path leads through it.
     pub slack: Option<i64>,
     /// Why no rebuild was tried; null when some were.
@@ -145,7 +144,7 @@ pub struct Place {
 /// When a chain's nets settle.
 #[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct ChainDepth {
-    /// Its latest operand.
+    /// Its latest operand bit, the carry-in included.
     pub arrives: i64,
     /// Its latest sum or carry.
     pub leaves: i64,
@@ -169,8 +168,8 @@ pub struct Exercised {
 pub struct NotPlanned {
     /// The reason.
     pub why: String,
-    /// Its slack.
-    pub slack: i64,
+    /// Its slack, where a path leads through it.
+    pub slack: Option<i64>,
 }
 
 /// A figure without and with a proposal.
@@ -225,8 +224,10 @@ pub struct ProposalRecord {
     pub wire_tracks: Option<u64>,
     /// Levels above what any network could reach.
     pub above_bound: Option<i64>,
-    /// When each carry settles; for the recommended one only.
-    pub carries: Option<Vec<i64>>,
-    /// Its span nodes; for the recommended one only.
+    /// When each carry settles, null where it is constant; for the recommended
+    /// one only.
+    pub carries: Option<Vec<Option<i64>>>,
+    /// Its span nodes, each `[7:4] = [7:6] [5:4]`, position -1 being the
+    /// carry-in; for the recommended one only.
     pub network: Option<Vec<String>>,
 }

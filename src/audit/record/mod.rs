@@ -102,10 +102,12 @@ pub struct Settings {
     pub delay_model: DelayModelFacts,
     /// What one new gate may be: `single-operator` or `cover`.
     pub new_gates: String,
+    /// Why.
+    pub new_gates_reason: String,
     /// Most inputs of one new gate.
     pub gate_inputs: u64,
-    /// Why the two fields above are what they are.
-    pub new_gates_reason: String,
+    /// Why.
+    pub gate_inputs_reason: String,
     /// Chains below this width are left out.
     pub min_bits: u64,
     /// Solver conflicts allowed per proof.

@@ -339,7 +339,7 @@ fn not_planned(chains: &[ChainRecord], caps: Caps) -> Vec<Block> {
             Some(vec![
                 clipped(&chain.id, caps.name),
                 clipped(why, caps.sentence),
-                grouped_signed(*slack),
+                or_dash(slack.map(grouped_signed)),
             ])
         })
         .collect();
