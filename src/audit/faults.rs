@@ -7,7 +7,7 @@
 use super::chains::is_on_longest_path;
 use super::findings::{self, MANY_READERS, RULES, Rule, WIDE_GATE};
 use super::record::{ChainRecord, Finding, UnprovenRecord};
-use super::verdict::{chain_phrase, cut_on};
+use super::verdict::cut_on;
 use super::words::{counted, grouped, listed};
 use crate::chain::{BuiltAs, Chain};
 use crate::netlist::health::{Fault, FaultKind, Health};
@@ -234,10 +234,10 @@ impl<'a> Findings<'a> {
             }
             listed += 1;
             let message = format!(
-                "{} of {} lie on a longest path, one after another: {}",
-                counted(carries as u64, "carry", "carries"),
+                "{} of the {} carries of {} lie on a longest path, each made from the one below",
+                grouped(carries as u64),
                 grouped(chain.positions.len() as u64),
-                chain_phrase(record)
+                record.formula(),
             );
             let line = record
                 .place

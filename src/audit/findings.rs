@@ -39,14 +39,14 @@ pub const RULES: &[Rule] = &[
     Rule {
         slug: "always-constant",
         severity: Severity::Note,
-        what: "A gate has inputs, yet its output is the same whatever they are.",
+        what: "A gate has inputs, yet its output is the same whatever they carry.",
         why: "It costs area and readers, and it hides what the block really depends on. \
               In an old netlist it is often the rest of a feature that was tied off.",
         advice: "Check that the constant is meant; then replace the gate by it and let \
                  what it fed shrink.",
-        leaves_alone: "Constants written as constants, and gates whose output is constant \
-                       only because of how other gates behave: only the gate's own rows \
-                       are judged.",
+        leaves_alone: "Constants written as constants, and outputs that are constant only \
+                       because two inputs never differ: a gate is judged by its own rows and \
+                       by the constants among its inputs.",
         example: ".names flood_gate storm alarm\n11 1\n10 1\n0- 1\n\
                   `alarm` is 1 for every value of `flood_gate` and `storm`.",
     },
@@ -124,13 +124,13 @@ pub const RULES: &[Rule] = &[
     Rule {
         slug: "net-without-reader",
         severity: Severity::Note,
-        what: "A gate's output is read by nothing.",
-        why: "The gate costs area and loads its fan-ins for nothing. It is often the rest \
-              of logic that somebody removed by half.",
+        what: "Nothing reads a net: a gate's output, a register or an input.",
+        why: "What drives it costs area and loads its fan-ins for nothing. It is often the \
+              rest of logic that somebody removed by half.",
         advice: "Remove it, or connect what was meant to read it. carrywise counts it \
                  before and after a rebuild alike.",
-        leaves_alone: "Outputs, register and box inputs, AIGER properties; input ports \
-                       and register outputs without a reader.",
+        leaves_alone: "Nets that an output, a register, an instance or an AIGER property \
+                       reads, and constants.",
         example: ".names a b spare\n11 1\nwith `spare` in no other line.",
     },
     Rule {

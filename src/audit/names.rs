@@ -26,23 +26,51 @@ pub fn operand(netlist: &Netlist, bits: &[Bit]) -> Operand {
     }
 }
 
-/// The name of a word; constant bits do not take part in it.
+/// The name of a word. Zeros below a bus are told as a shift, its top bit
+/// repeated as sign extension; other constant bits do not take part in the name.
 fn word_name(netlist: &Netlist, bits: &[Bit]) -> String {
+    let zeros = bits
+        .iter()
+        .take_while(|&&bit| bit == Bit::Constant(false))
+        .count();
     let signals: Vec<Signal> = bits.iter().filter_map(|bit| bit.signal()).collect();
     let (Some(&first), Some(&last)) = (signals.first(), signals.last()) else {
         return constant_name(bits);
     };
-    if signals.len() == 1 {
-        return netlist.signal_name(first);
+    let repeated = signals
+        .iter()
+        .rev()
+        .take_while(|&&signal| signal == last)
+        .count();
+    let distinct = &signals[..signals.len() + 1 - repeated];
+    // Constants in between would make the shift or the extension a lie.
+    let solid = bits[zeros..]
+        .iter()
+        .take_while(|bit| bit.signal().is_some())
+        .count();
+    let solid = solid == signals.len();
+    let name = if distinct.len() == 1 {
+        netlist.signal_name(first)
+    } else {
+        let bus = bus_name(netlist, distinct);
+        bus.unwrap_or_else(|| {
+            format!(
+                "{}…{}",
+                netlist.signal_name(first),
+                netlist.signal_name(last)
+            )
+        })
+    };
+    let extended = if repeated > 1 && distinct.len() > 1 && solid {
+        " sign-extended"
+    } else {
+        ""
+    };
+    match zeros {
+        1.. if solid && distinct.len() > 1 => format!("({name}{extended} << {zeros})"),
+        _ if !extended.is_empty() => format!("({name}{extended})"),
+        _ => name,
     }
-    if let Some(name) = bus_name(netlist, &signals) {
-        return name;
-    }
-    format!(
-        "{}…{}",
-        netlist.signal_name(first),
-        netlist.signal_name(last)
-    )
 }
 
 fn constant_name(bits: &[Bit]) -> String {

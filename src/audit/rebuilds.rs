@@ -7,7 +7,7 @@
 
 use super::chains::id;
 use super::record::{ChainRecord, Change, NotPlanned, ProposalRecord, RecommendedSet};
-use super::words::{counted, depth_in, listed};
+use super::words::{counted, depth_in, grouped};
 use crate::chain::Chain;
 use crate::netlist::{Netlist, Topology};
 use crate::network::{CarryNetwork, Node};
@@ -120,8 +120,19 @@ pub fn recommended_set(
             Some((chain, proposal))
         })
     };
-    let best = chosen()
-        .min_by_key(|(_, proposal)| (proposal.block_depth.after, proposal.gate_equivalents_added));
+    let gain = |chain: &ChainRecord| {
+        let index = records.iter().position(|other| other.id == chain.id)?;
+        let plan = plans.get(index)?;
+        Some(plan.proposals[plan.recommended?].kind)
+    };
+    let best = chosen().min_by_key(|(chain, proposal)| {
+        let own = gain(chain).map_or(0, |kind| kind.after - kind.before);
+        (
+            proposal.block_depth.after,
+            own,
+            proposal.gate_equivalents_added,
+        )
+    });
     let Some((chain, proposal)) = best else {
         return RecommendedSet {
             proposals: Vec::new(),
@@ -135,10 +146,14 @@ pub fn recommended_set(
     let name =
         |chain: &ChainRecord, proposal: &ProposalRecord| format!("{}/{}", chain.id, proposal.id);
     let Change { before, after } = proposal.block_depth;
-    let block = if after < before {
-        format!("the block goes from {before} to {}", depth_in(after, unit))
-    } else {
-        format!("the block stays {} deep", depth_in(after, unit))
+    let block = match gain(chain) {
+        Some(kind) if after >= before && kind.after < kind.before => format!(
+            "the longest {} path goes from {} to {}, while the block stays as deep as it is",
+            kind.kind,
+            kind.before,
+            depth_in(kind.after.into(), unit)
+        ),
+        _ => format!("the block goes from {before} to {}", depth_in(after, unit)),
     };
     let others: Vec<String> = chosen()
         .filter(|(other, _)| other.id != chain.id)
@@ -146,9 +161,9 @@ pub fn recommended_set(
         .collect();
     let others = match others.len() {
         0 => String::new(),
-        1..=4 => format!(
-            " {} gains too; what they bring together is not estimated.",
-            listed(&others)
+        1 => format!(
+            " {} has a gain of its own; what both bring together is not estimated.",
+            others[0]
         ),
         n => format!(
             " {} have a gain of their own; what they bring together is not estimated.",
@@ -159,15 +174,12 @@ pub fn recommended_set(
         proposals: vec![name(chain, proposal)],
         block_depth: proposal.block_depth,
         sentence: format!(
-            "Rebuild {} as {} ({}): {block}, the chain's last result from {} to {}, for {} built \
-             and {} removed.{others}",
+            "Rebuild {} as {} ({}): {block}, for {} built and {} removed.{others}",
             chain.id,
             scheme_phrase(proposal),
             name(chain, proposal),
-            proposal.chain_depth.before,
-            proposal.chain_depth.after,
             counted(proposal.gates_added, "gate", "gates"),
-            proposal.gates_removed,
+            grouped(proposal.gates_removed),
         ),
     }
 }

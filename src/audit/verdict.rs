@@ -2,7 +2,7 @@
 //!
 //! Carry is the limit when the block would be shallower if the carries of the
 //! proven chains were free (see [`super::free_carry`]), for then no path as long
-//! as the longest avoids them. Otherwise the limit lies elsewhere. Where a loop,
+//! as the longest avoids them. Otherwise no proven chain is the limit. Where a loop,
 //! a net with several drivers or an instance without a function lies on a way
 //! from a start to an end, a longer path may be hidden behind it; where a
 //! candidate was left undecided, a chain may be. Then the verdict is unknown,
@@ -11,6 +11,7 @@
 use super::carried::Cones;
 use super::free_carry;
 use super::measures::ChainMap;
+use super::rebuilds::scheme_phrase;
 use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
 use super::words::{counted, depth_in, grouped, grouped_signed, listed};
 use crate::chain::Chain;
@@ -59,7 +60,7 @@ impl Evidence<'_> {
         let (chain, seen) = if carry {
             self.carry_sentence(longest, free)
         } else {
-            (None, self.elsewhere_sentence(longest, &by_path_kind))
+            (None, self.elsewhere_sentence(longest))
         };
         let (limit, sentence) = match hidden {
             None if carry => (Limit::Carry, seen),
@@ -137,21 +138,27 @@ impl Evidence<'_> {
         let record = &self.records[main as usize];
         let others = levels.len() - 1;
         let rest: i64 = levels.values().sum::<i64>() - own;
+        let share = if own == longest {
+            format!("all {} of the longest path", depth_in(longest, self.unit))
+        } else {
+            let own = grouped_signed(own);
+            format!(
+                "{own} of the {} of the longest path",
+                depth_in(longest, self.unit)
+            )
+        };
         let together = match others {
             0 => String::new(),
-            1 => format!(" and another chain {}", grouped_signed(rest)),
+            1 => format!(", another chain {} of them", grouped_signed(rest)),
             n => format!(
-                " and {} {}",
+                ", {} {} of them",
                 counted(n as u64, "more chain", "more chains"),
                 grouped_signed(rest)
             ),
         };
         let text = format!(
-            "Carry limits this block: {} takes {}{together} of the {} of the longest path \
-             ({}); {}.",
+            "Carry limits this block: {} takes {share} ({}){together}; {}.",
             chain_phrase(record),
-            grouped_signed(own),
-            depth_in(longest, self.unit),
             kind.kind,
             self.rebuild_clause(longest),
         );
@@ -168,29 +175,36 @@ impl Evidence<'_> {
             return if self.records.iter().all(|chain| chain.proposals.is_empty()) {
                 "no rebuild was tried".to_owned()
             } else {
-                "no rebuild that was tried makes the block shallower".to_owned()
+                "no single rebuild that was tried makes the block shallower".to_owned()
             };
         }
         let (mut added, mut removed, mut widest) = (0, 0, 0);
         let mut how = Vec::new();
         for chain in self.records {
-            for proposal in chain.proposals.iter().filter(|p| p.recommended) {
+            for proposal in &chain.proposals {
+                if !proposals.contains(&format!("{}/{}", chain.id, proposal.id)) {
+                    continue;
+                }
                 added += proposal.gates_added;
                 removed += proposal.gates_removed;
                 widest = widest.max(proposal.largest_fan_in);
-                how.push(format!("{} as {}", chain.id, proposal.scheme));
+                how.push(format!(
+                    "{} rebuilt as {}",
+                    chain.id,
+                    scheme_phrase(proposal)
+                ));
             }
+        }
+        if block_depth.after >= longest {
+            return "no single rebuild that was tried makes the block shallower".to_owned();
         }
         let cost = match added as i64 - removed as i64 {
             0 => "as many gates as now".to_owned(),
             n if n > 0 => counted(n as u64, "gate more", "gates more"),
             n => counted(n.unsigned_abs(), "gate fewer", "gates fewer"),
         };
-        if how.len() > 3 {
-            how = vec![counted(how.len() as u64, "chain", "chains")];
-        }
         format!(
-            "with {} rebuilt the block is {} deep instead of {}, for {cost}, none wider than {}",
+            "with {} the block is {} deep instead of {}, for {cost}, no new gate wider than {}",
             listed(&how),
             depth_in(block_depth.after, self.unit),
             grouped_signed(longest),
@@ -198,37 +212,36 @@ impl Evidence<'_> {
         )
     }
 
-    fn elsewhere_sentence(&self, longest: i64, kinds: &[PathKindFacts]) -> String {
+    fn elsewhere_sentence(&self, longest: i64) -> String {
         let Some((kind, path)) = self.longest.filter(|_| longest > 0) else {
-            return "Carry is not the limit: no path passes a gate that takes time.".to_owned();
-        };
-        let why = match self.records {
-            [] => format!(
-                "no carry chain of {} or more was found",
-                counted(self.min_bits as u64, "bit", "bits")
-            ),
-            _ => {
-                let tied = kinds.iter().filter(|kind| kind.longest == longest);
-                let through = tied.map(|kind| kind.levels_in_carries).max().unwrap_or(0);
-                if through > 0 {
-                    format!(
-                        "the longest path spends {} in carries, but with them free the block \
-                         would still be as deep",
-                        counted(through.unsigned_abs(), "level", "levels")
-                    )
-                } else {
-                    "the longest path runs beside every proven chain".to_owned()
-                }
-            }
+            return "No proven carry chain limits this block: no path passes a gate that takes \
+                    time."
+                .to_owned();
         };
         let from = path.first().map(|step| self.netlist.net_name(step.net));
-        format!(
-            "Carry is not the limit: {why}. The longest path ({}, {}) runs from {} to {}.",
-            kind.kind,
-            depth_in(longest, self.unit),
-            from.unwrap_or_default(),
-            kind.end.describe(self.netlist),
-        )
+        let (from, to) = (from.unwrap_or_default(), kind.end.describe(self.netlist));
+        let deep = depth_in(longest, self.unit);
+        let kind = kind.kind;
+        let through: i64 = levels_by_chain(path, self.map.cones).values().sum();
+        if self.records.is_empty() {
+            format!(
+                "No proven carry chain limits this block: none of {} or more was found; the \
+                 longest path ({kind}, {deep}) runs from {from} to {to}.",
+                counted(self.min_bits as u64, "bit", "bits")
+            )
+        } else if through == 0 {
+            format!(
+                "No proven carry chain limits this block: the longest path ({kind}, {deep}, from \
+                 {from} to {to}) runs beside every one."
+            )
+        } else {
+            format!(
+                "No proven carry chain limits this block: the longest path ({kind}, {deep}, from \
+                 {from} to {to}) spends {} in carries, but with all carries free the block would \
+                 be as deep.",
+                counted(through.unsigned_abs(), "level", "levels")
+            )
+        }
     }
 
     /// What could hide a longer path or a chain, in words.

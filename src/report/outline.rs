@@ -113,11 +113,29 @@ impl Outline {
             read: read(netlist, depth.longest, &depth.unit, caps),
             verdict: clipped(sentence, caps.sentence),
             seen: seen_sentence(seen, netlist),
-            sections: sections.into_iter().flatten().collect(),
+            sections: sections.into_iter().flatten().map(without_blanks).collect(),
             settings: settings_sentence(settings, tool, netlist, caps),
             caution: clipped(caution, caps.sentence),
         }
     }
+}
+
+/// Drops the columns of which every row says `-`.
+fn without_blanks(mut section: Section) -> Section {
+    for block in &mut section.blocks {
+        let Block::Grid(Grid { columns, rows }) = block else {
+            continue;
+        };
+        for column in (0..columns.len()).rev() {
+            if rows.iter().all(|row| row[column] == "-") {
+                columns.remove(column);
+                for row in rows.iter_mut() {
+                    row.remove(column);
+                }
+            }
+        }
+    }
+    section
 }
 
 fn read(netlist: &NetlistFacts, longest: i64, unit: &str, caps: Caps) -> String {
@@ -179,8 +197,15 @@ fn seen_sentence(seen: &Seen, netlist: &NetlistFacts) -> String {
         0 => "none left undecided".to_owned(),
         n => format!("{} left undecided", grouped(n)),
     };
-    let proven = counted(chains_proven, "chain", "chains");
-    format!("What could be seen: {gates}; {cut}; {proven} proven, {open}.")
+    let proven = match chains_proven {
+        0 => "no chain".to_owned(),
+        n => counted(n, "chain", "chains"),
+    };
+    format!(
+        "What could be seen: {gates}; {cut}; {proven} proven, {open}. Looked for are chains with \
+         sums (adders, subtractors, incrementers, decrementers); carries without sums, as in a \
+         comparator, are not."
+    )
 }
 
 fn settings_sentence(

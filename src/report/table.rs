@@ -7,13 +7,16 @@
 use super::Page;
 use super::outline::{Block, Caps, Grid, Outline};
 use crate::audit::record::Audit;
-use comfy_table::{CellAlignment, ContentArrangement, Table};
+use comfy_table::{CellAlignment, ColumnConstraint, ContentArrangement, Table, Width};
 
 const CAPS: Caps = Caps {
     rows: 24,
     name: 48,
     sentence: 900,
 };
+
+/// Words up to this length are kept whole in a table.
+const UNBROKEN: usize = 22;
 
 /// What sets a table off from the sentences around it.
 const INDENT: &str = "  ";
@@ -95,6 +98,15 @@ fn wrapped(sentence: &str, width: usize) -> Vec<String> {
     lines
 }
 
+/// The longest word of a column, as far as a column can be kept from breaking it.
+fn longest_word(grid: &Grid, column: usize) -> u16 {
+    let cells = grid.rows.iter().map(|row| row[column].as_str());
+    let texts = cells.chain([grid.columns[column].0]);
+    let words = texts.flat_map(|text| text.split(' '));
+    let longest = words.map(|word| word.chars().count()).max().unwrap_or(0);
+    longest.min(UNBROKEN) as u16
+}
+
 fn table(text: &mut String, grid: &Grid, width: usize) {
     let mut table = Table::new();
     table
@@ -107,6 +119,9 @@ fn table(text: &mut String, grid: &Grid, width: usize) {
     for (i, (_, number)) in grid.columns.iter().enumerate() {
         if let Some(column) = table.column_mut(i) {
             column.set_padding((u16::from(i > 0), 1));
+            column.set_constraint(ColumnConstraint::LowerBoundary(Width::Fixed(
+                longest_word(grid, i) + 1 + u16::from(i > 0),
+            )));
             if *number {
                 column.set_cell_alignment(CellAlignment::Right);
             }

@@ -198,7 +198,7 @@ pub fn rebuild(chains: &[ChainRecord], set: &RecommendedSet, caps: Caps) -> Opti
         return None;
     }
     let RecommendedSet {
-        proposals: _,
+        proposals: chosen,
         block_depth: _,
         sentence,
     } = set;
@@ -206,14 +206,24 @@ pub fn rebuild(chains: &[ChainRecord], set: &RecommendedSet, caps: Caps) -> Opti
     let mut rows = Vec::new();
     let mut total = 0;
     let mut afterwards = Vec::new();
-    for chain in urgent_first(chains) {
+    let is_chosen = |chain: &ChainRecord, proposal: &ProposalRecord| {
+        chosen.contains(&format!("{}/{}", chain.id, proposal.id))
+    };
+    let concerned = |chain: &ChainRecord| chain.proposals.iter().any(|p| is_chosen(chain, p));
+    let mut order = urgent_first(chains);
+    order.sort_by_key(|chain| !concerned(chain));
+    for chain in order {
         for proposal in &chain.proposals {
+            // Of the other chains only what is recommended, if anything is.
+            if !chosen.is_empty() && !concerned(chain) && !proposal.recommended {
+                continue;
+            }
             total += 1;
             if rows.len() < caps.rows {
                 rows.push(proposal_row(chain, proposal, caps));
             }
-            if proposal.recommended && afterwards.len() < caps.rows {
-                afterwards.extend(aftermath(chain, proposal, caps));
+            if is_chosen(chain, proposal) && afterwards.len() < caps.rows {
+                afterwards.push(aftermath(chain, proposal, caps));
             }
         }
     }
@@ -288,7 +298,7 @@ fn proposal_row(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> V
     ]
 }
 
-fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Option<String> {
+fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> String {
     let mut text = format!(
         "{}/{}: ",
         clipped(&chain.id, caps.name),
@@ -303,14 +313,8 @@ fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Opti
         signed(proposal.gate_equivalents_added)
     ));
     if let Some(levels) = proposal.above_bound {
-        parts.push(match levels {
-            0 => "as shallow as any network of such gates".to_owned(),
-            1 => "1 level above what any network of such gates needs".to_owned(),
-            n => format!(
-                "{} levels above what any network of such gates needs",
-                grouped_signed(n)
-            ),
-        });
+        let levels = counted(levels.unsigned_abs(), "level", "levels");
+        parts.push(format!("{levels} above the lower bound for such gates"));
     }
     if let Some(path) = &proposal.takes_over {
         parts.push(format!(
@@ -328,7 +332,7 @@ fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Opti
     }
     text.push_str(&parts.join("; "));
     text.push('.');
-    Some(text)
+    text
 }
 
 fn not_planned(chains: &[ChainRecord], caps: Caps) -> Vec<Block> {

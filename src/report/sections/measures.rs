@@ -21,9 +21,9 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
     let columns = vec![
         ("path kind", false),
         ("longest", true),
-        ("of it in carries", true),
-        ("if carries were free", true),
-        ("ends at longest", true),
+        ("in carries", true),
+        ("carries free", true),
+        ("ends there", true),
         ("next below", true),
     ];
     let row = |kind: &PathKindFacts| {
