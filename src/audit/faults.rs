@@ -194,7 +194,7 @@ impl<'a> Findings<'a> {
         let Some((kind, path)) = longest else { return };
         if let Some(net) = cut_on(self.netlist, topology, kind, path) {
             let name = self.netlist.net_name(net);
-            let message = format!("the longest path is cut at {name}; the real one is longer");
+            let message = format!("the longest path is cut at {name}; the real one may be longer");
             self.add("path-cut-here", Some(net), 0, message);
         }
     }

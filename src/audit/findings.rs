@@ -137,7 +137,7 @@ pub const RULES: &[Rule] = &[
         slug: "path-cut-here",
         severity: Severity::Warning,
         what: "The longest path begins or ends at a net that was cut.",
-        why: "The real path is longer than the one told, by an unknown amount.",
+        why: "The real path may be longer than the one told, by an unknown amount.",
         advice: "Mend the fault at that net first; it has a finding of its own. Then \
                  audit again.",
         leaves_alone: "Cut nets that no longest path touches.",

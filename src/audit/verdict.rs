@@ -68,7 +68,7 @@ impl Evidence<'_> {
             Some(hidden) => (
                 Limit::Unknown,
                 format!(
-                    "Unknown, because {hidden}. As far as can be seen: {}",
+                    "Unknown, because {hidden}. As far as can be seen, {}",
                     lower(&seen)
                 ),
             ),
