@@ -15,6 +15,9 @@ const CAPS: Caps = Caps {
     sentence: 900,
 };
 
+/// Blanks between two columns.
+const GAP: usize = 2;
+
 /// Words up to this length are kept whole in a table.
 const UNBROKEN: usize = 22;
 
@@ -98,13 +101,45 @@ fn wrapped(sentence: &str, width: usize) -> Vec<String> {
     lines
 }
 
-/// The longest word of a column, as far as a column can be kept from breaking it.
-fn longest_word(grid: &Grid, column: usize) -> u16 {
-    let cells = grid.rows.iter().map(|row| row[column].as_str());
-    let texts = cells.chain([grid.columns[column].0]);
-    let words = texts.flat_map(|text| text.split(' '));
-    let longest = words.map(|word| word.chars().count()).max().unwrap_or(0);
-    longest.min(UNBROKEN) as u16
+/// What every column gets of `room` characters: its widest text where all fit.
+/// Else titles over numbers are broken into words, then the widest texts shrink
+/// evenly, words up to [`UNBROKEN`] kept whole while that is possible.
+fn widths(grid: &Grid, room: usize) -> Vec<usize> {
+    let length = |text: &str| text.chars().count();
+    let word = |text: &str| text.split(' ').map(length).max().unwrap_or(0);
+    let widest = |column: usize, measure: &dyn Fn(&str) -> usize| {
+        let cells = grid.rows.iter().map(|row| measure(&row[column]));
+        cells.max().unwrap_or(0)
+    };
+    let columns = || grid.columns.iter().enumerate();
+    let mut widths: Vec<usize> = columns()
+        .map(|(i, (title, _))| widest(i, &length).max(length(title)))
+        .collect();
+    let total = |widths: &[usize]| widths.iter().sum::<usize>();
+    if total(&widths) > room {
+        for (i, (title, number)) in columns() {
+            if *number {
+                widths[i] = widest(i, &length).max(word(title));
+            }
+        }
+    }
+    let mut least: Vec<usize> = columns()
+        .map(|(i, (title, number))| {
+            let whole = if *number { widest(i, &length) } else { widest(i, &word) };
+            whole.max(word(title)).min(UNBROKEN)
+        })
+        .collect();
+    while total(&widths) > room {
+        let shrinkable = (0..widths.len()).filter(|&i| widths[i] > least[i]);
+        if let Some(i) = shrinkable.max_by_key(|&i| (widths[i], usize::MAX - i)) {
+            widths[i] -= 1;
+        } else if least.iter().any(|&least| least > 1) {
+            least.fill(1);
+        } else {
+            break;
+        }
+    }
+    widths
 }
 
 fn table(text: &mut String, grid: &Grid, width: usize) {
@@ -116,12 +151,14 @@ fn table(text: &mut String, grid: &Grid, width: usize) {
         .force_no_tty()
         .set_header(grid.columns.iter().map(|(title, _)| *title));
     table.add_rows(grid.rows.iter());
+    let gaps = GAP * grid.columns.len().saturating_sub(1);
+    let widths = widths(grid, (width - INDENT.len()).saturating_sub(gaps));
     for (i, (_, number)) in grid.columns.iter().enumerate() {
         if let Some(column) = table.column_mut(i) {
-            column.set_padding((u16::from(i > 0), 1));
-            column.set_constraint(ColumnConstraint::LowerBoundary(Width::Fixed(
-                longest_word(grid, i) + 1 + u16::from(i > 0),
-            )));
+            let gap = if i > 0 { GAP as u16 } else { 0 };
+            column.set_padding((gap, 0));
+            let width = u16::try_from(widths[i]).unwrap_or(u16::MAX);
+            column.set_constraint(ColumnConstraint::Absolute(Width::Fixed(width + gap)));
             if *number {
                 column.set_cell_alignment(CellAlignment::Right);
             }
