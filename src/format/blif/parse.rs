@@ -96,7 +96,12 @@ pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
         match lines.advance() {
             Ok(true) => reader.line(&lines),
             Ok(false) => break,
-            Err(error) => reader.errors.push(error),
+            Err(error) => {
+                reader.close_block();
+                // What should have been continued follows: not a fault of its own.
+                reader.block = Block::Faulty;
+                reader.errors.push(error);
+            }
         }
         if reader.errors.len() >= MOST_ERRORS || reader.too_many_names(&lines) {
             break;
@@ -108,9 +113,7 @@ pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
     }
     if let Some((line, count)) = lines.glued_comments {
         let place = || Place::line(line);
-        reader
-            .tally
-            .count(Oddity::GluedComment, b"", count, place);
+        reader.tally.count(Oddity::GluedComment, b"", count, place);
     }
     if reader.errors.is_empty() {
         Ok(Contents {
@@ -260,7 +263,9 @@ impl Reader<'_> {
                 Diagnostic::error(
                     &self.source.name,
                     lines.place(at.unwrap_or(0), 1),
-                    format!("expected output column {before} in every row of this cover, found {now}"),
+                    format!(
+                        "expected output column {before} in every row of this cover, found {now}"
+                    ),
                     "a cover lists either where its output is 1 or where it is 0, not both",
                 )
                 .and(first, format!("the first row has {before}")),
@@ -398,7 +403,11 @@ impl Reader<'_> {
             let mark = self.marks[index];
             self.marks[index] |= list;
             // A clock is an input port, listed a second time or not.
-            let same = if list == OUTPUT { OUTPUT } else { INPUT | CLOCK };
+            let same = if list == OUTPUT {
+                OUTPUT
+            } else {
+                INPUT | CLOCK
+            };
             if mark & same == 0 {
                 let model = self.model(line);
                 let port = Port { net, line };
@@ -504,7 +513,8 @@ impl Reader<'_> {
                     let actual = self.net(actual);
                     self.model(line).bindings.push(Binding { formal, actual });
                 }
-                Err(fault) => self.fault(lines, fault),
+                // The words after a faulty one belong to it as a rule.
+                Err(fault) => return self.fault(lines, fault),
             }
         }
         let ordinals = &mut self.model(line).ordinals;
