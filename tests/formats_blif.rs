@@ -196,6 +196,15 @@ fn other_dot_words_are_told_once_each_with_their_count() {
 }
 
 #[test]
+fn other_dot_words_before_the_first_model_begin_none() {
+    let text = ".default_input_drive 1 1\n.model m\n.inputs a\n.outputs a\n.end\n";
+    let parsed = accept("early.blif", text);
+    let name = parsed.netlist.model().expect("a name");
+    assert_eq!(parsed.netlist.names().text(name), "m");
+    assert_eq!(parsed.netlist.inputs().len(), 1);
+}
+
+#[test]
 fn warnings_stay_few_however_many_words_are_unknown() {
     let mut text = String::from(".model m\n.inputs a\n.outputs a\n");
     for i in 0..5000 {
@@ -262,6 +271,17 @@ fn a_continued_line_is_joined_without_a_blank() {
         ".inputs le\\\nvel\n.outputs y\n.names level y\n1 1\n",
     );
     assert_eq!(input_names(&joined.netlist), ["level"]);
+}
+
+#[test]
+fn a_blank_after_a_backslash_is_refused() {
+    let bytes = reading::fixture_bytes("blank_after_backslash.blif");
+    let errors = read("blank_after_backslash.blif", bytes)
+        .err()
+        .expect("refused");
+    assert_eq!(errors.len(), 1, "{}", told(&errors));
+    assert_eq!((errors[0].line(), errors[0].column()), (Some(2), Some(11)));
+    assert!(errors[0].message.contains("found blanks"));
 }
 
 #[test]

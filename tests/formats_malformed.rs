@@ -81,6 +81,8 @@ fn blif_faults_are_told_where_they_are() {
         b".model m\n.subckt n a=x\n.end\n.model n\n.inputs a\n.subckt k a=a\n.end\n.model k\n.inputs a\n.subckt n a=a\n.end\n",
         b".model m\n.end\n.model m\n.end\n",
         b".model m\n.exdc\n.latch a b\n.end\n",
+        b".tide level\n",
+        b".end_kiss\n",
         b".model m\n.exdc foo\n.end\n",
         b".model m\n.start_kiss\n.i 1\n",
         b".model m\n.start_kiss\n.i 1\n.model n\n.end\n",
@@ -334,7 +336,7 @@ fn apply(bytes: &mut Vec<u8>, change: &Change) {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig { cases: 2000, failure_persistence: None, ..ProptestConfig::default() })]
+    #![proptest_config(ProptestConfig { cases: 5000, failure_persistence: None, ..ProptestConfig::default() })]
 
     #[test]
     fn arbitrary_bytes_never_panic(
