@@ -223,3 +223,68 @@ fn finds_every_ripple_word_in_every_cell() {
     }
     report(&faults, count);
 }
+
+/// Both forms of every circuit, and the first once more with meaningless names,
+/// shuffled ports and shuffled gates.
+fn check_all(circuits: Vec<Generated>) {
+    let mut faults = Vec::new();
+    let mut count = 0;
+    for generated in circuits {
+        faults.extend(shortfalls(&generated));
+        faults.extend(shortfalls_as_graph(&generated));
+        let mut hidden = generated.clone();
+        disguise(&mut hidden.circuit, 11);
+        hidden.label = format!("disguised {}", generated.label);
+        faults.extend(shortfalls_as_graph(&hidden));
+        count += 3;
+    }
+    report(&faults, count);
+}
+
+#[test]
+fn finds_words_whose_operands_are_inner_nets() {
+    let mut circuits = Vec::new();
+    for cell in Cell::ALL {
+        for kind in [generators::Kind::Adder, generators::Kind::Subtractor] {
+            circuits.push(gated_operands(Word::new(kind, 12, cell)));
+        }
+        circuits.push(adder_subtractor(12, cell));
+        circuits.push(series_adders(10, 4, cell));
+    }
+    check_all(circuits);
+}
+
+#[test]
+fn finds_words_whose_sums_feed_other_logic() {
+    let mut circuits = Vec::new();
+    for cell in Cell::ALL {
+        for kind in [
+            generators::Kind::Adder,
+            generators::Kind::Subtractor,
+            generators::Kind::Incrementer,
+            generators::Kind::Decrementer,
+        ] {
+            circuits.push(selected_sums(Word::new(kind, 12, cell)));
+        }
+        circuits.push(with_overflow(12, cell));
+    }
+    check_all(circuits);
+}
+
+#[test]
+fn finds_accumulators_and_counters() {
+    let mut circuits = Vec::new();
+    for cell in Cell::ALL {
+        circuits.push(accumulator(24, 16, Extension::Zero, cell));
+        circuits.push(accumulator(24, 16, Extension::Sign, cell));
+        circuits.push(counter(12, false, cell));
+        circuits.push(counter(12, true, cell));
+        circuits.push(counter(40, false, cell));
+    }
+    check_all(circuits);
+}
+
+#[test]
+fn finds_words_whatever_their_names_and_order() {
+    check_all(Word::every_ripple(16).iter().map(Word::generate).collect());
+}
