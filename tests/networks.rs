@@ -316,6 +316,27 @@ fn wide_gates_are_trees_by_arrival() {
     }
 }
 
+/// Three inputs a gate, arrivals 0, 0, 1, 1: the pair first, then all three at 1,
+/// is ready at 2; a full gate first would end at 3 (worked by hand; the bound is
+/// ⌈log3 Σ 3^t⌉ = 2, Parker 1979).
+#[test]
+fn the_first_merge_leaves_later_gates_full() {
+    let network = network("flat-lookahead", 3, true);
+    let mut sink = CountingSink::new(XorForm::Gate);
+    let zero = sink.constant(false);
+    let addends = Addends {
+        a: [0, 0, 1].map(|at| sink.input(at)).to_vec(),
+        b: vec![zero; 3],
+        carry_in: Some(sink.input(1)),
+    };
+    let limits = Limits {
+        gate_inputs: 3,
+        covers: false,
+    };
+    let built = build(&network, &addends, limits, Propagate::Or, &mut sink);
+    assert_eq!(sink.arrival(built.carries[2]), 2);
+}
+
 /// With six-input covers three spans join a level and both ends are absorbed: the
 /// carry out of 27 positions takes three levels, and so does the sum above them.
 /// No fewer can do: they read 54 and 56 operand bits, more than 6².
