@@ -94,10 +94,7 @@ pub fn detect(source: &Source) -> Result<Format, Diagnostic> {
             );
         }
     }
-    for (magic, format) in [
-        (b"aag", Format::AigerAscii),
-        (b"aig", Format::AigerBinary),
-    ] {
+    for (magic, format) in [(b"aag", Format::AigerAscii), (b"aig", Format::AigerBinary)] {
         // A blank must follow; without one the header's own check says where.
         if bytes.starts_with(magic) && bytes.get(3).is_none_or(|b| !b.is_ascii_graphic()) {
             return Ok(format);

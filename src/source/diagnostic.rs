@@ -141,8 +141,9 @@ impl Diagnostic {
             Severity::Warning => Level::WARNING,
         };
         let file = escape(self.file.as_bytes());
-        let mut group = level.primary_title(self.message.as_str()).element(
-            Origin::path(match self.place {
+        let mut group = level
+            .primary_title(self.message.as_str())
+            .element(Origin::path(match self.place {
                 Place::Byte(offset) => format!("{file}, byte {offset}"),
                 Place::File => file.clone(),
                 Place::Line {
@@ -151,15 +152,22 @@ impl Diagnostic {
                     ..
                 } => format!("{file}:{line}:{column}"),
                 Place::Line { line, .. } => format!("{file}:{line}"),
-            }),
-        );
+            }));
         if let Place::Line {
             line,
             column,
             length,
         } = self.place
         {
-            group = with_excerpt(group, source, line, column, length, AnnotationKind::Primary, None);
+            group = with_excerpt(
+                group,
+                source,
+                line,
+                column,
+                length,
+                AnnotationKind::Primary,
+                None,
+            );
         }
         if let Some((line, label)) = &self.second {
             group = group.element(Origin::path(format!("{file}:{line}")));

@@ -125,10 +125,7 @@ impl Watched {
         let before: usize = plain.iter().map(|list| list.len()).sum();
         let plain = plain.into_iter().flatten().copied().enumerate();
         let tail = self.justice.iter().chain(&self.fairness).copied();
-        plain.chain(
-            tail.enumerate()
-                .map(move |(i, l)| (before + sizes + i, l)),
-        )
+        plain.chain(tail.enumerate().map(move |(i, l)| (before + sizes + i, l)))
     }
 
     /// Number of lines these sections take.
@@ -143,12 +140,7 @@ impl Watched {
 
     /// Adds ports and properties. `first_line` is that of the first output, 0 in
     /// binary files.
-    fn build(
-        &self,
-        builder: &mut NetlistBuilder,
-        first_line: u32,
-        signal: impl Fn(u32) -> Signal,
-    ) {
+    fn build(&self, builder: &mut NetlistBuilder, first_line: u32, signal: impl Fn(u32) -> Signal) {
         for (i, &literal) in self.outputs.iter().enumerate() {
             let line = if first_line == 0 {
                 0

@@ -49,7 +49,6 @@ impl<'a> Cursor<'a> {
         self.source.bytes.len() - self.rest.len()
     }
 
-
     /// Steps over `n` bytes that hold no line end that counts.
     pub(super) fn skip(&mut self, n: usize) {
         self.rest = &self.rest[n..];

@@ -86,8 +86,10 @@ impl Remembered {
         let column = rows.column.is_some_and(|(column, _)| column);
         self.key.push(u8::from(column));
         // Both stay within their bounds: planes and rows are at most 256.
-        self.key.extend_from_slice(&(rows.count as u16).to_le_bytes());
-        self.key.extend_from_slice(&(rows.inputs as u64).to_le_bytes());
+        self.key
+            .extend_from_slice(&(rows.count as u16).to_le_bytes());
+        self.key
+            .extend_from_slice(&(rows.inputs as u64).to_le_bytes());
         if let Some(&id) = self.by_rows.get(&self.key) {
             return id;
         }

@@ -47,7 +47,10 @@ pub(super) fn elaborate(
         Diagnostic::error(
             &source.name,
             Place::line(line),
-            format!("expected at most {} {}, found more", fault.limit, fault.what),
+            format!(
+                "expected at most {} {}, found more",
+                fault.limit, fault.what
+            ),
             "netlists beyond this size are not read",
         )
     })
@@ -71,9 +74,21 @@ fn check_size(
     let instances = written(|m| m.instances.len());
     let limits = [
         ("gates", size.gates, max_gates),
-        ("registers", size.registers, beyond(1, latches).min(MOST_IDS)),
-        ("black boxes", size.boxes, beyond(1, instances).min(MOST_IDS)),
-        ("instances", size.instances, beyond(1, instances).min(MOST_IDS)),
+        (
+            "registers",
+            size.registers,
+            beyond(1, latches).min(MOST_IDS),
+        ),
+        (
+            "black boxes",
+            size.boxes,
+            beyond(1, instances).min(MOST_IDS),
+        ),
+        (
+            "instances",
+            size.instances,
+            beyond(1, instances).min(MOST_IDS),
+        ),
         ("nets", size.nets, beyond(NETS_PER_GATE, own)),
         ("gate inputs", size.pins, beyond(PINS_PER_GATE, pins)),
     ];

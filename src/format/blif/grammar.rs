@@ -152,7 +152,10 @@ fn fault(line: &[u8], part: &[u8], message: String, help: &'static str) -> Fault
 #[cold]
 pub(super) fn missing(line: &[u8], expected: &str, help: &'static str) -> Fault {
     Fault {
-        at: line.iter().rposition(|&b| !is_blank(b)).map_or(0, |i| i + 1),
+        at: line
+            .iter()
+            .rposition(|&b| !is_blank(b))
+            .map_or(0, |i| i + 1),
         length: 0,
         message: format!("expected {expected}, found the end of the line"),
         help,
@@ -180,15 +183,19 @@ pub(super) fn statement(line: &[u8]) -> Result<Statement<'_>, Fault> {
         b".output" => Statement::Outputs(words, true),
         b".clock" => Statement::Clock(words),
         b".model" => {
-            let name = words.next().ok_or_else(|| {
-                missing(line, "a model name", "write `.model` and one name")
-            })?;
+            let name = words
+                .next()
+                .ok_or_else(|| missing(line, "a model name", "write `.model` and one name"))?;
             nothing_more(line, words, "a model has one name, without blanks")?;
             Statement::Model(name)
         }
         b".end" => Statement::End(words),
         b".exdc" => {
-            nothing_more(line, words, "the section's lists stand on lines of their own")?;
+            nothing_more(
+                line,
+                words,
+                "the section's lists stand on lines of their own",
+            )?;
             Statement::Exdc
         }
         b".start_kiss" => Statement::StartKiss,

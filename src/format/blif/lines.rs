@@ -158,7 +158,10 @@ impl<'a> Lines<'a> {
             });
         let offset = piece.offset + (at - piece.at);
         let before = &self.source.bytes[..offset.min(self.source.bytes.len())];
-        let line_start = before.iter().rposition(|&b| b == b'\n').map_or(0, |i| i + 1);
+        let line_start = before
+            .iter()
+            .rposition(|&b| b == b'\n')
+            .map_or(0, |i| i + 1);
         Place::Line {
             line: piece.line,
             column: u32::try_from(offset - line_start + 1).ok(),
@@ -224,7 +227,10 @@ impl<'a> Lines<'a> {
     #[cold]
     fn continued_into_nothing(&self, end: usize) -> Diagnostic {
         let before = &self.source.bytes[..end];
-        let line_start = before.iter().rposition(|&b| b == b'\n').map_or(0, |i| i + 1);
+        let line_start = before
+            .iter()
+            .rposition(|&b| b == b'\n')
+            .map_or(0, |i| i + 1);
         let place = Place::Line {
             line: self.next_line - 1,
             column: u32::try_from(end - line_start + 1).ok(),

@@ -108,9 +108,7 @@ pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
     }
     if let Some((line, count)) = lines.glued_comments {
         let place = || Place::line(line);
-        reader
-            .tally
-            .count(Oddity::GluedComment, b"", count, place);
+        reader.tally.count(Oddity::GluedComment, b"", count, place);
     }
     if reader.errors.is_empty() {
         Ok(Contents {
@@ -260,7 +258,9 @@ impl Reader<'_> {
                 Diagnostic::error(
                     &self.source.name,
                     lines.place(at.unwrap_or(0), 1),
-                    format!("expected output column {before} in every row of this cover, found {now}"),
+                    format!(
+                        "expected output column {before} in every row of this cover, found {now}"
+                    ),
                     "a cover lists either where its output is 1 or where it is 0, not both",
                 )
                 .and(first, format!("the first row has {before}")),
@@ -398,7 +398,11 @@ impl Reader<'_> {
             let mark = self.marks[index];
             self.marks[index] |= list;
             // A clock is an input port, listed a second time or not.
-            let same = if list == OUTPUT { OUTPUT } else { INPUT | CLOCK };
+            let same = if list == OUTPUT {
+                OUTPUT
+            } else {
+                INPUT | CLOCK
+            };
             if mark & same == 0 {
                 let model = self.model(line);
                 let port = Port { net, line };
