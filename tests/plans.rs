@@ -514,6 +514,86 @@ fn reuses_what_stays_and_removes_what_loses_its_last_use() {
     assert_eq!(with_xor.estimate().gates_added, 6);
 }
 
+/// A carry that nothing reads keeps its net in BLIF; the rest of the block is
+/// the textbook ripple adder.
+#[test]
+fn a_result_that_nothing_reads_stays() {
+    let text = ".model t\n.inputs a0 b0 a1 b1 a2 b2\n.outputs s0 s1 s2\n\
+        .names a0 b0 s0\n10 1\n01 1\n.names a0 b0 c1\n11 1\n\
+        .names a1 b1 c1 s1\n100 1\n010 1\n001 1\n111 1\n\
+        .names a1 b1 c1 c2\n11- 1\n1-1 1\n-11 1\n\
+        .names a2 b2 c2 s2\n100 1\n010 1\n001 1\n111 1\n\
+        .names a2 b2 c2 unread\n11- 1\n1-1 1\n-11 1\n.end\n";
+    let netlist = parse("t.blif", text.as_bytes());
+    let mut chain = chains_of(&netlist).remove(0);
+    let unread = netlist
+        .nets()
+        .find(|&net| netlist.net_name(net) == "unread")
+        .unwrap();
+    // Stated whether or not recognition lists what nothing reads.
+    chain.positions[2].carries = vec![Signal::plain(unread)];
+    let settings = Settings::resolve(Request::new(DelayModel::Unit), &netlist).unwrap();
+    assert_eq!(settings.style, GateStyle::Cover);
+    let topology = Topology::of(&netlist);
+    let timing = Timing::of(&netlist, &topology, DelayModel::Unit);
+    let ground = Ground::of(&netlist, &topology, &timing, &settings);
+    let site = Site::of(&ground, &chain).unwrap();
+    for (fitted, propagate) in options(&chain, settings.gate_inputs) {
+        let run = DryRun::of(&site, &fitted.network, propagate);
+        assert_eq!(run.estimate().gates_removed, 6);
+        compare(&ground, &run, &chain, fitted.scheme);
+    }
+}
+
+/// AND/inverter graph by hand: the second sum feeds only its own carry, which
+/// nothing reads, so its operand, an AND of two inputs, loses its last use too.
+#[test]
+fn an_operand_that_no_new_gate_reads_is_swept() {
+    // 2 a0, 4 b0, 6 x, 8 y; 10 = x·y; 12, 14 half sum and 16 = s0 of a0, b0;
+    // 12 = c1; 18, 20, 22 = ~(c1 ⊕ 10); 24 = 10·~s1, the second carry.
+    let text = "aag 12 4 0 1 8\n2\n4\n6\n8\n16\n10 6 8\n12 2 4\n14 3 5\n16 13 15\n\
+        18 12 10\n20 13 11\n22 19 21\n24 10 23\n";
+    let netlist = parse("t.aag", text.as_bytes());
+    let by_variable = |variable: usize| {
+        let ports = netlist.inputs();
+        match variable {
+            1..=4 => ports[variable - 1],
+            _ => netlist.gate_output(netlist.gates().nth(variable - 5).unwrap()),
+        }
+    };
+    let bit = |variable| Bit::Signal(Signal::plain(by_variable(variable)));
+    let position = |a, b, sum, carry| Position {
+        a,
+        b,
+        sums: vec![Signal::plain(by_variable(sum))],
+        carries: vec![Signal::plain(by_variable(carry))],
+    };
+    let chain = Chain {
+        kind: chain::Kind::Adder,
+        positions: vec![
+            position(bit(1), bit(2), 8, 6),
+            // The second operand of the second position is 0.
+            position(bit(5), Bit::Constant(false), 11, 12),
+        ],
+        carry_in: Bit::Constant(false),
+        has_carry_out: false,
+        carry_form: chain::CarryForm::Carry,
+        built_as: chain::BuiltAs::Ripple,
+    };
+    let settings = Settings::resolve(Request::new(DelayModel::Unit), &netlist).unwrap();
+    let topology = Topology::of(&netlist);
+    let timing = Timing::of(&netlist, &topology, DelayModel::Unit);
+    let ground = Ground::of(&netlist, &topology, &timing, &settings);
+    let site = Site::of(&ground, &chain).unwrap();
+    for (fitted, propagate) in options(&chain, 2) {
+        let run = DryRun::of(&site, &fitted.network, propagate);
+        compare(&ground, &run, &chain, fitted.scheme);
+        // All but 14, which s0 reads anew.
+        assert_eq!(run.estimate().gates_removed, 8);
+        assert_eq!(run.estimate().gates_added, 3);
+    }
+}
+
 #[test]
 fn refuses_a_chain_whose_operand_depends_on_it() {
     let mut b = NetlistBuilder::new();
