@@ -26,6 +26,8 @@ pub mod chain;
 pub mod format;
 pub mod netlist;
 pub mod network;
+pub mod plan;
 pub mod prove;
 pub mod source;
 pub mod subject;
+pub mod timing;

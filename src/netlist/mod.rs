@@ -13,6 +13,8 @@ mod builder;
 pub mod bus;
 pub mod function;
 mod graph;
+pub mod health;
+pub mod histogram;
 mod id;
 mod model;
 mod names;

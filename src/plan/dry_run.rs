@@ -1,0 +1,375 @@
+//! One proposal tried on one chain: its gates made in the overlay and measured.
+//!
+//! No figure here is a formula. The gates are those the writer would make: a
+//! new gate that nothing reaches is not counted, every real net is a gate of its
+//! own in BLIF (in either polarity; a net equal to an operand or a constant is a
+//! buffer, inverter or constant) and no gate in AIGER, where readers are
+//! redirected. Depth comes from the new arrivals at the replaced nets, the fixed
+//! tails behind them and the longest paths beside the chain, which together are
+//! every path there is, since no operand depends on a replaced net.
+
+use super::overlay::{GateStyle, Literal, Node, Operator, Overlay};
+use super::site::Site;
+use crate::netlist::{GateId, NetId};
+use crate::network::{CarryNetwork, Propagate, build};
+use crate::timing::{End, EndClass, NEVER, PathKind};
+
+/// What becomes of the longest path of one kind.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct KindChange {
+    /// The kind.
+    pub kind: PathKind,
+    /// Its longest path today.
+    pub before: i32,
+    /// Its longest path with the proposal.
+    pub after: i32,
+    /// The longest path through the chain's new results, if one leads through.
+    pub through: Option<i32>,
+}
+
+impl KindChange {
+    /// Whether the chain is on a longest path of the kind afterwards.
+    pub fn chain_is_on_it(&self) -> bool {
+        self.through == Some(self.after)
+    }
+}
+
+/// The figures of one proposal.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Estimate {
+    /// Latest result of the chain today.
+    pub chain_before: i32,
+    /// Latest result of the chain with the proposal.
+    pub chain_after: i32,
+    /// Longest path of the block today.
+    pub block_before: i32,
+    /// Longest path of the block with the proposal.
+    pub block_after: i32,
+    /// Every path kind that occurs today.
+    pub kinds: Vec<KindChange>,
+    /// New gates.
+    pub gates_added: usize,
+    /// Gates that go; `gates_after = gates_before + added − removed`.
+    pub gates_removed: usize,
+    /// New gates, a k-input gate counted k − 1.
+    pub gate_equivalents_added: usize,
+    /// Removed gates, counted the same.
+    pub gate_equivalents_removed: usize,
+    /// Most inputs of a new gate.
+    pub largest_fan_in: usize,
+    /// Most readers of a new gate.
+    pub largest_fan_out: usize,
+}
+
+/// The path that is longest with a proposal.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct TakesOver {
+    /// Its kind.
+    pub kind: PathKind,
+    /// Where it ends.
+    pub end: End,
+    /// Whether it still leads through the chain.
+    pub through_chain: bool,
+}
+
+/// A proposal as made in the overlay.
+pub struct DryRun<'s, 'a> {
+    pub(super) site: &'s Site<'a>,
+    pub(super) overlay: Overlay,
+    /// What each needed net of the site becomes.
+    pub(super) literals: Vec<Literal>,
+    /// By node: whether its gate is made, once or once per real net.
+    pub(super) is_made: Vec<bool>,
+    /// By node: the real nets that are gates of it (BLIF only).
+    pub(super) real_nets: Vec<u32>,
+    /// Gates removed beyond the site's.
+    pub(super) swept: Vec<GateId>,
+    carries: Vec<Literal>,
+    estimate: Estimate,
+}
+
+impl<'s, 'a> DryRun<'s, 'a> {
+    /// Makes `network` for the chain of `site`.
+    pub fn of(site: &'s Site<'a>, network: &CarryNetwork, propagate: Propagate) -> Self {
+        let mut overlay = site.base.clone();
+        let limits = site.ground.settings.limits();
+        let built = build(network, &site.addends, limits, propagate, &mut overlay);
+        let literals: Vec<Literal> = site
+            .needed
+            .iter()
+            .map(|needed| {
+                let role = needed.role;
+                let list = if role.carry {
+                    &built.carries
+                } else {
+                    &built.sums
+                };
+                list[role.position].invert_if(site.negated != role.inverted)
+            })
+            .collect();
+        let carries = built.carries;
+        let carries = carries.iter().map(|c| c.invert_if(site.negated)).collect();
+        let (is_made, real_nets) = mark(&overlay, &literals);
+        let reads = read_nets(&overlay, &literals, &is_made);
+        let swept = site.sweep_unread(|net| reads.binary_search(&net).is_ok());
+        let mut run = Self {
+            site,
+            overlay,
+            literals,
+            is_made,
+            real_nets,
+            swept,
+            carries,
+            estimate: Estimate {
+                chain_before: NEVER,
+                chain_after: NEVER,
+                block_before: site.ground.timing.longest(),
+                block_after: 0,
+                kinds: Vec::new(),
+                gates_added: 0,
+                gates_removed: 0,
+                gate_equivalents_added: 0,
+                gate_equivalents_removed: 0,
+                largest_fan_in: 0,
+                largest_fan_out: 0,
+            },
+        };
+        run.count_gates();
+        run.measure_fan_out();
+        run.measure_depth();
+        run
+    }
+
+    /// The figures.
+    pub fn estimate(&self) -> &Estimate {
+        &self.estimate
+    }
+
+    /// When the carry out of each position is ready; `None` for constants.
+    pub fn carry_arrivals(&self) -> Vec<Option<i32>> {
+        use crate::network::GateSink;
+        let times = self.carries.iter().map(|&c| self.overlay.arrival(c));
+        times.map(|time| (time != NEVER).then_some(time)).collect()
+    }
+
+    fn style(&self) -> GateStyle {
+        self.overlay.style()
+    }
+
+    /// How many gates a node is.
+    fn copies(&self, node: Node) -> usize {
+        if !self.is_made[node.index()] {
+            return 0;
+        }
+        let real = self.real_nets[node.index()] as usize;
+        let shared = usize::from(self.overlay.existing(node).is_none());
+        real.max(shared)
+    }
+
+    fn count_gates(&mut self) {
+        let mut added = (0, 0, 0);
+        let mut add = |gates: usize, inputs: usize| {
+            added.0 += gates;
+            added.1 += gates * inputs.saturating_sub(1);
+            if gates > 0 {
+                added.2 = added.2.max(inputs);
+            }
+        };
+        for node in self.overlay.nodes() {
+            add(self.copies(node), self.overlay.inputs(node).len());
+        }
+        if self.style() != GateStyle::AndInverter {
+            for literal in &self.literals {
+                match self.overlay.operator(literal.node()) {
+                    Operator::Constant => add(1, 0),
+                    Operator::Net(_) => add(1, 1),
+                    Operator::And | Operator::Xor | Operator::Cover(_) => {}
+                }
+            }
+        }
+        let netlist = self.site.ground.netlist;
+        let equivalents = |gate: GateId| netlist.fan_ins(gate).len().saturating_sub(1);
+        // A sum does not depend on the order of the set.
+        #[allow(clippy::iter_over_hash_type)]
+        for &gate in &self.site.removed {
+            self.estimate.gate_equivalents_removed += equivalents(gate);
+        }
+        for &gate in &self.swept {
+            self.estimate.gate_equivalents_removed += equivalents(gate);
+        }
+        self.estimate.gates_removed = self.site.removed.len() + self.swept.len();
+        self.estimate.gates_added = added.0;
+        self.estimate.gate_equivalents_added = added.1;
+        self.estimate.largest_fan_in = added.2;
+    }
+
+    fn measure_fan_out(&mut self) {
+        let mut inner = vec![0usize; self.overlay.len()];
+        for node in self.overlay.nodes() {
+            let copies = self.copies(node);
+            for input in self.overlay.inputs(node) {
+                inner[input.node().index()] += copies;
+            }
+        }
+        let mut largest = 0;
+        if self.style() == GateStyle::AndInverter {
+            for (needed, literal) in self.site.needed.iter().zip(&self.literals) {
+                inner[literal.node().index()] += needed.uses as usize;
+            }
+        } else {
+            // The first real net of a node also serves the new gates.
+            let mut first = vec![true; self.overlay.len()];
+            for (needed, literal) in self.site.needed.iter().zip(&self.literals) {
+                let node = literal.node();
+                let gate = self.overlay.is_gate(node);
+                let serves = gate
+                    && self.overlay.existing(node).is_none()
+                    && std::mem::take(&mut first[node.index()]);
+                let inside = if serves { inner[node.index()] } else { 0 };
+                largest = largest.max(needed.uses as usize + inside);
+            }
+        }
+        for node in self.overlay.nodes() {
+            if self.copies(node) > 0
+                && self.real_nets[node.index()] == 0
+                && self.overlay.existing(node).is_none()
+            {
+                largest = largest.max(inner[node.index()]);
+            }
+        }
+        self.estimate.largest_fan_out = largest;
+    }
+
+    /// When each needed net is ready if the existing nets are as `by_net` says.
+    fn needed_arrivals(&self, by_net: &[i32]) -> Vec<i32> {
+        let times = self.overlay.arrivals(|net| by_net[net.index()]);
+        let buffer = self.overlay.buffer_delay();
+        let at = |literal: &Literal| {
+            let node = literal.node();
+            let time = times[node.index()];
+            match self.overlay.operator(node) {
+                Operator::Constant => NEVER,
+                Operator::Net(_) if time == NEVER => NEVER,
+                Operator::Net(_) => time + buffer,
+                // A real net in BLIF is a gate of its own even where an
+                // existing net shows the same.
+                _ if self.style() == GateStyle::AndInverter => time,
+                _ => self.overlay.own_arrival(node, &times),
+            }
+        };
+        self.literals.iter().map(at).collect()
+    }
+
+    fn measure_depth(&mut self) {
+        let site = self.site;
+        let before = site.needed.iter().map(|needed| site.arrival(needed.net));
+        self.estimate.chain_before = before.max().unwrap_or(NEVER);
+        let after = self.needed_arrivals(&site.ground.timing.arrivals.by_net);
+        self.estimate.chain_after = after.into_iter().max().unwrap_or(NEVER);
+        for (start, by_net) in site.starts() {
+            let times = self.needed_arrivals(by_net);
+            for &(end, ref tails) in &site.tails {
+                let kind = PathKind { start, end };
+                let Some(today) = site.ground.timing.kind(kind) else {
+                    continue;
+                };
+                let through = site
+                    .needed
+                    .iter()
+                    .zip(&times)
+                    .filter(|&(_, &time)| time != NEVER)
+                    .filter_map(|(needed, time)| Some(time + tails.get(&needed.net)?))
+                    .max();
+                let beside = site.beside.iter().find(|each| each.kind == kind);
+                let beside = beside.and_then(|each| each.longest);
+                let after = through.max(beside.map(|(time, _)| time));
+                self.estimate.kinds.push(KindChange {
+                    kind,
+                    before: today.longest,
+                    after: after.unwrap_or(0),
+                    through,
+                });
+            }
+        }
+        self.estimate
+            .kinds
+            .sort_unstable_by_key(|change| change.kind);
+        let after = self.estimate.kinds.iter().map(|change| change.after);
+        self.estimate.block_after = after.max().unwrap_or(0);
+    }
+
+    /// The path of `kind` that is longest with the proposal: one beside the
+    /// chain where it is as long.
+    pub fn takes_over(&self, kind: PathKind) -> Option<TakesOver> {
+        let change = self.estimate.kinds.iter().find(|each| each.kind == kind)?;
+        let beside = self.site.beside.iter().find(|each| each.kind == kind)?;
+        if let Some((time, end)) = beside.longest
+            && time == change.after
+        {
+            return Some(TakesOver {
+                kind,
+                end,
+                through_chain: false,
+            });
+        }
+        let (_, by_net) = self.site.starts().find(|&(start, _)| start == kind.start)?;
+        let times = self.needed_arrivals(by_net);
+        let net = self.latest_through(&times, kind.end, change.through?)?;
+        Some(TakesOver {
+            kind,
+            end: self.site.end_behind(net, kind.end)?,
+            through_chain: true,
+        })
+    }
+
+    fn latest_through(&self, times: &[i32], class: EndClass, length: i32) -> Option<NetId> {
+        let (_, tails) = self.site.tails.iter().find(|(each, _)| *each == class)?;
+        let nets = self.site.needed.iter().zip(times);
+        nets.filter(|&(_, &time)| time != NEVER)
+            .find(|(needed, time)| tails.get(&needed.net).is_some_and(|t| *time + t == length))
+            .map(|(needed, _)| needed.net)
+    }
+}
+
+/// Which nodes are made as gates, and how many real nets are gates of each.
+fn mark(overlay: &Overlay, literals: &[Literal]) -> (Vec<bool>, Vec<u32>) {
+    let mut live = vec![false; overlay.len()];
+    let mut made = vec![false; overlay.len()];
+    let mut real = vec![0; overlay.len()];
+    for literal in literals {
+        let node = literal.node();
+        live[node.index()] = true;
+        if overlay.style() != GateStyle::AndInverter && overlay.is_gate(node) {
+            real[node.index()] += 1;
+        }
+    }
+    for node in overlay.nodes().rev() {
+        let i = node.index();
+        let shared = live[i] && overlay.is_gate(node) && overlay.existing(node).is_none();
+        if shared || real[i] > 0 {
+            made[i] = true;
+            for input in overlay.inputs(node) {
+                live[input.node().index()] = true;
+            }
+        }
+    }
+    (made, real)
+}
+
+/// The existing nets that new gates or replaced nets read, ascending.
+fn read_nets(overlay: &Overlay, literals: &[Literal], made: &[bool]) -> Vec<NetId> {
+    let inputs = overlay
+        .nodes()
+        .filter(|node| made[node.index()])
+        .flat_map(|node| overlay.inputs(node));
+    let mut nets: Vec<NetId> = inputs
+        .chain(literals)
+        .filter_map(|literal| match overlay.operator(literal.node()) {
+            Operator::Net(net) => Some(net),
+            _ => overlay.existing(literal.node()).map(|shown| shown.net),
+        })
+        .collect();
+    nets.sort_unstable();
+    nets.dedup();
+    nets
+}

@@ -1,0 +1,364 @@
+//! A dry run made real: the netlist with the proposal applied.
+//!
+//! Nets keep their names, gates their lines, functions and order; what goes is
+//! left out, what is new stands where the format wants it. In BLIF the new gates
+//! drive the replaced nets; in AIGER readers of a replaced net are redirected
+//! and the inversion goes into them. Invariant: the gate count and every depth
+//! of the result equal the dry run's estimate.
+
+use super::dry_run::DryRun;
+use super::overlay::{GateStyle, Literal, Node, Operator};
+use crate::netlist::{
+    BlackBox, Driver, Function, GateId, NameId, NetId, Netlist, NetlistBuilder, Output, Property,
+    Register, ScopeId, Signal, TooLarge,
+};
+use rustc_hash::FxHashMap;
+
+/// The netlist with a proposal applied.
+pub struct Rebuilt {
+    /// The new netlist.
+    pub netlist: Netlist,
+    /// By net of the old netlist: the net that stands for it, if it stays. A
+    /// redirected net of AIGER stays as the signal its readers now read.
+    pub nets: Vec<Option<Signal>>,
+}
+
+/// Builds the netlist of a dry run; new nets are named `prefix` and a number in
+/// BLIF and have no name in AIGER.
+///
+/// # Errors
+/// When the result would need more ids than 32 bits hold.
+pub fn materialise(run: &DryRun<'_, '_>, prefix: &str) -> Result<Rebuilt, TooLarge> {
+    let mut writer = Writer::new(run, prefix);
+    writer.copy_nets()?;
+    writer.copy_inputs();
+    let old = writer.old;
+    let behind = |gate: GateId| run.site.region_set.contains(&gate);
+    if run.overlay.style() == GateStyle::AndInverter {
+        // Gates before what reads them: those behind the chain come last.
+        for gate in old.gates().filter(|&gate| !behind(gate)) {
+            writer.copy_gate(gate)?;
+        }
+        writer.make_gates()?;
+        writer.redirect()?;
+        for &gate in &run.site.region {
+            writer.copy_gate(gate)?;
+        }
+    } else {
+        for gate in old.gates() {
+            writer.copy_gate(gate)?;
+        }
+        writer.make_gates()?;
+        writer.drive_real_nets()?;
+    }
+    writer.copy_rest();
+    Ok(Rebuilt {
+        netlist: writer.builder.finish(),
+        nets: writer.nets,
+    })
+}
+
+struct Writer<'r, 's, 'a> {
+    run: &'r DryRun<'s, 'a>,
+    old: &'a Netlist,
+    builder: NetlistBuilder,
+    prefix: &'r str,
+    made: usize,
+    nets: Vec<Option<Signal>>,
+    scopes: FxHashMap<ScopeId, ScopeId>,
+    /// By node of the overlay: the net that shows it.
+    shown: Vec<Option<Signal>>,
+}
+
+impl<'r, 's, 'a> Writer<'r, 's, 'a> {
+    fn new(run: &'r DryRun<'s, 'a>, prefix: &'r str) -> Self {
+        let old = run.site.ground.netlist;
+        let mut builder = NetlistBuilder::new();
+        if old.has_inverted_edges() {
+            builder.set_inverted_edges();
+        }
+        if let Some(model) = old.model() {
+            let name = builder.name(old.names().bytes(model));
+            builder.set_model(name);
+        }
+        Self {
+            run,
+            old,
+            builder,
+            prefix,
+            made: 0,
+            nets: vec![None; old.net_count()],
+            scopes: FxHashMap::from_iter([(ScopeId::new(0), ScopeId::new(0))]),
+            shown: vec![None; run.overlay.len()],
+        }
+    }
+
+    fn name(&mut self, name: NameId) -> NameId {
+        let bytes = self.old.names().bytes(name);
+        self.builder.name(bytes)
+    }
+
+    /// The new scope of an old one. Parents have lower ids and the same path
+    /// but its last name, so a loop over the path makes what is missing.
+    fn scope(&mut self, scope: ScopeId) -> ScopeId {
+        if let Some(&known) = self.scopes.get(&scope) {
+            return known;
+        }
+        let mut at = ScopeId::new(0);
+        for name in self.old.scope_path(scope) {
+            let name = self.name(name);
+            at = self.builder.add_scope(at, name);
+        }
+        self.scopes.insert(scope, at);
+        at
+    }
+
+    fn is_removed(&self, gate: GateId) -> bool {
+        self.run.site.removed.contains(&gate) || self.run.swept.binary_search(&gate).is_ok()
+    }
+
+    fn copy_nets(&mut self) -> Result<(), TooLarge> {
+        let mut needed: Vec<NetId> = self.run.site.needed.iter().map(|each| each.net).collect();
+        needed.sort_unstable();
+        let redirects = self.run.overlay.style() == GateStyle::AndInverter;
+        for net in self.old.nets() {
+            let gone = match self.old.driver(net) {
+                Driver::Gate(gate) => {
+                    self.is_removed(gate) && (redirects || needed.binary_search(&net).is_err())
+                }
+                _ => false,
+            };
+            if gone {
+                continue;
+            }
+            let copy = if let Driver::Constant(value) = self.old.driver(net) {
+                self.builder.constant(value)?
+            } else {
+                let name = self.old.local_name(net).map(|name| self.name(name));
+                let scope = self.scope(self.old.net_scope(net));
+                self.builder.add_net(name, scope)?
+            };
+            self.nets[net.index()] = Some(Signal::plain(copy));
+        }
+        Ok(())
+    }
+
+    /// What stands for an old net that stays.
+    fn now(&self, net: NetId) -> Signal {
+        self.nets[net.index()].expect("what is read stays")
+    }
+
+    /// As [`Self::now`] where inversions cannot occur.
+    fn net_now(&self, net: NetId) -> NetId {
+        self.now(net).net
+    }
+
+    fn signal_now(&self, signal: Signal) -> Signal {
+        let now = self.now(signal.net);
+        Signal {
+            inverted: now.inverted != signal.inverted,
+            ..now
+        }
+    }
+
+    fn copy_inputs(&mut self) {
+        for &net in self.old.inputs() {
+            let net = self.net_now(net);
+            self.builder.add_input(net, 0);
+        }
+    }
+
+    fn copy_gate(&mut self, gate: GateId) -> Result<(), TooLarge> {
+        if self.is_removed(gate) {
+            return Ok(());
+        }
+        let mut function = self.old.function(gate).clone();
+        let mut pins = Vec::with_capacity(self.old.fan_ins(gate).len());
+        for (pin, &net) in self.old.fan_ins(gate).iter().enumerate() {
+            let now = self.now(net);
+            if now.inverted {
+                function = function.flip(pin);
+            }
+            pins.push(now.net);
+        }
+        let output = self.net_now(self.old.gate_output(gate));
+        let scope = self.scope(self.old.gate_scope(gate));
+        let id = self.builder.function(function);
+        let line = self.old.gate_line(gate);
+        self.builder.add_gate(id, &pins, output, scope, line)?;
+        Ok(())
+    }
+
+    /// The net and polarity that shows a literal.
+    fn show(&mut self, literal: Literal) -> Result<Signal, TooLarge> {
+        let node = literal.node();
+        let signal = match self.run.overlay.operator(node) {
+            Operator::Constant => {
+                let value = literal.is_inverted();
+                return Ok(Signal::plain(self.builder.constant(value)?));
+            }
+            Operator::Net(net) => self.now(net),
+            _ => self.shown[node.index()].expect("inputs are made first"),
+        };
+        Ok(Signal {
+            inverted: signal.inverted != literal.is_inverted(),
+            ..signal
+        })
+    }
+
+    /// Makes the gates of the overlay, each driving the first real net that
+    /// shows it, else a new net.
+    fn make_gates(&mut self) -> Result<(), TooLarge> {
+        let run = self.run;
+        let mut first: FxHashMap<Node, (NetId, bool)> = FxHashMap::default();
+        if run.overlay.style() != GateStyle::AndInverter {
+            for (needed, literal) in run.site.needed.iter().zip(&run.literals) {
+                let entry = first.entry(literal.node());
+                entry.or_insert((needed.net, literal.is_inverted()));
+            }
+        }
+        for node in run
+            .overlay
+            .nodes()
+            .filter(|&node| run.overlay.is_gate(node))
+        {
+            if let Some(existing) = run.overlay.existing(node) {
+                self.shown[node.index()] = self.nets[existing.net.index()].map(|now| Signal {
+                    inverted: now.inverted != existing.inverted,
+                    ..now
+                });
+                continue;
+            }
+            if !run.is_made[node.index()] {
+                continue;
+            }
+            let (output, inverted) = match first.get(&node) {
+                Some(&(net, inverted)) => (self.net_now(net), inverted),
+                None => (self.new_net()?, false),
+            };
+            self.add_gate(node, output, inverted)?;
+            self.shown[node.index()] = Some(Signal {
+                net: output,
+                inverted,
+            });
+        }
+        Ok(())
+    }
+
+    fn new_net(&mut self) -> Result<NetId, TooLarge> {
+        let top = ScopeId::new(0);
+        if self.run.overlay.style() == GateStyle::AndInverter {
+            return self.builder.add_net(None, top);
+        }
+        let name = loop {
+            self.made += 1;
+            let text = format!("{}{}", self.prefix, self.made);
+            if self.old.names().find(text.as_bytes()).is_none() {
+                break self.builder.name(text.as_bytes());
+            }
+        };
+        self.builder.add_net(Some(name), top)
+    }
+
+    /// One gate of `node`, its output complemented when `inverted` is set.
+    fn add_gate(&mut self, node: Node, output: NetId, inverted: bool) -> Result<(), TooLarge> {
+        let overlay = &self.run.overlay;
+        let inputs = overlay.inputs(node).to_vec();
+        let mut pins = Vec::with_capacity(inputs.len());
+        for &input in &inputs {
+            pins.push(self.show(input)?);
+        }
+        let flags: Vec<bool> = pins.iter().map(|pin| pin.inverted).collect();
+        let function = match overlay.operator(node) {
+            Operator::And => Function::product(&flags, inverted),
+            Operator::Xor => {
+                let odd = flags.iter().fold(inverted, |odd, &flag| odd != flag);
+                Function::parity(flags.len(), odd)
+            }
+            Operator::Cover(table) => {
+                let mut table = table;
+                for (pin, _) in flags.iter().enumerate().filter(|&(_, &flag)| flag) {
+                    table = table.flip(pin);
+                }
+                Function::Table(if inverted { table.complement() } else { table })
+            }
+            Operator::Constant | Operator::Net(_) => unreachable!("only gates are made"),
+        };
+        let nets: Vec<NetId> = pins.iter().map(|pin| pin.net).collect();
+        let id = self.builder.function(function);
+        self.builder
+            .add_gate(id, &nets, output, ScopeId::new(0), 0)?;
+        Ok(())
+    }
+
+    /// Drives the real nets that [`Self::make_gates`] has not.
+    fn drive_real_nets(&mut self) -> Result<(), TooLarge> {
+        let run = self.run;
+        for (needed, &literal) in run.site.needed.iter().zip(&run.literals) {
+            let output = self.net_now(needed.net);
+            if self.builder.driver(output) != Driver::None {
+                continue;
+            }
+            let node = literal.node();
+            if run.overlay.is_gate(node) {
+                self.add_gate(node, output, literal.is_inverted())?;
+                continue;
+            }
+            let (function, pins) = match run.overlay.operator(node) {
+                Operator::Constant => (Function::constant(literal.is_inverted()), Vec::new()),
+                _ => {
+                    let from = self.show(literal)?;
+                    (Function::buffer(from.inverted), vec![from.net])
+                }
+            };
+            let id = self.builder.function(function);
+            self.builder
+                .add_gate(id, &pins, output, ScopeId::new(0), 0)?;
+        }
+        Ok(())
+    }
+
+    /// Lets the readers of the replaced nets read the new gates.
+    fn redirect(&mut self) -> Result<(), TooLarge> {
+        let run = self.run;
+        for (needed, &literal) in run.site.needed.iter().zip(&run.literals) {
+            let signal = self.show(literal)?;
+            self.nets[needed.net.index()] = Some(signal);
+        }
+        Ok(())
+    }
+
+    fn copy_rest(&mut self) {
+        for &Output { signal, name, line } in self.old.outputs() {
+            let name = name.map(|name| self.name(name));
+            let signal = self.signal_now(signal);
+            self.builder.add_output(signal, name, line);
+        }
+        for register in self.old.registers() {
+            let copy = Register {
+                input: self.signal_now(register.input),
+                output: self.net_now(register.output),
+                control: register.control.map(|net| self.net_now(net)),
+                ..*register
+            };
+            self.builder.add_register(copy);
+        }
+        for each in self.old.boxes() {
+            let copy = BlackBox {
+                model: self.name(each.model),
+                inputs: each.inputs.iter().map(|&net| self.net_now(net)).collect(),
+                outputs: each.outputs.iter().map(|&net| self.net_now(net)).collect(),
+                line: each.line,
+            };
+            self.builder.add_box(copy);
+        }
+        for property in self.old.properties() {
+            let copy = Property {
+                kind: property.kind,
+                signal: self.signal_now(property.signal),
+                name: property.name.map(|name| self.name(name)),
+            };
+            self.builder.add_property(copy);
+        }
+    }
+}

@@ -1,0 +1,27 @@
+//! Planning: what a lookahead rebuild of a proven chain would bring and cost.
+//!
+//! In come a netlist, its timing and a chain; out comes a [`ChainPlan`]: the
+//! candidate schemes dry-run in a scratch overlay, the trade-off front, the
+//! recommended proposal and its reason. This room proposes and never edits, and
+//! it cannot fail on a valid netlist: a chain it cannot plan is said so.
+//! [`materialise`] makes a dry run real, for whoever writes or recounts it.
+
+mod bound;
+mod choose;
+mod dry_run;
+mod fold;
+mod ground;
+mod materialise;
+mod overlay;
+mod propose;
+mod settings;
+mod site;
+
+pub use bound::earliest;
+pub use dry_run::{DryRun, Estimate, KindChange, TakesOver};
+pub use ground::Ground;
+pub use materialise::{Rebuilt, materialise};
+pub use overlay::{GateStyle, Literal, Overlay};
+pub use propose::{ChainPlan, NotPlanned, Proposal, plan};
+pub use settings::{DEFAULT_MARGIN_PERCENT, NewGates, Request, Settings, SettingsError};
+pub use site::{Refused, Site};

@@ -1,0 +1,566 @@
+//! One chain on its netlist: what a rebuild replaces, what that sweeps away, and
+//! what stays to be measured. Computed once per chain; every proposal reuses it.
+//!
+//! Every net proven equal to a sum or carry is replaced. Gates that lose their
+//! last use by it are removed; gates dead beforehand stay. What remains in the
+//! fan-out of the replaced nets is the *region*: with the replaced nets as
+//! barriers it gives the longest paths beside the chain and the fixed tail
+//! behind every replaced net, so a proposal costs its own gates and no pass over
+//! the netlist. This rests on one invariant, checked here: no operand depends on
+//! a replaced net.
+
+use super::ground::Ground;
+use super::overlay::{GateStyle, Literal, Overlay};
+use crate::chain::Chain;
+use crate::netlist::{Bit, GateId, NetId, Shape, Signal};
+use crate::network::Addends;
+use crate::timing::{End, EndClass, NEVER, PathKind, StartClass, end_net};
+use rustc_hash::{FxHashMap, FxHashSet};
+
+/// Buffers and inverters before an operand are looked through up to this many.
+const MOST_BUFFERS: usize = 64;
+/// Readers of one operand looked at for gates to reuse.
+const MOST_READERS: usize = 256;
+/// Levels of gates over the operands looked at for gates to reuse.
+const REUSE_LEVELS: usize = 3;
+
+/// Why a chain cannot be planned.
+#[derive(Clone, Copy, PartialEq, Eq, Debug, thiserror::Error)]
+pub enum Refused {
+    /// An operand depends on a sum or carry of the chain itself.
+    #[error("operand bit {position} depends on the chain's own results")]
+    OperandDependsOnChain {
+        /// The position.
+        position: usize,
+    },
+    /// No net of the chain can be driven anew.
+    #[error("none of its sums and carries is driven by a gate of its own")]
+    NothingToReplace,
+}
+
+/// What a replaced net shows.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Debug)]
+pub(super) struct Role {
+    pub(super) position: usize,
+    pub(super) carry: bool,
+    pub(super) inverted: bool,
+}
+
+/// A replaced net that something outside the removed gates still reads.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(super) struct Needed {
+    pub(super) net: NetId,
+    pub(super) role: Role,
+    pub(super) uses: u32,
+}
+
+/// The longest path of one kind that passes no replaced net.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub(super) struct Beside {
+    pub(super) kind: PathKind,
+    pub(super) longest: Option<(i32, End)>,
+}
+
+/// See the head of the module.
+pub struct Site<'a> {
+    pub(super) ground: &'a Ground<'a>,
+    pub(super) replaced: FxHashMap<NetId, Role>,
+    pub(super) needed: Vec<Needed>,
+    /// Gates removed whatever the proposal.
+    pub(super) removed: FxHashSet<GateId>,
+    pub(super) uses_left: FxHashMap<NetId, u32>,
+    pub(super) region: Vec<GateId>,
+    pub(super) region_set: FxHashSet<GateId>,
+    pub(super) beside: Vec<Beside>,
+    pub(super) tails: Vec<(EndClass, FxHashMap<NetId, i32>)>,
+    pub(super) base: Overlay,
+    pub(super) addends: Addends<Literal>,
+    pub(super) negated: bool,
+    /// Nets the addends read, ascending.
+    pub(super) operands: Vec<NetId>,
+}
+
+impl<'a> Site<'a> {
+    /// Looks at `chain` on its netlist.
+    ///
+    /// # Errors
+    /// When the chain cannot be replaced as a whole.
+    pub fn of(ground: &'a Ground<'a>, chain: &Chain) -> Result<Self, Refused> {
+        let operands = Operands::of(ground, chain);
+        let (order, replaced) = replaced_nets(ground, chain, &operands.on_the_way);
+        if order.is_empty() {
+            return Err(Refused::NothingToReplace);
+        }
+        let fan_out = fan_out_of(ground, &order);
+        let fan_out_set: FxHashSet<GateId> = fan_out.iter().copied().collect();
+        let depends = |net: NetId| {
+            replaced.contains_key(&net)
+                || ground
+                    .gate_of(net)
+                    .is_some_and(|gate| fan_out_set.contains(&gate))
+        };
+        for (position, bit) in operands.given.iter() {
+            if bit.signal().is_some_and(|signal| depends(signal.net)) {
+                return Err(Refused::OperandDependsOnChain {
+                    position: *position,
+                });
+            }
+        }
+        let (removed, uses_left) = sweep(ground, &order, &replaced, &operands.roots);
+        let style = ground.settings.style;
+        let needed: Vec<Needed> = order
+            .iter()
+            .filter_map(|&net| {
+                let before = ground.uses(net);
+                let uses = uses_left.get(&net).copied().unwrap_or(before);
+                let stays = uses > 0 || (before == 0 && style != GateStyle::AndInverter);
+                stays.then(|| Needed {
+                    net,
+                    role: replaced[&net],
+                    uses,
+                })
+            })
+            .collect();
+        let mut region: Vec<GateId> = fan_out
+            .into_iter()
+            .filter(|gate| !removed.contains(gate))
+            .collect();
+        region.sort_unstable_by_key(|&gate| ground.rank(gate));
+        let region_set = region.iter().copied().collect();
+        let mut base = Overlay::new(style, ground.settings.model);
+        let (addends, negated) = operands.addends(ground, chain, &mut base);
+        let mut site = Self {
+            ground,
+            replaced,
+            needed,
+            removed,
+            uses_left,
+            region,
+            region_set,
+            beside: Vec::new(),
+            tails: Vec::new(),
+            base,
+            addends,
+            negated,
+            operands: operands.roots,
+        };
+        site.find_reusable(&fan_out_set);
+        site.measure_beside();
+        site.measure_tails();
+        Ok(site)
+    }
+
+    /// Arrival of an existing net the chain does not replace.
+    pub(super) fn arrival(&self, net: NetId) -> i32 {
+        self.ground.timing.arrivals.by_net[net.index()]
+    }
+
+    /// Puts the surviving gates over the operands into the overlay, so that a
+    /// new gate equal to one of them is that one.
+    fn find_reusable(&mut self, fan_out: &FxHashSet<GateId>) {
+        let netlist = self.ground.netlist;
+        let mut known: FxHashMap<NetId, Literal> = FxHashMap::default();
+        let mut front = self.operands.clone();
+        for &net in &front {
+            known.insert(net, self.base.net(net, self.arrival(net)));
+        }
+        for _ in 0..REUSE_LEVELS {
+            let mut gates: Vec<GateId> = front
+                .iter()
+                .flat_map(|&net| self.ground.readers.of_net(net).iter().take(MOST_READERS))
+                .copied()
+                .filter(|gate| !self.removed.contains(gate) && !fan_out.contains(gate))
+                .collect();
+            gates.sort_unstable_by_key(|&gate| self.ground.rank(gate));
+            gates.dedup();
+            front.clear();
+            for gate in gates {
+                let output = netlist.gate_output(gate);
+                if known.contains_key(&output) || self.ground.gate_of(output) != Some(gate) {
+                    continue;
+                }
+                let pins = netlist.fan_ins(gate).iter();
+                let Some(inputs) = pins.map(|net| known.get(net).copied()).collect() else {
+                    continue;
+                };
+                let inputs: Vec<Literal> = inputs;
+                let function = netlist.function(gate);
+                let literal = match function.shape() {
+                    Shape::Buffer => Some(inputs[0]),
+                    Shape::Inverter => Some(!inputs[0]),
+                    _ => self.base.gate(function, &inputs),
+                };
+                if let Some(literal) = literal {
+                    let arrival = self.arrival(output);
+                    self.base.set_existing(literal, output, arrival);
+                    known.insert(output, literal);
+                    front.push(output);
+                }
+            }
+        }
+    }
+
+    /// The longest paths that pass no replaced net.
+    fn measure_beside(&mut self) {
+        let ground = self.ground;
+        let classes = ground.end_classes();
+        for (start, by_net) in ground.timing.by_start() {
+            let (times, cut_ends) = self.arrivals_beside(by_net);
+            for &class in &classes {
+                let kind = PathKind { start, end: class };
+                let mut longest = ground.latest_end(kind, |end| !self.is_behind(end));
+                let mut offer = |time: i32, end: End| {
+                    if time != NEVER && longest.is_none_or(|(most, _)| time > most) {
+                        longest = Some((time, end));
+                    }
+                };
+                for &gate in &self.region {
+                    let output = ground.netlist.gate_output(gate);
+                    if let Some(&time) = times.get(&output) {
+                        for end in ground.ends_at(output).filter(|end| end.class() == class) {
+                            offer(time, end);
+                        }
+                    }
+                }
+                if class == EndClass::Output {
+                    for &(time, end) in &cut_ends {
+                        offer(time, end);
+                    }
+                }
+                self.beside.push(Beside { kind, longest });
+            }
+        }
+    }
+
+    /// Arrivals in the region with the replaced nets taken away, and at the gates
+    /// in it that drive cut nets.
+    fn arrivals_beside(&self, by_net: &[i32]) -> (FxHashMap<NetId, i32>, Vec<(i32, End)>) {
+        let ground = self.ground;
+        let mut times: FxHashMap<NetId, i32> = FxHashMap::default();
+        let mut cut_ends = Vec::new();
+        for &gate in &self.region {
+            let delays = ground
+                .timing
+                .delays
+                .of_function(ground.netlist.function_id(gate));
+            let mut latest = NEVER;
+            for (&net, delay) in ground.netlist.fan_ins(gate).iter().zip(delays) {
+                let at = if self.replaced.contains_key(&net) {
+                    NEVER
+                } else {
+                    times.get(&net).copied().unwrap_or(by_net[net.index()])
+                };
+                if at != NEVER {
+                    latest = latest.max(at + delay);
+                }
+            }
+            let output = ground.netlist.gate_output(gate);
+            if ground.gate_of(output) == Some(gate) {
+                times.insert(output, latest);
+            } else {
+                cut_ends.push((latest, End::Cut(gate)));
+            }
+        }
+        (times, cut_ends)
+    }
+
+    /// Whether paths to `end` may pass a replaced net.
+    fn is_behind(&self, end: End) -> bool {
+        match (end, end_net(self.ground.netlist, end)) {
+            (End::Cut(gate), _) => self.region_set.contains(&gate),
+            (_, Some(net)) => {
+                self.replaced.contains_key(&net)
+                    || self
+                        .ground
+                        .gate_of(net)
+                        .is_some_and(|gate| self.region_set.contains(&gate))
+            }
+            (_, None) => false,
+        }
+    }
+
+    /// The longest tail behind every replaced net that passes no other.
+    fn measure_tails(&mut self) {
+        let ground = self.ground;
+        for class in ground.end_classes() {
+            let mut tails: FxHashMap<NetId, i32> = FxHashMap::default();
+            let ends_here = |net: NetId| ground.ends_at(net).any(|end| end.class() == class);
+            for needed in &self.needed {
+                if ends_here(needed.net) {
+                    tails.insert(needed.net, 0);
+                }
+            }
+            for &gate in self.region.iter().rev() {
+                let output = ground.netlist.gate_output(gate);
+                let tail = if ground.gate_of(output) == Some(gate) {
+                    let behind = tails.get(&output).copied();
+                    behind.or_else(|| ends_here(output).then_some(0))
+                } else {
+                    (class == EndClass::Output).then_some(0)
+                };
+                let Some(tail) = tail else {
+                    continue;
+                };
+                tails.insert(output, tail);
+                let delays = ground
+                    .timing
+                    .delays
+                    .of_function(ground.netlist.function_id(gate));
+                for (&net, delay) in ground.netlist.fan_ins(gate).iter().zip(delays) {
+                    let inside = self.replaced.contains_key(&net)
+                        || ground
+                            .gate_of(net)
+                            .is_some_and(|gate| self.region_set.contains(&gate));
+                    if inside {
+                        let slot = tails.entry(net).or_insert(NEVER);
+                        *slot = (*slot).max(tail + delay);
+                    }
+                }
+            }
+            self.tails.push((class, tails));
+        }
+    }
+
+    /// The end that the longest tail behind a replaced net leads to.
+    pub(super) fn end_behind(&self, mut net: NetId, class: EndClass) -> Option<End> {
+        let ground = self.ground;
+        let (_, tails) = self.tails.iter().find(|(each, _)| *each == class)?;
+        loop {
+            let tail = *tails.get(&net)?;
+            if tail == 0
+                && let Some(end) = ground.ends_at(net).find(|end| end.class() == class)
+            {
+                return Some(end);
+            }
+            let next = ground.readers.of_net(net).iter().find_map(|&gate| {
+                let output = ground.netlist.gate_output(gate);
+                let cut = ground.gate_of(output) != Some(gate);
+                let behind = if cut {
+                    (class == EndClass::Output).then_some(0)
+                } else {
+                    tails.get(&output).copied()
+                };
+                let delays = ground
+                    .timing
+                    .delays
+                    .of_function(ground.netlist.function_id(gate));
+                let pins = ground.netlist.fan_ins(gate).iter().zip(delays);
+                let fits = self.region_set.contains(&gate)
+                    && pins.into_iter().any(|(&pin, delay)| {
+                        pin == net && behind.is_some_and(|b| b + delay == tail)
+                    });
+                fits.then_some((gate, output, cut))
+            });
+            match next? {
+                (gate, _, true) => return Some(End::Cut(gate)),
+                (_, output, false) => net = output,
+            }
+        }
+    }
+
+    /// Gates removed beyond those of every proposal, because the new gates of
+    /// this one do not read some operand.
+    pub(super) fn sweep_unread(&self, is_read: impl Fn(NetId) -> bool) -> Vec<GateId> {
+        let ground = self.ground;
+        let mut uses: FxHashMap<NetId, u32> = FxHashMap::default();
+        let left = |uses: &FxHashMap<NetId, u32>, net: NetId| {
+            let known = uses.get(&net).or_else(|| self.uses_left.get(&net));
+            known.copied().unwrap_or_else(|| ground.uses(net))
+        };
+        let mut stack: Vec<GateId> = self
+            .operands
+            .iter()
+            .filter(|&&net| ground.uses(net) > 0 && left(&uses, net) == 0 && !is_read(net))
+            .filter_map(|&net| ground.gate_of(net))
+            .collect();
+        let mut swept = Vec::new();
+        while let Some(gate) = stack.pop() {
+            swept.push(gate);
+            for &net in ground.netlist.fan_ins(gate) {
+                let now = left(&uses, net) - 1;
+                uses.insert(net, now);
+                if now == 0 && !is_read(net) {
+                    stack.extend(ground.gate_of(net));
+                }
+            }
+        }
+        swept.sort_unstable();
+        swept
+    }
+
+    /// Arrivals of each start class by net, as the timing has them.
+    pub(super) fn starts(&self) -> impl Iterator<Item = (StartClass, &'a [i32])> {
+        self.ground.timing.by_start()
+    }
+}
+
+/// The nets a chain adds.
+struct Operands {
+    /// The bits as the chain gives them, with their positions.
+    given: Vec<(usize, Bit)>,
+    /// The operands and the buffers and inverters before them.
+    on_the_way: FxHashSet<NetId>,
+    /// The nets behind buffers and inverters, ascending.
+    roots: Vec<NetId>,
+}
+
+impl Operands {
+    fn of(ground: &Ground<'_>, chain: &Chain) -> Self {
+        let bits = chain.positions.iter().enumerate();
+        let given: Vec<(usize, Bit)> = bits
+            .flat_map(|(i, position)| [(i, position.a), (i, position.b)])
+            .chain([(0, chain.carry_in)])
+            .collect();
+        let mut on_the_way = FxHashSet::default();
+        let mut roots = Vec::new();
+        for signal in given.iter().filter_map(|(_, bit)| bit.signal()) {
+            roots.push(root(ground, signal, |net| {
+                on_the_way.insert(net);
+            }));
+        }
+        let mut roots: Vec<NetId> = roots.into_iter().map(|signal| signal.net).collect();
+        roots.sort_unstable();
+        roots.dedup();
+        Self {
+            given,
+            on_the_way,
+            roots,
+        }
+    }
+
+    /// The addends as literals. A carry-in of constant 1 is taken away by
+    /// adding the complements: `a + b + 1 = ~(~a + ~b)`; then the second result
+    /// is true and every sum and carry comes out inverted.
+    fn addends(
+        &self,
+        ground: &Ground<'_>,
+        chain: &Chain,
+        overlay: &mut Overlay,
+    ) -> (Addends<Literal>, bool) {
+        let negated = chain.carry_in == Bit::Constant(true);
+        let mut literal = |bit: Bit| match bit {
+            Bit::Constant(value) => Literal::FALSE.invert_if(value),
+            Bit::Signal(signal) => {
+                let root = root(ground, signal, |_| ());
+                let arrival = ground.timing.arrivals.by_net[root.net.index()];
+                overlay.net(root.net, arrival).invert_if(root.inverted)
+            }
+        };
+        let a = chain
+            .positions
+            .iter()
+            .map(|p| literal(p.a).invert_if(negated));
+        let a = a.collect();
+        let b = chain
+            .positions
+            .iter()
+            .map(|p| literal(p.b).invert_if(negated));
+        let b = b.collect();
+        let carry_in = match chain.carry_in {
+            Bit::Constant(_) => None,
+            bit @ Bit::Signal(_) => Some(literal(bit)),
+        };
+        (Addends { a, b, carry_in }, negated)
+    }
+}
+
+/// The signal behind the buffers and inverters before `signal`.
+fn root(ground: &Ground<'_>, mut signal: Signal, mut pass: impl FnMut(NetId)) -> Signal {
+    for _ in 0..MOST_BUFFERS {
+        pass(signal.net);
+        let Some(gate) = ground.gate_of(signal.net) else {
+            return signal;
+        };
+        let inverts = match ground.netlist.function(gate).shape() {
+            Shape::Buffer => false,
+            Shape::Inverter => true,
+            _ => return signal,
+        };
+        signal = Signal {
+            net: ground.netlist.fan_ins(gate)[0],
+            inverted: signal.inverted != inverts,
+        };
+    }
+    pass(signal.net);
+    signal
+}
+
+/// The nets to drive anew, in the order of the chain, and what each shows.
+fn replaced_nets(
+    ground: &Ground<'_>,
+    chain: &Chain,
+    operands: &FxHashSet<NetId>,
+) -> (Vec<NetId>, FxHashMap<NetId, Role>) {
+    let mut order = Vec::new();
+    let mut replaced = FxHashMap::default();
+    for (position, each) in chain.positions.iter().enumerate() {
+        let sums = each.sums.iter().map(|signal| (signal, false));
+        let carries = each.carries.iter().map(|signal| (signal, true));
+        for (signal, carry) in sums.chain(carries) {
+            let net = signal.net;
+            if operands.contains(&net)
+                || replaced.contains_key(&net)
+                || ground.gate_of(net).is_none()
+            {
+                continue;
+            }
+            order.push(net);
+            let role = Role {
+                position,
+                carry,
+                inverted: signal.inverted,
+            };
+            replaced.insert(net, role);
+        }
+    }
+    (order, replaced)
+}
+
+/// Every gate that a change of `nets` may reach.
+fn fan_out_of(ground: &Ground<'_>, nets: &[NetId]) -> Vec<GateId> {
+    let mut seen: FxHashSet<GateId> = FxHashSet::default();
+    let mut found = Vec::new();
+    let mut stack = nets.to_vec();
+    while let Some(net) = stack.pop() {
+        for &gate in ground.readers.of_net(net) {
+            if seen.insert(gate) {
+                found.push(gate);
+                let output = ground.netlist.gate_output(gate);
+                if ground.gate_of(output) == Some(gate) {
+                    stack.push(output);
+                }
+            }
+        }
+    }
+    found
+}
+
+/// The gates of the replaced nets and all that lose their last use with them,
+/// the operands held; and the uses left of every net touched.
+fn sweep(
+    ground: &Ground<'_>,
+    order: &[NetId],
+    replaced: &FxHashMap<NetId, Role>,
+    operands: &[NetId],
+) -> (FxHashSet<GateId>, FxHashMap<NetId, u32>) {
+    let mut removed: FxHashSet<GateId> = FxHashSet::default();
+    let mut uses: FxHashMap<NetId, u32> = FxHashMap::default();
+    let mut stack: Vec<GateId> = order
+        .iter()
+        .filter_map(|&net| ground.gate_of(net))
+        .collect();
+    while let Some(gate) = stack.pop() {
+        if !removed.insert(gate) {
+            continue;
+        }
+        for &net in ground.netlist.fan_ins(gate) {
+            let left = uses.entry(net).or_insert_with(|| ground.uses(net));
+            *left -= 1;
+            let held = replaced.contains_key(&net) || operands.binary_search(&net).is_ok();
+            if *left == 0 && !held {
+                stack.extend(ground.gate_of(net));
+            }
+        }
+    }
+    (removed, uses)
+}

@@ -1,0 +1,174 @@
+//! Where paths start and end, and the kinds of path between.
+//!
+//! A cut net is a free input: paths that start there count as from an input,
+//! and a gate that drives a cut net ends its path as an output would.
+
+use crate::netlist::{BoxId, Driver, GateId, NetId, Netlist, RegisterId, Topology};
+
+/// What a path starts from.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub enum StartClass {
+    /// An input port or a cut net.
+    Input,
+    /// A register's output.
+    Register,
+    /// A box output.
+    Box,
+}
+
+/// What a path ends at.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub enum EndClass {
+    /// An output port, or a gate that drives a cut net.
+    Output,
+    /// A register's input or control.
+    Register,
+    /// A box input.
+    Box,
+}
+
+impl StartClass {
+    /// All classes.
+    pub const ALL: [Self; 3] = [Self::Input, Self::Register, Self::Box];
+
+    /// The word used in records.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Input => "input",
+            Self::Register => "register",
+            Self::Box => "box",
+        }
+    }
+}
+
+impl EndClass {
+    /// All classes.
+    pub const ALL: [Self; 3] = [Self::Output, Self::Register, Self::Box];
+
+    /// The word used in records.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Output => "output",
+            Self::Register => "register",
+            Self::Box => "box",
+        }
+    }
+}
+
+/// A kind of path.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub struct PathKind {
+    /// Where such paths start.
+    pub start: StartClass,
+    /// Where they end.
+    pub end: EndClass,
+}
+
+impl std::fmt::Display for PathKind {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        write!(f, "{}→{}", self.start.word(), self.end.word())
+    }
+}
+
+/// One place where a path ends.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub enum End {
+    /// Output port, by index.
+    Output(u32),
+    /// A register's input.
+    RegisterInput(RegisterId),
+    /// A register's control pin.
+    RegisterControl(RegisterId),
+    /// An input of a box, by index.
+    BoxInput(BoxId, u32),
+    /// A gate that drives a cut net.
+    Cut(GateId),
+}
+
+impl End {
+    /// The class the end belongs to.
+    pub fn class(self) -> EndClass {
+        match self {
+            Self::Output(_) | Self::Cut(_) => EndClass::Output,
+            Self::RegisterInput(_) | Self::RegisterControl(_) => EndClass::Register,
+            Self::BoxInput(..) => EndClass::Box,
+        }
+    }
+
+    /// Its place in a record: the port or net, in plain words.
+    pub fn describe(self, netlist: &Netlist) -> String {
+        match self {
+            Self::Output(i) => netlist.output_name(&netlist.outputs()[i as usize]),
+            Self::RegisterInput(id) | Self::RegisterControl(id) => {
+                netlist.net_name(netlist.registers()[id.index()].output)
+            }
+            Self::BoxInput(id, pin) => {
+                netlist.net_name(netlist.boxes()[id.index()].inputs[pin as usize])
+            }
+            Self::Cut(gate) => netlist.net_name(netlist.gate_output(gate)),
+        }
+    }
+}
+
+/// The net an end reads; `None` for a gate that drives a cut net, whose own
+/// pins end the path.
+pub fn end_net(netlist: &Netlist, end: End) -> Option<NetId> {
+    match end {
+        End::Output(i) => Some(netlist.outputs()[i as usize].signal.net),
+        End::RegisterInput(id) => Some(netlist.registers()[id.index()].input.net),
+        End::RegisterControl(id) => netlist.registers()[id.index()].control,
+        End::BoxInput(id, pin) => Some(netlist.boxes()[id.index()].inputs[pin as usize]),
+        End::Cut(_) => None,
+    }
+}
+
+/// Every end, in a fixed order: outputs, registers, boxes, cuts.
+pub fn ends<'a>(netlist: &'a Netlist, topology: &'a Topology) -> impl Iterator<Item = End> + 'a {
+    let outputs = (0..netlist.outputs().len() as u32).map(End::Output);
+    let registers = netlist
+        .registers()
+        .iter()
+        .enumerate()
+        .flat_map(|(i, register)| {
+            let id = RegisterId::new(i);
+            let control = register.control.map(|_| End::RegisterControl(id));
+            [Some(End::RegisterInput(id)), control]
+                .into_iter()
+                .flatten()
+        });
+    let boxes = netlist.boxes().iter().enumerate().flat_map(|(i, each)| {
+        (0..each.inputs.len() as u32).map(move |pin| End::BoxInput(BoxId::new(i), pin))
+    });
+    let looped = topology.loops.iter().flatten().filter_map(|&net| {
+        let Driver::Gate(gate) = netlist.driver(net) else {
+            return None;
+        };
+        Some(End::Cut(gate))
+    });
+    let contended = netlist.contended().iter().flat_map(|contention| {
+        contention.drivers.iter().filter_map(|&(driver, _)| {
+            let Driver::Gate(gate) = driver else {
+                return None;
+            };
+            Some(End::Cut(gate))
+        })
+    });
+    outputs
+        .chain(registers)
+        .chain(boxes)
+        .chain(looped)
+        .chain(contended)
+}
+
+/// What kind of start a net is, if it is one.
+pub fn start_class(netlist: &Netlist, topology: &Topology, net: NetId) -> Option<StartClass> {
+    if topology.is_cut(net) {
+        return Some(StartClass::Input);
+    }
+    match netlist.driver(net) {
+        Driver::Input(_) => Some(StartClass::Input),
+        Driver::Register(_) => Some(StartClass::Register),
+        Driver::Box(_) => Some(StartClass::Box),
+        Driver::Gate(_) | Driver::Constant(_) | Driver::None | Driver::Many(_) => None,
+    }
+}

@@ -1,0 +1,23 @@
+//! Timing: delay models, arrival times, longest paths and slack.
+//!
+//! Paths start at inputs, register outputs, box outputs and cut nets, never at
+//! constants; they end at output ports, register inputs and controls, box
+//! inputs and gates that drive cut nets. Everything is one forward or backward
+//! pass over the gates in topological order, so the time is linear and the
+//! stack does not grow with the depth of the netlist.
+//!
+//! Invariant: times are ticks of the delay model in `i32`; [`NEVER`] marks what
+//! no path reaches.
+
+mod ends;
+mod factored;
+mod model;
+mod passes;
+mod path;
+mod report;
+
+pub use ends::{End, EndClass, PathKind, StartClass, end_net, ends, start_class};
+pub use model::{DelayModel, PinDelays};
+pub use passes::{Arrivals, NEVER, StartSet, Tails, end_arrival, gate_arrival};
+pub use path::{PathStep, longest_path};
+pub use report::{KindTiming, Slack, Timing, depth_histogram, longest_free_buffers};
