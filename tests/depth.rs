@@ -2,6 +2,8 @@
 //! something outside: petgraph's algorithms on the same graph, published
 //! circuits, or a count by hand.
 
+mod support;
+
 use carrywise::netlist::health::{FaultKind, Health, MAX_LOOP_NETS};
 use carrywise::netlist::histogram;
 use carrywise::netlist::{
@@ -491,4 +493,41 @@ fn every_end_reads_a_net_or_is_a_cut() {
     for end in ends(&netlist, &topology) {
         assert!(end_net(&netlist, end).is_some() != matches!(end, End::Cut(_)));
     }
+}
+
+/// Every row of the data set's `facts.tsv`: depths computed by independent
+/// programs, ISCAS'85 depths as published, gates as in the AIGER headers.
+#[test]
+fn every_open_circuit_has_its_published_measures() {
+    let Some(folder) = support::datasets() else {
+        return;
+    };
+    let facts = std::fs::read_to_string(folder.join("facts.tsv")).unwrap();
+    let mut rows = 0;
+    for row in facts.lines().skip(1) {
+        let cells: Vec<&str> = row.split('\t').collect();
+        let file = std::fs::File::open(folder.join(cells[0])).unwrap();
+        let source = carrywise::source::read(cells[0], file).unwrap();
+        let options = carrywise::format::ReadOptions::default();
+        let netlist = match carrywise::format::read(&source, &options) {
+            Ok(parsed) => parsed.netlist,
+            Err(errors) => panic!("{}: {errors:?}", cells[0]),
+        };
+        let topology = Topology::of(&netlist);
+        let timing = Timing::of(&netlist, &topology, DelayModel::Unit);
+        let found = [
+            netlist.inputs().len(),
+            netlist.outputs().len(),
+            netlist.gate_count(),
+            timing.longest() as usize,
+            histogram::fan_in(&netlist).largest,
+        ];
+        let expected: Vec<usize> = cells[1..]
+            .iter()
+            .map(|cell| cell.parse().unwrap())
+            .collect();
+        assert_eq!(found[..], expected[..], "{}", cells[0]);
+        rows += 1;
+    }
+    assert_eq!(rows, 21);
 }
