@@ -445,9 +445,12 @@ fn every_rule_is_told_in_full() {
 /// ANDs, and beside it a chain of `beside` ANDs.
 fn adder(bits: usize, before: usize, beside: usize) -> String {
     use std::fmt::Write;
-    let mut text = String::from(".model total\n.inputs cin z en");
+    let mut text = String::from(".model total\n.inputs cin z");
     for i in 0..bits {
         let _ = write!(text, " a[{i}] b[{i}]");
+    }
+    for i in 0..before.max(beside) {
+        let _ = write!(text, " en{i}");
     }
     text.push_str("\n.outputs y carry");
     for i in 0..bits {
@@ -462,7 +465,7 @@ fn adder(bits: usize, before: usize, beside: usize) -> String {
             } else {
                 format!("{to}_via{i}x")
             };
-            let _ = write!(text, ".names {last} en {next}\n11 1\n");
+            let _ = write!(text, ".names {last} en{i} {next}\n11 1\n");
             last = next;
         }
     };

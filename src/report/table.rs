@@ -125,7 +125,11 @@ fn widths(grid: &Grid, room: usize) -> Vec<usize> {
     }
     let mut least: Vec<usize> = columns()
         .map(|(i, (title, number))| {
-            let whole = if *number { widest(i, &length) } else { widest(i, &word) };
+            let whole = if *number {
+                widest(i, &length)
+            } else {
+                widest(i, &word)
+            };
             whole.max(word(title)).min(UNBROKEN)
         })
         .collect();
