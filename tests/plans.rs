@@ -182,15 +182,27 @@ fn compare(ground: &Ground<'_>, run: &DryRun<'_, '_>, chain: &Chain, what: &str)
     // Operands that equal a result are not replaced and no later than it.
     let latest = signals.filter_map(arrival).max();
     assert_eq!(latest, Some(estimate.chain_after), "{what}: chain depth");
-    // Function.
+    // Function, also of every inner net that stays.
     let mut random = fastrand::Rng::with_seed(3);
     for round in 0..6 {
         let words = words(old, &mut random, round);
-        assert_eq!(
-            results(old, &words),
-            results(new, &words),
-            "{what}: function"
-        );
+        assert_eq!(results(old, &words), results(new, &words), "{what}");
+        let (before, after) = (simulate(old, &words), simulate(new, &words));
+        for net in old.nets() {
+            if let Some(now) = rebuilt.nets[net.index()] {
+                let value = after[now.net.index()];
+                let value = if now.inverted { !value } else { value };
+                assert_eq!(before[net.index()], value, "{what}: {}", old.net_name(net));
+            }
+        }
+    }
+    // A BLIF net that was unread beforehand stays.
+    if !old.has_inverted_edges() {
+        let readers = histogram::reader_counts(old);
+        for net in old.nets().filter(|net| readers[net.index()] == 0) {
+            let now = rebuilt.nets[net.index()];
+            assert!(now.is_some(), "{what}: {}", old.net_name(net));
+        }
     }
 }
 
