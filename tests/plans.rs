@@ -14,8 +14,8 @@ use carrywise::netlist::{
 use carrywise::network::Propagate;
 use carrywise::network::schemes::candidates;
 use carrywise::plan::{
-    DryRun, GateStyle, Ground, NewGates, Request, Settings, SettingsError, Site, earliest,
-    materialise, plan,
+    DryRun, GateStyle, Ground, NewGates, Request, Settings, SettingsError, Site,
+    depth_with_free_carry, earliest, materialise, plan,
 };
 use carrywise::timing::{DelayModel, Timing};
 use generators::{Aig, Cell, Circuit, Generated, Word};
@@ -823,4 +823,21 @@ fn settings_follow_the_netlist_and_refuse_what_it_cannot_have() {
         (settings.gate_inputs, settings.new_gates),
         (3, NewGates::Cover)
     );
+}
+
+/// A ripple adder of XOR/AND/OR cells: with free carries a sum is two gates.
+#[test]
+fn free_carries_leave_the_depth_of_the_cells() {
+    let word = Word::new(generators::Kind::Adder, 16, Cell::PropagateXor);
+    let netlist = blif(&word.generate().circuit);
+    let chains = chains_of(&netlist);
+    let settings = Settings::resolve(Request::new(DelayModel::Unit), &netlist).unwrap();
+    let topology = Topology::of(&netlist);
+    let timing = Timing::of(&netlist, &topology, DelayModel::Unit);
+    let ground = Ground::of(&netlist, &topology, &timing, &settings);
+    let site = Site::of(&ground, &chains[0]).unwrap();
+    assert_eq!(site.own_gates().len(), netlist.gate_count());
+    let free = depth_with_free_carry(&ground, &chains);
+    assert!(timing.longest() > 30);
+    assert_eq!(free.into_values().collect::<Vec<_>>(), [2]);
 }
