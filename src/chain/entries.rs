@@ -43,7 +43,7 @@ pub(super) struct Entries {
 
 impl Entries {
     /// Nominates entries from linear sets and hashes their carries.
-    pub(super) fn of(subject: &Subject, signatures: &Signatures, patterns: Patterns) -> Self {
+    pub(super) fn of(subject: &Subject, signatures: &Signatures, patterns: &Patterns) -> Self {
         let mut entries = Self {
             sum: Vec::new(),
             a: Vec::new(),
@@ -92,7 +92,7 @@ impl Entries {
         }
     }
 
-    fn hash_majorities(&mut self, subject: &Subject, signatures: &Signatures, patterns: Patterns) {
+    fn hash_majorities(&mut self, subject: &Subject, signatures: &Signatures, patterns: &Patterns) {
         let mut running = vec![Running::default(); self.len()];
         let mut first = fixedbitset::FixedBitSet::with_capacity(self.len());
         let mut simulation = Simulation::new(subject, patterns);

@@ -11,7 +11,7 @@ use super::model::{CarryForm, Chain, Kind, Position};
 use super::verify::{Theorem, verify};
 use crate::netlist::{Bit, Driver, NetId, Netlist, Signal, Topology};
 use crate::prove::Effort;
-use crate::subject::{Hash, Literal, NodeId, NodeKind, Patterns, Signatures, Subject};
+use crate::subject::{Hash, Literal, NodeId, NodeKind, Patterns, Signatures, Subject, rare_values};
 use rustc_hash::{FxHashMap, FxHashSet};
 
 /// What to look for, and how hard.
@@ -35,8 +35,12 @@ impl Default for Options {
     }
 }
 
-/// Words of 64 patterns each.
-const WORDS: usize = 48;
+/// Random words of 64 patterns each.
+const RANDOM_WORDS: usize = 32;
+/// A value is rare when no more uniform patterns than this reach it.
+const RARE: u32 = 8;
+/// Directed words, where some node needs them.
+const DIRECTED_WORDS: usize = 16;
 /// Subject nodes one proof may encode.
 const PROOF_NODES: usize = 2_000_000;
 
@@ -65,9 +69,8 @@ pub struct Found {
 /// Finds and proves the carry chains of a netlist.
 pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
     let subject = Subject::of(netlist, topology);
-    let patterns = Patterns::new(options.seed, WORDS);
-    let signatures = Signatures::of(&subject, patterns);
-    let entries = Entries::of(&subject, &signatures, patterns);
+    let (patterns, signatures) = sign(&subject, options.seed);
+    let entries = Entries::of(&subject, &signatures, &patterns);
     let links = Links::of(&entries, &signatures);
     let labels = Labels::of(netlist, &subject);
     let context = Context {
@@ -121,25 +124,38 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
     search.collect()
 }
 
-/// Free and inner nodes whose complement is on some net or port of its own.
-fn inverted_copies(netlist: &Netlist, subject: &Subject) -> FxHashSet<NodeId> {
-    let mut copies = FxHashSet::default();
-    let mut note = |signal: Signal| {
+/// Random patterns, directed ones for the values they hardly reached, and the
+/// signatures under both.
+fn sign(subject: &Subject, seed: u64) -> (Patterns, Signatures) {
+    let mut patterns = Patterns::new(seed, RANDOM_WORDS);
+    let rare = rare_values(subject, &patterns, RARE);
+    if !rare.is_empty() {
+        patterns.direct(subject, &rare, DIRECTED_WORDS);
+    }
+    let signatures = Signatures::of(subject, &patterns);
+    (patterns, signatures)
+}
+
+/// Free nodes whose complement has a net, and whether a port or register shows
+/// it.
+fn inverted_copies(netlist: &Netlist, subject: &Subject) -> FxHashMap<NodeId, bool> {
+    let mut copies = FxHashMap::default();
+    let mut note = |signal: Signal, shown: bool| {
         let literal = subject.of_signal(signal);
         if literal.is_inverted() && matches!(subject.kind(literal.node()), NodeKind::Free(_)) {
-            copies.insert(literal.node());
+            *copies.entry(literal.node()).or_insert(false) |= shown;
         }
     };
     for gate in netlist.gates() {
         if netlist.fan_ins(gate).len() == 1 {
-            note(Signal::plain(netlist.gate_output(gate)));
+            note(Signal::plain(netlist.gate_output(gate)), false);
         }
     }
     for output in netlist.outputs() {
-        note(output.signal);
+        note(output.signal, true);
     }
     for register in netlist.registers() {
-        note(register.input);
+        note(register.input, true);
     }
     copies
 }
@@ -150,7 +166,7 @@ struct Search<'a> {
     context: &'a Context<'a>,
     lookup: &'a Lookup,
     options: Options,
-    inverted_copies: FxHashSet<NodeId>,
+    inverted_copies: FxHashMap<NodeId, bool>,
     theorems: Vec<Theorem>,
     unproven: Vec<Unproven>,
 }
@@ -283,10 +299,14 @@ impl Search<'_> {
             .iter()
             .all(|bits| bits.b.node() == NodeId::FALSE);
         let node = theorem.carry_in.node();
-        if !single || !self.inverted_copies.contains(&node) {
+        let Some(&shown) = self.inverted_copies.get(&node) else {
+            return;
+        };
+        let lowest = theorem.bits[0];
+        // An inverter that no port shows may belong to the cells themselves.
+        if !single || !(shown || self.context.labels.follows(node, lowest.a.node()) == 3) {
             return;
         }
-        let lowest = theorem.bits[0];
         if lowest.a.is_inverted() != theorem.carry_in.is_inverted() {
             return;
         }

@@ -82,9 +82,9 @@ pub struct Built<S> {
 ///
 /// With single-operator gates, `G` of a combine node of `k` parts is an OR of
 /// `k` terms and `P` one AND; a gate wider than the limit is a tree by arrival.
-/// With covers, see [`super::cover`]. `P` is made only where some parent needs
-/// it. A carry no other gate reads is made all the same: what ends up unread is
-/// the sink's to sweep.
+/// With covers a node is one gate, and operands and sums are taken into it as
+/// far as they fit. `P` is made only where some parent needs it. A carry no other
+/// gate reads is made all the same: what ends up unread is the sink's to sweep.
 ///
 /// Panics when the addends do not fit the network, or the network is not
 /// complete.

@@ -4,9 +4,12 @@
 //! levels as in an AND/inverter graph. Inversion is free. Gates are hashed, so
 //! equal ones are one; figures are taken over what given outputs need, so gates
 //! nobody reads do not count. Gates evaluate on 64 input vectors at once.
+//! Invariant: a gate comes after the gates it reads.
 
-use hashbrown::HashMap;
-use rustc_hash::FxBuildHasher;
+use std::hash::{Hash, Hasher};
+
+use hashbrown::HashTable;
+use rustc_hash::FxHasher;
 
 use super::build::GateSink;
 use crate::netlist::Function;
@@ -46,22 +49,27 @@ pub enum XorForm {
     Ands,
 }
 
-#[derive(Clone, PartialEq, Eq, Hash)]
+#[derive(Clone, Copy, PartialEq, Eq, Hash)]
 enum Kind {
     /// The constant 0, or an input.
     Source,
     And,
     Xor,
-    Cover(Function),
+    /// A function, by its place in the list.
+    Cover(u32),
 }
 
 /// Counts gates and delays; see the head of the module.
 pub struct CountingSink {
     xor_form: XorForm,
-    gates: Vec<(Kind, Box<[CountedSignal]>)>,
+    /// Net 0 is the constant 0; every other net is an input or a gate.
+    kinds: Vec<Kind>,
+    pin_ends: Vec<u32>,
+    pins: Vec<CountedSignal>,
     arrivals: Vec<i32>,
     inputs: Vec<u32>,
-    shared: HashMap<(Kind, Box<[CountedSignal]>), u32, FxBuildHasher>,
+    functions: Vec<Function>,
+    shared: HashTable<u32>,
 }
 
 const FALSE: CountedSignal = CountedSignal(0);
@@ -69,21 +77,24 @@ const FALSE: CountedSignal = CountedSignal(0);
 impl CountingSink {
     /// An empty sink.
     pub fn new(xor_form: XorForm) -> Self {
-        Self {
+        let mut sink = Self {
             xor_form,
-            gates: vec![(Kind::Source, Box::default())],
-            arrivals: vec![i32::MIN],
+            kinds: Vec::new(),
+            pin_ends: Vec::new(),
+            pins: Vec::new(),
+            arrivals: Vec::new(),
             inputs: Vec::new(),
-            shared: HashMap::default(),
-        }
+            functions: Vec::new(),
+            shared: HashTable::new(),
+        };
+        sink.push(Kind::Source, &[], i32::MIN);
+        sink
     }
 
     /// A new input, ready at `arrival`.
     pub fn input(&mut self, arrival: i32) -> CountedSignal {
-        let net = self.gates.len() as u32;
+        let net = self.push(Kind::Source, &[], arrival);
         self.inputs.push(net);
-        self.gates.push((Kind::Source, Box::default()));
-        self.arrivals.push(arrival);
         CountedSignal(net << 1)
     }
 
@@ -100,7 +111,7 @@ impl CountingSink {
 
     /// Gates in all, needed or not.
     pub fn gates_made(&self) -> usize {
-        self.gates.len() - 1 - self.inputs.len()
+        self.kinds.len() - 1 - self.inputs.len()
     }
 
     /// Gates the outputs need, a gate of k inputs counted k-1.
@@ -117,7 +128,7 @@ impl CountingSink {
     /// Most gate pins reading one net, among the gates the outputs need; an
     /// output is a reader too.
     pub fn largest_fan_out(&self, outputs: &[CountedSignal]) -> usize {
-        let mut readers = vec![0usize; self.gates.len()];
+        let mut readers = vec![0usize; self.kinds.len()];
         let pins = self.needed(outputs).flatten();
         for signal in pins.chain(outputs).filter(|s| s.net() != 0) {
             readers[signal.net()] += 1;
@@ -128,19 +139,19 @@ impl CountingSink {
     /// The signals' values where `inputs[i]` holds 64 values of the `i`th input.
     pub fn evaluate(&self, inputs: &[u64], signals: &[CountedSignal]) -> Vec<u64> {
         assert_eq!(inputs.len(), self.inputs.len(), "one word for each input");
-        let mut values = vec![0u64; self.gates.len()];
+        let mut values = vec![0u64; self.kinds.len()];
         for (&net, &word) in self.inputs.iter().zip(inputs) {
             values[net as usize] = word;
         }
         let mut words = Vec::new();
-        for (net, (kind, pins)) in self.gates.iter().enumerate() {
+        for (net, &kind) in self.kinds.iter().enumerate() {
             words.clear();
-            words.extend(pins.iter().map(|&pin| value(&values, pin)));
+            words.extend(self.pins_of(net).iter().map(|&pin| value(&values, pin)));
             values[net] = match kind {
                 Kind::Source => continue,
                 Kind::And => words.iter().fold(!0, |all, word| all & word),
                 Kind::Xor => words.iter().fold(0, |sum, word| sum ^ word),
-                Kind::Cover(function) => function.evaluate(&words),
+                Kind::Cover(function) => self.functions[function as usize].evaluate(&words),
             };
         }
         signals.iter().map(|&s| value(&values, s)).collect()
@@ -148,36 +159,81 @@ impl CountingSink {
 
     /// The pins of each gate the outputs need.
     fn needed(&self, outputs: &[CountedSignal]) -> impl Iterator<Item = &[CountedSignal]> {
-        let mut needed = vec![false; self.gates.len()];
+        let mut needed = vec![false; self.kinds.len()];
         for output in outputs {
             needed[output.net()] = true;
         }
         for net in (0..needed.len()).rev() {
             if needed[net] {
-                for pin in &self.gates[net].1 {
+                for pin in self.pins_of(net) {
                     needed[pin.net()] = true;
                 }
             }
         }
-        let gates = self.gates.iter().zip(needed);
+        let gates = (0..needed.len()).filter(|&net| self.kinds[net] != Kind::Source);
         gates
-            .filter(|((kind, _), needed)| *needed && *kind != Kind::Source)
-            .map(|((_, pins), _)| &pins[..])
+            .filter(move |&net| needed[net])
+            .map(|net| self.pins_of(net))
     }
 
-    fn gate(&mut self, kind: Kind, pins: Vec<CountedSignal>) -> CountedSignal {
-        let gate = (kind, pins.into_boxed_slice());
-        if let Some(&net) = self.shared.get(&gate) {
+    /// The function's place; a handful occur, so a search will do.
+    fn function(&mut self, function: Function) -> u32 {
+        let known = self.functions.iter().position(|f| *f == function);
+        let place = known.unwrap_or(self.functions.len());
+        if known.is_none() {
+            self.functions.push(function);
+        }
+        place as u32
+    }
+
+    fn pins_of(&self, net: usize) -> &[CountedSignal] {
+        pins_between(&self.pin_ends, &self.pins, net)
+    }
+
+    /// The gate of that kind and pins, made when there is none yet.
+    fn gate(&mut self, kind: Kind, pins: &[CountedSignal]) -> CountedSignal {
+        let (kinds, ends, all) = (&self.kinds, &self.pin_ends, &self.pins);
+        let hash = hash_of(kind, pins);
+        let equal = |&net: &u32| {
+            kinds[net as usize] == kind && pins_between(ends, all, net as usize) == pins
+        };
+        if let Some(&net) = self.shared.find(hash, equal) {
             return CountedSignal(net << 1);
         }
-        let net = self.gates.len() as u32;
-        let latest = gate.1.iter().map(|&pin| self.arrival(pin)).max();
-        self.arrivals
-            .push(latest.unwrap_or(i32::MIN).saturating_add(1));
-        self.shared.insert(gate.clone(), net);
-        self.gates.push(gate);
+        let latest = pins.iter().map(|&pin| self.arrival(pin)).max();
+        let net = self.push(kind, pins, latest.unwrap_or(i32::MIN).saturating_add(1));
+        let (kinds, ends, all) = (&self.kinds, &self.pin_ends, &self.pins);
+        self.shared.insert_unique(hash, net, |&net| {
+            let net = net as usize;
+            hash_of(kinds[net], pins_between(ends, all, net))
+        });
         CountedSignal(net << 1)
     }
+
+    fn push(&mut self, kind: Kind, pins: &[CountedSignal], arrival: i32) -> u32 {
+        let net = u32::try_from(self.kinds.len())
+            .ok()
+            .filter(|n| n >> 31 == 0);
+        let net = net.expect("fewer than 2^31 nets");
+        self.kinds.push(kind);
+        self.pins.extend_from_slice(pins);
+        let end = u32::try_from(self.pins.len()).expect("fewer than 2^32 pins");
+        self.pin_ends.push(end);
+        self.arrivals.push(arrival);
+        net
+    }
+}
+
+fn pins_between<'a>(ends: &[u32], pins: &'a [CountedSignal], net: usize) -> &'a [CountedSignal] {
+    let start = net.checked_sub(1).map_or(0, |before| ends[before]);
+    &pins[start as usize..ends[net] as usize]
+}
+
+fn hash_of(kind: Kind, pins: &[CountedSignal]) -> u64 {
+    let mut hasher = FxHasher::default();
+    kind.hash(&mut hasher);
+    pins.hash(&mut hasher);
+    hasher.finish()
 }
 
 fn value(values: &[u64], signal: CountedSignal) -> u64 {
@@ -202,7 +258,7 @@ impl GateSink for CountingSink {
             _ if opposite || pins.contains(&FALSE) => FALSE,
             [] => !FALSE,
             [only] => only,
-            _ => self.gate(Kind::And, pins),
+            _ => self.gate(Kind::And, &pins),
         }
     }
 
@@ -217,18 +273,20 @@ impl GateSink for CountingSink {
         let signal = match (left.min(right), left.max(right)) {
             (low, high) if low == high => FALSE,
             (FALSE, high) => high,
-            (low, high) => self.gate(Kind::Xor, vec![low, high]),
+            (low, high) => self.gate(Kind::Xor, &[low, high]),
         };
         if inverted { !signal } else { signal }
     }
 
     fn cover(&mut self, function: &Function, inputs: &[CountedSignal]) -> CountedSignal {
+        assert!((3..=6).contains(&inputs.len()), "a cover has 3 to 6 inputs");
         let mut function = function.clone();
         for (i, _) in inputs.iter().enumerate().filter(|(_, s)| s.is_inverted()) {
             function = function.flip(i);
         }
-        let pins = inputs.iter().map(|s| s.positive()).collect();
-        self.gate(Kind::Cover(function), pins)
+        let pins: Vec<_> = inputs.iter().map(|s| s.positive()).collect();
+        let kind = Kind::Cover(self.function(function));
+        self.gate(kind, &pins)
     }
 
     fn arrival(&self, signal: CountedSignal) -> i32 {

@@ -12,6 +12,7 @@ mod counting;
 mod cover;
 mod gates;
 pub mod schemes;
+mod table;
 
 pub use build::{Addends, Built, GateSink, Limits, Propagate, build};
 pub use carry_network::{CarryNetwork, Node, NodeId, Span};

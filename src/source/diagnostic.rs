@@ -66,7 +66,7 @@ pub struct Diagnostic {
     /// What to do; may be empty in a warning that needs no action.
     pub help: String,
     /// A second line that matters, and what it is.
-    pub second: Option<(u32, String)>,
+    pub second: Option<Box<(u32, String)>>,
 }
 
 impl Diagnostic {
@@ -105,7 +105,7 @@ impl Diagnostic {
     /// Adds the second place.
     #[must_use]
     pub fn and(mut self, line: u32, label: impl Into<String>) -> Self {
-        self.second = Some((line, label.into()));
+        self.second = Some(Box::new((line, label.into())));
         self
     }
 
@@ -169,7 +169,7 @@ impl Diagnostic {
                 None,
             );
         }
-        if let Some((line, label)) = &self.second {
+        if let Some((line, label)) = self.second.as_deref() {
             group = group.element(Origin::path(format!("{file}:{line}")));
             let kind = AnnotationKind::Context;
             group = with_excerpt(group, source, *line, None, 0, kind, Some(label));
@@ -182,8 +182,27 @@ impl Diagnostic {
         } else {
             Renderer::plain()
         };
-        renderer.render(&[group])
+        without_empty_origins(&renderer.render(&[group]))
     }
+}
+
+/// An excerpt may begin inside its line, so its place is given apart from it, as
+/// an origin of its own; the renderer then marks the excerpt itself with an origin
+/// that is empty. Leaves those lines out.
+fn without_empty_origins(rendered: &str) -> String {
+    let is_empty_origin = |line: &str| {
+        let styles = line.split('\u{1b}').enumerate();
+        let text = styles.map(|(i, part)| match part.split_once('m') {
+            Some((_, text)) if i > 0 => text,
+            _ => part,
+        });
+        text.collect::<String>().trim() == ":::"
+    };
+    let kept: Vec<_> = rendered
+        .split('\n')
+        .filter(|l| !is_empty_origin(l))
+        .collect();
+    kept.join("\n")
 }
 
 fn with_excerpt<'a>(
@@ -222,7 +241,7 @@ impl fmt::Display for Diagnostic {
             Severity::Warning => "warning",
         };
         write!(f, ": {severity}: {}", self.message)?;
-        if let Some((line, label)) = &self.second {
+        if let Some((line, label)) = self.second.as_deref() {
             write!(f, " (line {line}: {label})")?;
         }
         if !self.help.is_empty() {

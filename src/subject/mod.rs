@@ -15,4 +15,4 @@ pub use cuts::{LinearSet, linear_sets};
 pub use graph::{Literal, NodeId, NodeKind, Subject};
 pub use patterns::Patterns;
 pub(crate) use signature::Running;
-pub use signature::{Hash, Signatures, Simulation};
+pub use signature::{Hash, Signatures, Simulation, rare_values};

@@ -8,7 +8,7 @@
 //! not grow with their number. A node and its complement share one hash, since
 //! every hash is normalised by the node's value under the first pattern.
 
-use super::graph::{NodeId, NodeKind, Subject};
+use super::graph::{Literal, NodeId, NodeKind, Subject};
 use super::patterns::Patterns;
 use fixedbitset::FixedBitSet;
 
@@ -43,14 +43,14 @@ impl Running {
 /// One pass over the patterns: the current word of every node.
 pub struct Simulation<'a> {
     subject: &'a Subject,
-    patterns: Patterns,
+    patterns: &'a Patterns,
     next: usize,
     words: Vec<u64>,
 }
 
 impl<'a> Simulation<'a> {
     /// Starts before the first word.
-    pub fn new(subject: &'a Subject, patterns: Patterns) -> Self {
+    pub fn new(subject: &'a Subject, patterns: &'a Patterns) -> Self {
         Self {
             subject,
             patterns,
@@ -71,7 +71,7 @@ impl<'a> Simulation<'a> {
                 NodeKind::False => 0,
                 NodeKind::Free(_) => input(),
                 NodeKind::And(x, y) => {
-                    let value = |literal: super::Literal| {
+                    let value = |literal: Literal| {
                         let mask = if literal.is_inverted() { !0 } else { 0 };
                         self.words[literal.node().index()] ^ mask
                     };
@@ -85,6 +85,35 @@ impl<'a> Simulation<'a> {
     }
 }
 
+/// The literals that the uniform random patterns make true at most `most`
+/// times: what a signature could hardly tell from a constant or a neighbour.
+pub fn rare_values(subject: &Subject, patterns: &Patterns, most: u32) -> Vec<Literal> {
+    let mut ones = vec![0u32; subject.node_count()];
+    let mut simulation = Simulation::new(subject, patterns);
+    let mut all = 0;
+    for word in 0..patterns.words() {
+        let Some(words) = simulation.advance() else {
+            break;
+        };
+        if !patterns.is_uniform(word) {
+            continue;
+        }
+        all += 64;
+        for (count, word) in ones.iter_mut().zip(words) {
+            *count += word.count_ones();
+        }
+    }
+    let gates = subject
+        .nodes()
+        .filter(|&node| matches!(subject.kind(node), NodeKind::And(..) | NodeKind::Xor(..)));
+    gates
+        .filter_map(|node| {
+            let count = ones[node.index()];
+            (count <= most || all - count <= most).then(|| node.literal().xor(count > most))
+        })
+        .collect()
+}
+
 /// The signatures of all nodes.
 pub struct Signatures {
     hashes: Vec<Hash>,
@@ -94,7 +123,7 @@ pub struct Signatures {
 
 impl Signatures {
     /// Simulates all patterns once.
-    pub fn of(subject: &Subject, patterns: Patterns) -> Self {
+    pub fn of(subject: &Subject, patterns: &Patterns) -> Self {
         let mut running = vec![Running::default(); subject.node_count()];
         let mut first = FixedBitSet::with_capacity(subject.node_count());
         let mut ones = Running::default();

@@ -351,15 +351,16 @@ fn sequencer() -> Model {
     model
 }
 
-/// Averages two levels with a lookahead adder, but takes the average only when
-/// a serially checked frame is sound: the parity chain is the longest path.
+/// Adds a level to the one before with a lookahead adder (the pair's mean is the
+/// sum read one bit higher), but takes it only when a serially checked frame is
+/// sound: the parity chain is the longest path.
 pub fn surge_filter() -> Circuit {
     let mut c = Circuit::new("surge_filter");
     let level = c.input_bus("level", 8);
     let frame = c.input_bus("frame", 28);
     let enable = c.input_bus("enable", 4);
     let held = c.register_bus("held", 8);
-    let mean = c.register_bus("mean", 8);
+    let pair = c.register_bus("pair", 9);
 
     let mut odd = c.xor(frame[0], frame[1]);
     for (i, &bit) in frame.iter().enumerate().skip(2) {
@@ -384,7 +385,7 @@ pub fn surge_filter() -> Circuit {
     }
     let carry = added.carry_out.expect("asked for");
     c.set_name(carry, "sum[8]");
-    let halved: Vec<Net> = added.sums[1..].iter().copied().chain([carry]).collect();
+    let whole: Vec<Net> = added.sums.iter().copied().chain([carry]).collect();
     let hold = |c: &mut Circuit, registers: &[Net], fresh: &[Net], name: &str| {
         let mut next = Vec::new();
         for (i, (&q, &new)) in registers.iter().zip(fresh).enumerate() {
@@ -396,8 +397,8 @@ pub fn surge_filter() -> Circuit {
         c.set_next(registers, &next);
     };
     hold(&mut c, &held, &level, "held");
-    hold(&mut c, &mean, &halved, "mean");
-    c.outputs = mean;
+    hold(&mut c, &pair, &whole, "pair");
+    c.outputs = pair;
     c.output(accept, "accepted");
     c.drop_unread();
     c

@@ -185,10 +185,11 @@ impl<'a> Cursor<'a> {
             self.skip(1);
             Ok(())
         } else {
-            Err(self.fault(
-                &format!("one blank and {before}"),
-                "exactly one blank stands between two numbers",
-            ))
+            let help = match self.rest.first() {
+                None | Some(b'\n') => "the line is cut short",
+                _ => "exactly one blank stands between two numbers",
+            };
+            Err(self.fault(&format!("one blank and {before}"), help))
         }
     }
 

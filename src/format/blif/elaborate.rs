@@ -15,9 +15,12 @@ use crate::netlist::{
 };
 use crate::source::{Diagnostic, Place, Source, quote};
 
-/// Nets and pins a gate may bring on average before a hierarchy is refused.
-const NETS_PER_GATE: u64 = 4;
+/// What each gate that is allowed may bring of other things, on average, before
+/// a hierarchy is refused; a hierarchy can repeat those without a single gate.
+const OTHERS_PER_GATE: u64 = 4;
 const PINS_PER_GATE: u64 = 16;
+/// So many of each are always allowed.
+const ALWAYS: u64 = 1 << 20;
 /// Most registers, boxes and instances, whatever the limit on gates.
 const MOST_IDS: u64 = 1 << 31;
 
@@ -67,30 +70,21 @@ fn check_size(
     let written = |count: fn(&Model) -> usize| -> u64 {
         design.models.iter().map(|model| count(model) as u64).sum()
     };
-    let beyond = |per_gate: u64, written: u64| max_gates.saturating_mul(per_gate).max(written);
-    let own = written(|m| m.nets.len());
+    let limit = |per_gate: u64, written: u64| {
+        let derived = max_gates.saturating_mul(per_gate).max(ALWAYS);
+        derived.max(written)
+    };
+    let nets = limit(OTHERS_PER_GATE, written(|m| m.nets.len()));
     let pins = written(|m| m.pins.len() + m.bindings.len());
-    let latches = written(|m| m.latches.len());
-    let instances = written(|m| m.instances.len());
+    let latches = limit(OTHERS_PER_GATE, written(|m| m.latches.len()));
+    let instances = limit(OTHERS_PER_GATE, written(|m| m.instances.len()));
     let limits = [
         ("gates", size.gates, max_gates),
-        (
-            "registers",
-            size.registers,
-            beyond(1, latches).min(MOST_IDS),
-        ),
-        (
-            "black boxes",
-            size.boxes,
-            beyond(1, instances).min(MOST_IDS),
-        ),
-        (
-            "instances",
-            size.instances,
-            beyond(1, instances).min(MOST_IDS),
-        ),
-        ("nets", size.nets, beyond(NETS_PER_GATE, own)),
-        ("gate inputs", size.pins, beyond(PINS_PER_GATE, pins)),
+        ("registers", size.registers, latches.min(MOST_IDS)),
+        ("black boxes", size.boxes, instances.min(MOST_IDS)),
+        ("instances", size.instances, instances.min(MOST_IDS)),
+        ("nets", size.nets, nets),
+        ("gate inputs", size.pins, limit(PINS_PER_GATE, pins)),
     ];
     let top = &design.models[design.top];
     for (what, count, limit) in limits {

@@ -2,7 +2,7 @@
 //! files; clauses B1 and following of `grammar-notes/blif.md`.
 //!
 //! Four steps, each a file: physical lines to logical lines (`lines`), a logical
-//! line to a statement (`grammar`), statements to models (`parse`), models to a
+//! line to a statement (`grammar`), statements to models (`parse`, `fill`), models to a
 //! linked design whose size is known (`link`), the design to a flat netlist
 //! (`elaborate`).
 //!
@@ -11,6 +11,7 @@
 
 mod cover;
 mod elaborate;
+mod fill;
 mod grammar;
 mod lines;
 mod link;

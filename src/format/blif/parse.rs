@@ -1,18 +1,18 @@
 //! Logical lines to models.
 //!
-//! One pass: names are interned straight from the bytes of the file and turned
-//! into net numbers of the model at once, so a model's nets need no map. A faulty
-//! line is told and left out, and reading goes on, up to a bound; nothing is
-//! built when there was an error.
+//! One pass over the lines. This file knows which section of the file a line
+//! stands in and whether rows may follow; what a statement adds to its model is in
+//! `fill`. A faulty line is told and left out, and reading goes on, up to a bound;
+//! nothing is built when there was an error.
 //!
 //! The default rules of the format are kept here: `.model`, `.end` are optional,
 //! `.end` is implied by the next `.model` and by the end of the file. Ports that
 //! are not listed at all are inferred later, when directions are known.
 
 use super::cover::{Remembered, Rows};
-use super::grammar::{self, Called, Fault, LatchLine, Statement, Words};
+use super::grammar::{self, Fault, Statement, Words};
 use super::lines::Lines;
-use super::model::{Binding, Gate, Instance, Latch, Local, Model, Port};
+use super::model::{Local, Model};
 use super::tally::{Oddity, Tally};
 use crate::netlist::{NameId, NetlistBuilder};
 use crate::source::{Diagnostic, Place, Source, quote};
@@ -45,7 +45,7 @@ enum Section {
 
 /// Whether rows may follow.
 #[derive(Clone, Copy, PartialEq, Eq)]
-enum Block {
+pub(super) enum Block {
     Closed,
     /// Rows of a `.names` on this line.
     Open(u32),
@@ -54,25 +54,26 @@ enum Block {
 }
 
 // Marks of a model's nets in its port lists.
-const INPUT: u8 = 1;
-const OUTPUT: u8 = 2;
-const CLOCK: u8 = 4;
+pub(super) const INPUT: u8 = 1;
+pub(super) const OUTPUT: u8 = 2;
+pub(super) const CLOCK: u8 = 4;
 
-struct Reader<'a> {
-    source: &'a Source,
-    builder: NetlistBuilder,
-    models: Vec<Model>,
+/// The state of reading one file.
+pub(super) struct Reader<'a> {
+    pub(super) source: &'a Source,
+    pub(super) builder: NetlistBuilder,
+    pub(super) models: Vec<Model>,
     by_name: FxHashMap<NameId, usize>,
     /// By name: number of models begun when it was last seen, and its net there.
-    locals: Vec<(u32, Local)>,
+    pub(super) locals: Vec<(u32, Local)>,
     /// By net of the open model: the port lists it is in.
-    marks: Vec<u8>,
+    pub(super) marks: Vec<u8>,
     section: Section,
-    block: Block,
-    rows: Rows,
-    remembered: Remembered,
-    errors: Vec<Diagnostic>,
-    tally: Tally,
+    pub(super) block: Block,
+    pub(super) rows: Rows,
+    pub(super) remembered: Remembered,
+    pub(super) errors: Vec<Diagnostic>,
+    pub(super) tally: Tally,
 }
 
 /// Reads all models of a file.
@@ -96,7 +97,12 @@ pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
         match lines.advance() {
             Ok(true) => reader.line(&lines),
             Ok(false) => break,
-            Err(error) => reader.errors.push(error),
+            Err(error) => {
+                reader.close_block();
+                // What should have been continued follows: not a fault of its own.
+                reader.block = Block::Faulty;
+                reader.errors.push(error);
+            }
         }
         if reader.errors.len() >= MOST_ERRORS || reader.too_many_names(&lines) {
             break;
@@ -109,6 +115,14 @@ pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
     if let Some((line, count)) = lines.glued_comments {
         let place = || Place::line(line);
         reader.tally.count(Oddity::GluedComment, b"", count, place);
+    }
+    if reader.errors.is_empty() && reader.models.is_empty() {
+        reader.errors.push(Diagnostic::error(
+            &source.name,
+            Place::File,
+            "expected a model, found only words that are not read",
+            "check that this is the file that was meant",
+        ));
     }
     if reader.errors.is_empty() {
         Ok(Contents {
@@ -164,7 +178,7 @@ impl Reader<'_> {
     }
 
     #[cold]
-    fn fault(&mut self, lines: &Lines<'_>, fault: Fault) {
+    pub(super) fn fault(&mut self, lines: &Lines<'_>, fault: Fault) {
         self.errors.push(Diagnostic::error(
             &self.source.name,
             lines.place(fault.at, fault.length),
@@ -270,7 +284,7 @@ impl Reader<'_> {
     }
 
     /// The open model; begins the unnamed one where there is none.
-    fn model(&mut self, line: u32) -> &mut Model {
+    pub(super) fn model(&mut self, line: u32) -> &mut Model {
         if self.section == Section::Start {
             let name = self.builder.name(self.source.stem().as_bytes());
             self.push_model(name, line);
@@ -357,8 +371,8 @@ impl Reader<'_> {
         }
     }
 
+    /// Counts the word; it begins no model, so that it may stand before the first.
     fn unknown(&mut self, lines: &Lines<'_>, word: &[u8]) {
-        self.model(lines.line());
         let place = || Place::line(lines.line());
         self.tally.count(Oddity::Word, word, 1, place);
     }
@@ -366,168 +380,5 @@ impl Reader<'_> {
     fn singular(&mut self, lines: &Lines<'_>, word: &[u8]) {
         let place = || Place::line(lines.line());
         self.tally.count(Oddity::Singular, word, 1, place);
-    }
-
-    /// The net of a name in the open model.
-    #[inline]
-    fn net(&mut self, name: &[u8]) -> Local {
-        let id = self.builder.name(name);
-        let index = id.0 as usize;
-        if index >= self.locals.len() {
-            self.locals.resize(self.builder.names().len(), (0, 0));
-        }
-        let epoch = self.models.len() as u32;
-        let slot = &mut self.locals[index];
-        if slot.0 != epoch {
-            let model = &mut self.models[epoch as usize - 1];
-            *slot = (epoch, model.nets.len() as Local);
-            model.nets.push(id);
-        }
-        slot.1
-    }
-
-    fn ports(&mut self, lines: &Lines<'_>, words: Words<'_>, list: u8) {
-        let line = lines.line();
-        self.model(line);
-        for word in words {
-            let net = self.net(word);
-            let index = net as usize;
-            if index >= self.marks.len() {
-                self.marks.resize(index + 1, 0);
-            }
-            let mark = self.marks[index];
-            self.marks[index] |= list;
-            // A clock is an input port, listed a second time or not.
-            let same = if list == OUTPUT {
-                OUTPUT
-            } else {
-                INPUT | CLOCK
-            };
-            if mark & same == 0 {
-                let model = self.model(line);
-                let port = Port { net, line };
-                if list == OUTPUT {
-                    model.outputs.push(port);
-                } else {
-                    model.inputs.push(port);
-                }
-            } else if mark & list != 0 && list != CLOCK {
-                let place = || lines.place(grammar::offset(lines.text(), word), word.len());
-                self.tally.count(Oddity::RepeatedPort, word, 1, place);
-            }
-        }
-    }
-
-    fn names(&mut self, lines: &Lines<'_>, text: &[u8], words: Words<'_>) {
-        self.model(lines.line());
-        let mut count = 0;
-        for word in words {
-            let net = self.net(word);
-            self.model(lines.line()).pins.push(net);
-            count += 1;
-        }
-        if count == 0 {
-            self.block = Block::Faulty;
-            let help = "write `.names`, the inputs, and the output last";
-            return self.fault(lines, grammar::missing(text, "the gate's output", help));
-        }
-        self.rows.open(count - 1);
-        self.block = Block::Open(lines.line());
-    }
-
-    /// Ends the rows of the open `.names`, if there is one.
-    fn close_block(&mut self) {
-        let block = std::mem::replace(&mut self.block, Block::Closed);
-        let Block::Open(line) = block else { return };
-        if self.rows.is_empty() && self.rows.inputs() > 0 {
-            let place = || Place::line(line);
-            self.tally.count(Oddity::NoRows, b"", 1, place);
-        }
-        let function = self.remembered.function(&self.rows, &mut self.builder);
-        let model = self.model(line);
-        let end = model.pins.len();
-        match u32::try_from(end) {
-            Ok(end) => model.gates.push(Gate {
-                function,
-                end,
-                line,
-            }),
-            Err(_) => self.too_long(line, "gate pins"),
-        }
-    }
-
-    #[cold]
-    fn too_long(&mut self, line: u32, what: &str) {
-        self.errors.push(Diagnostic::error(
-            &self.source.name,
-            Place::line(line),
-            format!("expected fewer than {} {what} in one model", u32::MAX),
-            "netlists beyond this size are not read",
-        ));
-    }
-
-    fn latch(&mut self, line: u32, latch: &LatchLine<'_>) {
-        self.model(line);
-        let latch = Latch {
-            input: self.net(latch.input),
-            output: self.net(latch.output),
-            trigger: latch.trigger,
-            control: latch.control.map(|name| self.net(name)),
-            initial: latch.initial,
-            line,
-        };
-        self.model(line).latches.push(latch);
-    }
-
-    fn instance(
-        &mut self,
-        lines: &Lines<'_>,
-        text: &[u8],
-        called: Called,
-        model_name: &[u8],
-        words: Words<'_>,
-    ) {
-        let line = lines.line();
-        self.model(line);
-        let model = self.builder.name(model_name);
-        let mut bare = 0;
-        for word in words {
-            // A latch cell names its control and initial value without `=`.
-            if called == Called::LatchCell && !word.contains(&b'=') && bare < 2 {
-                bare += 1;
-                if bare == 1 && word != b"NIL" {
-                    let formal = self.builder.name(b"");
-                    let actual = self.net(word);
-                    self.model(line).bindings.push(Binding { formal, actual });
-                }
-                continue;
-            }
-            match grammar::binding(text, word) {
-                Ok((formal, actual)) => {
-                    let formal = self.builder.name(formal);
-                    let actual = self.net(actual);
-                    self.model(line).bindings.push(Binding { formal, actual });
-                }
-                Err(fault) => self.fault(lines, fault),
-            }
-        }
-        let ordinals = &mut self.model(line).ordinals;
-        let ordinal = ordinals.entry(model).or_insert(0);
-        *ordinal += 1;
-        let suffix = format!("_{ordinal}");
-        let name = self.builder.name(&[model_name, suffix.as_bytes()].concat());
-        let open = self.model(line);
-        let gates_before = open.gates.len() as u32;
-        match u32::try_from(open.bindings.len()) {
-            Ok(end) => open.instances.push(Instance {
-                called,
-                model,
-                name,
-                line,
-                gates_before,
-                end,
-            }),
-            Err(_) => self.too_long(line, "connections"),
-        }
     }
 }

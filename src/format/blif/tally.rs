@@ -114,7 +114,11 @@ impl Entry {
                     "{subject} is not a word that is read here: {} skipped",
                     plural(n, "line", "lines")
                 ),
-                "it changes nothing in what is reported",
+                if self.subject == b".search" {
+                    "copy the models of the file it names into this one"
+                } else {
+                    "the rest of the file is read as if the lines were not there"
+                },
             ),
             Oddity::Singular => (
                 format!(

@@ -2,12 +2,12 @@
 //!
 //! Deterministic: the order of [`all`], then valency, extra levels or group size
 //! ascending; a network equal to an earlier one is left out. Bounded: above
-//! [`MOST_LOG_LINEAR`] positions only schemes of linear size remain, and flat
-//! lookahead stops at its own cap, being cubic.
+//! [`MOST_LOG_LINEAR`] positions only schemes of linear size remain, each at its
+//! default settings, and flat lookahead stops at its own cap, being cubic.
 
 use super::{CarryNetwork, Growth, Scheme, Settings, all, flat_lookahead, group_lookahead};
 
-/// The widest chain a scheme of n·log n size is proposed for.
+/// The widest chain a scheme of n·log n size, or any variation, is proposed for.
 pub const MOST_LOG_LINEAR: usize = 4096;
 
 /// The highest valency proposed, whatever the gate inputs.
@@ -76,6 +76,9 @@ fn fits(scheme: &Scheme, positions: usize) -> bool {
 
 fn variations(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Settings> {
     let mut list = vec![Settings::default()];
+    if positions > MOST_LOG_LINEAR {
+        return list;
+    }
     if scheme.takes.valency {
         let most = gate_inputs.clamp(2, MOST_VALENCY);
         list = vary(&list, 2..=most, |settings, valency| Settings {
