@@ -22,12 +22,15 @@
 //! and do not know each other; `prove` stands on `subject`; `chain` joins
 //! `subject` and `prove`; `plan` joins `chain`, `network` and `timing`.
 
+pub mod audit;
 pub mod chain;
+pub mod cli;
 pub mod format;
 pub mod netlist;
 pub mod network;
 pub mod plan;
 pub mod prove;
+pub mod report;
 pub mod source;
 pub mod subject;
 pub mod timing;

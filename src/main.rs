@@ -1,3 +1,7 @@
-//! The carrywise command.
+//! The carrywise command; everything it does is in [`carrywise::cli`].
 
-fn main() {}
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    carrywise::cli::run()
+}

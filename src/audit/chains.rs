@@ -1,0 +1,398 @@
+//! Proven chains into the record: order, ids, names, place, times, feedback.
+//!
+//! Chains are ordered widest first, then by their lowest operand net, which is
+//! the same on every run. A fingerprint is made from ports and registers only,
+//! so that it survives a revision that renumbers lines and internal nets.
+
+use super::carried::{Cones, operand_nets};
+use super::names::{operand, wire};
+use super::rebuilds;
+use super::record::{BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, Place, Wire};
+use crate::chain::{BuiltAs, CarryForm, Chain, Kind};
+use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
+use crate::plan::ChainPlan;
+use crate::timing::{NEVER, Timing};
+use rustc_hash::{FxHashMap, FxHashSet};
+use sha2::{Digest, Sha256};
+use std::cmp::Reverse;
+use std::fmt::Write;
+
+/// Gates looked through between a sum and the register it may be stored in.
+const FEEDBACK_GATES: usize = 32;
+
+/// Puts chains into the order of their ids.
+pub fn ordered(mut chains: Vec<Chain>) -> Vec<Chain> {
+    let first_net = |chain: &Chain| operand_nets(chain).min();
+    chains.sort_by_cached_key(|chain| (Reverse(bits(chain)), first_net(chain)));
+    chains
+}
+
+/// The id of the chain at `index`.
+pub fn id(index: usize) -> String {
+    format!("C{}", index + 1)
+}
+
+/// Positions with an operand bit that is not constant.
+fn bits(chain: &Chain) -> u64 {
+    let counts = |bit: Bit| matches!(bit, Bit::Signal(_));
+    let positions = chain.positions.iter();
+    positions
+        .filter(|bits| counts(bits.a) || counts(bits.b))
+        .count() as u64
+}
+
+/// What the records of all chains are made from.
+pub struct Sources<'a> {
+    netlist: &'a Netlist,
+    topology: &'a Topology,
+    timing: &'a Timing,
+    cones: &'a Cones,
+    readers: Vec<u32>,
+    /// Output ports and register inputs that show a net, by net.
+    shown_by: FxHashMap<NetId, String>,
+    /// By carry net, the gates that read it, once per pin.
+    pins: FxHashMap<NetId, Vec<GateId>>,
+}
+
+impl<'a> Sources<'a> {
+    /// Prepares them for `chains`.
+    pub fn of(
+        netlist: &'a Netlist,
+        topology: &'a Topology,
+        timing: &'a Timing,
+        cones: &'a Cones,
+        chains: &[Chain],
+    ) -> Self {
+        let all = || chains.iter().flat_map(|chain| &chain.positions);
+        let results: FxHashSet<NetId> = all()
+            .flat_map(|bits| bits.sums.iter().chain(&bits.carries))
+            .map(|signal| signal.net)
+            .collect();
+        let mut shown_by = FxHashMap::default();
+        for output in netlist.outputs() {
+            if results.contains(&output.signal.net) {
+                shown_by
+                    .entry(output.signal.net)
+                    .or_insert_with(|| format!("out {}", netlist.output_name(output)));
+            }
+        }
+        for register in netlist.registers() {
+            if results.contains(&register.input.net) {
+                shown_by
+                    .entry(register.input.net)
+                    .or_insert_with(|| format!("reg {}", netlist.net_name(register.output)));
+            }
+        }
+        let mut pins: FxHashMap<NetId, Vec<_>> = all()
+            .flat_map(|bits| &bits.carries)
+            .map(|signal| (signal.net, Vec::new()))
+            .collect();
+        if !pins.is_empty() {
+            for gate in netlist.gates() {
+                for net in netlist.fan_ins(gate) {
+                    if let Some(readers) = pins.get_mut(net) {
+                        readers.push(gate);
+                    }
+                }
+            }
+        }
+        let readers = if chains.is_empty() {
+            Vec::new()
+        } else {
+            histogram::reader_counts(netlist)
+        };
+        Self {
+            netlist,
+            topology,
+            timing,
+            cones,
+            readers,
+            shown_by,
+            pins,
+        }
+    }
+
+    /// The records of all chains, in the order of [`ordered`], each with its plan.
+    pub fn records(&self, chains: &[Chain], plans: &[ChainPlan]) -> Vec<ChainRecord> {
+        let registers: FxHashMap<NetId, usize> = self
+            .netlist
+            .registers()
+            .iter()
+            .enumerate()
+            .map(|(i, register)| (register.output, i))
+            .collect();
+        let mut prints = FxHashMap::default();
+        chains
+            .iter()
+            .enumerate()
+            .map(|(index, chain)| self.record(index, chain, &plans[index], &registers, &mut prints))
+            .collect()
+    }
+
+    fn record(
+        &self,
+        index: usize,
+        chain: &Chain,
+        plan: &ChainPlan,
+        registers: &FxHashMap<NetId, usize>,
+        prints: &mut FxHashMap<String, u32>,
+    ) -> ChainRecord {
+        let netlist = self.netlist;
+        let name = |signal: Signal| netlist.signal_name(signal);
+        let depth = ChainDepth {
+            arrives: i64::from(plan.arrives),
+            leaves: i64::from(plan.leaves),
+            carries: plan.carries.iter().map(|at| at.map(i64::from)).collect(),
+            exercised: None,
+        };
+        let own: FxHashSet<_> = self.cones.gates[index].iter().copied().collect();
+        ChainRecord {
+            id: id(index),
+            fingerprint: self.fingerprint(chain, prints),
+            array: None,
+            kind: chain.kind.word().to_owned(),
+            bits: bits(chain),
+            operands: operands(netlist, chain),
+            carry_in: carry_in(netlist, chain),
+            carry_form: match chain.carry_form {
+                CarryForm::Carry => "carry",
+                CarryForm::Borrow => "borrow",
+            }
+            .to_owned(),
+            carry_out: self.carry_out(chain),
+            carry_taps: self.carry_taps(chain, &own),
+            sums: chain
+                .positions
+                .iter()
+                .map(|bits| name(bits.sums[0]))
+                .collect(),
+            result: None,
+            relation: None,
+            signed: None,
+            mode: None,
+            feedback: self.feedback(chain, registers),
+            duplicates: None,
+            built_as: self.built_as(index, chain, &depth),
+            proven: true,
+            place: self.place(chain),
+            depth,
+            on_longest_path: self.on_longest_path(chain),
+            slack: plan.slack.map(|slack| i64::from(slack.ticks)),
+            not_planned: rebuilds::not_planned(plan),
+            proposals: rebuilds::proposals(netlist, plan),
+        }
+    }
+
+    fn carry_out(&self, chain: &Chain) -> Option<String> {
+        let carry = *chain.positions.last()?.carries.first()?;
+        // A borrow is the complement of the carry of a + ~b + 1.
+        let shown = match chain.carry_form {
+            CarryForm::Carry => carry,
+            CarryForm::Borrow => !carry,
+        };
+        chain.has_carry_out.then(|| self.netlist.signal_name(shown))
+    }
+
+    /// Carries below the last with a reader outside the chain.
+    fn carry_taps(&self, chain: &Chain, own: &FxHashSet<GateId>) -> Vec<String> {
+        let below = chain.positions.len() - 1;
+        let carries = chain.positions[..below]
+            .iter()
+            .flat_map(|bits| &bits.carries);
+        carries
+            .filter(|carry| {
+                let gates = &self.pins[&carry.net];
+                let outside = gates.iter().any(|gate| !own.contains(gate));
+                // Readers that are no gates: outputs, registers, boxes.
+                outside || self.readers[carry.net.index()] as usize > gates.len()
+            })
+            .map(|&carry| self.netlist.signal_name(carry))
+            .collect()
+    }
+
+    fn built_as(&self, index: usize, chain: &Chain, depth: &ChainDepth) -> BuiltAsRecord {
+        let (name, nearest, detail) = match chain.built_as {
+            BuiltAs::Ripple => (
+                "ripple",
+                Some("ripple".to_owned()),
+                "every carry is made from the carry just below it",
+            ),
+            BuiltAs::Mixed => (
+                "mixed",
+                None,
+                "not every carry is made from the carry just below it",
+            ),
+        };
+        let outputs = self.cones.gates[index].iter();
+        let readers = outputs.map(|&gate| self.readers[self.netlist.gate_output(gate).index()]);
+        BuiltAsRecord {
+            name: name.to_owned(),
+            nearest,
+            group: None,
+            levels: Some((depth.leaves - depth.arrives).max(0)),
+            largest_fan_out: readers.max().map(u64::from),
+            detail: detail.to_owned(),
+        }
+    }
+
+    /// The deepest instance that holds every sum and carry, and their lines.
+    fn place(&self, chain: &Chain) -> Place {
+        let (mut lines, mut common): (Option<(u32, u32)>, Option<Vec<_>>) = (None, None);
+        let mut last_scope: Option<ScopeId> = None;
+        for bits in &chain.positions {
+            for signal in bits.sums.iter().chain(&bits.carries) {
+                let Driver::Gate(gate) = self.netlist.driver(signal.net) else {
+                    continue;
+                };
+                let line = self.netlist.gate_line(gate);
+                if line > 0 {
+                    let (low, high) = lines.unwrap_or((line, line));
+                    lines = Some((low.min(line), high.max(line)));
+                }
+                let scope = self.netlist.gate_scope(gate);
+                if last_scope == Some(scope) {
+                    continue;
+                }
+                last_scope = Some(scope);
+                let path = self.netlist.scope_path(scope);
+                common = Some(match common {
+                    None => path,
+                    Some(mut known) => {
+                        let shared = known.iter().zip(&path).take_while(|(a, b)| a == b);
+                        known.truncate(shared.count());
+                        known
+                    }
+                });
+            }
+        }
+        let names = self.netlist.names();
+        let instance = common.unwrap_or_default();
+        Place {
+            instance: instance
+                .into_iter()
+                .map(|name| names.text(name).into_owned())
+                .collect(),
+            line_first: lines.map(|(low, _)| u64::from(low)),
+            line_last: lines.map(|(_, high)| u64::from(high)),
+        }
+    }
+
+    fn on_longest_path(&self, chain: &Chain) -> bool {
+        let positions = chain.positions.iter();
+        let mut results = positions.flat_map(|bits| bits.carries.iter().chain(&bits.sums));
+        results.any(|signal| is_on_longest_path(self.timing, signal.net))
+    }
+
+    /// Whether every operand bit that changes is a register that stores the sum
+    /// of its own position, directly or through a few gates.
+    fn feedback(&self, chain: &Chain, registers: &FxHashMap<NetId, usize>) -> Option<Feedback> {
+        [false, true].into_iter().find_map(|second| {
+            let mut outputs = Vec::new();
+            for bits in &chain.positions {
+                let Bit::Signal(signal) = (if second { bits.b } else { bits.a }) else {
+                    continue;
+                };
+                let register = &self.netlist.registers()[*registers.get(&signal.net)?];
+                if !self.stores(register.input.net, &bits.sums) {
+                    return None;
+                }
+                outputs.push(self.netlist.net_name(register.output));
+            }
+            let role = match chain.kind {
+                Kind::Adder | Kind::Subtractor => "accumulator",
+                Kind::Incrementer | Kind::Decrementer => "counter",
+            };
+            (!outputs.is_empty()).then(|| Feedback {
+                role: role.to_owned(),
+                registers: outputs,
+            })
+        })
+    }
+
+    fn stores(&self, net: NetId, sums: &[Signal]) -> bool {
+        let mut nets = vec![net];
+        let mut at = 0;
+        while at < nets.len() && at < FEEDBACK_GATES {
+            let net = nets[at];
+            at += 1;
+            if sums.iter().any(|sum| sum.net == net) {
+                return true;
+            }
+            if let Driver::Gate(gate) = self.netlist.driver(net)
+                && !self.topology.is_cut(net)
+            {
+                for fan_in in self.netlist.fan_ins(gate) {
+                    if !nets.contains(fan_in) {
+                        nets.push(*fan_in);
+                    }
+                }
+            }
+        }
+        false
+    }
+
+    /// Sixteen hexadecimal digits of SHA-256 over kind, ports and registers, and
+    /// an ordinal that tells equal ones apart.
+    fn fingerprint(&self, chain: &Chain, prints: &mut FxHashMap<String, u32>) -> String {
+        let mut points = format!("{}\n", chain.kind.word());
+        for bits in &chain.positions {
+            let source = |bit: Bit| match bit {
+                Bit::Constant(value) => u8::from(value).to_string(),
+                Bit::Signal(signal) => match self.netlist.driver(signal.net) {
+                    Driver::Input(_) => format!("in {}", self.netlist.signal_name(signal)),
+                    Driver::Register(_) => format!("reg {}", self.netlist.signal_name(signal)),
+                    _ => "-".to_owned(),
+                },
+            };
+            let shown = bits.sums.iter().find_map(|sum| self.shown_by.get(&sum.net));
+            let shown = shown.map_or("-", String::as_str);
+            let _ = writeln!(points, "{}\t{}\t{shown}", source(bits.a), source(bits.b));
+        }
+        let ordinal = prints.entry(points.clone()).or_insert(0);
+        let _ = writeln!(points, "{ordinal}");
+        *ordinal += 1;
+        hexadecimal(&Sha256::digest(points.as_bytes())[..8])
+    }
+}
+
+/// Whether a longest path of the block runs through `net`.
+pub fn is_on_longest_path(timing: &Timing, net: NetId) -> bool {
+    let at = timing.arrivals.by_net[net.index()];
+    let tail = timing.tails.by_net[net.index()];
+    at != NEVER && tail != NEVER && at + tail == timing.longest()
+}
+
+/// Bytes in hexadecimal digits.
+pub fn hexadecimal(bytes: &[u8]) -> String {
+    bytes.iter().fold(String::new(), |mut text, byte| {
+        let _ = write!(text, "{byte:02x}");
+        text
+    })
+}
+
+fn operands(netlist: &Netlist, chain: &Chain) -> Vec<Operand> {
+    let a: Vec<Bit> = chain.positions.iter().map(|bits| bits.a).collect();
+    let b = chain.positions.iter().map(|bits| bits.b);
+    let mut operands = vec![operand(netlist, &a)];
+    match chain.kind {
+        Kind::Adder => operands.push(operand(netlist, &b.collect::<Vec<_>>())),
+        // As it is subtracted: what is added is its complement.
+        Kind::Subtractor => operands.push(operand(netlist, &b.map(complement).collect::<Vec<_>>())),
+        Kind::Incrementer | Kind::Decrementer => {}
+    }
+    operands
+}
+
+fn complement(bit: Bit) -> Bit {
+    match bit {
+        Bit::Constant(value) => Bit::Constant(!value),
+        Bit::Signal(signal) => Bit::Signal(!signal),
+    }
+}
+
+fn carry_in(netlist: &Netlist, chain: &Chain) -> Option<Wire> {
+    match (chain.kind, chain.carry_in) {
+        (Kind::Adder, Bit::Constant(false)) => None,
+        (_, bit) => Some(wire(netlist, bit)),
+    }
+}

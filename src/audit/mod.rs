@@ -1,0 +1,232 @@
+//! The audit: from a netlist to the one record that every report renders.
+//!
+//! This room calls the rooms below in order (topology, health, timing, chains,
+//! plans), puts what they say into the record's words, and judges: verdict and
+//! findings. It changes nothing and cannot fail on a valid netlist, except when
+//! what was asked for does not fit the netlist's format.
+
+mod carried;
+mod chains;
+mod faults;
+pub mod findings;
+mod free_carry;
+mod gate_words;
+mod measures;
+mod names;
+mod rebuilds;
+pub mod record;
+mod verdict;
+pub mod words;
+
+use crate::chain;
+use crate::format::Format;
+use crate::netlist::health::Health;
+use crate::netlist::{Netlist, Topology};
+use crate::plan::{self, ChainPlan, Ground, Request, Settings, SettingsError};
+use crate::timing::{DelayModel, Timing};
+use carried::{Carried, Cones};
+use faults::Findings;
+use measures::ChainMap;
+use record::{
+    Audit, DelayModelFacts, NetlistFacts, SCHEMA, Seen, Settings as SettingsRecord, Tool,
+    UnprovenRecord,
+};
+use sha2::{Digest, Sha256};
+use verdict::Evidence;
+
+/// What an audit does not settle.
+const CAUTION: &str = "carrywise counts gates and estimates what a rebuild would bring and cost; \
+    it does not sign off timing. Sign-off belongs to the timing flow qualified for the foundry's \
+    process or for the device, and where the block can hurt someone, to the functional-safety \
+    practice it falls under.";
+
+/// Where the netlist came from.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct Origin {
+    /// File name as given.
+    pub file: String,
+    /// The format it was in.
+    pub format: Format,
+    /// SHA-256 of the bytes; see [`digest`].
+    pub sha256: String,
+}
+
+/// How to audit.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct Options {
+    /// Delay model and limits on new gates.
+    pub request: Request,
+    /// What to look for, and how hard.
+    pub chains: chain::Options,
+}
+
+impl Default for Options {
+    fn default() -> Self {
+        Self {
+            request: Request::new(DelayModel::Unit),
+            chains: chain::Options::default(),
+        }
+    }
+}
+
+/// SHA-256 of an input, as the record gives it.
+pub fn digest(bytes: &[u8]) -> String {
+    chains::hexadecimal(&Sha256::digest(bytes))
+}
+
+/// Audits one netlist.
+///
+/// # Errors
+/// When the limits asked for on new gates do not fit the netlist's format.
+pub fn audit(
+    netlist: &Netlist,
+    origin: &Origin,
+    options: &Options,
+) -> Result<Audit, SettingsError> {
+    let settings = Settings::resolve(options.request, netlist)?;
+    let model = settings.model;
+    let unit = model.unit_word();
+    let topology = Topology::of(netlist);
+    let health = Health::of(netlist, &topology);
+    let timing = Timing::of(netlist, &topology, model);
+    let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
+    let chains = chains::ordered(chains);
+    let plans = plans(netlist, &topology, &timing, &settings, &chains);
+
+    let carried = Carried::of(netlist, &chains);
+    let cones = Cones::of(netlist, &topology, &chains);
+    let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains);
+    let mut records = sources.records(&chains, &plans);
+    rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
+    let longest = i64::from(timing.longest());
+    let recommended_set = rebuilds::recommended_set(&records, &plans, longest, unit);
+    let unproven: Vec<UnprovenRecord> = unproven
+        .iter()
+        .map(|candidate| unproven_record(netlist, candidate))
+        .collect();
+
+    let kind = timing.longest_kind();
+    let path = kind.map_or_else(Vec::new, |kind| timing.path_of(netlist, &topology, kind));
+    let longest_path = kind.map(|kind| (kind, path.as_slice()));
+    let ids: Vec<String> = (0..chains.len()).map(chains::id).collect();
+    let map = || ChainMap {
+        carried: &carried,
+        cones: &cones,
+        ids: &ids,
+    };
+    let verdict = Evidence {
+        netlist,
+        topology: &topology,
+        timing: &timing,
+        chains: &chains,
+        records: &records,
+        map: map(),
+        undecided: unproven.len(),
+        min_bits: options.chains.min_bits,
+        longest: longest_path,
+        set: &recommended_set,
+        unit,
+    }
+    .verdict();
+
+    let mut findings = Findings::new(netlist);
+    findings.add_health(&health);
+    findings.add_boxes();
+    findings.add_cut_path(&topology, longest_path);
+    findings.add_ripples(&timing, &chains, &records);
+    findings.add_unproven(&unproven);
+    findings.add_crowds();
+    let (findings, findings_left_out) = findings.sorted();
+
+    Ok(Audit {
+        schema: SCHEMA.to_owned(),
+        tool: Tool {
+            name: env!("CARGO_PKG_NAME").to_owned(),
+            version: env!("CARGO_PKG_VERSION").to_owned(),
+        },
+        netlist: netlist_facts(netlist, origin),
+        settings: settings_record(&settings, options),
+        seen: Seen {
+            gates_with_function: netlist.gate_count() as u64,
+            gates_without_function: netlist.boxes().len() as u64,
+            nets_cut: topology.cut.count_ones(..) as u64,
+            chains_proven: records.len() as u64,
+            chains_unproven: unproven.len() as u64,
+        },
+        verdict,
+        depth: measures::depth(netlist, &topology, &timing, model, longest_path, &map()),
+        fan_in: measures::fan_in(netlist),
+        fan_out: measures::fan_out(netlist),
+        chains: records,
+        recommended_set,
+        arrays: Vec::new(),
+        recurrences_not_listed: 0,
+        unproven,
+        findings,
+        findings_left_out,
+        assumed: Vec::new(),
+        caution: CAUTION.to_owned(),
+    })
+}
+
+fn plans(
+    netlist: &Netlist,
+    topology: &Topology,
+    timing: &Timing,
+    settings: &Settings,
+    chains: &[chain::Chain],
+) -> Vec<ChainPlan> {
+    if chains.is_empty() {
+        return Vec::new();
+    }
+    let ground = Ground::of(netlist, topology, timing, settings);
+    chains
+        .iter()
+        .map(|chain| plan::plan(&ground, chain))
+        .collect()
+}
+
+fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {
+    NetlistFacts {
+        file: origin.file.clone(),
+        format: origin.format.word().to_owned(),
+        model: netlist
+            .model()
+            .map(|name| netlist.names().text(name).into_owned()),
+        sha256: origin.sha256.clone(),
+        inputs: netlist.inputs().len() as u64,
+        outputs: netlist.outputs().len() as u64,
+        registers: netlist.registers().len() as u64,
+        gates: netlist.gate_count() as u64,
+        black_boxes: netlist.boxes().len() as u64,
+    }
+}
+
+fn settings_record(settings: &Settings, options: &Options) -> SettingsRecord {
+    SettingsRecord {
+        delay_model: DelayModelFacts {
+            name: settings.model.name().to_owned(),
+            unit: settings.model.unit_word().to_owned(),
+        },
+        new_gates: settings.new_gates.word().to_owned(),
+        new_gates_reason: settings.new_gates_reason.clone(),
+        gate_inputs: settings.gate_inputs as u64,
+        gate_inputs_reason: settings.gate_inputs_reason.clone(),
+        min_bits: options.chains.min_bits as u64,
+        effort: options.chains.effort,
+        patterns_seed: options.chains.seed,
+        assumptions_sha256: None,
+    }
+}
+
+fn unproven_record(netlist: &Netlist, candidate: &chain::Unproven) -> UnprovenRecord {
+    let a: Vec<_> = candidate.operands.iter().map(|&(a, _)| a).collect();
+    let b: Vec<_> = candidate.operands.iter().map(|&(_, b)| b).collect();
+    let operands = [a, b].map(|bits| names::operand(netlist, &bits).name);
+    UnprovenRecord {
+        bits: candidate.bits as u64,
+        operands: operands.into(),
+        reason: candidate.reason.to_owned(),
+        effort: candidate.effort,
+    }
+}

@@ -1,0 +1,353 @@
+//! The verdict: does carry limit this block?
+//!
+//! Carry is the limit when the block would be shallower if the carries of the
+//! proven chains were free (see [`super::free_carry`]), for then no path as long
+//! as the longest avoids them. Otherwise no proven chain is the limit. Where a loop,
+//! a net with several drivers or an instance without a function lies on a way
+//! from a start to an end, a longer path may be hidden behind it; where a
+//! candidate was left undecided, a chain may be. Then the verdict is unknown,
+//! and says what hid it and what holds for the rest.
+
+use super::carried::Cones;
+use super::free_carry;
+use super::measures::ChainMap;
+use super::rebuilds::scheme_phrase;
+use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
+use super::words::{counted, depth_in, grouped, grouped_signed, listed};
+use crate::chain::Chain;
+use crate::netlist::{NetId, Netlist, Topology};
+use crate::timing::{KindTiming, NEVER, PathStep, Timing, end_arrival, end_net, ends};
+use std::cmp::Reverse;
+use std::collections::BTreeMap;
+
+/// What the verdict is made from.
+pub struct Evidence<'a> {
+    /// The netlist.
+    pub netlist: &'a Netlist,
+    /// Its order and cuts.
+    pub topology: &'a Topology,
+    /// Its timing.
+    pub timing: &'a Timing,
+    /// The proven chains.
+    pub chains: &'a [Chain],
+    /// Their records.
+    pub records: &'a [ChainRecord],
+    /// Their gates and nets.
+    pub map: ChainMap<'a>,
+    /// Candidates left undecided.
+    pub undecided: usize,
+    /// Chains below this width were left out.
+    pub min_bits: usize,
+    /// The longest path of the block.
+    pub longest: Option<(&'a KindTiming, &'a [PathStep])>,
+    /// What is recommended.
+    pub set: &'a RecommendedSet,
+    /// Unit of depths.
+    pub unit: &'a str,
+}
+
+impl Evidence<'_> {
+    /// The verdict.
+    pub fn verdict(&self) -> Verdict {
+        let by_path_kind = self.kinds();
+        let longest = i64::from(self.timing.longest());
+        let free = by_path_kind
+            .iter()
+            .map(|kind| kind.depth_if_carry_were_free);
+        let free = free.max().unwrap_or(0);
+        let carry = free < longest;
+        let hidden = self.hidden(carry);
+        let (chain, seen) = if carry {
+            self.carry_sentence(longest, free)
+        } else {
+            (None, self.elsewhere_sentence(longest))
+        };
+        let (limit, sentence) = match hidden {
+            None if carry => (Limit::Carry, seen),
+            None => (Limit::Elsewhere, seen),
+            Some(hidden) => (
+                Limit::Unknown,
+                format!(
+                    "Unknown, because {hidden}. As far as can be seen, {}",
+                    lower(&seen)
+                ),
+            ),
+        };
+        Verdict {
+            limit,
+            chain,
+            sentence,
+            by_path_kind,
+        }
+    }
+
+    fn kinds(&self) -> Vec<PathKindFacts> {
+        let mut free: BTreeMap<_, i32> = BTreeMap::new();
+        for (start, _) in self.timing.by_start() {
+            let by_net = free_carry::arrivals(
+                self.netlist,
+                self.topology,
+                &self.timing.delays,
+                start,
+                self.chains,
+                self.map.carried,
+            );
+            for end in ends(self.netlist, self.topology) {
+                let at = end_arrival(self.netlist, &self.timing.delays, &by_net, end);
+                let deepest = free.entry((start, end.class())).or_insert(NEVER);
+                *deepest = (*deepest).max(at);
+            }
+        }
+        let mut kinds: Vec<&KindTiming> = self.timing.kinds.iter().collect();
+        kinds.sort_by_key(|kind| Reverse(kind.longest));
+        kinds
+            .into_iter()
+            .map(|timing| {
+                let kind = timing.kind;
+                let path = self.timing.path_of(self.netlist, self.topology, timing);
+                let levels = levels_by_chain(&path, self.map.cones);
+                PathKindFacts {
+                    path_kind: kind.to_string(),
+                    longest: i64::from(timing.longest),
+                    levels_in_carries: levels.values().sum(),
+                    depth_if_carry_were_free: free
+                        .get(&(kind.start, kind.end))
+                        .map_or(0, |&at| i64::from(at)),
+                    ends_at_longest: timing.ends_at_longest as u64,
+                    next_below: timing.next_below.map(i64::from),
+                }
+            })
+            .collect()
+    }
+
+    fn carry_sentence(&self, longest: i64, free: i64) -> (Option<String>, String) {
+        let Some((kind, path)) = self.longest else {
+            return (None, String::new());
+        };
+        let levels = levels_by_chain(path, self.map.cones);
+        let Some((&main, &own)) = levels
+            .iter()
+            .max_by_key(|&(&chain, &n)| (n, Reverse(chain)))
+        else {
+            let text = format!(
+                "Carry limits this block: with free carries it would be {free} instead of {} deep.",
+                depth_in(longest, self.unit)
+            );
+            return (None, text);
+        };
+        let record = &self.records[main as usize];
+        let others = levels.len() - 1;
+        let rest: i64 = levels.values().sum::<i64>() - own;
+        let share = if own == longest {
+            format!("all {} of the longest path", depth_in(longest, self.unit))
+        } else {
+            let own = grouped_signed(own);
+            format!(
+                "{own} of the {} of the longest path",
+                depth_in(longest, self.unit)
+            )
+        };
+        let together = match others {
+            0 => String::new(),
+            1 => format!(", another chain {} of them", grouped_signed(rest)),
+            n => format!(
+                ", {} {} of them",
+                counted(n as u64, "more chain", "more chains"),
+                grouped_signed(rest)
+            ),
+        };
+        let text = format!(
+            "Carry limits this block: {} takes {share} ({}){together}; {}.",
+            chain_phrase(record),
+            kind.kind,
+            self.rebuild_clause(longest),
+        );
+        (Some(record.id.clone()), text)
+    }
+
+    fn rebuild_clause(&self, longest: i64) -> String {
+        let RecommendedSet {
+            proposals,
+            block_depth,
+            ..
+        } = self.set;
+        if proposals.is_empty() {
+            return if self.records.iter().all(|chain| chain.proposals.is_empty()) {
+                "no rebuild was tried".to_owned()
+            } else {
+                "no single rebuild that was tried makes the block shallower".to_owned()
+            };
+        }
+        let (mut added, mut removed, mut widest) = (0, 0, 0);
+        let mut how = Vec::new();
+        for chain in self.records {
+            for proposal in &chain.proposals {
+                if !proposals.contains(&format!("{}/{}", chain.id, proposal.id)) {
+                    continue;
+                }
+                added += proposal.gates_added;
+                removed += proposal.gates_removed;
+                widest = widest.max(proposal.largest_fan_in);
+                how.push(format!(
+                    "{} rebuilt as {}",
+                    chain.id,
+                    scheme_phrase(proposal)
+                ));
+            }
+        }
+        if block_depth.after >= longest {
+            return "no single rebuild that was tried makes the block shallower".to_owned();
+        }
+        let cost = match added as i64 - removed as i64 {
+            0 => "as many gates as now".to_owned(),
+            n if n > 0 => counted(n as u64, "gate more", "gates more"),
+            n => counted(n.unsigned_abs(), "gate fewer", "gates fewer"),
+        };
+        format!(
+            "with {} the block is {} deep instead of {}, for {cost}, no new gate wider than {}",
+            listed(&how),
+            depth_in(block_depth.after, self.unit),
+            grouped_signed(longest),
+            counted(widest, "input", "inputs"),
+        )
+    }
+
+    fn elsewhere_sentence(&self, longest: i64) -> String {
+        let Some((kind, path)) = self.longest.filter(|_| longest > 0) else {
+            return "No proven carry chain limits this block: no path passes a gate that takes \
+                    time."
+                .to_owned();
+        };
+        let from = path.first().map(|step| self.netlist.net_name(step.net));
+        let (from, to) = (from.unwrap_or_default(), kind.end.describe(self.netlist));
+        let deep = depth_in(longest, self.unit);
+        let kind = kind.kind;
+        let through: i64 = levels_by_chain(path, self.map.cones).values().sum();
+        if self.records.is_empty() {
+            format!(
+                "No proven carry chain limits this block: none of {} or more was found; the \
+                 longest path ({kind}, {deep}) runs from {from} to {to}.",
+                counted(self.min_bits as u64, "bit", "bits")
+            )
+        } else if through == 0 {
+            format!(
+                "No proven carry chain limits this block: the longest path ({kind}, {deep}, from \
+                 {from} to {to}) runs beside every one."
+            )
+        } else {
+            format!(
+                "No proven carry chain limits this block: the longest path ({kind}, {deep}, from \
+                 {from} to {to}) spends {} in carries, but with all carries free the block would \
+                 be as deep.",
+                counted(through.unsigned_abs(), "level", "levels")
+            )
+        }
+    }
+
+    /// What could hide a longer path or a chain, in words.
+    fn hidden(&self, carry: bool) -> Option<String> {
+        let tails = &self.timing.tails.by_net;
+        let reaches_an_end = |net: &NetId| tails[net.index()] != NEVER;
+        let mut parts = Vec::new();
+        let loops = self.topology.loops.iter();
+        match loops.filter(|nets| nets.iter().any(reaches_an_end)).count() {
+            0 => {}
+            1 => parts.push("a loop without a register is cut".to_owned()),
+            n => parts.push(format!(
+                "{} loops without a register are cut",
+                grouped(n as u64)
+            )),
+        }
+        let contended = self.netlist.contended().iter();
+        match contended.filter(|each| reaches_an_end(&each.net)).count() {
+            0 => {}
+            1 => parts.push("a net with several drivers is cut".to_owned()),
+            n => parts.push(format!(
+                "{} nets with several drivers are cut",
+                grouped(n as u64)
+            )),
+        }
+        let arrivals = &self.timing.arrivals.by_net;
+        let boxes = self.netlist.boxes().iter().filter(|each| {
+            let reached = each.inputs.iter().any(|net| arrivals[net.index()] != NEVER);
+            reached && each.outputs.iter().any(reaches_an_end)
+        });
+        match boxes.count() {
+            0 => {}
+            1 => {
+                parts.push("a path may run through an instance without a known function".to_owned())
+            }
+            n => parts.push(format!(
+                "paths may run through {} instances without a known function",
+                grouped(n as u64)
+            )),
+        }
+        if !carry && self.undecided > 0 {
+            parts.push(match self.undecided {
+                1 => "a candidate for a carry chain was left undecided".to_owned(),
+                n => format!(
+                    "{} candidates for carry chains were left undecided",
+                    grouped(n as u64)
+                ),
+            });
+        }
+        (!parts.is_empty()).then(|| listed(&parts))
+    }
+}
+
+/// A chain in a sentence: what it computes, its id, width, kind and build.
+pub fn chain_phrase(record: &ChainRecord) -> String {
+    let width = grouped(record.bits);
+    let article = match width.as_str() {
+        "11" | "18" => "an",
+        text if text.starts_with('8') => "an",
+        _ => "a",
+    };
+    let built = match record.built_as.name.as_str() {
+        "mixed" => "of mixed build".to_owned(),
+        name => format!("built as {name}"),
+    };
+    format!(
+        "{} ({}, {article} {width}-bit {} {built})",
+        record.formula(),
+        record.id,
+        record.kind
+    )
+}
+
+/// Levels of a path that lie in each chain's gates.
+fn levels_by_chain(path: &[PathStep], cones: &Cones) -> BTreeMap<u32, i64> {
+    let mut levels = BTreeMap::new();
+    for pair in path.windows(2) {
+        let [before, step] = pair else { continue };
+        if let Some(chain) = step.gate.and_then(|gate| cones.chain_of(gate)) {
+            *levels.entry(chain).or_insert(0) += i64::from(step.arrival - before.arrival);
+        }
+    }
+    levels.retain(|_, n| *n > 0);
+    levels
+}
+
+/// The nets a path may be cut at: its start, or the gate its end names.
+pub fn cut_on(
+    netlist: &Netlist,
+    topology: &Topology,
+    kind: &KindTiming,
+    path: &[PathStep],
+) -> Option<NetId> {
+    let start = path.first().map(|step| step.net);
+    if let Some(net) = start.filter(|&net| topology.is_cut(net)) {
+        return Some(net);
+    }
+    let last = path.last().map(|step| step.net);
+    end_net(netlist, kind.end)
+        .or(last)
+        .filter(|&net| topology.is_cut(net))
+}
+
+fn lower(sentence: &str) -> String {
+    let mut letters = sentence.chars();
+    letters.next().map_or_else(String::new, |first| {
+        first.to_lowercase().chain(letters).collect()
+    })
+}

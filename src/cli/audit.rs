@@ -1,0 +1,210 @@
+//! Runs `audit`: every file read, audited and reported, one after another. A
+//! file that fails does not stop the others.
+
+use super::Status;
+use super::options::AuditArguments;
+use super::targets::{self, Target};
+use super::terminal::{colour_on_stderr, complain, page, say};
+use crate::audit::record::Audit;
+use crate::audit::{self, Origin};
+use crate::format::{self, Parsed};
+use crate::report::{self, Form, MOST_CHARACTERS, Page};
+use crate::source::{self, Diagnostic, Place, Source};
+use std::fs::File;
+use std::io::{self, BufWriter, ErrorKind, Write};
+use std::panic::{AssertUnwindSafe, catch_unwind};
+use std::path::{Path, PathBuf};
+
+/// Fewest characters for one netlist when several share a Markdown document.
+const FEWEST_CHARACTERS: usize = 4_000;
+
+/// Runs the command.
+pub fn run(arguments: &AuditArguments) -> Status {
+    let stdin = arguments.files.iter().filter(|file| is_stdin(file));
+    if stdin.count() > 1 {
+        complain("`-` is given twice; standard input can be read once only");
+        return Status::Unusable;
+    }
+    let named: Vec<PathBuf> = arguments
+        .files
+        .iter()
+        .filter(|f| !is_stdin(f))
+        .cloned()
+        .collect();
+    let mut targets = match targets::open(&arguments.report, &named) {
+        Ok(targets) => targets,
+        Err(error) => {
+            complain(&format!("{error:#}"));
+            return Status::Unusable;
+        }
+    };
+    let share = (MOST_CHARACTERS / arguments.files.len()).max(FEWEST_CHARACTERS);
+    let page = Page {
+        characters: share.min(MOST_CHARACTERS),
+        ..page()
+    };
+    let mut stdout = Stdout::new(arguments.form.form());
+    let mut status = Status::Done;
+    for file in &arguments.files {
+        // A fault of ours in one netlist is told as such, and the others go on.
+        let audited = catch_unwind(AssertUnwindSafe(|| audit_file(file, arguments)));
+        let audited = audited.unwrap_or_else(|_| {
+            complain(&format!(
+                "{}: a fault of carrywise itself, told above; the netlist is not to blame",
+                shown(file)
+            ));
+            Err(Status::Fault)
+        });
+        let written = audited.and_then(|audit| write(&audit, page, &mut stdout, &mut targets));
+        if let Err(worse) = written {
+            status = status.max(worse);
+        }
+    }
+    if let Err(worse) = stdout.finish() {
+        status = status.max(worse);
+    }
+    for target in targets {
+        if let Err(error) = target.finish() {
+            complain(&format!("{error:#}"));
+            status = status.max(Status::Unusable);
+        }
+    }
+    status
+}
+
+fn is_stdin(file: &Path) -> bool {
+    file == Path::new("-")
+}
+
+/// A file name as it may be shown.
+fn shown(file: &Path) -> String {
+    source::escape(file.to_string_lossy().as_bytes())
+}
+
+fn audit_file(file: &Path, arguments: &AuditArguments) -> Result<Audit, Status> {
+    let colour = colour_on_stderr();
+    let name = file.to_string_lossy().into_owned();
+    let source = load(file, &name).map_err(|error| {
+        let nothing = Source {
+            name: name.clone(),
+            bytes: Vec::new(),
+        };
+        let text = format!("cannot read the file: {error}");
+        let help = "check its name and that it may be read";
+        say(&Diagnostic::error(&name, Place::File, text, help).render(&nothing, colour));
+        Status::Unusable
+    })?;
+    let parsed = format::read(&source, &arguments.reading()).map_err(|errors| {
+        for error in &errors {
+            say(&error.render(&source, colour));
+        }
+        Status::Unusable
+    })?;
+    let Parsed {
+        netlist,
+        format,
+        warnings,
+    } = parsed;
+    if !arguments.quiet {
+        for warning in &warnings {
+            say(&warning.render(&source, colour));
+        }
+    }
+    let origin = Origin {
+        file: name,
+        format,
+        sha256: audit::digest(&source.bytes),
+    };
+    // The text is not needed any more, and can be as large as the netlist.
+    drop(source);
+    audit::audit(&netlist, &origin, &arguments.auditing()).map_err(|error| {
+        complain(&format!("{}: {error}", shown(file)));
+        Status::Unusable
+    })
+}
+
+fn load(file: &Path, name: &str) -> io::Result<Source> {
+    if is_stdin(file) {
+        source::read(name, io::stdin().lock())
+    } else {
+        source::read(name, File::open(file)?)
+    }
+}
+
+fn write(
+    audit: &Audit,
+    page: Page,
+    stdout: &mut Stdout,
+    targets: &mut Vec<Target>,
+) -> Result<(), Status> {
+    let mut written = stdout.add(audit, page);
+    // A target that cannot be written is dropped, and the old file stays.
+    targets.retain_mut(|target| match target.add(audit, page) {
+        Ok(()) => true,
+        Err(error) => {
+            complain(&format!("{error:#}"));
+            written = Err(Status::Unusable);
+            false
+        }
+    });
+    written
+}
+
+/// Standard output. When its reader has gone, nothing more is written and
+/// nothing is said about it.
+struct Stdout {
+    form: Form,
+    out: BufWriter<io::Stdout>,
+    documents: usize,
+    closed: bool,
+}
+
+impl Stdout {
+    fn new(form: Form) -> Self {
+        Self {
+            form,
+            out: BufWriter::new(io::stdout()),
+            documents: 0,
+            closed: false,
+        }
+    }
+
+    fn add(&mut self, audit: &Audit, page: Page) -> Result<(), Status> {
+        if self.closed {
+            return Ok(());
+        }
+        let separator: &[u8] = match self.form {
+            Form::Table | Form::Markdown if self.documents > 0 => b"\n",
+            _ => b"",
+        };
+        self.documents += 1;
+        let written = self
+            .out
+            .write_all(separator)
+            .and_then(|()| report::write(audit, self.form, page, &mut self.out))
+            .and_then(|()| self.out.flush());
+        self.settle(written)
+    }
+
+    fn finish(mut self) -> Result<(), Status> {
+        if self.closed {
+            return Ok(());
+        }
+        let flushed = self.out.flush();
+        self.settle(flushed)
+    }
+
+    fn settle(&mut self, written: io::Result<()>) -> Result<(), Status> {
+        match written {
+            Ok(()) => Ok(()),
+            Err(error) => {
+                self.closed = true;
+                if error.kind() == ErrorKind::BrokenPipe {
+                    return Ok(());
+                }
+                complain(&format!("cannot write to standard output: {error}"));
+                Err(Status::Unusable)
+            }
+        }
+    }
+}

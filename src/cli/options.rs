@@ -1,0 +1,183 @@
+//! The command line as typed: clap definitions and what they mean below.
+//!
+//! No clap type leaves this room; each stage gets its own small options value.
+
+use crate::audit;
+use crate::chain;
+use crate::format::ReadOptions;
+use crate::plan::{NewGates, Request};
+use crate::report::Form;
+use crate::timing::DelayModel;
+use clap::{Args, Parser, Subcommand, ValueEnum};
+use std::path::PathBuf;
+
+/// Finds, proves and re-plans the carry chains of a gate-level netlist.
+///
+/// carrywise reads a BLIF or AIGER netlist, finds the carry chains in it, proves
+/// what it found, and says whether carry limits the block, how each adder or
+/// counter is built, and what a lookahead rebuild would bring and cost.
+#[derive(Parser, Debug)]
+#[command(
+    name = "carrywise",
+    version,
+    max_term_width = 100,
+    after_help = "Example:\n  carrywise audit tide_logger.blif",
+    after_long_help = "Examples:\n  \
+        carrywise audit tide_logger.blif\n  \
+        carrywise audit old/*.blif --report review.md --report record.yaml\n  \
+        carrywise explain ripple-on-longest-path\n\n\
+        Exit status: 0 done; 1 what was asked to hold does not; 2 an input or the command line\n\
+        could not be used; 4 a fault of carrywise itself. Several files give the worst of theirs."
+)]
+pub struct CommandLine {
+    /// What to do.
+    #[command(subcommand)]
+    pub command: Command,
+}
+
+/// The commands.
+#[derive(Subcommand, Debug)]
+pub enum Command {
+    /// Audit netlists: depth, proven carry chains, what a rebuild would bring
+    #[command(after_help = AUDIT_EXAMPLES)]
+    Audit(AuditArguments),
+    /// Say what a finding means and what to do about it
+    #[command(after_help = "Example:\n  carrywise explain net-driven-twice")]
+    Explain {
+        /// The rule, as a finding names it; all rules are listed without one
+        rule: Option<String>,
+    },
+}
+
+const AUDIT_EXAMPLES: &str = "Examples:\n  \
+    carrywise audit tide_logger.blif\n  \
+    carrywise audit tide_logger.aig --delay pairs --as markdown\n  \
+    zcat tide_logger.blif.gz | carrywise audit - --as json --report review.md";
+
+/// What `audit` takes.
+#[derive(Args, Debug)]
+pub struct AuditArguments {
+    /// BLIF or AIGER files, told apart by content; `-` is standard input
+    #[arg(required = true, value_name = "FILE")]
+    pub files: Vec<PathBuf>,
+
+    /// Form of the report on standard output
+    #[arg(long = "as", value_name = "FORM", value_enum, default_value = "table")]
+    pub form: FormWord,
+
+    /// Also write the report to PATH; .md, .yaml and .json say in which form. May be repeated
+    #[arg(long, value_name = "PATH")]
+    pub report: Vec<PathBuf>,
+
+    /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates
+    #[arg(long, value_name = "MODEL", value_enum, default_value = "unit")]
+    pub delay: DelayWord,
+
+    /// Most inputs of one new gate [default: the widest gate of the netlist, at most 4 for
+    /// single-operator and 6 for cover; 2 for AIGER]
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(2..))]
+    pub gate_inputs: Option<u64>,
+
+    /// What one new gate may be: `single-operator` is one product or one exclusive-or, `cover` any
+    /// function [default: cover where the netlist uses such functions of three or more inputs]
+    #[arg(long, value_name = "KIND", value_enum)]
+    pub new_gates: Option<NewGatesWord>,
+
+    /// The model that is the design [default: the first of the file]
+    #[arg(long, value_name = "MODEL")]
+    pub top: Option<String>,
+
+    /// Leave out chains of fewer bits than this
+    #[arg(long, value_name = "N", default_value_t = 4,
+          value_parser = clap::value_parser!(u64).range(1..=1 << 32))]
+    pub min_bits: u64,
+
+    /// Refuse a netlist that has more gates than this once its hierarchy is flat
+    #[arg(long, value_name = "N", default_value_t = 100_000_000)]
+    pub max_gates: u64,
+
+    /// Solver conflicts allowed per question of a proof
+    #[arg(long, value_name = "N", default_value_t = 100_000)]
+    pub effort: u64,
+
+    /// No warnings on standard error; errors still
+    #[arg(long, short)]
+    pub quiet: bool,
+}
+
+/// Words of `--as`.
+#[derive(ValueEnum, Clone, Copy, Debug)]
+pub enum FormWord {
+    /// For a terminal
+    Table,
+    /// For a code review
+    Markdown,
+    /// The whole record, one document per netlist
+    Yaml,
+    /// The whole record, one line per netlist
+    Json,
+}
+
+impl FormWord {
+    /// The form it means.
+    pub fn form(self) -> Form {
+        match self {
+            Self::Table => Form::Table,
+            Self::Markdown => Form::Markdown,
+            Self::Yaml => Form::Yaml,
+            Self::Json => Form::Json,
+        }
+    }
+}
+
+/// Words of `--delay`.
+#[derive(ValueEnum, Clone, Copy, Debug)]
+pub enum DelayWord {
+    /// Every gate 1
+    Unit,
+    /// Levels of two-input gates
+    Pairs,
+}
+
+/// Words of `--new-gates`.
+#[derive(ValueEnum, Clone, Copy, Debug)]
+pub enum NewGatesWord {
+    /// One product of any polarities or its complement, or one exclusive-or
+    SingleOperator,
+    /// Any function
+    Cover,
+}
+
+impl AuditArguments {
+    /// How to read.
+    pub fn reading(&self) -> ReadOptions {
+        ReadOptions {
+            top: self.top.clone(),
+            max_gates: self.max_gates,
+        }
+    }
+
+    /// How to audit.
+    pub fn auditing(&self) -> audit::Options {
+        let model = match self.delay {
+            DelayWord::Unit => DelayModel::Unit,
+            DelayWord::Pairs => DelayModel::Pairs,
+        };
+        let whole = |n: u64| usize::try_from(n).unwrap_or(usize::MAX);
+        audit::Options {
+            request: Request {
+                new_gates: self.new_gates.map(|word| match word {
+                    NewGatesWord::SingleOperator => NewGates::SingleOperator,
+                    NewGatesWord::Cover => NewGates::Cover,
+                }),
+                gate_inputs: self.gate_inputs.map(whole),
+                ..Request::new(model)
+            },
+            chains: chain::Options {
+                min_bits: whole(self.min_bits),
+                effort: self.effort,
+                ..chain::Options::default()
+            },
+        }
+    }
+}

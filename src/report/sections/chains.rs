@@ -1,0 +1,363 @@
+//! The chains and what could be built in their place.
+
+use super::{Block, cut};
+use crate::audit::record::{
+    ArrayRecord, BuiltAsRecord, ChainDepth, ChainRecord, NotPlanned, Place, ProposalRecord,
+    RecommendedSet,
+};
+use crate::report::number::{
+    change, counted, grouped, grouped_signed, lines as lines_of, listed, or_dash, range, signed,
+};
+use crate::report::outline::{Caps, Grid, Section};
+use crate::report::text::clipped;
+
+/// One row per chain, those on a longest path first.
+pub fn chains(
+    chains: &[ChainRecord],
+    arrays: &[ArrayRecord],
+    recurrences_not_listed: u64,
+    caps: Caps,
+) -> Option<Section> {
+    if chains.is_empty() && arrays.is_empty() && recurrences_not_listed == 0 {
+        return None;
+    }
+    let columns = vec![
+        ("computes", false),
+        ("chain", false),
+        ("bits", true),
+        ("built as", false),
+        ("settles", true),
+        ("to spare", true),
+        ("lines", true),
+    ];
+    let rows = urgent_first(chains)
+        .into_iter()
+        .take(caps.rows)
+        .map(|chain| chain_row(chain, caps))
+        .collect();
+    let mut blocks = cut(columns, rows, chains.len(), caps.rows, "chains");
+    if let Some(totals) = totals(chains) {
+        blocks.push(Block::Text(totals));
+    }
+    for array in arrays.iter().take(caps.rows) {
+        let ArrayRecord {
+            id,
+            kind,
+            label,
+            rows,
+            columns,
+            cells,
+            chains,
+        } = array;
+        blocks.push(Block::Text(format!(
+            "{} is a {kind} of {rows} rows and {columns} columns ({}): {} and {} in {}.",
+            clipped(id, caps.name),
+            clipped(label, caps.name),
+            counted(cells.full, "full adder", "full adders"),
+            counted(cells.half, "half adder", "half adders"),
+            counted(chains.len() as u64, "chain", "chains"),
+        )));
+    }
+    if recurrences_not_listed > 0 {
+        blocks.push(Block::Text(format!(
+            "{} that compute no sum are counted and not listed.",
+            counted(recurrences_not_listed, "recurrence", "recurrences"),
+        )));
+    }
+    Some(Section {
+        heading: "Chains",
+        aside: false,
+        blocks,
+    })
+}
+
+fn urgent_first(chains: &[ChainRecord]) -> Vec<&ChainRecord> {
+    let mut order: Vec<&ChainRecord> = chains.iter().collect();
+    order.sort_by_key(|chain| !chain.on_longest_path);
+    order
+}
+
+fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
+    // Operands, carry-in and kind are told by the formula; nets, taps, the
+    // parts of a comparator and a fingerprint are for the data forms.
+    let ChainRecord {
+        id,
+        fingerprint: _,
+        array,
+        kind,
+        bits,
+        operands: _,
+        carry_in: _,
+        carry_form: _,
+        carry_out: _,
+        carry_taps: _,
+        sums: _,
+        result: _,
+        relation: _,
+        signed: _,
+        mode: _,
+        feedback,
+        duplicates,
+        built_as: BuiltAsRecord { name, .. },
+        proven: _,
+        place,
+        depth: ChainDepth {
+            arrives, leaves, ..
+        },
+        on_longest_path,
+        slack,
+        not_planned: _,
+        proposals: _,
+    } = chain;
+    let mut what = format!("{} ({kind})", clipped(&chain.formula(), 2 * caps.name));
+    if let Some(feedback) = feedback {
+        what.push_str(&format!(", {}", feedback.role));
+    }
+    if let Some(array) = array {
+        what.push_str(&format!(", row of {}", clipped(array, caps.name)));
+    }
+    if let Some(twin) = duplicates {
+        what.push_str(&format!(", repeats {}", clipped(twin, caps.name)));
+    }
+    let Place {
+        instance,
+        line_first,
+        line_last,
+    } = place;
+    if !instance.is_empty() {
+        what.push_str(&format!(", in {}", clipped(&instance.join("/"), caps.name)));
+    }
+    let lines = match (line_first, line_last) {
+        (Some(first), Some(last)) => lines_of(*first, *last),
+        _ => "-".to_owned(),
+    };
+    let spare = match slack {
+        Some(0) if *on_longest_path => "none".to_owned(),
+        _ => or_dash(slack.map(grouped_signed)),
+    };
+    vec![
+        what,
+        clipped(id, caps.name),
+        grouped(*bits),
+        clipped(name, caps.name),
+        range(*arrives, *leaves),
+        spare,
+        lines,
+    ]
+}
+
+fn totals(chains: &[ChainRecord]) -> Option<String> {
+    if chains.len() < 2 {
+        return None;
+    }
+    let bits: u64 = chains.iter().map(|chain| chain.bits).sum();
+    let tally = |of: &dyn Fn(&ChainRecord) -> String| {
+        let mut counts: Vec<(String, u64)> = Vec::new();
+        for chain in chains {
+            let word = of(chain);
+            match counts.iter_mut().find(|(known, _)| *known == word) {
+                Some((_, count)) => *count += 1,
+                None => counts.push((word, 1)),
+            }
+        }
+        counts
+    };
+    let kinds: Vec<String> = tally(&|chain| clipped(&chain.kind, 40))
+        .into_iter()
+        .map(|(kind, n)| counted(n, &kind, &format!("{kind}s")))
+        .collect();
+    let built = tally(&|chain| clipped(&chain.built_as.name, 40));
+    let built = match built.as_slice() {
+        [(only, _)] => format!("every one built as {only}"),
+        _ => {
+            let each: Vec<String> = built
+                .iter()
+                .map(|(name, n)| format!("{} built as {name}", grouped(*n)))
+                .collect();
+            listed(&each)
+        }
+    };
+    let urgent = chains.iter().filter(|chain| chain.on_longest_path).count();
+    let urgent = match urgent {
+        0 => "none lies on a longest path".to_owned(),
+        1 => "one lies on a longest path".to_owned(),
+        n if n == chains.len() => "all lie on a longest path".to_owned(),
+        n => format!("{} lie on a longest path", grouped(n as u64)),
+    };
+    Some(format!(
+        "{} with {} in all: {}; {built}; {urgent}.",
+        counted(chains.len() as u64, "chain", "chains"),
+        counted(bits, "bit", "bits"),
+        listed(&kinds),
+    ))
+}
+
+/// The recommended set, and the other proposals it was chosen from.
+pub fn rebuild(chains: &[ChainRecord], set: &RecommendedSet, caps: Caps) -> Option<Section> {
+    if chains.is_empty() {
+        return None;
+    }
+    let RecommendedSet {
+        proposals: chosen,
+        block_depth: _,
+        sentence,
+    } = set;
+    let mut blocks = vec![Block::Text(clipped(sentence, caps.sentence))];
+    let mut rows = Vec::new();
+    let mut total = 0;
+    let mut afterwards = Vec::new();
+    let is_chosen = |chain: &ChainRecord, proposal: &ProposalRecord| {
+        chosen.contains(&format!("{}/{}", chain.id, proposal.id))
+    };
+    let concerned = |chain: &ChainRecord| chain.proposals.iter().any(|p| is_chosen(chain, p));
+    let mut order = urgent_first(chains);
+    order.sort_by_key(|chain| !concerned(chain));
+    for chain in order {
+        for proposal in &chain.proposals {
+            // Of the other chains only what is recommended, if anything is.
+            if !chosen.is_empty() && !concerned(chain) && !proposal.recommended {
+                continue;
+            }
+            total += 1;
+            if rows.len() < caps.rows {
+                rows.push(proposal_row(chain, proposal, caps));
+            }
+            if is_chosen(chain, proposal) && afterwards.len() < caps.rows {
+                afterwards.push(aftermath(chain, proposal, caps));
+            }
+        }
+    }
+    let columns = vec![
+        ("proposal", false),
+        ("scheme", false),
+        ("chain", true),
+        ("block", true),
+        ("gates", true),
+        ("fan-in", true),
+        ("fan-out", true),
+    ];
+    blocks.extend(cut(columns, rows, total, caps.rows, "proposals"));
+    blocks.extend(afterwards.into_iter().map(Block::Text));
+    blocks.extend(not_planned(chains, caps));
+    Some(Section {
+        heading: "Rebuild",
+        aside: false,
+        blocks,
+    })
+}
+
+fn proposal_row(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Vec<String> {
+    let ProposalRecord {
+        id,
+        scheme,
+        group,
+        levels: _,
+        valency,
+        select_end,
+        on_front: _,
+        recommended,
+        reason: _,
+        holds_under: _,
+        chain_depth,
+        block_depth,
+        takes_over: _,
+        gates_added,
+        gates_removed,
+        gate_equivalents_added: _,
+        largest_fan_in,
+        largest_fan_out,
+        wire_tracks: _,
+        above_bound: _,
+        carries: _,
+        network: _,
+    } = proposal;
+    let mut what = clipped(scheme, caps.name);
+    if let Some(group) = group {
+        what.push_str(&format!(", groups of {group}"));
+    } else if *valency > 2 {
+        what.push_str(&format!(", {valency} at a time"));
+    }
+    if *select_end {
+        what.push_str(", select at the end");
+    }
+    if *recommended {
+        what.push_str(" (recommended)");
+    }
+    vec![
+        format!(
+            "{}/{}",
+            clipped(&chain.id, caps.name),
+            clipped(id, caps.name)
+        ),
+        what,
+        change(*chain_depth),
+        change(*block_depth),
+        format!("+{} -{}", grouped(*gates_added), grouped(*gates_removed)),
+        grouped(*largest_fan_in),
+        grouped(*largest_fan_out),
+    ]
+}
+
+fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> String {
+    let mut text = format!(
+        "{}/{}: ",
+        clipped(&chain.id, caps.name),
+        clipped(&proposal.id, caps.name)
+    );
+    let mut parts = Vec::new();
+    if let Some(reason) = &proposal.reason {
+        parts.push(clipped(reason, caps.sentence));
+    }
+    parts.push(format!(
+        "{} gate equivalents",
+        signed(proposal.gate_equivalents_added)
+    ));
+    if let Some(levels) = proposal.above_bound {
+        let levels = counted(levels.unsigned_abs(), "level", "levels");
+        parts.push(format!("{levels} above the lower bound for such gates"));
+    }
+    if let Some(path) = &proposal.takes_over {
+        parts.push(format!(
+            "afterwards the longest path is {}",
+            clipped(path, caps.sentence)
+        ));
+    }
+    if !proposal.holds_under.is_empty() {
+        let models: Vec<String> = proposal
+            .holds_under
+            .iter()
+            .map(|model| clipped(model, caps.name))
+            .collect();
+        parts.push(format!("the choice holds under {}", listed(&models)));
+    }
+    text.push_str(&parts.join("; "));
+    text.push('.');
+    text
+}
+
+fn not_planned(chains: &[ChainRecord], caps: Caps) -> Vec<Block> {
+    let rows: Vec<Vec<String>> = urgent_first(chains)
+        .into_iter()
+        .filter_map(|chain| {
+            let NotPlanned { why, slack } = chain.not_planned.as_ref()?;
+            Some(vec![
+                clipped(&chain.id, caps.name),
+                clipped(why, caps.sentence),
+                or_dash(slack.map(grouped_signed)),
+            ])
+        })
+        .collect();
+    let total = rows.len();
+    if total == 0 {
+        return Vec::new();
+    }
+    let columns = vec![
+        ("chain", false),
+        ("not planned, because", false),
+        ("to spare", true),
+    ];
+    if total <= caps.rows {
+        return vec![Block::Grid(Grid { columns, rows })];
+    }
+    cut(columns, rows, total, caps.rows, "chains without a plan")
+}

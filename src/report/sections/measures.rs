@@ -1,0 +1,161 @@
+//! Path kinds, histograms and port depths.
+
+use super::cut;
+use crate::audit::record::{
+    Depth, DepthBar, FanIn, FanInBar, FanOut, FanOutBar, PathKindFacts, PortDepth,
+};
+use crate::report::number::{
+    counted, depth_in, doubling_bars, equal_bars, grouped, grouped_signed, mean, or_dash,
+};
+use crate::report::outline::{Block, Caps, Grid, Section};
+use crate::report::text::clipped;
+
+/// Bars per histogram.
+const BARS: usize = 12;
+
+/// The kinds of path, longest first.
+pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
+    if kinds.is_empty() {
+        return None;
+    }
+    let columns = vec![
+        ("path kind", false),
+        ("longest", true),
+        ("in carries", true),
+        ("carries free", true),
+        ("ends there", true),
+        ("next below", true),
+    ];
+    let row = |kind: &PathKindFacts| {
+        let PathKindFacts {
+            path_kind,
+            longest,
+            levels_in_carries,
+            depth_if_carry_were_free,
+            ends_at_longest,
+            next_below,
+        } = kind;
+        vec![
+            clipped(path_kind, caps.name),
+            grouped_signed(*longest),
+            grouped_signed(*levels_in_carries),
+            grouped_signed(*depth_if_carry_were_free),
+            grouped(*ends_at_longest),
+            or_dash(next_below.map(grouped_signed)),
+        ]
+    };
+    let rows = kinds.iter().take(caps.rows).map(row).collect();
+    Some(Section {
+        heading: "Paths",
+        aside: false,
+        blocks: cut(columns, rows, kinds.len(), caps.rows, "kinds of path"),
+    })
+}
+
+/// Fan-in, fan-out and depth, side by side.
+pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> Option<Section> {
+    let Depth {
+        longest,
+        unit,
+        longest_free_buffers,
+        histogram: depth_bars,
+        longest_path: _,
+        longest_path_left_out: _,
+        ports: _,
+    } = depth;
+    let mut lead = format!(
+        "Gates have {} at most and {} on average; nets have {} at most and {} on average.",
+        counted(fan_in.largest, "input", "inputs"),
+        mean(fan_in.mean),
+        counted(fan_out.largest, "reader", "readers"),
+        mean(fan_out.mean),
+    );
+    if let Some(free) = longest_free_buffers {
+        if free == longest {
+            lead.push_str(" The depth is the same with buffers and inverters free.");
+        } else {
+            let free = depth_in(*free, unit);
+            lead.push_str(&format!(
+                " With buffers and inverters free the depth is {free}."
+            ));
+        }
+    }
+    let gates = |&FanInBar { fan_in, gates }: &FanInBar| (fan_in as i64, gates);
+    let nets = |&FanOutBar { fan_out, nets }: &FanOutBar| (fan_out as i64, nets);
+    let ends = |&DepthBar { depth, outputs }: &DepthBar| (depth, outputs);
+    let bars = BARS.min(caps.rows.max(1));
+    let columns = [
+        doubling_bars(
+            &fan_in.histogram.iter().map(gates).collect::<Vec<_>>(),
+            bars,
+        ),
+        doubling_bars(
+            &fan_out.histogram.iter().map(nets).collect::<Vec<_>>(),
+            bars,
+        ),
+        equal_bars(&depth_bars.iter().map(ends).collect::<Vec<_>>(), bars),
+    ];
+    let height = columns.iter().map(Vec::len).max().unwrap_or(0);
+    let rows = (0..height).map(|i| {
+        columns
+            .iter()
+            .flat_map(|column| match column.get(i) {
+                Some((values, count)) => [values.clone(), grouped(*count)],
+                None => [String::new(), String::new()],
+            })
+            .collect()
+    });
+    let grid = Grid {
+        columns: vec![
+            ("gate inputs", true),
+            ("gates", true),
+            ("net readers", true),
+            ("nets", true),
+            ("depth", true),
+            ("path ends", true),
+        ],
+        rows: rows.collect(),
+    };
+    let mut blocks = vec![Block::Text(lead)];
+    if height > 0 {
+        blocks.push(Block::Grid(grid));
+    }
+    Some(Section {
+        heading: "Measures",
+        aside: true,
+        blocks,
+    })
+}
+
+/// Depth by port bus.
+pub fn ports(depth: &Depth, caps: Caps) -> Option<Section> {
+    if depth.ports.is_empty() {
+        return None;
+    }
+    let columns = vec![
+        ("port", false),
+        ("to a register", true),
+        ("from a register", true),
+        ("straight through", true),
+    ];
+    let row = |port: &PortDepth| {
+        let PortDepth {
+            bus,
+            deepest_in,
+            deepest_out,
+            deepest_through,
+        } = port;
+        vec![
+            clipped(bus, caps.name),
+            or_dash(deepest_in.map(grouped_signed)),
+            or_dash(deepest_out.map(grouped_signed)),
+            or_dash(deepest_through.map(grouped_signed)),
+        ]
+    };
+    let rows = depth.ports.iter().take(caps.rows).map(row).collect();
+    Some(Section {
+        heading: "Depth by port",
+        aside: true,
+        blocks: cut(columns, rows, depth.ports.len(), caps.rows, "ports"),
+    })
+}
