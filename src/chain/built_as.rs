@@ -18,7 +18,8 @@ pub(super) fn built_as(subject: &Subject, theorem: &Theorem) -> BuiltAs {
             position_of.insert(literal.node(), i + 1);
         }
     }
-    if theorem.carry_in.node() != NodeId::FALSE {
+    let has_carry_in = theorem.carry_in.node() != NodeId::FALSE;
+    if has_carry_in {
         position_of.insert(theorem.carry_in.node(), 0);
     }
     let operands: FxHashSet<NodeId> = theorem
@@ -29,20 +30,24 @@ pub(super) fn built_as(subject: &Subject, theorem: &Theorem) -> BuiltAs {
     // The carry out of the top position may be on no net.
     let last = theorem.bits.len() - 1;
     for (i, carries) in theorem.carries.iter().enumerate() {
-        let Some(carry) = carries.first() else {
-            if i == last {
-                continue;
-            }
+        if carries.is_empty() && i != last {
             return BuiltAs::Mixed;
-        };
+        }
         // Without carry-in the carry out of position 0 is made from operands.
-        let from_below = i > 0 || position_of.values().any(|&at| at == 0);
-        match nearest_carries(subject, carry.node(), &position_of, &operands) {
-            Some(found) if found.is_empty() && !from_below => {}
-            Some(found) if from_below && found.iter().all(|&at| at == i) && !found.is_empty() => {}
+        let from_below = i > 0 || has_carry_in;
+        for carry in carries {
+            let Some(found) = nearest_carries(subject, carry.node(), &position_of, &operands)
+            else {
+                return BuiltAs::Mixed;
+            };
+            // A second net of the same carry may be made from the first, or from
+            // sums above it.
+            let is_next = found.iter().all(|&at| at >= i);
             // An incrementer's lowest carries may be operands themselves.
-            Some(found) if found.is_empty() && i <= 1 => {}
-            _ => return BuiltAs::Mixed,
+            let may_be_first = !from_below || i <= 1;
+            if !is_next || (found.is_empty() && !may_be_first) {
+                return BuiltAs::Mixed;
+            }
         }
     }
     BuiltAs::Ripple

@@ -147,9 +147,7 @@ fn inverted_copies(netlist: &Netlist, subject: &Subject) -> FxHashMap<NodeId, bo
         }
     };
     for gate in netlist.gates() {
-        if netlist.fan_ins(gate).len() == 1 {
-            note(Signal::plain(netlist.gate_output(gate)), false);
-        }
+        note(Signal::plain(netlist.gate_output(gate)), false);
     }
     for output in netlist.outputs() {
         note(output.signal, true);
@@ -299,10 +297,13 @@ impl Search<'_> {
             .iter()
             .all(|bits| bits.b.node() == NodeId::FALSE);
         let node = theorem.carry_in.node();
-        let Some(&shown) = self.inverted_copies.get(&node) else {
-            return;
-        };
         let lowest = theorem.bits[0];
+        // On an edge of an AND/inverter graph every complement is at hand.
+        let shown = match self.inverted_copies.get(&node) {
+            Some(&shown) => shown,
+            None if self.netlist.has_inverted_edges() => false,
+            None => return,
+        };
         // An inverter that no port shows may belong to the cells themselves.
         if !single || !(shown || self.context.labels.follows(node, lowest.a.node()) == 3) {
             return;

@@ -9,7 +9,6 @@
 use super::ground::Ground;
 use super::propose::{ChainPlan, Proposal};
 use crate::timing::PathKind;
-use std::cmp::Reverse;
 
 /// The order of "best": block depth, depth of the kind, chain depth, gates,
 /// fan-in, number.
@@ -140,9 +139,8 @@ fn nothing_gained(ground: &Ground<'_>, tried: &[Proposal], kind: PathKind) -> St
     let longest = ground.timing.kind(kind).map_or(0, |kind| kind.longest);
     let shorter = tried
         .iter()
-        .filter(|proposal| proposal.kind.through < Some(longest))
-        .min_by_key(|proposal| Reverse(proposal.kind.through));
-    if shorter.is_some() {
+        .any(|proposal| proposal.kind.through < Some(longest));
+    if shorter {
         format!("another {kind} path of {longest} {unit} stays, whatever this chain is built as")
     } else {
         format!("no scheme shortens the {longest} {unit} of the longest {kind} path")

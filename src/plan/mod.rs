@@ -8,17 +8,21 @@
 
 mod bound;
 mod choose;
+mod cone;
 mod dry_run;
 mod fold;
+mod free_carry;
 mod ground;
 mod materialise;
 mod overlay;
 mod propose;
 mod settings;
 mod site;
+mod tables;
 
 pub use bound::earliest;
 pub use dry_run::{DryRun, Estimate, KindChange, TakesOver};
+pub use free_carry::depth_with_free_carry;
 pub use ground::Ground;
 pub use materialise::{Rebuilt, materialise};
 pub use overlay::{GateStyle, Literal, Overlay};

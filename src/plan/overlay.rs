@@ -11,6 +11,7 @@
 //! nodes in ascending order, none of them constant; an XOR and a cover read
 //! plain nodes only, and a cover is 0 where all its inputs are.
 
+use super::tables::{ascending, drop_unread, product_polarities};
 use crate::netlist::{Function, NetId, Shape, TruthTable};
 use crate::network::GateSink;
 use crate::timing::{DelayModel, NEVER};
@@ -481,84 +482,4 @@ impl Overlay {
         }
         sum
     }
-}
-
-/// Input polarities of a product, and whether its result is complemented.
-pub(super) fn product_polarities(function: &Function) -> Option<(Vec<bool>, bool)> {
-    match function {
-        Function::Table(table) => {
-            let n = table.inputs();
-            let ones = table.bits().count_ones();
-            let complemented = ones != 1;
-            let column = if complemented {
-                table.complement()
-            } else {
-                *table
-            };
-            let minterm = column.bits().trailing_zeros();
-            (column.bits().count_ones() == 1).then(|| {
-                (
-                    (0..n).map(|pin| minterm >> pin & 1 == 0).collect(),
-                    complemented,
-                )
-            })
-        }
-        Function::Cover(cover) => {
-            let mut inverted = vec![false; cover.inputs()];
-            for (pin, literal) in cover.cubes().flatten() {
-                inverted[pin] = literal;
-            }
-            if cover.cube_count() == 1 {
-                return Some((inverted, cover.is_complemented()));
-            }
-            // An OR of single literals: the complement of the product of
-            // their complements.
-            for flag in &mut inverted {
-                *flag = !*flag;
-            }
-            Some((inverted, !cover.is_complemented()))
-        }
-    }
-}
-
-/// The table over the plain nodes of `inputs` in ascending order. The inputs
-/// are distinct nodes.
-fn ascending(table: TruthTable, inputs: &[Literal]) -> (TruthTable, Vec<Literal>) {
-    let mut order: Vec<usize> = (0..inputs.len()).collect();
-    order.sort_unstable_by_key(|&pin| inputs[pin].node());
-    let mut bits = 0;
-    for minterm in 0..1usize << inputs.len() {
-        let old = order
-            .iter()
-            .enumerate()
-            .fold(0, |old, (new_pin, &old_pin)| {
-                old | (minterm >> new_pin & 1) << old_pin
-            });
-        bits |= (table.bits() >> old & 1) << minterm;
-    }
-    let pins = order
-        .iter()
-        .map(|&pin| Literal::new(inputs[pin].node(), false));
-    (TruthTable::new(inputs.len(), bits), pins.collect())
-}
-
-/// The table without pins it does not depend on.
-fn drop_unread(table: TruthTable, mut pins: Vec<Literal>) -> (TruthTable, Vec<Literal>) {
-    let read: Vec<usize> = (0..pins.len())
-        .filter(|&pin| table.depends_on(pin))
-        .collect();
-    if read.len() == pins.len() {
-        return (table, pins);
-    }
-    let mut bits = 0;
-    for minterm in 0..1usize << read.len() {
-        let old = read
-            .iter()
-            .enumerate()
-            .fold(0, |old, (new, &pin)| old | (minterm >> new & 1) << pin);
-        bits |= (table.bits() >> old & 1) << minterm;
-    }
-    let table = TruthTable::new(read.len(), bits);
-    pins = read.into_iter().map(|pin| pins[pin]).collect();
-    (table, pins)
 }

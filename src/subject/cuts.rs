@@ -277,9 +277,41 @@ fn node_cuts(window: &Window, x: Literal, y: Literal, is_xor: bool) -> CutList {
     list
 }
 
+/// XOR readers from which a node counts as a mode that many bits share.
+const MODE_READERS: u8 = 4;
+
+/// By node: an XOR reader that combines it with a mode. In `a + (b ⊕ m) + m`
+/// the lowest sum is `a ⊕ b` and shows neither `b ⊕ m` nor `m`; going up from
+/// `b` finds them again.
+fn mode_readers(subject: &Subject) -> Vec<u32> {
+    let xors = || {
+        subject.nodes().filter_map(|node| match subject.kind(node) {
+            NodeKind::Xor(x, y) => Some((node, x, y)),
+            _ => None,
+        })
+    };
+    let mut readers = vec![0u8; subject.node_count()];
+    for (_, x, y) in xors() {
+        for fan_in in [x, y] {
+            let count = &mut readers[fan_in.index()];
+            *count = count.saturating_add(1);
+        }
+    }
+    let mut found = vec![0; subject.node_count()];
+    for (node, x, y) in xors() {
+        for (bit, mode) in [(x, y), (y, x)] {
+            if readers[mode.index()] >= MODE_READERS {
+                found[bit.index()] = node.0;
+            }
+        }
+    }
+    found
+}
+
 /// Calls `emit` with every linear set, node by node, at most eight each.
 pub fn linear_sets(subject: &Subject, mut emit: impl FnMut(LinearSet)) {
     let mut window = Window::new(subject);
+    let mode_readers = mode_readers(subject);
     let mut sets: Vec<LinearSet> = Vec::with_capacity(SETS);
     for node in subject.nodes() {
         let Some((x, y)) = fan_ins(subject, node) else {
@@ -312,9 +344,23 @@ pub fn linear_sets(subject: &Subject, mut emit: impl FnMut(LinearSet)) {
             }
             let linear = &linear[..count];
             match (linear.len(), cut.len) {
-                (2, 2) | (3, 3) => offer(linear),
+                (2, _) | (3, 3) => offer(linear),
                 (1, 3) if !is_xor => offer(linear),
                 _ => {}
+            }
+        }
+        for at in 0..sets.len() {
+            let [x, y] = *sets[at].leaves() else { continue };
+            for (outer, inner) in [(x, y), (y, x)] {
+                let reader = NodeId(mode_readers[outer.index()]);
+                let NodeKind::Xor(p, q) = subject.kind(reader) else {
+                    continue;
+                };
+                let mode = if p == outer { q } else { p };
+                let set = LinearSet::new(node, &[reader.0, mode.0, inner.0]);
+                if reader != node && mode != inner && sets.len() < SETS {
+                    sets.push(set);
+                }
             }
         }
         window.keep(node, &list);
