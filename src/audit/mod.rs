@@ -88,8 +88,9 @@ pub fn audit(
     let unit = model.unit_word();
     let topology = Topology::of(netlist);
     let health = Health::of(netlist, &topology);
-    let timing = Timing::of(netlist, &topology, model);
+    // The search needs the most memory, so it runs before the timing is held.
     let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
+    let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
     let plans = plans(netlist, &topology, &timing, &settings, &chains);
 
@@ -180,10 +181,7 @@ fn plans(
         return Vec::new();
     }
     let ground = Ground::of(netlist, topology, timing, settings);
-    chains
-        .iter()
-        .map(|chain| plan::plan(&ground, chain))
-        .collect()
+    plan::plan_all(&ground, chains)
 }
 
 fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {
