@@ -98,7 +98,11 @@ pub fn audit(
     let cones = Cones::of(netlist, &topology, &chains);
     let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains);
     let mut records = sources.records(&chains, &plans);
+    // Another model's timing is as large as this one's: one at a time.
+    drop(sources);
+    drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
+    let timing = Timing::of(netlist, &topology, model);
     let longest = i64::from(timing.longest());
     let recommended_set = rebuilds::recommended_set(&records, &plans, longest, unit);
     let unproven: Vec<UnprovenRecord> = unproven

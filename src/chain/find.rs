@@ -30,7 +30,7 @@ impl Default for Options {
     fn default() -> Self {
         Self {
             min_bits: 4,
-            effort: 10_000,
+            effort: 20_000,
             seed: 1,
         }
     }
