@@ -36,9 +36,11 @@ fn exhausted(netlist: &Netlist) -> Vec<Vec<u64>> {
     assert!((6..=16).contains(&inputs));
     let topology = Topology::of(netlist);
     let mut values = vec![vec![0; 1 << (inputs - 6)]; netlist.net_count()];
-    for word in 0..1usize << (inputs - 6) {
+    let words = 1usize << (inputs - 6);
+    let mut now = vec![0; netlist.net_count()];
+    for word in 0..words {
         for (i, net) in netlist.inputs().iter().enumerate() {
-            values[net.index()][word] = match i {
+            now[net.index()] = match i {
                 0..6 => carrywise::netlist::function::PIN[i],
                 _ if word >> (i - 6) & 1 == 1 => !0,
                 _ => 0,
@@ -48,10 +50,12 @@ fn exhausted(netlist: &Netlist) -> Vec<Vec<u64>> {
             let pins: Vec<u64> = netlist
                 .fan_ins(gate)
                 .iter()
-                .map(|net| values[net.index()][word])
+                .map(|net| now[net.index()])
                 .collect();
-            let value = netlist.function(gate).evaluate(&pins);
-            values[netlist.gate_output(gate).index()][word] = value;
+            now[netlist.gate_output(gate).index()] = netlist.function(gate).evaluate(&pins);
+        }
+        for (values, &value) in values.iter_mut().zip(&now) {
+            values[word] = value;
         }
     }
     values
@@ -186,21 +190,20 @@ fn stops_at_the_effort_and_says_so() {
         text.push_str(&format!(".names {side}zero\n"));
         for i in 1..8 {
             let mut carry = format!("{side}zero");
-            for k in i..16 {
+            for (k, r) in row.iter_mut().enumerate().skip(i) {
                 let p = if k - i < 8 {
                     format!("{side}p{i}_{}", k - i)
                 } else {
                     format!("{side}zero")
                 };
                 let (s, c) = (format!("{side}s{i}_{k}"), format!("{side}c{i}_{k}"));
-                let r = &row[k];
                 text.push_str(&format!(
                     ".names {p} {r} {carry} {s}\n100 1\n010 1\n001 1\n111 1\n"
                 ));
                 text.push_str(&format!(
                     ".names {p} {r} {carry} {c}\n11- 1\n1-1 1\n-11 1\n"
                 ));
-                (row[k], carry) = (s, c);
+                (*r, carry) = (s, c);
             }
         }
         text.push_str(&format!(".names {} {side}\n1 1\n", row[12]));
