@@ -325,6 +325,22 @@ fn finds_lookahead_prefix_and_skip_adders_and_does_not_call_them_ripple() {
 }
 
 #[test]
+fn lists_what_the_effort_did_not_settle_once_and_as_unproven() {
+    let generated = Word::new(generators::Kind::Adder, 16, Cell::Nand).generate();
+    let netlist = parse(&generated.label, generated.circuit.blif().into_bytes());
+    let options = Options {
+        effort: 0,
+        ..Options::default()
+    };
+    let found = find(&netlist, &Topology::of(&netlist), options);
+    assert_eq!(found.chains, []);
+    let [open] = &found.unproven[..] else {
+        panic!("{:?}", found.unproven)
+    };
+    assert_eq!((open.bits, open.operands.len()), (16, 16));
+}
+
+#[test]
 fn finds_nothing_where_no_word_is() {
     for circuit in negatives::all() {
         for seed in [None, Some(5)] {

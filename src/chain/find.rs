@@ -1,7 +1,7 @@
 //! From a netlist to its proven chains: nominate, link, resolve, prove, settle
 //! the ends, and collect the nets.
 
-use super::candidate::{Context, Lookup};
+use super::candidate::{Bits, Context, Lookup};
 use super::collect::{bit, collect};
 use super::entries::{Entries, EntryId};
 use super::label::{BusPreference, Labels};
@@ -113,11 +113,8 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
     for path in &mut waiting {
         context.drop_unlikely_start(path, &lookup);
     }
-    waiting.reverse();
-    while let Some(path) = waiting.pop() {
-        if let Some(rest) = search.settle(&path) {
-            waiting.push(rest);
-        }
+    for path in waiting {
+        search.settle(path);
     }
     let Search {
         ends,
@@ -163,38 +160,69 @@ struct Search<'a> {
 }
 
 impl Search<'_> {
-    /// Proves one path; returns what is left of it above a refuted position.
-    fn settle(&mut self, path: &[EntryId]) -> Option<Vec<EntryId>> {
+    /// Proves one path from its low end. Where a position is refuted or stays
+    /// open, what is proven below it is kept and the rest is tried as a chain of
+    /// its own; two open positions in a row end the attempt.
+    fn settle(&mut self, mut path: Vec<EntryId>) {
         let (subject, context) = (self.ends.subject, self.ends.context);
-        let candidate = context.resolve(path, self.lookup)?;
         let effort = Effort {
             conflicts: self.options.effort,
             nodes: PROOF_NODES,
         };
-        let outcome = verify(subject, context, self.lookup, &candidate, effort);
-        let proven = outcome.theorem.bits.len();
-        if outcome.undecided == Some(true) {
-            let open = &candidate.bits[proven..];
-            if live_bits(open) >= self.options.min_bits {
-                self.unproven.push(Unproven {
-                    bits: open.len(),
-                    operands: open
-                        .iter()
-                        .map(|b| (bit(context.labels, b.a), bit(context.labels, b.b)))
-                        .collect(),
-                    reason: "not settled within the effort",
-                    effort: outcome.conflicts,
-                });
+        let mut open: Vec<Bits> = Vec::new();
+        let mut conflicts = 0;
+        let mut stalled = false;
+        // An open position that is tried again as the start of the rest, unless
+        // no net carries what comes into it.
+        let mut pending: Option<Bits> = None;
+        let whole = path.len();
+        while let Some(candidate) = context.resolve(&path, self.lookup) {
+            if candidate.path[0] != path[0] {
+                open.extend(pending);
             }
+            pending = None;
+            let outcome = verify(subject, context, self.lookup, &candidate, effort);
+            let mut theorem = outcome.theorem;
+            let proven = theorem.bits.len();
+            let free = independent_positions(subject, &theorem);
+            theorem.truncate(free);
+            self.accept(theorem);
+            let undecided = outcome.undecided == Some(true) && free == proven;
+            let mut next = free;
+            if free == 0 {
+                // The position itself is given up.
+                next = 1;
+                if undecided {
+                    conflicts += outcome.conflicts;
+                    open.push(candidate.bits[0]);
+                }
+            }
+            let rest = &candidate.bits[next..];
+            if outcome.undecided.is_none() && free == proven {
+                break;
+            }
+            if rest.len() < 2 || (undecided && free == 0 && stalled) {
+                if undecided {
+                    open.extend_from_slice(rest);
+                }
+                break;
+            }
+            stalled = undecided && free == 0;
+            if undecided && free > 0 {
+                pending = Some(candidate.bits[next]);
+            }
+            path = candidate.path[next..].to_vec();
         }
-        let mut theorem = outcome.theorem;
-        let free = independent_positions(subject, &theorem);
-        theorem.truncate(free);
-        let settled = if free < proven { free.max(1) } else { proven };
-        self.accept(theorem);
-        let open = outcome.undecided.is_some() || free < proven;
-        let rest = candidate.path.get(settled + usize::from(settled == 0)..)?;
-        (open && rest.len() >= 2).then(|| rest.to_vec())
+        open.extend(pending);
+        if !open.is_empty() && whole >= self.options.min_bits {
+            let bit = |literal| bit(context.labels, literal);
+            self.unproven.push(Unproven {
+                bits: open.len(),
+                operands: open.iter().map(|b| (bit(b.a), bit(b.b))).collect(),
+                reason: "not settled within the effort",
+                effort: conflicts,
+            });
+        }
     }
 
     fn accept(&mut self, mut theorem: Theorem) {
