@@ -1,0 +1,383 @@
+//! A netlist to BLIF text, flat.
+//!
+//! Gates come in the order of the netlist, each one `.names`; so a file that was
+//! read and written again has its gates, pins and ports where they were. Instances
+//! are gone: a net inside one goes by its path. What BLIF cannot say is put in other
+//! words: an inverted edge becomes an inverter, a port that shows another net a
+//! buffer, a constant of the format a cover without inputs.
+//!
+//! Invariant: reading the text again gives the same function, ports and registers;
+//! and the same netlist when the original came from a flat BLIF file. Properties of
+//! AIGER files have no place in BLIF and are named in a comment.
+
+use super::rows;
+use crate::format::names::{Taken, full_name};
+use crate::netlist::{BoxKind, Driver, Initial, NetId, Netlist, Output, Signal, Trigger};
+use rustc_hash::{FxHashMap, FxHashSet};
+use std::io::{self, Write};
+
+/// Column after which a statement goes on in the next line.
+const WIDTH: usize = 78;
+
+/// Writes `netlist` as one flat BLIF model.
+///
+/// # Errors
+/// Whatever `out` fails with.
+pub fn write(netlist: &Netlist, out: &mut dyn Write) -> io::Result<()> {
+    let mut writer = Writer::new(netlist, out);
+    writer.head()?;
+    writer.registers()?;
+    writer.boxes()?;
+    writer.gates()?;
+    writer.ports()?;
+    writer.rest()?;
+    writer.out.write_all(b".end\n")
+}
+
+/// The name of a net or port as BLIF can hold it.
+fn fit(name: Vec<u8>) -> Vec<u8> {
+    let mut name = name;
+    for byte in &mut name {
+        if matches!(*byte, b' ' | b'\t' | b'\r' | b'\n' | b'#') {
+            *byte = b'_';
+        }
+    }
+    // At the end of a line a backslash would join the next one.
+    if name.last() == Some(&b'\\') || name.is_empty() {
+        name.push(b'_');
+    }
+    name
+}
+
+struct Writer<'a> {
+    netlist: &'a Netlist,
+    out: &'a mut dyn Write,
+    names: Vec<Option<Vec<u8>>>,
+    taken: Taken,
+    /// Names of the output ports.
+    ports: Vec<Vec<u8>>,
+    /// Nets whose own name stands in the list of outputs.
+    shown: FxHashSet<NetId>,
+    /// Inverters made so far, by net.
+    inverted: FxHashMap<NetId, Vec<u8>>,
+    /// Constants of the format that something reads.
+    constants: Vec<NetId>,
+    /// The statement being put together.
+    line: Vec<u8>,
+    column: usize,
+}
+
+impl<'a> Writer<'a> {
+    fn new(netlist: &'a Netlist, out: &'a mut dyn Write) -> Self {
+        let mut writer = Self {
+            netlist,
+            out,
+            names: vec![None; netlist.net_count()],
+            taken: Taken::default(),
+            ports: Vec::new(),
+            shown: FxHashSet::default(),
+            inverted: FxHashMap::default(),
+            constants: Vec::new(),
+            line: Vec::new(),
+            column: 0,
+        };
+        writer.name_everything();
+        writer
+    }
+
+    /// Inputs first, then outputs, then what is inside.
+    fn name_everything(&mut self) {
+        let netlist = self.netlist;
+        for &net in netlist.inputs() {
+            self.name(net);
+        }
+        for output in netlist.outputs() {
+            let name = self.port_name(output);
+            self.ports.push(name);
+        }
+        for net in netlist.nets() {
+            if !matches!(netlist.driver(net), Driver::Constant(_)) {
+                self.name(net);
+            }
+        }
+    }
+
+    fn name(&mut self, net: NetId) -> &[u8] {
+        let index = net.index();
+        if self.names[index].is_none() {
+            let wish = match self.netlist.driver(net) {
+                Driver::Constant(value) => {
+                    self.constants.push(net);
+                    format!("constant_{}", u8::from(value)).into_bytes()
+                }
+                _ => {
+                    full_name(self.netlist, net).unwrap_or_else(|| format!("v{index}").into_bytes())
+                }
+            };
+            self.names[index] = Some(self.taken.give(fit(wish)));
+        }
+        self.names[index].as_deref().unwrap_or_default()
+    }
+
+    /// A port that shows a net as it is goes by the net's name, and lends its own to
+    /// a net that has none.
+    fn port_name(&mut self, output: &Output) -> Vec<u8> {
+        let net = output.signal.net;
+        let is_constant = matches!(self.netlist.driver(net), Driver::Constant(_));
+        let own = output
+            .name
+            .map(|name| self.netlist.names().bytes(name).to_vec());
+        let wish = own.or_else(|| full_name(self.netlist, net));
+        let wish = fit(wish.unwrap_or_else(|| format!("v{}", net.index()).into_bytes()));
+        let plain = !output.signal.inverted && !is_constant;
+        let net_name = full_name(self.netlist, net).map(fit);
+        if plain && net_name.as_ref().is_none_or(|name| *name == wish) {
+            match &self.names[net.index()] {
+                // An input that is an output too; no list names a port twice.
+                Some(name) if *name == wish => {
+                    if self.shown.insert(net) {
+                        return name.clone();
+                    }
+                }
+                Some(_) => {}
+                None => {
+                    let name = self.taken.give(wish);
+                    self.names[net.index()] = Some(name.clone());
+                    self.shown.insert(net);
+                    return name;
+                }
+            }
+        }
+        self.taken.give(wish)
+    }
+
+    fn begin(&mut self, word: &str) {
+        self.line.clear();
+        self.line.extend_from_slice(word.as_bytes());
+        self.column = word.len();
+    }
+
+    fn word(&mut self, word: &[u8]) {
+        if self.column + 1 + word.len() > WIDTH && self.column > 1 {
+            self.line.extend_from_slice(b" \\\n");
+            self.column = 0;
+        }
+        self.line.push(b' ');
+        self.line.extend_from_slice(word);
+        self.column += 1 + word.len();
+    }
+
+    fn net(&mut self, net: NetId) {
+        let name = self.name(net).to_vec();
+        self.word(&name);
+    }
+
+    fn end(&mut self) -> io::Result<()> {
+        self.line.push(b'\n');
+        self.out.write_all(&self.line)
+    }
+
+    fn head(&mut self) -> io::Result<()> {
+        let netlist = self.netlist;
+        self.begin(".model");
+        let name = netlist.model().map(|name| netlist.names().bytes(name));
+        let name = fit(name.unwrap_or(b"netlist").to_vec());
+        self.word(&name);
+        self.end()?;
+        // Both lists are there even when empty: nothing is inferred then.
+        self.begin(".inputs");
+        for &net in netlist.inputs() {
+            self.net(net);
+        }
+        self.end()?;
+        self.begin(".outputs");
+        for i in 0..self.ports.len() {
+            let name = std::mem::take(&mut self.ports[i]);
+            self.word(&name);
+            self.ports[i] = name;
+        }
+        self.end()
+    }
+
+    /// The name of a signal; an inverter is written first where one is needed.
+    fn signal(&mut self, signal: Signal) -> io::Result<Vec<u8>> {
+        let name = self.name(signal.net).to_vec();
+        if !signal.inverted {
+            return Ok(name);
+        }
+        if let Some(known) = self.inverted.get(&signal.net) {
+            return Ok(known.clone());
+        }
+        let inverse = self.taken.give([&name[..], b"_not"].concat());
+        self.cover(&[&name], &inverse, &[b"0"], b'1')?;
+        self.inverted.insert(signal.net, inverse.clone());
+        Ok(inverse)
+    }
+
+    fn cover(
+        &mut self,
+        inputs: &[&[u8]],
+        output: &[u8],
+        planes: &[&[u8]],
+        column: u8,
+    ) -> io::Result<()> {
+        self.begin(".names");
+        for input in inputs {
+            self.word(input);
+        }
+        self.word(output);
+        self.end()?;
+        for plane in planes {
+            self.line.clear();
+            self.line.extend_from_slice(plane);
+            if !plane.is_empty() {
+                self.line.push(b' ');
+            }
+            self.line.push(column);
+            self.end()?;
+        }
+        Ok(())
+    }
+
+    fn registers(&mut self) -> io::Result<()> {
+        for register in self.netlist.registers() {
+            let input = self.signal(register.input)?;
+            self.begin(".latch");
+            self.word(&input);
+            self.net(register.output);
+            let kind: Option<&[u8]> = match register.trigger {
+                Trigger::RisingEdge => Some(b"re"),
+                Trigger::FallingEdge => Some(b"fe"),
+                Trigger::ActiveHigh => Some(b"ah"),
+                Trigger::ActiveLow => Some(b"al"),
+                Trigger::Asynchronous => Some(b"as"),
+                // A control net has to have a type; edges are the rule.
+                Trigger::Unstated => register.control.map(|_| &b"re"[..]),
+            };
+            if let Some(kind) = kind {
+                self.word(kind);
+                match register.control {
+                    Some(control) => self.net(control),
+                    None => self.word(b"NIL"),
+                }
+            }
+            if let Some(value) = initial(register.initial) {
+                self.word(value);
+            }
+            self.end()?;
+        }
+        Ok(())
+    }
+
+    fn boxes(&mut self) -> io::Result<()> {
+        for each in self.netlist.boxes() {
+            let names = self.netlist.names();
+            self.begin(match each.kind {
+                BoxKind::Model | BoxKind::StateTable => ".subckt",
+                BoxKind::Cell => ".gate",
+                BoxKind::LatchCell(_) => ".mlatch",
+            });
+            self.word(&fit(names.bytes(each.model).to_vec()));
+            let mut control = None;
+            for (i, &net) in each.inputs.iter().chain(&each.outputs).enumerate() {
+                let pin = each.pins.get(i).map(|&pin| names.bytes(pin));
+                let is_latch = matches!(each.kind, BoxKind::LatchCell(_));
+                if is_latch && pin == Some(b"") {
+                    control = Some(net);
+                    continue;
+                }
+                let mut bound = match pin {
+                    Some(pin) if !pin.is_empty() => pin.to_vec(),
+                    _ => format!("pin{i}").into_bytes(),
+                };
+                bound.push(b'=');
+                bound.extend_from_slice(self.name(net));
+                self.word(&bound);
+            }
+            if let BoxKind::LatchCell(value) = each.kind {
+                match control {
+                    Some(net) => self.net(net),
+                    None => self.word(b"NIL"),
+                }
+                if let Some(value) = initial(value) {
+                    self.word(value);
+                }
+            }
+            self.end()?;
+        }
+        Ok(())
+    }
+
+    fn gates(&mut self) -> io::Result<()> {
+        let netlist = self.netlist;
+        // Functions are shared by many gates; their rows are found once.
+        let mut known: FxHashMap<u32, Vec<u8>> = FxHashMap::default();
+        for gate in netlist.gates() {
+            self.begin(".names");
+            for &net in netlist.fan_ins(gate) {
+                self.net(net);
+            }
+            self.net(netlist.gate_output(gate));
+            self.end()?;
+            let id = netlist.function_id(gate);
+            let text = known
+                .entry(id.0)
+                .or_insert_with(|| rows_text(&rows::of(netlist.function_of(id))));
+            self.out.write_all(text)?;
+        }
+        Ok(())
+    }
+
+    /// Ports that go by another name than what they show.
+    fn ports(&mut self) -> io::Result<()> {
+        for (i, output) in self.netlist.outputs().iter().enumerate() {
+            let port = std::mem::take(&mut self.ports[i]);
+            let name = self.name(output.signal.net).to_vec();
+            if output.signal.inverted {
+                self.cover(&[&name], &port, &[b"0"], b'1')?;
+            } else if name != port {
+                self.cover(&[&name], &port, &[b"1"], b'1')?;
+            }
+        }
+        Ok(())
+    }
+
+    fn rest(&mut self) -> io::Result<()> {
+        for net in std::mem::take(&mut self.constants) {
+            let name = self.name(net).to_vec();
+            let is_one = self.netlist.driver(net) == Driver::Constant(true);
+            let rows: &[&[u8]] = if is_one { &[b""] } else { &[] };
+            self.cover(&[], &name, rows, b'1')?;
+        }
+        match self.netlist.properties().len() {
+            0 => Ok(()),
+            n => writeln!(
+                self.out,
+                "# {n} verification properties have no place in BLIF"
+            ),
+        }
+    }
+}
+
+fn rows_text(rows: &rows::Rows) -> Vec<u8> {
+    let mut text = Vec::new();
+    for plane in &rows.planes {
+        text.extend_from_slice(plane);
+        if !plane.is_empty() {
+            text.push(b' ');
+        }
+        text.push(rows.column);
+        text.push(b'\n');
+    }
+    text
+}
+
+/// The digit of an initial value; an unknown one is the default.
+fn initial(value: Initial) -> Option<&'static [u8]> {
+    match value {
+        Initial::Zero => Some(b"0"),
+        Initial::One => Some(b"1"),
+        Initial::Any => Some(b"2"),
+        Initial::Unknown => None,
+    }
+}
