@@ -73,14 +73,22 @@ pub struct PortLoad {
     pub line: u32,
 }
 
+/// An edge within a clock event.
+#[derive(Clone, Copy, PartialEq, Debug)]
+pub struct TimedEdge<N = NameId> {
+    /// The edge.
+    pub edge: ClockEdge<N>,
+    /// How much before and after the nominal moment it may come.
+    pub slack: Option<(f64, f64)>,
+}
+
 /// When an edge happens.
 #[derive(Clone, PartialEq, Debug)]
 pub struct ClockEvent<N = NameId> {
     /// Position in the cycle, in percent.
     pub percent: f64,
-    /// The edges that happen then, each with how much before and after the nominal
-    /// moment it may come.
-    pub edges: Vec<(ClockEdge<N>, Option<(f64, f64)>)>,
+    /// The edges that happen then.
+    pub edges: Vec<TimedEdge<N>>,
     /// Source line, 0 when unknown.
     pub line: u32,
 }

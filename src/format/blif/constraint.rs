@@ -11,7 +11,7 @@
 
 use super::grammar::{Fault, Words, fault, missing, nothing_more, offset};
 use super::lines::is_blank;
-use crate::format::constraints::{ClockEdge, Phase, PinDelay, Reference, RiseFall};
+use crate::format::constraints::{ClockEdge, Phase, PinDelay, Reference, RiseFall, TimedEdge};
 use crate::source::quote;
 use nom::branch::alt;
 use nom::bytes::complete::{tag, take_while, take_while1};
@@ -20,9 +20,6 @@ use nom::combinator::{all_consuming, verify};
 use nom::number::complete::recognize_float;
 use nom::sequence::{preceded, separated_pair};
 use nom::{IResult, Parser};
-
-/// An edge of a clock event and its slack before and after.
-pub(super) type Event<N> = (ClockEdge<N>, Option<(f64, f64)>);
 
 /// What one line says.
 #[derive(Clone, Debug)]
@@ -42,7 +39,7 @@ pub(super) enum Constraint<N> {
     MaxInputLoad(N, f64),
     DefaultMaxInputLoad(f64),
     Cycle(f64),
-    ClockEvent(f64, Vec<Event<N>>),
+    ClockEvent(f64, Vec<TimedEdge<N>>),
 }
 
 impl<N> Constraint<N> {
@@ -87,7 +84,10 @@ impl<N> Constraint<N> {
             Self::Cycle(time) => Constraint::Cycle(time),
             Self::ClockEvent(percent, events) => {
                 let events = events.into_iter();
-                let events = events.map(|(e, slack)| (edge(e, &mut name), slack));
+                let events = events.map(|event| TimedEdge {
+                    edge: edge(event.edge, &mut name),
+                    slack: event.slack,
+                });
                 Constraint::ClockEvent(percent, events.collect())
             }
         }
@@ -128,7 +128,7 @@ fn bracketed_real(input: &[u8]) -> IResult<&[u8], f64> {
 }
 
 /// An edge, or an edge in brackets with its slack before and after.
-fn event(input: &[u8]) -> IResult<&[u8], Event<&[u8]>> {
+fn event(input: &[u8]) -> IResult<&[u8], TimedEdge<&[u8]>> {
     let slack = (bracketed_real, bracketed_real);
     let bracketed = (
         char('('),
@@ -137,8 +137,8 @@ fn event(input: &[u8]) -> IResult<&[u8], Event<&[u8]>> {
         blanks,
         char(')'),
     );
-    let bracketed = bracketed.map(|(_, edge, slack, _, _)| (edge, slack));
-    let plain = edge.map(|edge| (edge, None));
+    let bracketed = bracketed.map(|(_, edge, slack, _, _)| TimedEdge { edge, slack });
+    let plain = edge.map(|edge| TimedEdge { edge, slack: None });
     preceded(blanks, alt((bracketed, plain))).parse_complete(input)
 }
 

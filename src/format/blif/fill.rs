@@ -219,18 +219,20 @@ impl Reader {
             .iter()
             .filter(|port| !clocks.contains(&port.net));
         let sides = [
-            ("inputs", table.inputs, inputs.count()),
-            ("outputs", table.outputs, model.outputs.len()),
+            (".i", "inputs", table.inputs, inputs.count()),
+            (".o", "outputs", table.outputs, model.outputs.len()),
         ];
-        for (side, stated, listed) in sides {
+        // A faulty table has been told already.
+        let sides = sides.iter().filter(|_| self.errors.is_empty());
+        for &(word, side, stated, listed) in sides {
             if stated.map(u64::from) != Some(listed as u64) {
-                let stated = stated.map_or("none stated".to_owned(), |n| n.to_string());
+                let found = stated.map_or("none".to_owned(), |n| n.to_string());
                 let error = Diagnostic::error(
                     self.file_name(),
                     Place::line(table.line),
                     format!(
-                        "expected a state table with the {listed} {side} of its model {}, found \
-                         {stated}",
+                        "expected `{word} {listed}` in this state table, as many as model {} has \
+                         {side}, found {found}",
                         quote(self.builder.names().bytes(name))
                     ),
                     "a state table without logic reads every listed input and drives every output",

@@ -48,9 +48,9 @@ fn cost(model: &Model, found: &mut Constraints, tally: &mut Tally) {
     for (line, constraint) in &model.constraints {
         match constraint {
             Constraint::Area(area) => {
-                if cost.area.replace(*area).is_some() {
-                    tally.count(Oddity::SaidTwice, b".area", 1, || Place::line(*line));
-                }
+                let before = cost.area.replace(*area);
+                let place = || Place::line(*line);
+                before.inspect(|_| tally.count(Oddity::SaidTwice, b".area", 1, place));
             }
             Constraint::Delay(delay) => cost.delays.push(*delay),
             _ => {}

@@ -277,7 +277,12 @@ impl<'a> Writer<'a> {
                 BoxKind::Cell => ".gate",
                 BoxKind::LatchCell(_) => ".mlatch",
             });
-            self.word(&fit(names.bytes(each.model).to_vec()));
+            let mut model = names.bytes(each.model).to_vec();
+            if self.netlist.model() == Some(each.model) {
+                // A state table of the top: the model may not contain itself.
+                model.extend_from_slice(b"_table");
+            }
+            self.word(&fit(model));
             let mut control = None;
             for (i, &net) in each.inputs.iter().chain(&each.outputs).enumerate() {
                 let pin = each.pins.get(i).map(|&pin| names.bytes(pin));
