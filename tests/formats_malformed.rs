@@ -11,6 +11,7 @@ mod malformed;
 #[path = "support/reading.rs"]
 mod reading;
 
+use carrywise::format::aiger::{self, Form};
 use carrywise::source::{Diagnostic, Place, escape};
 use proptest::prelude::*;
 use reading::{fixture_bytes, read, source, told};
@@ -134,6 +135,7 @@ fn survives(name: &str, bytes: &[u8]) {
             for warning in &parsed.warnings {
                 warning.render(&input, false);
             }
+            written_again(name, &parsed.netlist);
         }
         Err(errors) => {
             assert!(!errors.is_empty());
@@ -145,6 +147,24 @@ fn survives(name: &str, bytes: &[u8]) {
                 );
                 assert!(error.line().is_none_or(|line| line >= 1));
             }
+        }
+    }
+}
+
+/// Whatever was accepted can be written, and what is written is accepted with the
+/// same ports and registers.
+fn written_again(name: &str, netlist: &carrywise::netlist::Netlist) {
+    let sizes = |n: &carrywise::netlist::Netlist| (n.outputs().len(), n.registers().len());
+    let mut text = Vec::new();
+    carrywise::format::blif::write(netlist, &mut text).expect("memory");
+    let again = reading::accept(name, &text).netlist;
+    assert_eq!(sizes(&again), sizes(netlist));
+    assert_eq!(again.inputs().len(), netlist.inputs().len());
+    for form in [Form::Ascii, Form::Binary] {
+        let mut bytes = Vec::new();
+        if aiger::write(netlist, form, &mut bytes).is_ok() {
+            let again = reading::accept(name, &bytes).netlist;
+            assert_eq!(sizes(&again), sizes(netlist));
         }
     }
 }

@@ -8,8 +8,8 @@
 //! Invariant: the order of asking decides, and it is the order of the netlist, so
 //! the same netlist is always written the same way.
 
-use crate::netlist::{NetId, Netlist};
-use rustc_hash::{FxHashMap, FxHashSet};
+use crate::netlist::{NameId, Names, NetId, Netlist};
+use rustc_hash::FxHashMap;
 
 /// The whole name of a net as bytes: instance path, `/`, own name; `None` for nets
 /// without a name.
@@ -24,28 +24,37 @@ pub(super) fn full_name(netlist: &Netlist, net: NetId) -> Option<Vec<u8>> {
     Some(name)
 }
 
-/// Names given away so far.
+/// Names given away so far, in one arena.
 #[derive(Default)]
 pub(super) struct Taken {
-    names: FxHashSet<Vec<u8>>,
+    names: Names,
     /// By wished name: the number to try next.
-    next: FxHashMap<Vec<u8>, u64>,
+    next: FxHashMap<NameId, u64>,
 }
 
 impl Taken {
     /// Gives `wish` away, or `wish` with a number when it is gone.
-    pub(super) fn give(&mut self, wish: Vec<u8>) -> Vec<u8> {
-        if self.names.insert(wish.clone()) {
-            return wish;
+    pub(super) fn give(&mut self, wish: &[u8]) -> NameId {
+        let count = self.names.len();
+        let wished = self.names.intern(wish);
+        if self.names.len() > count {
+            return wished;
         }
-        let next = self.next.entry(wish.clone()).or_insert(2);
+        let next = self.next.entry(wished).or_insert(2);
         loop {
-            let mut name = wish.clone();
-            name.extend_from_slice(format!("_{next}").as_bytes());
+            let name = [wish, format!("_{next}").as_bytes()].concat();
             *next += 1;
-            if self.names.insert(name.clone()) {
-                return name;
+            let count = self.names.len();
+            let given = self.names.intern(&name);
+            if self.names.len() > count {
+                return given;
             }
         }
+    }
+
+    /// The bytes of a name that was given away.
+    #[inline]
+    pub(super) fn bytes(&self, name: NameId) -> &[u8] {
+        self.names.bytes(name)
     }
 }

@@ -370,12 +370,13 @@ fn symbol(
             *byte = b'_';
         }
     }
-    let name = taken.give(name);
+    let name = taken.give(&name);
+    let name = taken.bytes(name);
     if name.is_empty() || name == format!("{letter}{index}").as_bytes() {
         return Ok(());
     }
     write!(out, "{letter}{index} ")?;
-    out.write_all(&name)?;
+    out.write_all(name)?;
     out.write_all(b"\n")
 }
 

@@ -12,7 +12,7 @@
 
 use super::rows;
 use crate::format::names::{Taken, full_name};
-use crate::netlist::{BoxKind, Driver, Initial, NetId, Netlist, Output, Signal, Trigger};
+use crate::netlist::{BoxKind, Driver, Initial, NameId, NetId, Netlist, Output, Signal, Trigger};
 use rustc_hash::{FxHashMap, FxHashSet};
 use std::io::{self, Write};
 
@@ -49,22 +49,45 @@ fn fit(name: Vec<u8>) -> Vec<u8> {
     name
 }
 
+/// A statement being put together, folded at [`WIDTH`].
+#[derive(Default)]
+struct Line {
+    text: Vec<u8>,
+    column: usize,
+}
+
+impl Line {
+    fn begin(&mut self, word: &str) {
+        self.text.clear();
+        self.text.extend_from_slice(word.as_bytes());
+        self.column = word.len();
+    }
+
+    fn word(&mut self, word: &[u8]) {
+        if self.column + 1 + word.len() > WIDTH && self.column > 1 {
+            self.text.extend_from_slice(b" \\\n");
+            self.column = 0;
+        }
+        self.text.push(b' ');
+        self.text.extend_from_slice(word);
+        self.column += 1 + word.len();
+    }
+}
+
 struct Writer<'a> {
     netlist: &'a Netlist,
     out: &'a mut dyn Write,
-    names: Vec<Option<Vec<u8>>>,
+    names: Vec<Option<NameId>>,
     taken: Taken,
     /// Names of the output ports.
-    ports: Vec<Vec<u8>>,
+    ports: Vec<NameId>,
     /// Nets whose own name stands in the list of outputs.
     shown: FxHashSet<NetId>,
     /// Inverters made so far, by net.
-    inverted: FxHashMap<NetId, Vec<u8>>,
+    inverted: FxHashMap<NetId, NameId>,
     /// Constants of the format that something reads.
     constants: Vec<NetId>,
-    /// The statement being put together.
-    line: Vec<u8>,
-    column: usize,
+    line: Line,
 }
 
 impl<'a> Writer<'a> {
@@ -78,8 +101,7 @@ impl<'a> Writer<'a> {
             shown: FxHashSet::default(),
             inverted: FxHashMap::default(),
             constants: Vec::new(),
-            line: Vec::new(),
-            column: 0,
+            line: Line::default(),
         };
         writer.name_everything();
         writer
@@ -102,26 +124,26 @@ impl<'a> Writer<'a> {
         }
     }
 
-    fn name(&mut self, net: NetId) -> &[u8] {
+    fn name(&mut self, net: NetId) -> NameId {
         let index = net.index();
-        if self.names[index].is_none() {
-            let wish = match self.netlist.driver(net) {
-                Driver::Constant(value) => {
-                    self.constants.push(net);
-                    format!("constant_{}", u8::from(value)).into_bytes()
-                }
-                _ => {
-                    full_name(self.netlist, net).unwrap_or_else(|| format!("v{index}").into_bytes())
-                }
-            };
-            self.names[index] = Some(self.taken.give(fit(wish)));
+        if let Some(name) = self.names[index] {
+            return name;
         }
-        self.names[index].as_deref().unwrap_or_default()
+        let wish = match self.netlist.driver(net) {
+            Driver::Constant(value) => {
+                self.constants.push(net);
+                format!("constant_{}", u8::from(value)).into_bytes()
+            }
+            _ => full_name(self.netlist, net).unwrap_or_else(|| format!("v{index}").into_bytes()),
+        };
+        let name = self.taken.give(&fit(wish));
+        self.names[index] = Some(name);
+        name
     }
 
     /// A port that shows a net as it is goes by the net's name, and lends its own to
     /// a net that has none.
-    fn port_name(&mut self, output: &Output) -> Vec<u8> {
+    fn port_name(&mut self, output: &Output) -> NameId {
         let net = output.signal.net;
         let is_constant = matches!(self.netlist.driver(net), Driver::Constant(_));
         let own = output
@@ -132,49 +154,45 @@ impl<'a> Writer<'a> {
         let plain = !output.signal.inverted && !is_constant;
         let net_name = full_name(self.netlist, net).map(fit);
         if plain && net_name.as_ref().is_none_or(|name| *name == wish) {
-            match &self.names[net.index()] {
+            match self.names[net.index()] {
                 // An input that is an output too; no list names a port twice.
-                Some(name) if *name == wish => {
+                Some(name) if self.taken.bytes(name) == wish => {
                     if self.shown.insert(net) {
-                        return name.clone();
+                        return name;
                     }
                 }
                 Some(_) => {}
                 None => {
-                    let name = self.taken.give(wish);
-                    self.names[net.index()] = Some(name.clone());
+                    let name = self.taken.give(&wish);
+                    self.names[net.index()] = Some(name);
                     self.shown.insert(net);
                     return name;
                 }
             }
         }
-        self.taken.give(wish)
+        self.taken.give(&wish)
     }
 
     fn begin(&mut self, word: &str) {
-        self.line.clear();
-        self.line.extend_from_slice(word.as_bytes());
-        self.column = word.len();
+        self.line.begin(word);
     }
 
     fn word(&mut self, word: &[u8]) {
-        if self.column + 1 + word.len() > WIDTH && self.column > 1 {
-            self.line.extend_from_slice(b" \\\n");
-            self.column = 0;
-        }
-        self.line.push(b' ');
-        self.line.extend_from_slice(word);
-        self.column += 1 + word.len();
+        self.line.word(word);
+    }
+
+    fn named(&mut self, name: NameId) {
+        self.line.word(self.taken.bytes(name));
     }
 
     fn net(&mut self, net: NetId) {
-        let name = self.name(net).to_vec();
-        self.word(&name);
+        let name = self.name(net);
+        self.named(name);
     }
 
     fn end(&mut self) -> io::Result<()> {
-        self.line.push(b'\n');
-        self.out.write_all(&self.line)
+        self.line.text.push(b'\n');
+        self.out.write_all(&self.line.text)
     }
 
     fn head(&mut self) -> io::Result<()> {
@@ -191,59 +209,44 @@ impl<'a> Writer<'a> {
         }
         self.end()?;
         self.begin(".outputs");
-        for i in 0..self.ports.len() {
-            let name = std::mem::take(&mut self.ports[i]);
-            self.word(&name);
-            self.ports[i] = name;
+        for &name in &self.ports {
+            self.line.word(self.taken.bytes(name));
         }
         self.end()
     }
 
     /// The name of a signal; an inverter is written first where one is needed.
-    fn signal(&mut self, signal: Signal) -> io::Result<Vec<u8>> {
-        let name = self.name(signal.net).to_vec();
+    fn signal(&mut self, signal: Signal) -> io::Result<NameId> {
+        let name = self.name(signal.net);
         if !signal.inverted {
             return Ok(name);
         }
-        if let Some(known) = self.inverted.get(&signal.net) {
-            return Ok(known.clone());
+        if let Some(&known) = self.inverted.get(&signal.net) {
+            return Ok(known);
         }
-        let inverse = self.taken.give([&name[..], b"_not"].concat());
-        self.cover(&[&name], &inverse, &[b"0"], b'1')?;
-        self.inverted.insert(signal.net, inverse.clone());
+        let wish = [self.taken.bytes(name), b"_not"].concat();
+        let inverse = self.taken.give(&wish);
+        self.cover(Some(name), inverse, b"0 1\n")?;
+        self.inverted.insert(signal.net, inverse);
         Ok(inverse)
     }
 
-    fn cover(
-        &mut self,
-        inputs: &[&[u8]],
-        output: &[u8],
-        planes: &[&[u8]],
-        column: u8,
-    ) -> io::Result<()> {
+    /// A cover of at most one input.
+    fn cover(&mut self, input: Option<NameId>, output: NameId, rows: &[u8]) -> io::Result<()> {
         self.begin(".names");
-        for input in inputs {
-            self.word(input);
+        if let Some(input) = input {
+            self.named(input);
         }
-        self.word(output);
+        self.named(output);
         self.end()?;
-        for plane in planes {
-            self.line.clear();
-            self.line.extend_from_slice(plane);
-            if !plane.is_empty() {
-                self.line.push(b' ');
-            }
-            self.line.push(column);
-            self.end()?;
-        }
-        Ok(())
+        self.out.write_all(rows)
     }
 
     fn registers(&mut self) -> io::Result<()> {
         for register in self.netlist.registers() {
             let input = self.signal(register.input)?;
             self.begin(".latch");
-            self.word(&input);
+            self.named(input);
             self.net(register.output);
             let kind: Option<&[u8]> = match register.trigger {
                 Trigger::RisingEdge => Some(b"re"),
@@ -296,7 +299,8 @@ impl<'a> Writer<'a> {
                     _ => format!("pin{i}").into_bytes(),
                 };
                 bound.push(b'=');
-                bound.extend_from_slice(self.name(net));
+                let name = self.name(net);
+                bound.extend_from_slice(self.taken.bytes(name));
                 self.word(&bound);
             }
             if let BoxKind::LatchCell(value) = each.kind {
@@ -336,12 +340,12 @@ impl<'a> Writer<'a> {
     /// Ports that go by another name than what they show.
     fn ports(&mut self) -> io::Result<()> {
         for (i, output) in self.netlist.outputs().iter().enumerate() {
-            let port = std::mem::take(&mut self.ports[i]);
-            let name = self.name(output.signal.net).to_vec();
+            let port = self.ports[i];
+            let name = self.name(output.signal.net);
             if output.signal.inverted {
-                self.cover(&[&name], &port, &[b"0"], b'1')?;
+                self.cover(Some(name), port, b"0 1\n")?;
             } else if name != port {
-                self.cover(&[&name], &port, &[b"1"], b'1')?;
+                self.cover(Some(name), port, b"1 1\n")?;
             }
         }
         Ok(())
@@ -349,10 +353,10 @@ impl<'a> Writer<'a> {
 
     fn rest(&mut self) -> io::Result<()> {
         for net in std::mem::take(&mut self.constants) {
-            let name = self.name(net).to_vec();
+            let name = self.name(net);
             let is_one = self.netlist.driver(net) == Driver::Constant(true);
-            let rows: &[&[u8]] = if is_one { &[b""] } else { &[] };
-            self.cover(&[], &name, rows, b'1')?;
+            let rows: &[u8] = if is_one { b"1\n" } else { b"" };
+            self.cover(None, name, rows)?;
         }
         match self.netlist.properties().len() {
             0 => Ok(()),
