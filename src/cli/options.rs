@@ -105,7 +105,7 @@ pub struct AuditArguments {
     pub max_gates: u64,
 
     /// Solver conflicts allowed per question of a proof
-    #[arg(long, value_name = "N", default_value_t = 100_000)]
+    #[arg(long, value_name = "N", default_value_t = 20_000)]
     pub effort: u64,
 
     /// No warnings on standard error; errors still

@@ -17,7 +17,7 @@ impl Reader {
     #[inline]
     fn net(&mut self, name: &[u8]) -> Local {
         let id = self.builder.name(name);
-        let index = id.0 as usize;
+        let index = id.index() as usize;
         if index >= self.locals.len() {
             self.locals.resize(self.builder.names().len(), (0, 0));
         }
