@@ -3,17 +3,20 @@
 
 use super::Status;
 use super::options::AuditArguments;
+use super::search::SearchFolders;
 use super::targets::{self, Target};
 use super::terminal::{colour_on_stderr, complain, page, say};
 use crate::audit::record::Audit;
 use crate::audit::{self, Origin};
+use crate::format::files::FileAccess;
 use crate::format::{self, Parsed};
 use crate::report::{self, Form, MOST_CHARACTERS, Page};
-use crate::source::{self, Diagnostic, Place, Source};
+use crate::source::{self, Diagnostic, Limits, Place, ReadError, Source};
 use std::fs::File;
 use std::io::{self, BufWriter, ErrorKind, Write};
 use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 
 /// Fewest characters for one netlist when several share a Markdown document.
 const FEWEST_CHARACTERS: usize = 4_000;
@@ -84,31 +87,48 @@ fn shown(file: &Path) -> String {
 fn audit_file(file: &Path, arguments: &AuditArguments) -> Result<Audit, Status> {
     let colour = colour_on_stderr();
     let name = file.to_string_lossy().into_owned();
-    let source = load(file, &name).map_err(|error| {
+    let limits = Limits::for_gates(arguments.max_gates);
+    let source = load(file, &name, limits).map_err(|error| {
         let nothing = Source {
             name: name.clone(),
             bytes: Vec::new(),
         };
-        let text = format!("cannot read the file: {error}");
-        let help = "check its name and that it may be read";
-        say(&Diagnostic::error(&name, Place::File, text, help).render(&nothing, colour));
+        let fault = match error {
+            ReadError::Packed(fault) => *fault,
+            ReadError::Io(error) => {
+                let text = format!("cannot read the file: {error}");
+                let help = "check its name and that it may be read";
+                Diagnostic::error(&name, Place::File, text, help)
+            }
+        };
+        say(&fault.render(&nothing, colour));
         Status::Unusable
     })?;
-    let parsed = format::read(&source, &arguments.reading()).map_err(|errors| {
-        for error in &errors {
-            say(&error.render(&source, colour));
-        }
+    let folders = SearchFolders::new(file, &arguments.search_dir, limits).map_err(|error| {
+        complain(&error);
+        Status::Unusable
+    })?;
+    let folders = Arc::new(folders);
+    // A message may be about a file that the netlist names.
+    let tell = |message: &Diagnostic| {
+        let other = folders
+            .opened(&message.file)
+            .filter(|_| message.file != name);
+        say(&message.render(other.as_deref().unwrap_or(&source), colour));
+    };
+    let reading = arguments.reading(Arc::clone(&folders) as Arc<dyn FileAccess>);
+    let parsed = format::read(&source, &reading).map_err(|errors| {
+        errors.iter().for_each(tell);
         Status::Unusable
     })?;
     let Parsed {
         netlist,
         format,
         warnings,
+        ..
     } = parsed;
     if !arguments.quiet {
-        for warning in &warnings {
-            say(&warning.render(&source, colour));
-        }
+        warnings.iter().for_each(tell);
     }
     let origin = Origin {
         file: name,
@@ -123,11 +143,11 @@ fn audit_file(file: &Path, arguments: &AuditArguments) -> Result<Audit, Status> 
     })
 }
 
-fn load(file: &Path, name: &str) -> io::Result<Source> {
+fn load(file: &Path, name: &str, limits: Limits) -> Result<Source, ReadError> {
     if is_stdin(file) {
-        source::read(name, io::stdin().lock())
+        source::read_unpacked(name, io::stdin().lock(), limits)
     } else {
-        source::read(name, File::open(file)?)
+        source::read_unpacked(name, File::open(file)?, limits)
     }
 }
 

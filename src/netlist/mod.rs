@@ -24,7 +24,7 @@ pub use function::{Cover, Function, Shape, TruthTable};
 pub use graph::{NetGraph, Readers, Topology};
 pub use id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 pub use model::{
-    Bit, BlackBox, Contention, Driver, Initial, Netlist, Output, Property, PropertyKind, Register,
-    Signal, Trigger,
+    Bit, BlackBox, BoxKind, Contention, Driver, Initial, Netlist, Output, Property, PropertyKind,
+    Register, Signal, Trigger,
 };
 pub use names::{NameId, Names};

@@ -347,8 +347,11 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
         for each in self.old.boxes() {
             let copy = BlackBox {
                 model: self.name(each.model),
+                kind: each.kind,
                 inputs: each.inputs.iter().map(|&net| self.net_now(net)).collect(),
                 outputs: each.outputs.iter().map(|&net| self.net_now(net)).collect(),
+                pins: each.pins.iter().map(|&pin| self.name(pin)).collect(),
+                scope: self.scope(each.scope),
                 line: each.line,
             };
             self.builder.add_box(copy);
