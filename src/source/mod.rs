@@ -12,6 +12,7 @@
 mod diagnostic;
 mod excerpt;
 mod unpack;
+mod zstd_frames;
 
 pub use diagnostic::{Diagnostic, Place, Severity};
 pub use excerpt::{escape, quote};

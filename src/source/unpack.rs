@@ -9,6 +9,7 @@
 //! Invariant: the source that comes out is the plain text; lines and bytes in
 //! messages count there. Only faults of the packing itself count packed bytes.
 
+use super::zstd_frames::ZstdFrames;
 use super::{Diagnostic, Place, Source};
 use std::io::{self, BufRead, BufReader, Read};
 
@@ -73,7 +74,7 @@ impl<R: BufRead> BufRead for Counted<R> {
 /// The two packings, each over the counted reader.
 enum Unpacker<R: BufRead> {
     Gzip(Box<flate2::bufread::MultiGzDecoder<Counted<R>>>),
-    Zstd(zstd::Decoder<'static, Counted<R>>),
+    Zstd(ZstdFrames<Counted<R>>),
 }
 
 impl<R: BufRead> Unpacker<R> {
@@ -123,7 +124,7 @@ pub fn read_unpacked(
         let decoder = flate2::bufread::MultiGzDecoder::new(joined);
         Unpacker::Gzip(Box::new(decoder))
     } else if is_zstd {
-        Unpacker::Zstd(zstd::Decoder::with_buffer(joined)?)
+        Unpacker::Zstd(ZstdFrames::new(joined))
     } else {
         return Ok(super::read(name, joined)?);
     };
