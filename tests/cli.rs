@@ -538,3 +538,16 @@ fn links_do_not_lead_out_of_the_folder() {
     fs::write(at("inner.blif"), inner).expect("written");
     audit().assert().code(0).stderr(is_empty());
 }
+
+#[test]
+fn the_readme_shows_what_its_first_command_prints() {
+    let readme = include_str!("../README.md");
+    let (_, after) = readme.split_once("```text\n").expect("an output block");
+    let (shown, _) = after.split_once("```").expect("its end");
+    let output = carrywise()
+        .current_dir(env!("CARGO_MANIFEST_DIR"))
+        .args(["audit", "fixtures/tide_logger.blif"])
+        .output()
+        .expect("it runs");
+    assert_eq!(String::from_utf8_lossy(&output.stdout), shown);
+}
