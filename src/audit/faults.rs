@@ -4,12 +4,14 @@
 //! Each rule lists its first few places and counts the rest, so that a netlist
 //! full of one fault still leaves room for the others. Worst first.
 
-use super::chains::is_on_longest_path;
+use super::assumed::late_ports;
 use super::findings::{self, MANY_READERS, RULES, Rule, WIDE_GATE};
 use super::record::{ChainRecord, Finding, UnprovenRecord};
 use super::verdict::cut_on;
-use super::words::{counted, grouped, listed};
+use super::words::{counted, depth_in, grouped, listed};
 use crate::chain::{BuiltAs, Chain};
+use crate::netlist::Assumptions;
+use crate::netlist::assume::Assumed;
 use crate::netlist::health::{Fault, FaultKind, Health};
 use crate::netlist::{Driver, NetId, Netlist, Topology, histogram};
 use crate::timing::{KindTiming, PathStep, Timing};
@@ -199,6 +201,43 @@ impl<'a> Findings<'a> {
         }
     }
 
+    /// Outputs that are ready after they must be, and paths of several cycles that
+    /// need more of a cycle than the longest path of one.
+    pub fn add_late(
+        &mut self,
+        assumptions: &Assumptions,
+        under: &Assumed,
+        timing: &Timing,
+        unit: &str,
+    ) {
+        let late = late_ports(assumptions, under, timing);
+        for port in late.iter().take(PLACES) {
+            let output = &self.netlist.outputs()[port.output as usize];
+            let message = format!(
+                "{} is ready at {}, and must be at {}: {} over",
+                self.netlist.output_name(output),
+                grouped(port.at),
+                grouped(port.required),
+                depth_in((port.at - port.required) as i64, unit)
+            );
+            self.add("too-deep", Some(output.signal.net), output.line, message);
+        }
+        self.left_out += late.len().saturating_sub(PLACES) as u64;
+        for relaxed in &timing.relaxed {
+            let whole = relaxed.timing.longest.max(0).unsigned_abs();
+            let each = whole.div_ceil(relaxed.cycles);
+            if i64::from(each) > i64::from(timing.longest()) {
+                let message = format!(
+                    "paths that may take {} cycles need {} a cycle, more than the longest path \
+                     of one",
+                    relaxed.cycles,
+                    depth_in(i64::from(each), unit)
+                );
+                self.add("too-deep", None, 0, message);
+            }
+        }
+    }
+
     /// Candidates left undecided.
     pub fn add_unproven(&mut self, unproven: &[UnprovenRecord]) {
         for candidate in unproven.iter().take(PLACES) {
@@ -222,7 +261,7 @@ impl<'a> Findings<'a> {
             }
             let on_path = |position: &&crate::chain::Position| {
                 let mut carries = position.carries.iter();
-                carries.any(|carry| is_on_longest_path(timing, carry.net))
+                carries.any(|carry| timing.is_on_longest_path(carry.net))
             };
             let carries = chain.positions.iter().filter(on_path).count();
             if carries < 2 {

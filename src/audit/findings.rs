@@ -7,6 +7,7 @@
 //! practice without a published source, and is said in the entry.
 
 use super::record::Severity;
+use crate::source::distance;
 
 /// Gates with more inputs than this are `gate-too-wide` (common practice: a
 /// series stack of more than four devices is split).
@@ -157,6 +158,18 @@ pub const RULES: &[Rule] = &[
         example: "A 16-bit total `total + level` in which bit 15 waits for bit 0.",
     },
     Rule {
+        slug: "too-deep",
+        severity: Severity::Warning,
+        what: "An output is ready later than it was asserted it must be, or paths that may \
+               take several cycles need more of a cycle than any path of one.",
+        why: "Whoever reads the output samples it before it has settled.",
+        advice: "Shorten the path to it (the longest path of its kind is a start), or ask \
+                 whether the required time is still what is meant.",
+        leaves_alone: "Outputs without a required time in the assumptions.",
+        example: "required: [{ports: \"alarm\", at: 12, why: \"the siren samples early\"}]\n\
+                  and `alarm` is ready at 17 gate delays.",
+    },
+    Rule {
         slug: "too-many-readers",
         severity: Severity::Note,
         what: "A net has more than 32 readers.",
@@ -192,20 +205,4 @@ pub fn nearest(word: &str) -> Option<&'static Rule> {
         .filter(|&(distance, rule)| distance <= rule.slug.len() / 3)
         .map(|(_, rule)| rule);
     by_distance.or(contained)
-}
-
-/// Levenshtein's distance, 1965: insertions, deletions and substitutions.
-fn distance(left: &str, right: &str) -> usize {
-    let right: Vec<char> = right.chars().collect();
-    let mut row: Vec<usize> = (0..=right.len()).collect();
-    for (i, l) in left.chars().enumerate() {
-        let mut diagonal = row[0];
-        row[0] = i + 1;
-        for (j, &r) in right.iter().enumerate() {
-            let cost = diagonal + usize::from(l != r);
-            diagonal = row[j + 1];
-            row[j + 1] = cost.min(diagonal + 1).min(row[j] + 1);
-        }
-    }
-    row[right.len()]
 }

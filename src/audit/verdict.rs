@@ -8,6 +8,7 @@
 //! candidate was left undecided, a chain may be. Then the verdict is unknown,
 //! and says what hid it and what holds for the rest.
 
+use super::assumed::Without;
 use super::carried::Cones;
 use super::free_carry;
 use super::measures::ChainMap;
@@ -16,7 +17,9 @@ use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
 use super::words::{counted, depth_in, grouped, grouped_signed, listed};
 use crate::chain::Chain;
 use crate::netlist::{NetId, Netlist, Topology};
-use crate::timing::{KindTiming, NEVER, PathStep, Timing, end_arrival, end_net, ends};
+use crate::timing::{
+    KindTiming, NEVER, PathKind, PathStep, Timing, end_arrival, end_net, grouped_ends,
+};
 use std::cmp::Reverse;
 use std::collections::BTreeMap;
 
@@ -44,6 +47,8 @@ pub struct Evidence<'a> {
     pub set: &'a RecommendedSet,
     /// Unit of depths.
     pub unit: &'a str,
+    /// The figures without assumptions, when there are some.
+    pub without: Option<&'a Without>,
 }
 
 impl Evidence<'_> {
@@ -62,7 +67,7 @@ impl Evidence<'_> {
         } else {
             (None, self.elsewhere_sentence(longest))
         };
-        let (limit, sentence) = match hidden {
+        let (limit, mut sentence) = match hidden {
             None if carry => (Limit::Carry, seen),
             None => (Limit::Elsewhere, seen),
             Some(hidden) => (
@@ -73,6 +78,9 @@ impl Evidence<'_> {
                 ),
             ),
         };
+        if let Some(without) = self.without {
+            sentence.push_str(&self.without_sentence(without, longest));
+        }
         Verdict {
             limit,
             chain,
@@ -81,40 +89,58 @@ impl Evidence<'_> {
         }
     }
 
+    fn without_sentence(&self, without: &Without, longest: i64) -> String {
+        if without.longest == longest {
+            return " This holds under the assumptions listed; without them the longest path is \
+                    as long."
+                .to_owned();
+        }
+        format!(
+            " This holds under the assumptions listed; without them the longest path is {} long.",
+            depth_in(without.longest, self.unit)
+        )
+    }
+
     fn kinds(&self) -> Vec<PathKindFacts> {
+        let (netlist, topology, timing) = (self.netlist, self.topology, self.timing);
         let mut free: BTreeMap<_, i32> = BTreeMap::new();
-        for (start, _) in self.timing.by_start() {
+        for (start, _) in timing.by_start() {
             let by_net = free_carry::arrivals(
-                self.netlist,
-                self.topology,
-                &self.timing.delays,
+                netlist,
+                topology,
+                &timing.delays,
                 start,
                 self.chains,
                 self.map.carried,
             );
-            for end in ends(self.netlist, self.topology) {
-                let at = end_arrival(self.netlist, &self.timing.delays, &by_net, end);
-                let deepest = free.entry((start, end.class())).or_insert(NEVER);
-                *deepest = (*deepest).max(at);
+            for (end, group) in grouped_ends(netlist, topology) {
+                let kind = PathKind { start, end: group };
+                if timing.kind(kind).is_some() {
+                    let at = end_arrival(netlist, &timing.delays, &by_net, end);
+                    let deepest = free.entry(kind.classes()).or_insert(NEVER);
+                    *deepest = (*deepest).max(at);
+                }
             }
         }
-        let mut kinds: Vec<&KindTiming> = self.timing.kinds.iter().collect();
+        let mut kinds = timing.kinds_by_class(netlist, topology);
         kinds.sort_by_key(|kind| Reverse(kind.longest));
         kinds
-            .into_iter()
-            .map(|timing| {
-                let kind = timing.kind;
-                let path = self.timing.path_of(self.netlist, self.topology, timing);
+            .iter()
+            .map(|of_class| {
+                let path = timing.path_of(netlist, topology, of_class);
                 let levels = levels_by_chain(&path, self.map.cones);
                 PathKindFacts {
-                    path_kind: kind.to_string(),
-                    longest: i64::from(timing.longest),
+                    path_kind: of_class.kind.to_string(),
+                    longest: i64::from(of_class.longest),
+                    longest_without_assumptions: self
+                        .without
+                        .map(|without| without.of_kind(of_class.kind)),
                     levels_in_carries: levels.values().sum(),
                     depth_if_carry_were_free: free
-                        .get(&(kind.start, kind.end))
+                        .get(&of_class.kind.classes())
                         .map_or(0, |&at| i64::from(at)),
-                    ends_at_longest: timing.ends_at_longest as u64,
-                    next_below: timing.next_below.map(i64::from),
+                    ends_at_longest: of_class.ends_at_longest as u64,
+                    next_below: of_class.next_below.map(i64::from),
                 }
             })
             .collect()

@@ -6,7 +6,8 @@ use super::options::AuditArguments;
 use super::targets::{self, Target};
 use super::terminal::{colour_on_stderr, complain, page, say};
 use crate::audit::record::Audit;
-use crate::audit::{self, Origin};
+use crate::audit::{self, Asserting, AuditError, Origin};
+use crate::format::assumptions::{self, AssumptionsFile};
 use crate::format::{self, Parsed};
 use crate::report::{self, Form, MOST_CHARACTERS, Page};
 use crate::source::{self, Diagnostic, Place, Source};
@@ -31,12 +32,18 @@ pub fn run(arguments: &AuditArguments) -> Status {
         .filter(|f| !is_stdin(f))
         .cloned()
         .collect();
-    let mut targets = match targets::open(&arguments.report, &named) {
+    let read_besides = named.iter().chain(&arguments.assume).cloned();
+    let read_besides: Vec<PathBuf> = read_besides.collect();
+    let mut targets = match targets::open(&arguments.report, &read_besides) {
         Ok(targets) => targets,
         Err(error) => {
             complain(&format!("{error:#}"));
             return Status::Unusable;
         }
+    };
+    let asserted = match arguments.assume.as_deref().map(assume).transpose() {
+        Ok(asserted) => asserted,
+        Err(worse) => return worse,
     };
     let share = (MOST_CHARACTERS / arguments.files.len()).max(FEWEST_CHARACTERS);
     let page = Page {
@@ -47,7 +54,9 @@ pub fn run(arguments: &AuditArguments) -> Status {
     let mut status = Status::Done;
     for file in &arguments.files {
         // A fault of ours in one netlist is told as such, and the others go on.
-        let audited = catch_unwind(AssertUnwindSafe(|| audit_file(file, arguments)));
+        let audited = catch_unwind(AssertUnwindSafe(|| {
+            audit_file(file, arguments, asserted.as_ref())
+        }));
         let audited = audited.unwrap_or_else(|_| {
             complain(&format!(
                 "{}: a fault of carrywise itself, told above; the netlist is not to blame",
@@ -55,7 +64,15 @@ pub fn run(arguments: &AuditArguments) -> Status {
             ));
             Err(Status::Fault)
         });
-        let written = audited.and_then(|audit| write(&audit, page, &mut stdout, &mut targets));
+        let written = audited.and_then(|audit| {
+            write(&audit, page, &mut stdout, &mut targets)?;
+            let fails = arguments.fail_on.least();
+            let held = fails.is_none_or(|least| {
+                let mut findings = audit.findings.iter();
+                !findings.any(|finding| !finding.accepted && finding.severity >= least)
+            });
+            if held { Ok(()) } else { Err(Status::NotHeld) }
+        });
         if let Err(worse) = written {
             status = status.max(worse);
         }
@@ -81,19 +98,23 @@ fn shown(file: &Path) -> String {
     source::escape(file.to_string_lossy().as_bytes())
 }
 
-fn audit_file(file: &Path, arguments: &AuditArguments) -> Result<Audit, Status> {
+/// Reads a file of assumptions.
+fn assume(file: &Path) -> Result<AssumptionsFile, Status> {
+    let source = load_or_say(file, &file.to_string_lossy())?;
+    assumptions::read(source.clone()).map_err(|error| {
+        say(&error.render(&source, colour_on_stderr()));
+        Status::Unusable
+    })
+}
+
+fn audit_file(
+    file: &Path,
+    arguments: &AuditArguments,
+    asserted: Option<&AssumptionsFile>,
+) -> Result<Audit, Status> {
     let colour = colour_on_stderr();
     let name = file.to_string_lossy().into_owned();
-    let source = load(file, &name).map_err(|error| {
-        let nothing = Source {
-            name: name.clone(),
-            bytes: Vec::new(),
-        };
-        let text = format!("cannot read the file: {error}");
-        let help = "check its name and that it may be read";
-        say(&Diagnostic::error(&name, Place::File, text, help).render(&nothing, colour));
-        Status::Unusable
-    })?;
+    let source = load_or_say(file, &name)?;
     let parsed = format::read(&source, &arguments.reading()).map_err(|errors| {
         for error in &errors {
             say(&error.render(&source, colour));
@@ -117,8 +138,32 @@ fn audit_file(file: &Path, arguments: &AuditArguments) -> Result<Audit, Status> 
     };
     // The text is not needed any more, and can be as large as the netlist.
     drop(source);
-    audit::audit(&netlist, &origin, &arguments.auditing()).map_err(|error| {
-        complain(&format!("{}: {error}", shown(file)));
+    let asserting = asserted.map(|file| Asserting {
+        assumptions: &file.assumptions,
+        sha256: audit::digest(&file.source().bytes),
+    });
+    let audited = audit::audit_under(&netlist, &origin, &arguments.auditing(), asserting.as_ref());
+    audited.map_err(|error| {
+        match (&error, asserted) {
+            (AuditError::Misfit(misfit), Some(file)) => {
+                let told = file.misfit(misfit, &origin.file);
+                say(&told.render(file.source(), colour));
+            }
+            _ => complain(&format!("{}: {error}", shown(file))),
+        }
+        Status::Unusable
+    })
+}
+
+fn load_or_say(file: &Path, name: &str) -> Result<Source, Status> {
+    load(file, name).map_err(|error| {
+        let nothing = Source {
+            name: name.to_owned(),
+            bytes: Vec::new(),
+        };
+        let text = format!("cannot read the file: {error}");
+        let help = "check its name and that it may be read";
+        say(&Diagnostic::error(name, Place::File, text, help).render(&nothing, colour_on_stderr()));
         Status::Unusable
     })
 }

@@ -3,6 +3,7 @@
 //! No clap type leaves this room; each stage gets its own small options value.
 
 use crate::audit;
+use crate::audit::record::Severity;
 use crate::chain;
 use crate::format::ReadOptions;
 use crate::plan::{NewGates, Request};
@@ -100,6 +101,15 @@ pub struct AuditArguments {
     #[arg(long, value_name = "N", default_value_t = 100_000)]
     pub effort: u64,
 
+    /// A YAML file of what may be assumed about the block: tied nets, paths that do not count,
+    /// paths of several cycles, arrival and required times
+    #[arg(long, value_name = "PATH")]
+    pub assume: Option<PathBuf>,
+
+    /// Exit with 1 when a finding is at least this bad
+    #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
+    pub fail_on: FailWord,
+
     /// No warnings on standard error; errors still
     #[arg(long, short)]
     pub quiet: bool,
@@ -137,6 +147,28 @@ pub enum DelayWord {
     Unit,
     /// Levels of two-input gates
     Pairs,
+}
+
+/// Words of `--fail-on`.
+#[derive(ValueEnum, Clone, Copy, Debug)]
+pub enum FailWord {
+    /// On an error
+    Error,
+    /// On a warning or an error
+    Warning,
+    /// On none
+    Never,
+}
+
+impl FailWord {
+    /// The least severity that fails, when one does.
+    pub fn least(self) -> Option<Severity> {
+        match self {
+            Self::Error => Some(Severity::Error),
+            Self::Warning => Some(Severity::Warning),
+            Self::Never => None,
+        }
+    }
 }
 
 /// Words of `--new-gates`.

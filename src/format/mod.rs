@@ -1,4 +1,5 @@
-//! Text and bytes to netlist: BLIF, AIGER ASCII and AIGER binary.
+//! Text and bytes to netlist: BLIF, AIGER ASCII and AIGER binary; and the user's
+//! own files about one.
 //!
 //! The content decides the format, never the file's extension. Each reader turns
 //! a [`Source`] into a [`Netlist`] plus warnings, or into located errors; there
@@ -10,7 +11,9 @@
 //! what a hierarchy expands to before it builds any of it.
 
 mod aiger;
+pub mod assumptions;
 mod blif;
+mod yaml;
 
 use crate::netlist::Netlist;
 use crate::source::{Diagnostic, Place, Source, quote};

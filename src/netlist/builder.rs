@@ -60,6 +60,7 @@ impl NetlistBuilder {
                 properties: Vec::new(),
                 contended: Vec::new(),
                 inverted_edges: false,
+                asserted: None,
             },
             constants: [None; 2],
         }

@@ -11,9 +11,11 @@
 
 mod diagnostic;
 mod excerpt;
+mod nearest;
 
 pub use diagnostic::{Diagnostic, Place, Severity};
 pub use excerpt::{escape, quote};
+pub use nearest::{distance, nearest};
 
 use std::io::{self, Read};
 

@@ -177,6 +177,7 @@ pub fn tide_logger() -> Audit {
                 PathKindFacts {
                     path_kind: "input→register".into(),
                     longest: 33,
+                    longest_without_assumptions: None,
                     levels_in_carries: 31,
                     depth_if_carry_were_free: 4,
                     ends_at_longest: 1,
@@ -185,6 +186,7 @@ pub fn tide_logger() -> Audit {
                 PathKindFacts {
                     path_kind: "register→output".into(),
                     longest: 6,
+                    longest_without_assumptions: None,
                     levels_in_carries: 0,
                     depth_if_carry_were_free: 6,
                     ends_at_longest: 18,
@@ -194,6 +196,7 @@ pub fn tide_logger() -> Audit {
         },
         depth: Depth {
             longest: 33,
+            longest_without_assumptions: None,
             unit: "gate delays".into(),
             longest_free_buffers: Some(33),
             histogram: (1..=33)
@@ -349,6 +352,11 @@ pub fn hostile() -> Audit {
     audit.unproven[0].operands = vec![evil(), evil()];
     audit.findings[0].net = Some(evil());
     audit.findings[0].message = format!("{HOSTILE} is late");
-    audit.assumed = vec![evil()];
+    audit.assumed = vec![AssumedRecord {
+        assumption: evil(),
+        why: evil(),
+        places: 1,
+        effect: Some(evil()),
+    }];
     audit
 }

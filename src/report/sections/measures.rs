@@ -21,6 +21,7 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
     let columns = vec![
         ("path kind", false),
         ("longest", true),
+        ("nothing assumed", true),
         ("in carries", true),
         ("carries free", true),
         ("ends there", true),
@@ -30,6 +31,7 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
         let PathKindFacts {
             path_kind,
             longest,
+            longest_without_assumptions,
             levels_in_carries,
             depth_if_carry_were_free,
             ends_at_longest,
@@ -38,6 +40,7 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
         vec![
             clipped(path_kind, caps.name),
             grouped_signed(*longest),
+            or_dash(longest_without_assumptions.map(grouped_signed)),
             grouped_signed(*levels_in_carries),
             grouped_signed(*depth_if_carry_were_free),
             grouped(*ends_at_longest),
@@ -56,6 +59,7 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
 pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> Option<Section> {
     let Depth {
         longest,
+        longest_without_assumptions: _,
         unit,
         longest_free_buffers,
         histogram: depth_bars,
