@@ -516,3 +516,24 @@ fn empty_assumptions_change_nothing() {
         Some(Misfit::NoMatch { .. })
     ));
 }
+
+#[test]
+fn an_assumption_that_changes_nothing_is_a_finding() {
+    let netlist = with_test_mode(2);
+    let messages = |yaml: &str| {
+        let audit = under(&netlist, yaml).expect("it fits");
+        let unused = audit.findings.into_iter();
+        unused
+            .filter(|finding| finding.rule == "assumption-unused")
+            .map(|finding| finding.message)
+            .collect::<Vec<_>>()
+    };
+    // co is read by no gate but leaves by a port; nothing runs from a[7] to s[0].
+    let yaml = "tied: {test_mode: {value: 0, why: off}}\n\
+                cycles: [{from: 'a[7]', to: 's[0]', n: 2, why: slow}]\n";
+    assert_eq!(
+        messages(yaml),
+        ["assuming that paths from a[7] to s[0] may take 2 cycles changes nothing"]
+    );
+    assert!(messages(OFF).is_empty());
+}

@@ -2,8 +2,8 @@
 
 use super::record::AssumedRecord;
 use super::words::{counted, depth_in};
-use crate::netlist::assume::{Assumed, Item, Paths};
-use crate::netlist::{Assumptions, Netlist, Pattern, Topology};
+use crate::netlist::assume::{Assumed, Cycles, Item, Paths, Tied};
+use crate::netlist::{Assumptions, Netlist, Pattern, Topology, histogram};
 use crate::timing::{DelayModel, End, EndClass, NEVER, PathKind, StartClass, Timing};
 
 /// Assumptions to audit under.
@@ -73,6 +73,42 @@ pub fn late_ports(assumptions: &Assumptions, under: &Assumed, timing: &Timing) -
     late
 }
 
+/// The assumptions that change nothing: ties of nets that nothing reads, and
+/// cycles for paths that are not there.
+pub fn unused(assumptions: &Assumptions, read: &Netlist, timing: &Timing) -> Vec<String> {
+    let mut unused = Vec::new();
+    if !assumptions.tied.is_empty() {
+        let readers = histogram::reader_counts(read);
+        let mut used = vec![false; assumptions.tied.len()];
+        for net in read.nets().filter(|net| readers[net.index()] > 0) {
+            let name = read.net_name(net);
+            for (used, each) in used.iter_mut().zip(&assumptions.tied) {
+                *used |= each.nets.matches(&name);
+            }
+        }
+        let ties = assumptions.tied.iter().zip(used).filter(|(_, used)| !used);
+        unused.extend(ties.map(|(each, _)| tie_words(each)));
+    }
+    for (i, each) in assumptions.cycles.iter().enumerate() {
+        if !timing.relaxed.iter().any(|r| r.entry as usize == i) {
+            unused.push(cycles_words(each));
+        }
+    }
+    unused
+}
+
+fn tie_words(tied: &Tied) -> String {
+    format!("{} is {}", tied.nets.text(), u8::from(tied.value))
+}
+
+fn cycles_words(cycles: &Cycles) -> String {
+    format!(
+        "paths {} may take {} cycles",
+        between(cycles.from.as_ref(), cycles.to.as_ref()),
+        cycles.cycles
+    )
+}
+
 /// The assumptions as the record lists them, in the order of the design's list.
 pub fn records(
     assumptions: &Assumptions,
@@ -94,8 +130,7 @@ pub fn records(
         });
     };
     for (i, each) in assumptions.tied.iter().enumerate() {
-        let text = format!("{} is {}", each.nets.text(), u8::from(each.value));
-        add(text, &each.why, places(&[Item::Tied(i)]), None);
+        add(tie_words(each), &each.why, places(&[Item::Tied(i)]), None);
     }
     for (i, each) in assumptions.not_a_path.iter().enumerate() {
         let (text, places) = match &each.paths {
@@ -111,11 +146,6 @@ pub fn records(
         add(text, &each.why, places, None);
     }
     for (i, each) in assumptions.cycles.iter().enumerate() {
-        let text = format!(
-            "paths {} may take {} cycles",
-            between(each.from.as_ref(), each.to.as_ref()),
-            each.cycles
-        );
         let own = timing.relaxed.iter().filter(|r| r.entry as usize == i);
         let longest = own.map(|relaxed| relaxed.timing.longest).max();
         let effect = longest.map(|longest| {
@@ -126,7 +156,7 @@ pub fn records(
             )
         });
         let places = places(&[Item::CyclesFrom(i), Item::CyclesTo(i)]);
-        add(text, &each.why, places, effect);
+        add(cycles_words(each), &each.why, places, effect);
     }
     for (i, each) in assumptions.arrival.iter().enumerate() {
         let text = format!("{} ready at {}", each.ports.text(), each.at);

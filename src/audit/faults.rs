@@ -13,12 +13,14 @@ use crate::chain::{BuiltAs, Chain};
 use crate::netlist::Assumptions;
 use crate::netlist::assume::Assumed;
 use crate::netlist::health::{Fault, FaultKind, Health};
-use crate::netlist::{Driver, NetId, Netlist, Topology, histogram};
+use crate::netlist::{Driver, NetId, Netlist, RegisterId, Topology, Trigger, histogram};
 use crate::timing::{KindTiming, PathStep, Timing};
 use std::cmp::Reverse;
 
 /// Places listed of one rule.
 const PLACES: usize = 20;
+/// Drivers listed of one net.
+const DRIVERS: usize = 6;
 /// Names listed of one loop.
 const LOOP_NAMES: usize = 8;
 
@@ -85,12 +87,7 @@ impl<'a> Findings<'a> {
                 format!("{name} is read, and nothing drives it"),
             ),
             FaultKind::DrivenTwice => {
-                let lines: Vec<String> = fault
-                    .lines
-                    .iter()
-                    .filter(|&&line| line > 0)
-                    .map(u32::to_string)
-                    .collect();
+                let lines = self.driver_lines(net);
                 let at = if lines.is_empty() {
                     String::new()
                 } else {
@@ -114,6 +111,36 @@ impl<'a> Findings<'a> {
             }
         };
         self.add(slug, Some(net), line, message);
+    }
+
+    /// The line of every driver of a net, and the instance when it is in one.
+    fn driver_lines(&self, net: NetId) -> Vec<String> {
+        let netlist = self.netlist;
+        let Driver::Many(index) = netlist.driver(net) else {
+            return Vec::new();
+        };
+        let drivers = &netlist.contended()[index as usize].drivers;
+        let known = drivers.iter().filter(|(_, line)| *line > 0);
+        let mut lines: Vec<String> = known
+            .clone()
+            .take(DRIVERS)
+            .map(|&(driver, line)| {
+                let scope = match driver {
+                    Driver::Gate(gate) => netlist.scope_path(netlist.gate_scope(gate)),
+                    _ => Vec::new(),
+                };
+                let path: Vec<_> = scope.iter().map(|&n| netlist.names().text(n)).collect();
+                match path.is_empty() {
+                    true => line.to_string(),
+                    false => format!("{line} in {}", path.join("/")),
+                }
+            })
+            .collect();
+        match known.count().saturating_sub(DRIVERS) {
+            0 => {}
+            more => lines.push(format!("{} more", grouped(more as u64))),
+        }
+        lines
     }
 
     fn loop_message(&self, fault: &Fault) -> String {
@@ -176,6 +203,30 @@ impl<'a> Findings<'a> {
         self.left_out += crowded.len().saturating_sub(PLACES) as u64;
     }
 
+    /// Registers that pass their input on while their control says so.
+    pub fn add_transparent(&mut self, registers: &[RegisterId]) {
+        let netlist = self.netlist;
+        for id in registers.iter().take(PLACES) {
+            let register = &netlist.registers()[id.index()];
+            let control = register.control.map(|net| netlist.net_name(net));
+            let control = control.unwrap_or_else(|| "its control".to_owned());
+            let when = match register.trigger {
+                Trigger::ActiveHigh => format!("while {control} is 1"),
+                Trigger::ActiveLow => format!("while {control} is 0"),
+                _ => "at any time".to_owned(),
+            };
+            let name = netlist.net_name(register.output);
+            let message = format!("the register {name} passes its input on {when}");
+            self.add(
+                "transparent-register",
+                Some(register.output),
+                register.line,
+                message,
+            );
+        }
+        self.left_out += registers.len().saturating_sub(PLACES) as u64;
+    }
+
     /// Instances without a known function.
     pub fn add_boxes(&mut self) {
         let boxes = self.netlist.boxes();
@@ -236,6 +287,15 @@ impl<'a> Findings<'a> {
                 self.add("too-deep", None, 0, message);
             }
         }
+    }
+
+    /// Assumptions that change nothing.
+    pub fn add_unused(&mut self, unused: &[String]) {
+        for assumption in unused.iter().take(PLACES) {
+            let message = format!("assuming that {assumption} changes nothing");
+            self.add("assumption-unused", None, 0, message);
+        }
+        self.left_out += unused.len().saturating_sub(PLACES) as u64;
     }
 
     /// Candidates left undecided.

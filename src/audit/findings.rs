@@ -52,6 +52,18 @@ pub const RULES: &[Rule] = &[
                   `alarm` is 1 for every value of `flood_gate` and `storm`.",
     },
     Rule {
+        slug: "assumption-unused",
+        severity: Severity::Warning,
+        what: "An assumption names places that are there, and changes nothing.",
+        why: "It was written for another block or another revision; what it was meant to say \
+              of this one goes unsaid.",
+        advice: "Compare its names with the netlist, or take it out.",
+        leaves_alone: "Arrival and required times, and excluded paths. An assumption whose \
+                       pattern matches nothing at all is an error, not a finding.",
+        example: "tied: {test_mode: {value: 0, why: \"off in the field\"}}\n\
+                  and no gate reads `test_mode`.",
+    },
+    Rule {
         slug: "cell-without-function",
         severity: Severity::Warning,
         what: "An instance names a model the file does not contain, so its function is unknown.",
@@ -181,6 +193,21 @@ pub const RULES: &[Rule] = &[
                        constants. The limit of 32 is common practice, from no published \
                        source.",
         example: "`store`, the write enable of a 64-bit sample register.",
+    },
+    Rule {
+        slug: "transparent-register",
+        severity: Severity::Note,
+        what: "A register is level-sensitive: while its control says so, its input passes \
+               straight on.",
+        why: "A path need not end there: what arrives while it is open runs on into the logic \
+              behind it. carrywise ends paths at every register and tells besides how deep the \
+              block is with all such registers open, each counted as one gate; where that is \
+              deeper, the verdict is unknown.",
+        advice: "Read both depths. If the two phases never overlap the smaller holds; otherwise \
+                 make the register edge-triggered or budget the longer path.",
+        leaves_alone: "Edge-triggered registers, and registers of which the file does not say \
+                       what makes them store.",
+        example: ".latch level held ah sample 0\nWhile `sample` is 1, `held` follows `level`.",
     },
 ];
 

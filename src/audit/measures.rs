@@ -86,6 +86,7 @@ pub fn depth(
     Depth {
         longest: i64::from(timing.longest()),
         longest_without_assumptions: None,
+        longest_through_transparent: None,
         unit: model.unit_word().to_owned(),
         longest_free_buffers: match model {
             DelayModel::Unit => Some(i64::from(longest_free_buffers(netlist, topology))),

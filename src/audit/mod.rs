@@ -16,6 +16,7 @@ mod measures;
 mod names;
 mod rebuilds;
 pub mod record;
+mod sight;
 mod verdict;
 pub mod words;
 
@@ -36,6 +37,7 @@ use record::{
     UnprovenRecord,
 };
 use sha2::{Digest, Sha256};
+use sight::{Open, Sight};
 use verdict::Evidence;
 
 /// What an audit does not settle.
@@ -151,6 +153,7 @@ pub fn audit_under(
         cones: &cones,
         ids: &ids,
     };
+    let open = Open::of(netlist, model);
     let verdict = Evidence {
         netlist,
         topology: &topology,
@@ -158,7 +161,14 @@ pub fn audit_under(
         chains: &chains,
         records: &records,
         map: map(),
-        undecided: unproven.len(),
+        sight: Sight {
+            netlist,
+            topology: &topology,
+            timing: &timing,
+            undecided: unproven.len(),
+            open: open.as_ref(),
+            unit,
+        },
         min_bits: options.chains.min_bits,
         longest: longest_path,
         set: &recommended_set,
@@ -175,9 +185,13 @@ pub fn audit_under(
     let mut findings = Findings::new(netlist);
     if let Some((asserting, under)) = &applied {
         findings.add_late(asserting.assumptions, under, &timing, unit);
+        findings.add_unused(&assumed::unused(asserting.assumptions, read, &timing));
     }
     findings.add_health(&health);
     findings.add_boxes();
+    if let Some(open) = &open {
+        findings.add_transparent(&open.registers);
+    }
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
     findings.add_unproven(&unproven);
@@ -204,6 +218,7 @@ pub fn audit_under(
         },
         verdict,
         depth: Depth {
+            longest_through_transparent: open.as_ref().map(|open| open.longest),
             longest_without_assumptions: without.as_ref().map(|without| without.longest),
             ..measures::depth(netlist, &topology, &timing, model, longest_path, &map())
         },

@@ -2,11 +2,9 @@
 //!
 //! Carry is the limit when the block would be shallower if the carries of the
 //! proven chains were free (see [`super::free_carry`]), for then no path as long
-//! as the longest avoids them. Otherwise no proven chain is the limit. Where a loop,
-//! a net with several drivers or an instance without a function lies on a way
-//! from a start to an end, a longer path may be hidden behind it; where a
-//! candidate was left undecided, a chain may be. Then the verdict is unknown,
-//! and says what hid it and what holds for the rest.
+//! as the longest avoids them. Otherwise no proven chain is the limit. Where something
+//! could hide a longer path or a chain (see [`super::sight`]) the verdict is
+//! unknown, and says what hid it and what holds for the rest.
 
 use super::assumed::Without;
 use super::carried::Cones;
@@ -14,6 +12,7 @@ use super::free_carry;
 use super::measures::ChainMap;
 use super::rebuilds::scheme_phrase;
 use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
+use super::sight::Sight;
 use super::words::{counted, depth_in, grouped, grouped_signed, listed};
 use crate::chain::Chain;
 use crate::netlist::{NetId, Netlist, Topology};
@@ -37,8 +36,8 @@ pub struct Evidence<'a> {
     pub records: &'a [ChainRecord],
     /// Their gates and nets.
     pub map: ChainMap<'a>,
-    /// Candidates left undecided.
-    pub undecided: usize,
+    /// What could hide part of the answer.
+    pub sight: Sight<'a>,
     /// Chains below this width were left out.
     pub min_bits: usize,
     /// The longest path of the block.
@@ -61,7 +60,7 @@ impl Evidence<'_> {
             .map(|kind| kind.depth_if_carry_were_free);
         let free = free.max().unwrap_or(0);
         let carry = free < longest;
-        let hidden = self.hidden(carry);
+        let hidden = self.sight.hidden(carry);
         let (chain, seen) = if carry {
             self.carry_sentence(longest, free)
         } else {
@@ -78,6 +77,9 @@ impl Evidence<'_> {
                 ),
             ),
         };
+        if let Some(blind) = self.sight.blind() {
+            sentence = blind;
+        }
         if let Some(without) = self.without {
             sentence.push_str(&self.without_sentence(without, longest));
         }
@@ -129,16 +131,29 @@ impl Evidence<'_> {
             .map(|of_class| {
                 let path = timing.path_of(netlist, topology, of_class);
                 let levels = levels_by_chain(&path, self.map.cones);
+                let longest = i64::from(of_class.longest);
+                let free = free
+                    .get(&of_class.kind.classes())
+                    .map_or(0, |&at| i64::from(at));
+                let main = levels
+                    .iter()
+                    .max_by_key(|&(&chain, &n)| (n, Reverse(chain)));
                 PathKindFacts {
                     path_kind: of_class.kind.to_string(),
-                    longest: i64::from(of_class.longest),
+                    limit: if free < longest {
+                        Limit::Carry
+                    } else {
+                        Limit::Elsewhere
+                    },
+                    chain: main
+                        .filter(|_| free < longest)
+                        .map(|(&chain, _)| self.records[chain as usize].id.clone()),
+                    longest,
                     longest_without_assumptions: self
                         .without
                         .map(|without| without.of_kind(of_class.kind)),
                     levels_in_carries: levels.values().sum(),
-                    depth_if_carry_were_free: free
-                        .get(&of_class.kind.classes())
-                        .map_or(0, |&at| i64::from(at)),
+                    depth_if_carry_were_free: free,
                     ends_at_longest: of_class.ends_at_longest as u64,
                     next_below: of_class.next_below.map(i64::from),
                 }
@@ -268,56 +283,6 @@ impl Evidence<'_> {
                 counted(through.unsigned_abs(), "level", "levels")
             )
         }
-    }
-
-    /// What could hide a longer path or a chain, in words.
-    fn hidden(&self, carry: bool) -> Option<String> {
-        let tails = &self.timing.tails.by_net;
-        let reaches_an_end = |net: &NetId| tails[net.index()] != NEVER;
-        let mut parts = Vec::new();
-        let loops = self.topology.loops.iter();
-        match loops.filter(|nets| nets.iter().any(reaches_an_end)).count() {
-            0 => {}
-            1 => parts.push("a loop without a register is cut".to_owned()),
-            n => parts.push(format!(
-                "{} loops without a register are cut",
-                grouped(n as u64)
-            )),
-        }
-        let contended = self.netlist.contended().iter();
-        match contended.filter(|each| reaches_an_end(&each.net)).count() {
-            0 => {}
-            1 => parts.push("a net with several drivers is cut".to_owned()),
-            n => parts.push(format!(
-                "{} nets with several drivers are cut",
-                grouped(n as u64)
-            )),
-        }
-        let arrivals = &self.timing.arrivals.by_net;
-        let boxes = self.netlist.boxes().iter().filter(|each| {
-            let reached = each.inputs.iter().any(|net| arrivals[net.index()] != NEVER);
-            reached && each.outputs.iter().any(reaches_an_end)
-        });
-        match boxes.count() {
-            0 => {}
-            1 => {
-                parts.push("a path may run through an instance without a known function".to_owned())
-            }
-            n => parts.push(format!(
-                "paths may run through {} instances without a known function",
-                grouped(n as u64)
-            )),
-        }
-        if !carry && self.undecided > 0 {
-            parts.push(match self.undecided {
-                1 => "a candidate for a carry chain was left undecided".to_owned(),
-                n => format!(
-                    "{} candidates for carry chains were left undecided",
-                    grouped(n as u64)
-                ),
-            });
-        }
-        (!parts.is_empty()).then(|| listed(&parts))
     }
 }
 

@@ -11,6 +11,7 @@
 //! asserts about a block makes *another* netlist ([`Assumptions::apply`]); the one
 //! that was read stays as it is.
 
+mod apply;
 mod asserted;
 pub mod assume;
 mod builder;
@@ -24,6 +25,7 @@ mod model;
 mod names;
 mod pattern;
 mod tie;
+mod transparent;
 
 pub use asserted::{Asserted, EndPoint, Pairing};
 pub use assume::Assumptions;

@@ -176,6 +176,8 @@ pub fn tide_logger() -> Audit {
             by_path_kind: vec![
                 PathKindFacts {
                     path_kind: "input→register".into(),
+                    limit: Limit::Carry,
+                    chain: Some("C1".into()),
                     longest: 33,
                     longest_without_assumptions: None,
                     levels_in_carries: 31,
@@ -185,6 +187,8 @@ pub fn tide_logger() -> Audit {
                 },
                 PathKindFacts {
                     path_kind: "register→output".into(),
+                    limit: Limit::Elsewhere,
+                    chain: None,
                     longest: 6,
                     longest_without_assumptions: None,
                     levels_in_carries: 0,
@@ -197,6 +201,7 @@ pub fn tide_logger() -> Audit {
         depth: Depth {
             longest: 33,
             longest_without_assumptions: None,
+            longest_through_transparent: None,
             unit: "gate delays".into(),
             longest_free_buffers: Some(33),
             histogram: (1..=33)

@@ -185,6 +185,10 @@ pub struct Verdict {
 pub struct PathKindFacts {
     /// In words: `register→register`.
     pub path_kind: String,
+    /// What limits the paths of this kind that are seen: `carry` or `elsewhere`.
+    pub limit: Limit,
+    /// The chain that does, when it is carry.
+    pub chain: Option<String>,
     /// Depth of the longest path of this kind.
     pub longest: i64,
     /// Of these, levels inside proven chains, between operands and results.
@@ -206,6 +210,9 @@ pub struct Depth {
     pub longest: i64,
     /// The longest path when nothing is assumed; null without assumptions.
     pub longest_without_assumptions: Option<i64>,
+    /// The longest path with every transparent register open; null when the
+    /// netlist has none.
+    pub longest_through_transparent: Option<i64>,
     /// The unit of every depth in this record.
     pub unit: String,
     /// The longest path with buffers and inverters free; null when the model
