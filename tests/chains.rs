@@ -474,3 +474,58 @@ fn finds_no_adder_in_public_circuits_without_one() {
         assert_eq!(found.unproven, [], "{path}");
     }
 }
+
+/// Gates that make accidental carries likely: exclusive ors and majorities of
+/// recent nets, inverters, and covers of four inputs around one of them.
+fn soup(seed: u64, gates: usize) -> String {
+    let mut random = Random::new(seed);
+    let mut text = String::from(".model soup\n.inputs");
+    let mut nets: Vec<String> = (0..12).map(|i| format!("x{i}")).collect();
+    for net in &nets {
+        text.push_str(&format!(" {net}"));
+    }
+    text.push_str("\n.outputs y\n");
+    for g in 0..gates {
+        let mut pick = || {
+            let recent = nets.len().min(20);
+            nets[nets.len() - 1 - random.below(recent)].clone()
+        };
+        let (a, b, c, d) = (pick(), pick(), pick(), pick());
+        let out = if g + 1 == gates {
+            "y".to_owned()
+        } else {
+            format!("n{g}")
+        };
+        text.push_str(&match random.below(6) {
+            0 | 1 => format!(".names {a} {b} {out}\n01 1\n10 1\n"),
+            2 => format!(".names {a} {b} {c} {out}\n11- 1\n1-1 1\n-11 1\n"),
+            3 => format!(".names {a} {b} {c} {out}\n100 1\n010 1\n001 1\n111 1\n"),
+            4 => format!(".names {a} {b} {c} {d} {out}\n1-00 1\n01-1 1\n-011 1\n"),
+            _ => format!(".names {a} {b} {out}\n11 1\n"),
+        });
+        nets.push(out);
+    }
+    text.push_str(".end\n");
+    text
+}
+
+#[test]
+fn reports_nothing_false_about_accidental_carries() {
+    let mut reported = 0;
+    for seed in 0..400 {
+        let text = soup(seed, 150);
+        let netlist = parse("soup", text.clone().into_bytes());
+        let options = Options {
+            min_bits: 2,
+            ..Options::default()
+        };
+        let found = find(&netlist, &Topology::of(&netlist), options);
+        check_theorems(&format!("soup {seed}"), &netlist, &found.chains);
+        reported += found.chains.len();
+    }
+    // The soup is thick enough for the check to mean something.
+    assert!(
+        reported > 100,
+        "only {reported} chains of two bits and more"
+    );
+}

@@ -455,3 +455,145 @@ fn fail_on_decides_by_the_worst_finding() {
         .assert()
         .code(0);
 }
+
+fn format_fixture(name: &str) -> String {
+    fixture(&format!("formats/{name}"))
+}
+
+#[test]
+fn packed_files_are_read_as_they_are() {
+    for name in ["packed.blif.gz", "packed.blif.zst"] {
+        carrywise()
+            .args(["audit", &format_fixture(name)])
+            .assert()
+            .code(0)
+            .stdout(contains("9 inputs, 5 outputs, 12 gates"))
+            .stderr(contains(format!("{name}:5")));
+        let bytes = fs::read(format_fixture(name)).expect("the fixture is there");
+        carrywise()
+            .args(["audit", "-", "--quiet"])
+            .write_stdin(bytes.clone())
+            .assert()
+            .code(0)
+            .stdout(contains("9 inputs, 5 outputs, 12 gates"));
+        carrywise()
+            .args(["audit", "-"])
+            .write_stdin(&bytes[..bytes.len() / 2])
+            .assert()
+            .code(2)
+            .stderr(contains("the end of the file inside it").and(contains("help")));
+    }
+}
+
+#[test]
+fn further_files_are_read_from_below_the_folder_only() {
+    carrywise()
+        .args(["audit", &format_fixture("search/top.blif")])
+        .assert()
+        .code(0)
+        .stdout(contains("2 inputs, 2 outputs, 2 gates"))
+        .stderr(is_empty());
+    let outside = format_fixture("search/outside.blif");
+    carrywise()
+        .args(["audit", &outside])
+        .assert()
+        .code(2)
+        .stdout(is_empty())
+        .stderr(
+            contains("outside.blif:4:9")
+                .and(contains("a file outside the folders that may be read"))
+                .and(contains("--search-dir")),
+        );
+    carrywise()
+        .args([
+            "audit",
+            &outside,
+            "--quiet",
+            "--search-dir",
+            &fixture("formats"),
+        ])
+        .assert()
+        .code(0);
+    carrywise()
+        .args(["audit", &outside, "--search-dir", "no_such_folder"])
+        .assert()
+        .code(2)
+        .stderr(contains("--search-dir no_such_folder"));
+}
+
+#[test]
+fn a_circle_of_files_is_refused_where_it_closes() {
+    carrywise()
+        .current_dir(fixture("formats/search"))
+        .args(["audit", "circle.blif"])
+        .assert()
+        .code(2)
+        .stderr(
+            contains("cells/further.blif:1:9")
+                .and(contains(".search around.blif"))
+                .and(contains(
+                    "cells/around.blif -> cells/further.blif -> cells/around.blif",
+                )),
+        );
+}
+
+/// A netlist on standard input lies in no folder.
+#[test]
+fn standard_input_has_files_from_named_folders_only() {
+    let text = ".search half.blif\n.model m\n.inputs a b\n.outputs s c\n\
+                .subckt half x=a y=b s=s c=c\n.end\n";
+    carrywise()
+        .args(["audit", "-"])
+        .write_stdin(text)
+        .assert()
+        .code(2)
+        .stderr(contains("standard input"));
+    carrywise()
+        .args([
+            "audit",
+            "-",
+            "--search-dir",
+            &fixture("formats/search/cells"),
+        ])
+        .write_stdin(text)
+        .assert()
+        .code(0)
+        .stdout(contains("2 inputs, 2 outputs, 2 gates"));
+}
+
+/// Links are followed before a place is judged, and a fault in a further file is
+/// shown with its own text.
+#[cfg(unix)]
+#[test]
+fn links_do_not_lead_out_of_the_folder() {
+    use std::os::unix::fs::symlink;
+    let top = ".search inner.blif\n.model m\n.inputs a\n.outputs y\n.subckt inner a=a y=y\n.end\n";
+    let inner = ".model inner\n.inputs a\n.outputs y\n.names a y\n1 1\n.end\n";
+    let (folder, other) = (folder(), folder());
+    let at = |name: &str| folder.path().join(name);
+    fs::write(at("top.blif"), top).expect("written");
+    let audit = || {
+        let mut command = carrywise();
+        command.current_dir(&folder).args(["audit", "top.blif"]);
+        command
+    };
+    audit().assert().code(2).stderr(contains("no such file"));
+    fs::write(other.path().join("inner.blif"), inner).expect("written");
+    symlink(other.path().join("inner.blif"), at("inner.blif")).expect("linked");
+    let outside = contains("a file outside the folders that may be read");
+    audit().assert().code(2).stderr(outside);
+    let allowed = other.path().to_str().expect("text");
+    audit().args(["--search-dir", allowed]).assert().code(0);
+    fs::remove_file(at("inner.blif")).expect("removed");
+    fs::create_dir(at("inner.blif")).expect("made");
+    audit()
+        .assert()
+        .code(2)
+        .stderr(contains("no ordinary file"));
+    fs::remove_dir(at("inner.blif")).expect("removed");
+    fs::write(at("inner.blif"), inner.replace("1 1", "11 1")).expect("written");
+    let shown = contains("inner.blif:5:1").and(contains("11 1"));
+    audit().assert().code(2).stderr(shown);
+    fs::write(at("inner.blif"), inner).expect("written");
+    audit().assert().code(0).stderr(is_empty());
+}

@@ -7,8 +7,8 @@ mod support;
 use carrywise::netlist::health::{FaultKind, Health, MAX_LOOP_NETS};
 use carrywise::netlist::histogram;
 use carrywise::netlist::{
-    BlackBox, Function, Initial, NetGraph, NetId, Netlist, NetlistBuilder, Readers, Register,
-    ScopeId, Signal, Topology, Trigger,
+    BlackBox, BoxKind, Function, Initial, NetGraph, NetId, Netlist, NetlistBuilder, Readers,
+    Register, ScopeId, Signal, Topology, Trigger,
 };
 use carrywise::timing::{
     DelayModel, End, EndClass, PathKind, PinDelays, StartClass, Timing, depth_histogram, end_net,
@@ -340,8 +340,11 @@ fn path_kinds_are_kept_apart() {
     let (from, to) = (s.net("y1"), s.net("boxed"));
     s.builder.add_box(BlackBox {
         model,
+        kind: BoxKind::Model,
         inputs: vec![from],
         outputs: vec![to],
+        pins: vec![],
+        scope: ScopeId::new(0),
         line: 9,
     });
     s.nand("boxed", "a", "z1");

@@ -187,10 +187,10 @@ fn other_dot_words_are_told_once_each_with_their_count() {
     assert_eq!(
         warnings(&fixture("unknown_word.blif")),
         [
-            "unknown_word.blif:4: warning: `.wire_load_slope` is not a word that is read here: 2 \
+            "unknown_word.blif:4: warning: `.mooring_hint` is not a word that is read here: 2 \
              lines skipped; the rest of the file is read as if the lines were not there",
-            "unknown_word.blif:5: warning: `.default_input_arrival` is not a word that is read \
-             here: 1 line skipped; the rest of the file is read as if the lines were not there",
+            "unknown_word.blif:5: warning: `.paint` is not a word that is read here: 1 \
+             line skipped; the rest of the file is read as if the lines were not there",
         ]
     );
 }

@@ -6,9 +6,12 @@
 //! reject). The wording is our own; the snapshots under `tests/snapshots/` hold
 //! input and message side by side.
 
+#[path = "support/malformed.rs"]
+mod malformed;
 #[path = "support/reading.rs"]
 mod reading;
 
+use carrywise::format::aiger::{self, Form};
 use carrywise::source::{Diagnostic, Place, escape};
 use proptest::prelude::*;
 use reading::{fixture_bytes, read, source, told};
@@ -36,67 +39,12 @@ fn dump(name: &str, cases: &[&[u8]]) -> String {
 
 #[test]
 fn blif_faults_are_told_where_they_are() {
-    let cases: &[&[u8]] = &[
-        b"",
-        b"# only a remark\n\n",
-        b"tide level\n",
-        b"   x .model\n",
-        b"\x1f\x8b\x08\x00",
-        b"\x28\xb5\x2f\xfd\x00",
-        b"\x7fELF\x02",
-        b".model\n.end\n",
-        b".model a b\n.end\n",
-        b".model m\n.names\n11 1\n.end\n",
-        b".model m\n.names a b y\n111 1\n.end\n",
-        b".model m\n.names a b y\n1 1\n.end\n",
-        b".model m\n.names a b y\n111\n.end\n",
-        b".model m\n.names a b y\n11\n.end\n",
-        b".model m\n.names a b y\n1x 1\n.end\n",
-        b".model m\n.names a b y\n11 2\n.end\n",
-        b".model m\n.names a b y\n11 -\n.end\n",
-        b".model m\n.names a b y\n11 1 1\n.end\n",
-        b".model m\n.names a b y\n1 1 1\n.end\n",
-        b".model m\n.names a b y\n11 1\n00 0\n01 1\n.end\n",
-        b".model m\n.names y\n11 1\n.end\n",
-        b".model m\n.names y\n1 1\n.end\n",
-        b".model m\n.names y\n-\n.end\n",
-        b".model m\n.inputs a\n11 1\n01 1\n.end\n",
-        b".model m\n.inputs a\nb c\n.end\n",
-        b".model m\n.latch d\n.end\n",
-        b".model m\n.latch\n.end\n",
-        b".model m\n.latch d q 4\n.end\n",
-        b".model m\n.latch d q re\n.end\n",
-        b".model m\n.latch d q xx clk\n.end\n",
-        b".model m\n.latch d q re clk 7\n.end\n",
-        b".model m\n.latch d q re clk 1 more\n.end\n",
-        b".model m\n.subckt\n.end\n",
-        b".model m\n.gate\n.end\n",
-        b".model m\n.subckt n a\n.end\n.model n\n.inputs a\n.end\n",
-        b".model m\n.subckt n a=\n.end\n.model n\n.inputs a\n.end\n",
-        b".model m\n.subckt n =x\n.end\n.model n\n.inputs a\n.end\n",
-        b".model m\n.subckt n a = x\n.end\n.model n\n.inputs a\n.end\n",
-        b".model m\n.subckt n b=x\n.end\n.model n\n.inputs a\n.names b\n.end\n",
-        b".model m\n.subckt n a=x a=y\n.end\n.model n\n.inputs a\n.end\n",
-        b".model m\n.subckt m a=x\n.end\n",
-        b".model m\n.subckt n a=x\n.end\n.model n\n.inputs a\n.subckt k a=a\n.end\n.model k\n.inputs a\n.subckt n a=a\n.end\n",
-        b".model m\n.end\n.model m\n.end\n",
-        b".model m\n.exdc\n.latch a b\n.end\n",
-        b".tide level\n",
-        b".end_kiss\n",
-        b".model m\n.exdc foo\n.end\n",
-        b".model m\n.start_kiss\n.i 1\n",
-        b".model m\n.start_kiss\n.i 1\n.model n\n.end\n",
-        b".model m\n.inputs a \\ \n b\n.end\n",
-        b".model m\n.inputs a \\ # both\n b\n.end\n",
-        b".model m\n.inputs a \\",
-        b".model m\n.inputs a \\\n",
-        b".model m\n.names a \\\n b \\\n y\n1x1 1\n.end\n",
-        b".model m\n.names a b y\n1\\\n2 1\n.end\n",
-        b".model m\r.inputs a\r.end\r",
-        b".model m\n.names a y\n\xff 1\n.end\n",
-        b".model m\n.names a y\n\x1b[31m 1\n.end\n",
-    ];
-    insta::assert_snapshot!(dump("bad.blif", cases));
+    insta::assert_snapshot!(dump("bad.blif", malformed::BLIF));
+}
+
+#[test]
+fn faults_of_the_rest_of_blif_are_told_where_they_are() {
+    insta::assert_snapshot!(dump("bad.blif", malformed::BLIF_WHOLE));
 }
 
 #[test]
@@ -110,83 +58,12 @@ fn reading_stops_after_twenty_errors() {
 
 #[test]
 fn aiger_text_faults_are_told_where_they_are() {
-    let cases: &[&[u8]] = &[
-        b"aag",
-        b"aag\n",
-        b"aag 1 2 3\n",
-        b"aag  1 0 0 0 0\n",
-        b"aag 01 1 0 0 0\n2\n",
-        b"aag -1 1 0 0 0\n2\n",
-        b"aag +1 1 0 0 0\n2\n",
-        b"aag 0x1 1 0 0 0\n2\n",
-        b"aag 1 1 0 0 0 \n2\n",
-        b"aag 1 1 0 0 0\r\n2\r\n",
-        b"aag 0 0 0 0 0 0 0 0 0 0\n",
-        b"aag 1 1 1 0 1\n2\n",
-        b"aag 4294967296 0 0 0 0\n",
-        b"aag 2147483648 0 0 0 0\n",
-        b"aag 1 1 0 0 0",
-        b"aag 1 1 0 0 0\n",
-        b"aag 1 1 0 0 0\n2",
-        b"aag 1 1 0 0 0\n3\n",
-        b"aag 1 1 0 0 0\n0\n",
-        b"aag 1 1 0 0 0\n4\n",
-        b"aag 1 1 0 0 0\n2 2\n",
-        b"aag 1 1 0 0 0\n\n",
-        b"aag 2 2 0 0 0\n2\n2\n",
-        b"aag 2 1 1 0 0\n2\n4\n",
-        b"aag 2 1 1 0 0\n2\n4 9\n",
-        b"aag 2 1 1 0 0\n2\n4 2 2\n",
-        b"aag 2 1 1 0 0\n2\n4 2 0 0\n",
-        b"aag 2 1 1 0 0\n2\n2 2\n",
-        b"aag 3 1 0 1 0\n2\n7\n",
-        b"aag 9 1 1 1 1\n2\n4 8\n2\n6 2 2\n",
-        b"aag 3 2 0 0 1\n2\n4\n6 2\n",
-        b"aag 3 2 0 0 1\n2\n4\n6 2  4\n",
-        b"aag 3 2 0 0 1\n2\n4\n7 2 4\n",
-        b"aag 3 2 0 0 1\n2\n4\n6 2 8\n",
-        b"aag 3 2 0 0 1\n2\n4\n2 2 4\n",
-        b"aag 1 0 0 0 1\n2 2 2\n",
-        b"aag 4 1 0 1 3\n2\n4\n4 2 8\n6 4 4\n8 7 2\n",
-        b"aag 1 1 0 1 0\n2\n2\ni1 far\n",
-        b"aag 1 1 0 1 0\n2\n2\ni0 near\ni0 again\n",
-        b"aag 1 1 0 1 0\n2\n2\ni0\n",
-        b"aag 1 1 0 1 0\n2\n2\ni0 \n",
-        b"aag 1 1 0 1 0\n2\n2\ni0 cut",
-        b"aag 1 1 0 1 0\n2\n2\ni near\n",
-        b"aag 1 1 0 1 0\n2\n2\nx0 letter\n",
-        b"aag 1 1 0 1 0\n2\n2\nc0 no constraint\n",
-        b"aag 1 1 0 1 0\n2\n2\n6 2 4\n",
-        b"aag 1 1 0 1 0\n2\n2\ncomment\n",
-        b"aag 1 1 0 0 0 0 0 1\n2\n2\n2\n",
-        b"aag 1 1 0 0 0 1\n2\n9\n",
-    ];
-    insta::assert_snapshot!(dump("bad.aag", cases));
+    insta::assert_snapshot!(dump("bad.aag", malformed::AIGER_TEXT));
 }
 
 #[test]
 fn aiger_binary_faults_are_told_by_byte() {
-    let cases: &[&[u8]] = &[
-        b"aig 3 1 0 0 1\n\x02\x02",
-        b"aig 1 2 0 0 0\n",
-        b"aig 3 2 0 1 1\n8\n\x02\x02",
-        b"aig 3 2 0 1 1\n6 \n\x02\x02",
-        b"aig 3 2 0 1 1\n6\n\x00\x02",
-        b"aig 3 2 0 1 1\n6\n\x07\x00",
-        b"aig 3 2 0 1 1\n6\n\x02\x05",
-        b"aig 3 2 0 1 1\n6\n\x02",
-        b"aig 3 2 0 1 1\n6\n",
-        b"aig 3 2 0 1 1\n6\n\x82",
-        b"aig 3 2 0 1 1\n6\n\x82\x00\x02",
-        b"aig 3 2 0 1 1\n6\n\xff\xff\xff\xff\x7f\x00",
-        b"aig 3 2 0 1 1\n6\n\x80\x80\x80\x80\x80\x01\x00",
-        b"aig 3 2 0 1 1\n6\n\x02\x02junk",
-        b"aig 3 2 0 1 1\n6\n\x02\x02i7 x\n",
-        b"aig 1 0 1 0 0\n2 4\n",
-        b"aig 1 0 1 0 0\n",
-        b"aig 2097152 2097152 0 0 0\n",
-    ];
-    insta::assert_snapshot!(dump("bad.aig", cases));
+    insta::assert_snapshot!(dump("bad.aig", malformed::AIGER_BINARY));
 }
 
 #[test]
@@ -258,6 +135,7 @@ fn survives(name: &str, bytes: &[u8]) {
             for warning in &parsed.warnings {
                 warning.render(&input, false);
             }
+            written_again(name, &parsed.netlist);
         }
         Err(errors) => {
             assert!(!errors.is_empty());
@@ -273,7 +151,28 @@ fn survives(name: &str, bytes: &[u8]) {
     }
 }
 
-const SEEDS: [&str; 12] = [
+/// Whatever was accepted can be written, and what is written is accepted with the
+/// same ports and registers.
+fn written_again(name: &str, netlist: &carrywise::netlist::Netlist) {
+    let sizes = |n: &carrywise::netlist::Netlist| (n.outputs().len(), n.registers().len());
+    let mut text = Vec::new();
+    carrywise::format::blif::write(netlist, &mut text).expect("memory");
+    let again = reading::accept(name, &text).netlist;
+    assert_eq!(sizes(&again), sizes(netlist));
+    assert_eq!(again.inputs().len(), netlist.inputs().len());
+    for form in [Form::Ascii, Form::Binary] {
+        let mut bytes = Vec::new();
+        if aiger::write(netlist, form, &mut bytes).is_ok() {
+            let again = reading::accept(name, &bytes).netlist;
+            assert_eq!(sizes(&again), sizes(netlist));
+        }
+    }
+}
+
+const SEEDS: [&str; 15] = [
+    "constraints.blif",
+    "constraints_odd.blif",
+    "state_table_alone.blif",
     "adder_4bit.blif",
     "hierarchy.blif",
     "latches.blif",

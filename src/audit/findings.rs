@@ -69,7 +69,7 @@ pub const RULES: &[Rule] = &[
         what: "An instance names a model the file does not contain, so its function is unknown.",
         why: "Paths end at it and start again behind it. A chain that runs through it is \
               not seen, and the depth told is only that of the parts around it.",
-        advice: "Give the model in the same file, then audit again.",
+        advice: "Give the model in the same file, or its cell with --cells; then audit again.",
         leaves_alone: "Registers: paths end at them because they should.",
         example: ".subckt gauge_filter in=raw out=level\n\
                   with no `.model gauge_filter` in the file.",

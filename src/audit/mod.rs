@@ -127,8 +127,9 @@ pub fn audit_under(
     if applied.is_some() {
         topology = Topology::of(netlist);
     }
-    let timing = Timing::of(netlist, &topology, model);
+    // The search needs the most memory, so it runs before the timing is held.
     let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
+    let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
     let plans = plans(netlist, &topology, &timing, &settings, &chains);
 
@@ -136,7 +137,11 @@ pub fn audit_under(
     let cones = Cones::of(netlist, &topology, &chains);
     let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains);
     let mut records = sources.records(&chains, &plans);
+    // Another model's timing is as large as this one's: one at a time.
+    drop(sources);
+    drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
+    let timing = Timing::of(netlist, &topology, model);
     let longest = i64::from(timing.longest());
     let recommended_set = rebuilds::recommended_set(&records, &plans, longest, unit);
     let unproven: Vec<UnprovenRecord> = unproven
@@ -247,10 +252,7 @@ fn plans(
         return Vec::new();
     }
     let ground = Ground::of(netlist, topology, timing, settings);
-    chains
-        .iter()
-        .map(|chain| plan::plan(&ground, chain))
-        .collect()
+    plan::plan_all(&ground, chains)
 }
 
 fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {

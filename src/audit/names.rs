@@ -3,8 +3,8 @@
 //! A bus is read from the spelling of its bits (`a[3]`, `a<3>`, `a(3)`, `a_3_`,
 //! `a_3`, `a3`; common practice, no source) and told as `a[15:0]`, most
 //! significant bit first, only when every bit agrees and the indices run up or
-//! down by one. Anything else is told by its first and last bit, so that no name
-//! claims an order the netlist does not have.
+//! down by one. Anything else is told by its highest and lowest bit, in that
+//! order too, so that no name claims indices the netlist does not have.
 
 use super::record::{Operand, Wire};
 use crate::netlist::bus::bus_bit;
@@ -56,8 +56,8 @@ fn word_name(netlist: &Netlist, bits: &[Bit]) -> String {
         bus.unwrap_or_else(|| {
             format!(
                 "{}…{}",
-                netlist.signal_name(first),
-                netlist.signal_name(last)
+                netlist.signal_name(last),
+                netlist.signal_name(first)
             )
         })
     };

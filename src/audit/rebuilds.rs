@@ -11,7 +11,7 @@ use super::words::{counted, depth_in, grouped};
 use crate::chain::Chain;
 use crate::netlist::{Netlist, Topology};
 use crate::network::{CarryNetwork, Node};
-use crate::plan::{self, ChainPlan, Ground, Proposal, Settings};
+use crate::plan::{self, ChainPlan, Ground, KindChange, Proposal, Settings};
 use crate::timing::{DelayModel, Timing};
 
 /// Chains whose recommendation is tried under the other delay models.
@@ -114,26 +114,21 @@ pub fn recommended_set(
     longest: i64,
     unit: &str,
 ) -> RecommendedSet {
-    let chosen = || {
-        records.iter().filter_map(|chain| {
+    let chosen: Vec<(&ChainRecord, &ProposalRecord, Option<KindChange>)> = records
+        .iter()
+        .zip(plans)
+        .filter_map(|(chain, plan)| {
             let proposal = chain.proposals.iter().find(|p| p.recommended)?;
-            Some((chain, proposal))
+            let own = plan.recommended.map(|index| plan.proposals[index].kind);
+            Some((chain, proposal, own))
         })
-    };
-    let gain = |chain: &ChainRecord| {
-        let index = records.iter().position(|other| other.id == chain.id)?;
-        let plan = plans.get(index)?;
-        Some(plan.proposals[plan.recommended?].kind)
-    };
-    let best = chosen().min_by_key(|(chain, proposal)| {
-        let own = gain(chain).map_or(0, |kind| kind.after - kind.before);
-        (
-            proposal.block_depth.after,
-            own,
-            proposal.gate_equivalents_added,
-        )
+        .collect();
+    let best = chosen.iter().min_by_key(|(_, proposal, own)| {
+        let own = own.map_or(0, |kind| kind.after - kind.before);
+        let cost = proposal.gate_equivalents_added;
+        (proposal.block_depth.after, own, cost)
     });
-    let Some((chain, proposal)) = best else {
+    let Some(&(chain, proposal, own)) = best else {
         return RecommendedSet {
             proposals: Vec::new(),
             block_depth: Change {
@@ -146,7 +141,7 @@ pub fn recommended_set(
     let name =
         |chain: &ChainRecord, proposal: &ProposalRecord| format!("{}/{}", chain.id, proposal.id);
     let Change { before, after } = proposal.block_depth;
-    let block = match gain(chain) {
+    let block = match own {
         Some(kind) if after >= before && kind.after < kind.before => format!(
             "the longest {} path goes from {} to {}, while the block stays as deep as it is",
             kind.kind,
@@ -155,15 +150,15 @@ pub fn recommended_set(
         ),
         _ => format!("the block goes from {before} to {}", depth_in(after, unit)),
     };
-    let others: Vec<String> = chosen()
-        .filter(|(other, _)| other.id != chain.id)
-        .map(|(chain, proposal)| name(chain, proposal))
+    let others: Vec<_> = chosen
+        .iter()
+        .filter(|(other, ..)| other.id != chain.id)
         .collect();
     let others = match others.len() {
         0 => String::new(),
         1 => format!(
             " {} has a gain of its own; what both bring together is not estimated.",
-            others[0]
+            name(others[0].0, others[0].1)
         ),
         n => format!(
             " {} have a gain of their own; what they bring together is not estimated.",

@@ -10,6 +10,7 @@ use super::entries::{Entries, EntryId, Variant};
 use super::label::Labels;
 use super::links::Links;
 use crate::subject::{Hash, Literal, NodeId, Signatures, Subject};
+use fixedbitset::FixedBitSet;
 use rustc_hash::{FxHashMap, FxHashSet};
 
 /// One position: `sum = a ⊕ b ⊕ carry`, all with their polarity.
@@ -33,11 +34,16 @@ pub(super) struct Lookup(FxHashMap<Hash, Vec<NodeId>>);
 
 impl Lookup {
     /// One pass over the nodes, ascending.
-    pub(super) fn of(subject: &Subject, signatures: &Signatures, wanted: &FxHashSet<Hash>) -> Self {
+    pub(super) fn of(
+        subject: &Subject,
+        signatures: &Signatures,
+        on_net: &FixedBitSet,
+        wanted: &FxHashSet<Hash>,
+    ) -> Self {
         let mut map: FxHashMap<Hash, Vec<NodeId>> = FxHashMap::default();
         for node in subject.nodes() {
             let hash = signatures.hash(node);
-            if wanted.contains(&hash) {
+            if on_net.contains(node.index()) && wanted.contains(&hash) {
                 map.entry(hash).or_default().push(node);
             }
         }

@@ -10,6 +10,7 @@
 use crate::subject::{
     Hash, LinearSet, NodeId, Patterns, Running, Signatures, Simulation, Subject, linear_sets,
 };
+use fixedbitset::FixedBitSet;
 
 /// An entry's index.
 pub(super) type EntryId = u32;
@@ -43,14 +44,23 @@ pub(super) struct Entries {
 
 impl Entries {
     /// Nominates entries from linear sets and hashes their carries.
-    pub(super) fn of(subject: &Subject, signatures: &Signatures, patterns: &Patterns) -> Self {
+    pub(super) fn of(
+        subject: &Subject,
+        signatures: &Signatures,
+        patterns: &Patterns,
+        on_net: &FixedBitSet,
+    ) -> Self {
         let mut entries = Self {
             sum: Vec::new(),
             a: Vec::new(),
             b: Vec::new(),
             majority: Vec::new(),
         };
-        linear_sets(subject, |set| entries.nominate(set));
+        linear_sets(subject, |set| {
+            if on_net.contains(set.sum.index()) {
+                entries.nominate(set, on_net);
+            }
+        });
         entries.sum.shrink_to_fit();
         entries.a.shrink_to_fit();
         entries.b.shrink_to_fit();
@@ -58,9 +68,12 @@ impl Entries {
         entries
     }
 
-    fn nominate(&mut self, set: LinearSet) {
+    fn nominate(&mut self, set: LinearSet, on_net: &FixedBitSet) {
         let mut offer = |a: NodeId, b: NodeId| {
             if a == NodeId::FALSE && b == NodeId::FALSE {
+                return;
+            }
+            if !on_net.contains(a.index()) || !on_net.contains(b.index()) {
                 return;
             }
             let (a, b) = if a == NodeId::FALSE { (b, a) } else { (a, b) };
@@ -94,7 +107,7 @@ impl Entries {
 
     fn hash_majorities(&mut self, subject: &Subject, signatures: &Signatures, patterns: &Patterns) {
         let mut running = vec![Running::default(); self.len()];
-        let mut first = fixedbitset::FixedBitSet::with_capacity(self.len());
+        let mut first = FixedBitSet::with_capacity(self.len());
         let mut simulation = Simulation::new(subject, patterns);
         let mut is_first = true;
         while let Some(words) = simulation.advance() {

@@ -6,17 +6,19 @@
 //! Signatures nominate, the prover decides, and nothing is reported because it
 //! looks like an adder.
 //!
-//! `entries` → `links` → `candidate` → `verify` → `kinds` and `built_as`; `find`
-//! runs them.
+//! `entries` → `links` → `candidate` → `verify` → `trim` → `kinds` and `built_as` →
+//! `collect`; `find` runs them.
 
 mod built_as;
 mod candidate;
+mod collect;
 mod entries;
 mod find;
 mod kinds;
 mod label;
 mod links;
 mod model;
+mod trim;
 mod verify;
 
 pub use find::{Found, Options, Unproven, find};

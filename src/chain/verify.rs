@@ -142,8 +142,14 @@ pub(super) fn verify(
             theorem.bits.push(bits);
             theorem.carries.push(carries);
         } else {
-            let (bits, carries) =
+            let (read, carries) =
                 carry_out(subject, &mut run, bits, entry, carry, value, &operands);
+            // Another polarity of one operand inverts what the sum is.
+            let flip = read.sum != bits.sum;
+            for literal in theorem.sums.iter_mut().last().into_iter().flatten() {
+                *literal = literal.xor(flip);
+            }
+            let bits = read;
             theorem.bits.push(bits);
             theorem.carries.push(carries);
         }

@@ -3,18 +3,22 @@
 
 use super::Status;
 use super::options::AuditArguments;
+use super::search::SearchFolders;
 use super::targets::{self, Target};
 use super::terminal::{colour_on_stderr, complain, page, say};
 use crate::audit::record::Audit;
 use crate::audit::{self, Asserting, AuditError, Origin};
 use crate::format::assumptions::{self, AssumptionsFile};
+use crate::format::files::FileAccess;
 use crate::format::{self, Parsed};
+use crate::netlist::cell::{Cells, Unbound};
 use crate::report::{self, Form, MOST_CHARACTERS, Page};
-use crate::source::{self, Diagnostic, Place, Source};
+use crate::source::{self, Diagnostic, Limits, Place, ReadError, Source};
 use std::fs::File;
 use std::io::{self, BufWriter, ErrorKind, Write};
 use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 
 /// Fewest characters for one netlist when several share a Markdown document.
 const FEWEST_CHARACTERS: usize = 4_000;
@@ -32,7 +36,8 @@ pub fn run(arguments: &AuditArguments) -> Status {
         .filter(|f| !is_stdin(f))
         .cloned()
         .collect();
-    let read_besides = named.iter().chain(&arguments.assume).cloned();
+    let besides = arguments.assume.iter().chain(&arguments.cells);
+    let read_besides = named.iter().chain(besides).cloned();
     let read_besides: Vec<PathBuf> = read_besides.collect();
     let mut targets = match targets::open(&arguments.report, &read_besides) {
         Ok(targets) => targets,
@@ -40,6 +45,10 @@ pub fn run(arguments: &AuditArguments) -> Status {
             complain(&format!("{error:#}"));
             return Status::Unusable;
         }
+    };
+    let cells = match arguments.cells.as_deref().map(cells).transpose() {
+        Ok(cells) => cells,
+        Err(worse) => return worse,
     };
     let asserted = match arguments.assume.as_deref().map(assume).transpose() {
         Ok(asserted) => asserted,
@@ -55,7 +64,7 @@ pub fn run(arguments: &AuditArguments) -> Status {
     for file in &arguments.files {
         // A fault of ours in one netlist is told as such, and the others go on.
         let audited = catch_unwind(AssertUnwindSafe(|| {
-            audit_file(file, arguments, asserted.as_ref())
+            audit_file(file, arguments, asserted.as_ref(), cells.as_ref())
         }));
         let audited = audited.unwrap_or_else(|_| {
             complain(&format!(
@@ -98,9 +107,26 @@ fn shown(file: &Path) -> String {
     source::escape(file.to_string_lossy().as_bytes())
 }
 
+/// Reads a cell library. Cells without a function are not told: the instances
+/// that name one are findings.
+fn cells(file: &Path) -> Result<Cells, Status> {
+    let name = file.to_string_lossy();
+    let source = load_or_say(file, &name, Limits::for_gates(0))?;
+    match format::cells::read(&source) {
+        Ok(library) => Ok(library.cells),
+        Err(errors) => {
+            for error in &errors {
+                say(&error.render(&source, colour_on_stderr()));
+            }
+            Err(Status::Unusable)
+        }
+    }
+}
+
 /// Reads a file of assumptions.
 fn assume(file: &Path) -> Result<AssumptionsFile, Status> {
-    let source = load_or_say(file, &file.to_string_lossy())?;
+    let name = file.to_string_lossy();
+    let source = load_or_say(file, &name, Limits::for_gates(0))?;
     assumptions::read(source.clone()).map_err(|error| {
         say(&error.render(&source, colour_on_stderr()));
         Status::Unusable
@@ -111,26 +137,61 @@ fn audit_file(
     file: &Path,
     arguments: &AuditArguments,
     asserted: Option<&AssumptionsFile>,
+    cells: Option<&Cells>,
 ) -> Result<Audit, Status> {
     let colour = colour_on_stderr();
     let name = file.to_string_lossy().into_owned();
-    let source = load_or_say(file, &name)?;
-    let parsed = format::read(&source, &arguments.reading()).map_err(|errors| {
-        for error in &errors {
-            say(&error.render(&source, colour));
-        }
+    let limits = Limits::for_gates(arguments.max_gates);
+    let source = load_or_say(file, &name, limits)?;
+    let folders = SearchFolders::new(file, &arguments.search_dir, limits).map_err(|error| {
+        complain(&error);
+        Status::Unusable
+    })?;
+    let folders = Arc::new(folders);
+    // A message may be about a file that the netlist names.
+    let tell = |message: &Diagnostic| {
+        let other = folders
+            .opened(&message.file)
+            .filter(|_| message.file != name);
+        say(&message.render(other.as_deref().unwrap_or(&source), colour));
+    };
+    let reading = arguments.reading(Arc::clone(&folders) as Arc<dyn FileAccess>);
+    let parsed = format::read(&source, &reading).map_err(|errors| {
+        errors.iter().for_each(tell);
         Status::Unusable
     })?;
     let Parsed {
         netlist,
         format,
         warnings,
+        ..
     } = parsed;
     if !arguments.quiet {
-        for warning in &warnings {
-            say(&warning.render(&source, colour));
-        }
+        warnings.iter().for_each(tell);
     }
+    let netlist = match cells {
+        None => netlist,
+        Some(cells) => {
+            cells
+                .bind(netlist, arguments.max_gates)
+                .map_err(|fault| {
+                    let (place, help) = match &fault {
+                        Unbound::NoPin { line, .. } => {
+                            (Place::line(*line), "compare with the library")
+                        }
+                        Unbound::Twice { line, .. } => {
+                            (Place::line(*line), "leave one of the connections out")
+                        }
+                        Unbound::TooLarge { .. } => {
+                            (Place::File, "raise --max-gates if this is meant")
+                        }
+                    };
+                    tell(&Diagnostic::error(&name, place, fault.to_string(), help));
+                    Status::Unusable
+                })?
+                .netlist
+        }
+    };
     let origin = Origin {
         file: name,
         format,
@@ -155,24 +216,30 @@ fn audit_file(
     })
 }
 
-fn load_or_say(file: &Path, name: &str) -> Result<Source, Status> {
-    load(file, name).map_err(|error| {
+fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
+    load(file, name, limits).map_err(|error| {
         let nothing = Source {
             name: name.to_owned(),
             bytes: Vec::new(),
         };
-        let text = format!("cannot read the file: {error}");
-        let help = "check its name and that it may be read";
-        say(&Diagnostic::error(name, Place::File, text, help).render(&nothing, colour_on_stderr()));
+        let fault = match error {
+            ReadError::Packed(fault) => *fault,
+            ReadError::Io(error) => {
+                let text = format!("cannot read the file: {error}");
+                let help = "check its name and that it may be read";
+                Diagnostic::error(name, Place::File, text, help)
+            }
+        };
+        say(&fault.render(&nothing, colour_on_stderr()));
         Status::Unusable
     })
 }
 
-fn load(file: &Path, name: &str) -> io::Result<Source> {
+fn load(file: &Path, name: &str, limits: Limits) -> Result<Source, ReadError> {
     if is_stdin(file) {
-        source::read(name, io::stdin().lock())
+        source::read_unpacked(name, io::stdin().lock(), limits)
     } else {
-        source::read(name, File::open(file)?)
+        source::read_unpacked(name, File::open(file)?, limits)
     }
 }
 

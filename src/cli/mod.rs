@@ -7,6 +7,7 @@
 mod audit;
 mod explain;
 mod options;
+mod search;
 mod targets;
 mod terminal;
 

@@ -6,11 +6,13 @@ use crate::audit;
 use crate::audit::record::Severity;
 use crate::chain;
 use crate::format::ReadOptions;
+use crate::format::files::FileAccess;
 use crate::plan::{NewGates, Request};
 use crate::report::Form;
 use crate::timing::DelayModel;
 use clap::{Args, Parser, Subcommand, ValueEnum};
 use std::path::PathBuf;
+use std::sync::Arc;
 
 /// Finds, proves and re-plans the carry chains of a gate-level netlist.
 ///
@@ -53,12 +55,13 @@ pub enum Command {
 const AUDIT_EXAMPLES: &str = "Examples:\n  \
     carrywise audit tide_logger.blif\n  \
     carrywise audit tide_logger.aig --delay pairs --as markdown\n  \
-    zcat tide_logger.blif.gz | carrywise audit - --as json --report review.md";
+    carrywise audit tide_logger.blif.gz --as json --report review.md";
 
 /// What `audit` takes.
 #[derive(Args, Debug)]
 pub struct AuditArguments {
-    /// BLIF or AIGER files, told apart by content; `-` is standard input
+    /// BLIF or AIGER files, plain or packed with gzip or zstd, told apart by content; `-` is
+    /// standard input
     #[arg(required = true, value_name = "FILE")]
     pub files: Vec<PathBuf>,
 
@@ -88,6 +91,11 @@ pub struct AuditArguments {
     #[arg(long, value_name = "MODEL")]
     pub top: Option<String>,
 
+    /// Also read files that `.search` names from below DIR; below the folder of the naming file
+    /// they are read anyway. May be repeated
+    #[arg(long, value_name = "DIR")]
+    pub search_dir: Vec<PathBuf>,
+
     /// Leave out chains of fewer bits than this
     #[arg(long, value_name = "N", default_value_t = 4,
           value_parser = clap::value_parser!(u64).range(1..=1 << 32))]
@@ -98,8 +106,12 @@ pub struct AuditArguments {
     pub max_gates: u64,
 
     /// Solver conflicts allowed per question of a proof
-    #[arg(long, value_name = "N", default_value_t = 100_000)]
+    #[arg(long, value_name = "N", default_value_t = 20_000)]
     pub effort: u64,
+
+    /// Functions of cells: a BLIF file of one-cell models, or a Liberty library
+    #[arg(long, value_name = "PATH")]
+    pub cells: Option<PathBuf>,
 
     /// A YAML file of what may be assumed about the block: tied nets, paths that do not count,
     /// paths of several cycles, arrival and required times
@@ -181,11 +193,12 @@ pub enum NewGatesWord {
 }
 
 impl AuditArguments {
-    /// How to read.
-    pub fn reading(&self) -> ReadOptions {
+    /// How to read, with access to further files.
+    pub fn reading(&self, files: Arc<dyn FileAccess>) -> ReadOptions {
         ReadOptions {
             top: self.top.clone(),
             max_gates: self.max_gates,
+            files: Some(files),
         }
     }
 

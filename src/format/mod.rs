@@ -10,10 +10,18 @@
 //! hierarchy, allocates nothing that the bytes present do not justify, and counts
 //! what a hierarchy expands to before it builds any of it.
 
-mod aiger;
+pub mod aiger;
 pub mod assumptions;
-mod blif;
+pub mod blif;
+pub mod cells;
+pub mod constraints;
+pub mod files;
+mod names;
 mod yaml;
+
+use constraints::Constraints;
+use files::FileAccess;
+use std::sync::Arc;
 
 use crate::netlist::Netlist;
 use crate::source::{Diagnostic, Place, Source, quote};
@@ -41,12 +49,14 @@ impl Format {
 }
 
 /// What to read and how much of it at most.
-#[derive(Clone, PartialEq, Eq, Debug)]
+#[derive(Clone, Debug)]
 pub struct ReadOptions {
     /// The model that is the design; the first of the file when not given.
     pub top: Option<String>,
     /// Most gates the netlist may have once its hierarchy is flat.
     pub max_gates: u64,
+    /// Access to the files that `.search` lines name; without it none is read.
+    pub files: Option<Arc<dyn FileAccess>>,
 }
 
 impl Default for ReadOptions {
@@ -54,6 +64,7 @@ impl Default for ReadOptions {
         Self {
             top: None,
             max_gates: 100_000_000,
+            files: None,
         }
     }
 }
@@ -64,6 +75,8 @@ pub struct Parsed {
     pub netlist: Netlist,
     /// The format it was in.
     pub format: Format,
+    /// What it says about time, load and area.
+    pub constraints: Constraints,
     /// What was odd, in the order of the text.
     pub warnings: Vec<Diagnostic>,
 }
@@ -135,16 +148,18 @@ pub fn detect(source: &Source) -> Result<Format, Diagnostic> {
 /// Located errors, the first ones of a BLIF file or the first of an AIGER file.
 pub fn read(source: &Source, options: &ReadOptions) -> Result<Parsed, Vec<Diagnostic>> {
     let format = detect(source).map_err(|error| vec![error])?;
-    let (netlist, warnings) = match format {
-        Format::Blif => blif::read(source, options)?,
+    match format {
+        Format::Blif => blif::read(source, options),
         Format::AigerAscii | Format::AigerBinary => {
-            aiger::read(source, format == Format::AigerBinary, options)
-                .map_err(|error| vec![error])?
+            let binary = format == Format::AigerBinary;
+            let read = aiger::read(source, binary, options);
+            let (netlist, warnings) = read.map_err(|error| vec![error])?;
+            Ok(Parsed {
+                netlist,
+                format,
+                constraints: Constraints::default(),
+                warnings,
+            })
         }
-    };
-    Ok(Parsed {
-        netlist,
-        format,
-        warnings,
-    })
+    }
 }

@@ -16,6 +16,7 @@ mod asserted;
 pub mod assume;
 mod builder;
 pub mod bus;
+pub mod cell;
 pub mod function;
 mod graph;
 pub mod health;
@@ -34,8 +35,8 @@ pub use function::{Cover, Function, Shape, TruthTable};
 pub use graph::{NetGraph, Readers, Topology};
 pub use id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 pub use model::{
-    Bit, BlackBox, Contention, Driver, Initial, Netlist, Output, Property, PropertyKind, Register,
-    Signal, Trigger,
+    Bit, BlackBox, BoxKind, Contention, Driver, Initial, Netlist, Output, Property, PropertyKind,
+    Register, Signal, Trigger,
 };
 pub use names::{NameId, Names};
 pub use pattern::Pattern;

@@ -131,15 +131,35 @@ pub struct Register {
     pub line: u32,
 }
 
+/// What a black box is in its file.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub enum BoxKind {
+    /// An instance of a model that is not there.
+    Model,
+    /// A cell of a library.
+    Cell,
+    /// A latch cell of a library; its control is the input whose pin has an empty
+    /// name.
+    LatchCell(Initial),
+    /// A model that gives its machine as a state table only.
+    StateTable,
+}
+
 /// An instance whose function is unknown.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub struct BlackBox {
     /// Name of the missing model.
     pub model: NameId,
+    /// What it is in its file.
+    pub kind: BoxKind,
     /// Nets the box reads.
     pub inputs: Vec<NetId>,
     /// Nets the box drives.
     pub outputs: Vec<NetId>,
+    /// The box's own names for them: first of the inputs, then of the outputs.
+    pub pins: Vec<NameId>,
+    /// The instance it stands in.
+    pub scope: ScopeId,
     /// Source line, 0 when unknown.
     pub line: u32,
 }

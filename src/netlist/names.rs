@@ -5,10 +5,22 @@ use hashbrown::HashTable;
 use rustc_hash::FxHasher;
 use std::borrow::Cow;
 use std::hash::Hasher;
+use std::num::NonZeroU32;
 
-/// One interned name. Equal ids mean equal bytes.
+/// One interned name. Equal ids mean equal bytes. An optional name takes four
+/// bytes, too.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
-pub struct NameId(pub(crate) u32);
+pub struct NameId(NonZeroU32);
+
+impl NameId {
+    fn new(index: u32) -> Self {
+        Self(NonZeroU32::MIN.saturating_add(index))
+    }
+
+    pub(crate) fn index(self) -> u32 {
+        self.0.get() - 1
+    }
+}
 
 /// The table of interned names: one byte arena and a hash index over it.
 #[derive(Clone, Default)]
@@ -40,7 +52,7 @@ impl Names {
     pub fn intern(&mut self, name: &[u8]) -> NameId {
         let hashed = hash(name);
         if let Some(&id) = self.index.find(hashed, |&id| self.slice(id) == name) {
-            return NameId(id);
+            return NameId::new(id);
         }
         let id = u32::try_from(self.ends.len()).expect("fewer than 2^32 names");
         self.bytes.extend_from_slice(name);
@@ -51,19 +63,25 @@ impl Names {
             let start = if id == 0 { 0 } else { ends[id - 1] };
             hash(&bytes[start as usize..ends[id] as usize])
         });
-        NameId(id)
+        NameId::new(id)
     }
 
-    /// The id of `name` when it has been interned.
-    pub fn find(&self, name: &[u8]) -> Option<NameId> {
+    /// The id of `name` when it has been interned. A finished netlist keeps no
+    /// index: there, nothing is found.
+    pub(crate) fn find(&self, name: &[u8]) -> Option<NameId> {
         self.index
             .find(hash(name), |&id| self.slice(id) == name)
-            .map(|&id| NameId(id))
+            .map(|&id| NameId::new(id))
+    }
+
+    /// Whether any name begins with `prefix`.
+    pub fn any_begins_with(&self, prefix: &[u8]) -> bool {
+        (0..self.ends.len() as u32).any(|id| self.slice(id).starts_with(prefix))
     }
 
     /// The bytes of a name.
     pub fn bytes(&self, id: NameId) -> &[u8] {
-        self.slice(id.0)
+        self.slice(id.index())
     }
 
     /// The name as text; bytes that are not UTF-8 become U+FFFD.
@@ -83,6 +101,7 @@ impl Names {
 
     /// Drops the hash index, which only interning needs.
     pub(crate) fn seal(&mut self) {
+        self.index = HashTable::new();
         self.bytes.shrink_to_fit();
         self.ends.shrink_to_fit();
     }

@@ -62,7 +62,8 @@ struct Writer<'r, 's, 'a> {
     run: &'r DryRun<'s, 'a>,
     old: &'a Netlist,
     builder: NetlistBuilder,
-    prefix: &'r str,
+    /// No old name begins with it.
+    prefix: String,
     made: usize,
     nets: Vec<Option<Signal>>,
     scopes: FxHashMap<ScopeId, ScopeId>,
@@ -71,8 +72,12 @@ struct Writer<'r, 's, 'a> {
 }
 
 impl<'r, 's, 'a> Writer<'r, 's, 'a> {
-    fn new(run: &'r DryRun<'s, 'a>, prefix: &'r str) -> Self {
+    fn new(run: &'r DryRun<'s, 'a>, prefix: &str) -> Self {
         let old = run.site.ground.netlist;
+        let mut prefix = prefix.to_owned();
+        while old.names().any_begins_with(prefix.as_bytes()) {
+            prefix.push('_');
+        }
         let mut builder = NetlistBuilder::new();
         if old.has_inverted_edges() {
             builder.set_inverted_edges();
@@ -250,13 +255,9 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
         if self.run.overlay.style() == GateStyle::AndInverter {
             return self.builder.add_net(None, top);
         }
-        let name = loop {
-            self.made += 1;
-            let text = format!("{}{}", self.prefix, self.made);
-            if self.old.names().find(text.as_bytes()).is_none() {
-                break self.builder.name(text.as_bytes());
-            }
-        };
+        self.made += 1;
+        let text = format!("{}{}", self.prefix, self.made);
+        let name = self.builder.name(text.as_bytes());
         self.builder.add_net(Some(name), top)
     }
 
@@ -346,8 +347,11 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
         for each in self.old.boxes() {
             let copy = BlackBox {
                 model: self.name(each.model),
+                kind: each.kind,
                 inputs: each.inputs.iter().map(|&net| self.net_now(net)).collect(),
                 outputs: each.outputs.iter().map(|&net| self.net_now(net)).collect(),
+                pins: each.pins.iter().map(|&pin| self.name(pin)).collect(),
+                scope: self.scope(each.scope),
                 line: each.line,
             };
             self.builder.add_box(copy);

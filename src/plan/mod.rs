@@ -26,6 +26,6 @@ pub use free_carry::depth_with_free_carry;
 pub use ground::Ground;
 pub use materialise::{Rebuilt, materialise};
 pub use overlay::{GateStyle, Literal, Overlay};
-pub use propose::{ChainPlan, NotPlanned, Proposal, plan};
+pub use propose::{ChainPlan, MOST_PLANNED, NotPlanned, Proposal, plan, plan_all};
 pub use settings::{DEFAULT_MARGIN_PERCENT, NewGates, Request, Settings, SettingsError};
 pub use site::{Refused, Site};

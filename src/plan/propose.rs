@@ -79,15 +79,41 @@ pub struct ChainPlan {
     pub reason: String,
 }
 
+/// Most chains that are planned in one netlist, the most critical first: past
+/// these nobody reads the proposals one by one, and dry runs of thousands of
+/// equal chains would take longer than everything else.
+pub const MOST_PLANNED: usize = 256;
+
+/// Plans the chains of a netlist, in their order.
+pub fn plan_all(ground: &Ground<'_>, chains: &[Chain]) -> Vec<ChainPlan> {
+    let mut plans: Vec<ChainPlan> = chains.iter().map(|chain| today(ground, chain)).collect();
+    let mut order: Vec<usize> = (0..plans.len()).collect();
+    order.sort_by_key(|&i| (plans[i].slack.map_or(i32::MAX, |slack| slack.ticks), i));
+    for (rank, i) in order.into_iter().enumerate() {
+        let today = plans[i].clone();
+        plans[i] = if rank < MOST_PLANNED {
+            plan_from(ground, &chains[i], today)
+        } else {
+            let why = format!("the {MOST_PLANNED} chains nearest to a longest path were planned");
+            refuse(today, why)
+        };
+    }
+    plans
+}
+
 /// Plans one chain.
 pub fn plan(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
-    let mut plan = today(ground, chain);
-    let refuse = |mut plan: ChainPlan, why: String| {
-        let slack = plan.slack.map(|slack| slack.ticks);
-        plan.reason.clone_from(&why);
-        plan.not_planned = Some(NotPlanned { why, slack });
-        plan
-    };
+    plan_from(ground, chain, today(ground, chain))
+}
+
+fn refuse(mut plan: ChainPlan, why: String) -> ChainPlan {
+    let slack = plan.slack.map(|slack| slack.ticks);
+    plan.reason.clone_from(&why);
+    plan.not_planned = Some(NotPlanned { why, slack });
+    plan
+}
+
+fn plan_from(ground: &Ground<'_>, chain: &Chain, mut plan: ChainPlan) -> ChainPlan {
     let Some(slack) = plan.slack else {
         return refuse(plan, "no path leads through it to an end".to_owned());
     };

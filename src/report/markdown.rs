@@ -89,7 +89,7 @@ fn table(grid: &Grid) -> String {
 }
 
 /// Text in which no character starts Markdown, HTML, mathematics, a mention or
-/// an issue reference; read back by a Markdown reader it is the text itself.
+/// a reference; read back by a Markdown reader it is the text itself.
 fn escaped(text: &str) -> String {
     let mut safe = String::with_capacity(text.len() + 8);
     let mut before = ' ';

@@ -12,10 +12,12 @@
 mod diagnostic;
 mod excerpt;
 mod nearest;
+mod unpack;
 
 pub use diagnostic::{Diagnostic, Place, Severity};
 pub use excerpt::{escape, quote};
 pub use nearest::{distance, nearest};
+pub use unpack::{Limits, ReadError, read_unpacked};
 
 use std::io::{self, Read};
 
@@ -29,9 +31,14 @@ pub struct Source {
 }
 
 impl Source {
-    /// The name without folders and without its last extension.
+    /// The name without folders and without its last extension, that of a packing
+    /// left aside.
     pub fn stem(&self) -> &str {
         let file = self.name.rsplit(['/', '\\']).next().unwrap_or(&self.name);
+        let file = [".gz", ".zst", ".zstd"]
+            .iter()
+            .find_map(|packed| file.strip_suffix(packed).filter(|rest| !rest.is_empty()))
+            .unwrap_or(file);
         let stem = match file.rsplit_once('.') {
             Some((stem, _)) if !stem.is_empty() => stem,
             _ => file,
@@ -50,7 +57,7 @@ impl Source {
     }
 }
 
-/// Reads all of `reader` under the name `name`.
+/// Reads all of `reader` under the name `name`, as it is.
 ///
 /// # Errors
 /// Whatever the reader fails with.

@@ -1,14 +1,19 @@
 //! Records made by hand, for the reports to render: the tide-gauge logger with
 //! one ripple total on its longest path, and a record whose every name is as
-//! hostile as a netlist can make it.
+//! hostile as a netlist can make it; and the audits of real netlists.
 
 use carrywise::audit::record::*;
+use carrywise::audit::{self, Options, Origin};
+use carrywise::format::{self, ReadOptions};
+use carrywise::source::Source;
 
 /// Text that would do harm unescaped, in Markdown, a terminal, YAML or JSON.
+#[allow(dead_code)]
 pub const HOSTILE: &str = "a|b<script>`x`\\[3]*_~&#@team \u{1b}[31m\u{7}\u{202e}\u{e9}\u{1f30a}'\": - # $m$ www.x http://y";
 
 /// The logger's flat netlist as a record. The figures are invented but agree
 /// with each other.
+#[allow(dead_code)]
 pub fn tide_logger() -> Audit {
     let net = |base: &str, bit: usize| Wire::Net(format!("{base}[{bit}]"));
     let bus = |base: &str| Operand {
@@ -286,6 +291,7 @@ pub fn tide_logger() -> Audit {
     }
 }
 
+#[allow(dead_code)]
 fn proposal(
     id: &str,
     scheme: &str,
@@ -331,6 +337,7 @@ fn proposal(
 }
 
 /// The same record with [`HOSTILE`] wherever a file can put text of its own.
+#[allow(dead_code)]
 pub fn hostile() -> Audit {
     let mut audit = tide_logger();
     let evil = || HOSTILE.to_owned();
@@ -364,4 +371,29 @@ pub fn hostile() -> Audit {
         effect: Some(evil()),
     }];
     audit
+}
+
+/// The audit of a netlist under the default options.
+#[allow(dead_code)]
+pub fn audited(name: &str, bytes: &[u8]) -> Audit {
+    let source = Source {
+        name: name.to_owned(),
+        bytes: bytes.to_vec(),
+    };
+    let parsed = format::read(&source, &ReadOptions::default())
+        .unwrap_or_else(|errors| panic!("{}", errors[0]));
+    let origin = Origin {
+        file: source.name.clone(),
+        format: parsed.format,
+        sha256: audit::digest(&source.bytes),
+    };
+    audit::audit(&parsed.netlist, &origin, &Options::default()).expect("the defaults fit")
+}
+
+/// The audit of a file under `fixtures/`.
+#[allow(dead_code)]
+pub fn fixture(name: &str) -> Audit {
+    let path = format!("{}/fixtures/{name}", env!("CARGO_MANIFEST_DIR"));
+    let bytes = std::fs::read(&path).unwrap_or_else(|error| panic!("{path}: {error}"));
+    audited(name, &bytes)
 }

@@ -16,7 +16,11 @@ mod ascii;
 mod binary;
 mod header;
 mod symbols;
+mod synthesis;
 mod tokens;
+mod write;
+
+pub use write::{Form, WriteError, write};
 
 use super::ReadOptions;
 use crate::netlist::{

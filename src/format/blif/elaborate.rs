@@ -8,12 +8,13 @@
 //!
 //! The size of the result is known and bounded before the first net is made.
 
+use super::grammar::Called;
 use super::link::{Callee, Design};
 use super::model::{Instance, Model};
 use crate::netlist::{
-    BlackBox, NetId, Netlist, NetlistBuilder, Register, ScopeId, Signal, TooLarge,
+    BlackBox, BoxKind, NetId, Netlist, NetlistBuilder, Register, ScopeId, Signal, TooLarge,
 };
-use crate::source::{Diagnostic, Place, Source, quote};
+use crate::source::{Diagnostic, Place, quote};
 
 /// What each gate that is allowed may bring of other things, on average, before
 /// a hierarchy is refused; a hierarchy can repeat those without a single gate.
@@ -31,6 +32,9 @@ const OPEN: u32 = u32::MAX;
 struct Frame {
     model: usize,
     scope: ScopeId,
+    /// For models of another file: the line that stands for all of them, that of
+    /// the instance in the file that was asked for.
+    stand_in: Option<u32>,
     /// By net of the model: the net of the netlist.
     nets: Vec<u32>,
     next_gate: usize,
@@ -39,16 +43,16 @@ struct Frame {
 
 /// Builds the flat netlist.
 pub(super) fn elaborate(
-    source: &Source,
+    file: &str,
     design: &Design,
     builder: NetlistBuilder,
     max_gates: u64,
 ) -> Result<Netlist, Diagnostic> {
-    check_size(source, design, &builder, max_gates)?;
+    check_size(file, design, &builder, max_gates)?;
     let line = design.models[design.top].line;
     build(design, builder).map_err(|fault| {
         Diagnostic::error(
-            &source.name,
+            file,
             Place::line(line),
             format!(
                 "expected at most {} {}, found more",
@@ -60,7 +64,7 @@ pub(super) fn elaborate(
 }
 
 fn check_size(
-    source: &Source,
+    file: &str,
     design: &Design,
     builder: &NetlistBuilder,
     max_gates: u64,
@@ -95,7 +99,7 @@ fn check_size(
                 count.to_string()
             };
             return Err(Diagnostic::error(
-                &source.name,
+                file,
                 Place::line(top.line),
                 format!(
                     "expected at most {limit} {what}, found a model {} that expands to {count}",
@@ -114,17 +118,18 @@ fn build(design: &Design, mut builder: NetlistBuilder) -> Result<Netlist, TooLar
     let mut frame = Frame {
         model: design.top,
         scope: ScopeId::new(0),
+        stand_in: (top.file != 0).then_some(0),
         nets: vec![OPEN; top.nets.len()],
         next_gate: 0,
         next_instance: 0,
     };
     open(&mut builder, top, &mut frame)?;
     for port in &top.inputs {
-        builder.add_input(net(&frame, port.net), port.line);
+        builder.add_input(net(&frame, port.net), frame.line(port.line));
     }
     for port in &top.outputs {
         let signal = Signal::plain(net(&frame, port.net));
-        builder.add_output(signal, None, port.line);
+        builder.add_output(signal, None, frame.line(port.line));
     }
     registers(&mut builder, top, &frame);
     let mut stack = vec![frame];
@@ -160,6 +165,9 @@ fn build(design: &Design, mut builder: NetlistBuilder) -> Result<Netlist, TooLar
                 let mut frame = Frame {
                     model: callee,
                     scope: builder.add_scope(frame.scope, instance.name),
+                    stand_in: frame
+                        .stand_in
+                        .or_else(|| (inner.file != 0).then_some(instance.line)),
                     nets,
                     next_gate: 0,
                     next_instance: 0,
@@ -171,6 +179,14 @@ fn build(design: &Design, mut builder: NetlistBuilder) -> Result<Netlist, TooLar
         }
     }
     Ok(builder.finish())
+}
+
+impl Frame {
+    /// The line to tell of something on line `line` of its model.
+    #[inline]
+    fn line(&self, line: u32) -> u32 {
+        self.stand_in.unwrap_or(line)
+    }
 }
 
 #[inline]
@@ -196,7 +212,7 @@ fn registers(builder: &mut NetlistBuilder, model: &Model, frame: &Frame) {
             trigger: latch.trigger,
             control: latch.control.map(|control| net(frame, control)),
             initial: latch.initial,
-            line: latch.line,
+            line: frame.line(latch.line),
         });
     }
 }
@@ -215,7 +231,8 @@ fn gates(
         fan_ins.extend(pins.iter().map(|&pin| net(frame, pin)));
         let gate = &model.gates[i];
         let output = net(frame, output);
-        builder.add_gate(gate.function, &fan_ins, output, frame.scope, gate.line)?;
+        let line = frame.line(gate.line);
+        builder.add_gate(gate.function, &fan_ins, output, frame.scope, line)?;
     }
     frame.next_gate = until;
     Ok(())
@@ -230,18 +247,31 @@ fn black_box(
     drives: &[u32],
 ) {
     let (mut inputs, mut outputs) = (Vec::new(), Vec::new());
+    let (mut pins, mut driven) = (Vec::new(), Vec::new());
     for at in model.binding_range(index) {
         let actual = net(frame, model.bindings[at].actual);
+        let formal = model.bindings[at].formal;
         if drives[at] == 1 {
             outputs.push(actual);
+            driven.push(formal);
         } else {
             inputs.push(actual);
+            pins.push(formal);
         }
     }
+    pins.append(&mut driven);
     builder.add_box(BlackBox {
         model: instance.model,
+        kind: match instance.called {
+            Called::Model => BoxKind::Model,
+            Called::Cell => BoxKind::Cell,
+            Called::LatchCell => BoxKind::LatchCell(instance.initial),
+            Called::StateTable => BoxKind::StateTable,
+        },
         inputs,
         outputs,
-        line: instance.line,
+        pins,
+        scope: frame.scope,
+        line: frame.line(instance.line),
     });
 }

@@ -9,14 +9,15 @@ use super::lines::Lines;
 use super::model::{Binding, Gate, Instance, Latch, Local, Port};
 use super::parse::{Block, CLOCK, INPUT, OUTPUT, Reader};
 use super::tally::Oddity;
-use crate::source::{Diagnostic, Place};
+use crate::netlist::{Initial, NameId};
+use crate::source::{Diagnostic, Place, quote};
 
-impl Reader<'_> {
+impl Reader {
     /// The net of a name in the open model.
     #[inline]
     fn net(&mut self, name: &[u8]) -> Local {
         let id = self.builder.name(name);
-        let index = id.0 as usize;
+        let index = id.index() as usize;
         if index >= self.locals.len() {
             self.locals.resize(self.builder.names().len(), (0, 0));
         }
@@ -41,6 +42,9 @@ impl Reader<'_> {
             }
             let mark = self.marks[index];
             self.marks[index] |= list;
+            if list == CLOCK && mark & CLOCK == 0 {
+                self.model(line).clocks.push(net);
+            }
             // A clock is an input port, listed a second time or not.
             let same = if list == OUTPUT {
                 OUTPUT
@@ -103,7 +107,7 @@ impl Reader<'_> {
     #[cold]
     fn too_long(&mut self, line: u32, what: &str) {
         self.errors.push(Diagnostic::error(
-            &self.source.name,
+            self.file_name(),
             Place::line(line),
             format!("expected fewer than {} {what} in one model", u32::MAX),
             "netlists beyond this size are not read",
@@ -135,11 +139,17 @@ impl Reader<'_> {
         self.model(line);
         let model = self.builder.name(model_name);
         let mut bare = 0;
+        let mut initial = Initial::Unknown;
         for word in words {
             // A latch cell names its control and initial value without `=`.
             if called == Called::LatchCell && !word.contains(&b'=') && bare < 2 {
                 bare += 1;
-                if bare == 1 && word != b"NIL" {
+                if bare == 2 {
+                    match grammar::initial_value(text, word) {
+                        Ok(value) => initial = value,
+                        Err(fault) => return self.fault(lines, fault),
+                    }
+                } else if word != b"NIL" {
                     let formal = self.builder.name(b"");
                     let actual = self.net(word);
                     self.model(line).bindings.push(Binding { formal, actual });
@@ -156,11 +166,25 @@ impl Reader<'_> {
                 Err(fault) => return self.fault(lines, fault),
             }
         }
+        if called == Called::LatchCell && bare == 0 {
+            let help = "write `.mlatch` cell, the connections, the control net or `NIL`, and the \
+                        initial value, which may be left out";
+            return self.fault(
+                lines,
+                grammar::missing(text, "the control net or `NIL`", help),
+            );
+        }
+        self.add_instance(line, called, model, initial);
+    }
+
+    /// Closes an instance whose connections have been added.
+    fn add_instance(&mut self, line: u32, called: Called, model: NameId, initial: Initial) {
         let ordinals = &mut self.model(line).ordinals;
         let ordinal = ordinals.entry(model).or_insert(0);
         *ordinal += 1;
         let suffix = format!("_{ordinal}");
-        let name = self.builder.name(&[model_name, suffix.as_bytes()].concat());
+        let full = [self.builder.names().bytes(model), suffix.as_bytes()].concat();
+        let name = self.builder.name(&full);
         let open = self.model(line);
         let gates_before = open.gates.len() as u32;
         match u32::try_from(open.bindings.len()) {
@@ -171,8 +195,64 @@ impl Reader<'_> {
                 line,
                 gates_before,
                 end,
+                initial,
             }),
             Err(_) => self.too_long(line, "connections"),
         }
+    }
+
+    /// A state table at the end of its model: logic beside it says the same, and
+    /// without logic the model is a black box between its ports.
+    pub(super) fn settle_table(&mut self) {
+        let Some(model) = self.models.last() else {
+            return;
+        };
+        let Some(table) = model.table else { return };
+        let name = model.name;
+        if model.has_logic() {
+            let place = || Place::line(table.line);
+            return self.tally.count(Oddity::StateTable, b"", 1, place);
+        }
+        let clocks = &model.clocks;
+        let inputs = model
+            .inputs
+            .iter()
+            .filter(|port| !clocks.contains(&port.net));
+        let sides = [
+            (".i", "inputs", table.inputs, inputs.count()),
+            (".o", "outputs", table.outputs, model.outputs.len()),
+        ];
+        // A faulty table has been told already.
+        let sides = sides.iter().filter(|_| self.errors.is_empty());
+        for &(word, side, stated, listed) in sides {
+            if stated.map(u64::from) != Some(listed as u64) {
+                let found = stated.map_or("none".to_owned(), |n| n.to_string());
+                let error = Diagnostic::error(
+                    self.file_name(),
+                    Place::line(table.line),
+                    format!(
+                        "expected `{word} {listed}` in this state table, as many as model {} has \
+                         {side}, found {found}",
+                        quote(self.builder.names().bytes(name))
+                    ),
+                    "a state table without logic reads every listed input and drives every output",
+                );
+                self.errors.push(error);
+                return;
+            }
+        }
+        let ports = model.inputs.iter().chain(&model.outputs);
+        let mut bindings: Vec<Binding> = Vec::new();
+        for port in ports {
+            bindings.push(Binding {
+                formal: model.nets[port.net as usize],
+                actual: port.net,
+            });
+        }
+        let subject = self.builder.names().bytes(name);
+        let place = || Place::line(table.line);
+        self.tally.count(Oddity::StateTableAlone, subject, 1, place);
+        self.model(table.line).bindings = bindings;
+        self.add_instance(table.line, Called::StateTable, name, Initial::Unknown);
     }
 }

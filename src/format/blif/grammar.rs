@@ -9,6 +9,8 @@
 //! A [`Fault`] points into the line; it becomes a located message on the cold
 //! path.
 
+use super::constraint::{self, Constraint};
+use super::kiss;
 use super::lines::is_blank;
 use crate::netlist::{Initial, Trigger};
 use crate::source::quote;
@@ -32,6 +34,13 @@ pub(super) struct Fault {
 #[derive(Clone, Copy)]
 pub(super) struct Words<'a>(&'a [u8]);
 
+impl<'a> Words<'a> {
+    /// The words of a line.
+    pub(super) fn new(line: &'a [u8]) -> Self {
+        Self(line)
+    }
+}
+
 impl<'a> Iterator for Words<'a> {
     type Item = &'a [u8];
 
@@ -52,6 +61,8 @@ pub(super) enum Called {
     Cell,
     /// `.mlatch`: a latch cell of a library.
     LatchCell,
+    /// A model that gives its machine as a state table only.
+    StateTable,
 }
 
 /// A `.latch` line.
@@ -82,6 +93,12 @@ pub(super) enum Statement<'a> {
     End(Words<'a>),
     StartKiss,
     EndKiss,
+    /// `.latch_order` or `.code`, which follow a state table.
+    AfterKiss,
+    /// `.search`: another file to take models from.
+    Search(&'a [u8]),
+    /// A line about clocks, times, loads, delays or areas.
+    Constraint(Constraint<&'a [u8]>),
     /// Any other dot-word.
     Unknown(&'a [u8]),
 }
@@ -138,8 +155,9 @@ pub(super) fn offset(line: &[u8], part: &[u8]) -> usize {
     (part.as_ptr() as usize).saturating_sub(line.as_ptr() as usize)
 }
 
+/// A fault of `part`, a slice of the line.
 #[cold]
-fn fault(line: &[u8], part: &[u8], message: String, help: &'static str) -> Fault {
+pub(super) fn fault(line: &[u8], part: &[u8], message: String, help: &'static str) -> Fault {
     Fault {
         at: offset(line, part).min(line.len()),
         length: part.len(),
@@ -169,7 +187,7 @@ pub(super) fn is_statement(line: &[u8]) -> bool {
 
 /// A line that begins with a dot.
 pub(super) fn statement(line: &[u8]) -> Result<Statement<'_>, Fault> {
-    let mut words = Words(line);
+    let mut words = Words::new(line);
     let keyword = words.next().unwrap_or_default();
     let parsed = match keyword {
         b".names" => Statement::Names(words),
@@ -198,14 +216,45 @@ pub(super) fn statement(line: &[u8]) -> Result<Statement<'_>, Fault> {
             )?;
             Statement::Exdc
         }
-        b".start_kiss" => Statement::StartKiss,
-        b".end_kiss" => Statement::EndKiss,
-        other => Statement::Unknown(other),
+        b".start_kiss" => {
+            nothing_more(line, words, "the table begins in the next line")?;
+            Statement::StartKiss
+        }
+        b".end_kiss" => {
+            nothing_more(
+                line,
+                words,
+                "what follows the table begins in the next line",
+            )?;
+            Statement::EndKiss
+        }
+        b".latch_order" => Statement::AfterKiss,
+        b".code" => {
+            kiss::code(line, words)?;
+            Statement::AfterKiss
+        }
+        b".search" => {
+            let help = "write `.search` and the name of one file, without blanks";
+            let file = words
+                .next()
+                .ok_or_else(|| missing(line, "the name of a file", help))?;
+            nothing_more(line, words, help)?;
+            Statement::Search(file)
+        }
+        other => match constraint::constraint(line, other, words)? {
+            Some(constraint) => Statement::Constraint(constraint),
+            None => Statement::Unknown(other),
+        },
     };
     Ok(parsed)
 }
 
-fn nothing_more(line: &[u8], mut words: Words<'_>, help: &'static str) -> Result<(), Fault> {
+/// Refuses a word where the line should end.
+pub(super) fn nothing_more(
+    line: &[u8],
+    mut words: Words<'_>,
+    help: &'static str,
+) -> Result<(), Fault> {
     match words.next() {
         None => Ok(()),
         Some(word) => Err(fault(
@@ -226,7 +275,7 @@ fn instance<'a>(
         let help = "write the name, then `formal=actual` for each connection";
         let expected = match called {
             Called::Model => "the name of a model",
-            Called::Cell | Called::LatchCell => "the name of a cell",
+            _ => "the name of a cell",
         };
         return Err(missing(line, expected, help));
     };
@@ -247,6 +296,22 @@ pub(super) fn binding<'a>(line: &[u8], word: &'a [u8]) -> Result<(&'a [u8], &'a 
             format!("expected `formal=actual`, found {}", quote(word)),
             "name the model's port, `=` and the net it is connected to, without blanks; leave \
              out a port that is not connected",
+        )),
+    }
+}
+
+/// The initial value of a latch cell.
+pub(super) fn initial_value(line: &[u8], word: &[u8]) -> Result<Initial, Fault> {
+    match initial(word) {
+        Ok((_, value)) => Ok(value),
+        Err(_) => Err(fault(
+            line,
+            word,
+            format!(
+                "expected an initial value (`0`, `1`, `2` or `3`), found {}",
+                quote(word)
+            ),
+            "the initial value comes last",
         )),
     }
 }
@@ -333,7 +398,7 @@ pub(super) fn row(line: &[u8], inputs: usize) -> Result<(&[u8], bool), Fault> {
 #[cold]
 fn row_fault(line: &[u8], inputs: usize) -> Fault {
     const COLUMNS: &str = "a row has one column for each input, a blank, and the output column";
-    let mut words = Words(line);
+    let mut words = Words::new(line);
     let first = words.next().unwrap_or_default();
     if inputs > 0 {
         if let Some(at) = first.iter().position(|b| !matches!(b, b'0' | b'1' | b'-')) {

@@ -11,7 +11,7 @@ use super::grammar::Called;
 use super::model::{Local, Model, Port};
 use super::tally::{Oddity, Tally};
 use crate::netlist::{NameId, Names};
-use crate::source::{Diagnostic, Place, Source, escape, quote};
+use crate::source::{Diagnostic, Place, escape, quote};
 use rustc_hash::FxHashMap;
 
 /// Most models that a message about recursion names.
@@ -74,7 +74,7 @@ pub(super) struct Design {
 
 /// Links the models below the top one.
 pub(super) fn link(
-    source: &Source,
+    files: &[String],
     models: Vec<Model>,
     names: &Names,
     top: Option<&str>,
@@ -84,11 +84,11 @@ pub(super) fn link(
     for (i, model) in models.iter().enumerate() {
         by_name.insert(model.name, i);
     }
-    let top = find_top(source, &models, names, top, &by_name).map_err(|error| vec![error])?;
-    let order = order(source, &models, names, top, &by_name).map_err(|error| vec![error])?;
+    let top = find_top(files, &models, names, top, &by_name).map_err(|error| vec![error])?;
+    let order = order(files, &models, names, top, &by_name).map_err(|error| vec![error])?;
     let count = models.len();
     let mut linker = Linker {
-        source,
+        files,
         names,
         by_name,
         tally,
@@ -117,7 +117,7 @@ pub(super) fn link(
 }
 
 fn find_top(
-    source: &Source,
+    files: &[String],
     models: &[Model],
     names: &Names,
     top: Option<&str>,
@@ -137,7 +137,7 @@ fn find_top(
         held.push(format!("{} more", models.len() - SHOWN));
     }
     Err(Diagnostic::error(
-        &source.name,
+        &files[0],
         Place::File,
         format!(
             "expected a model {} as the top, found {}",
@@ -150,7 +150,7 @@ fn find_top(
 
 /// The models below `top`, each after those it instantiates.
 fn order(
-    source: &Source,
+    files: &[String],
     models: &[Model],
     names: &Names,
     top: usize,
@@ -171,6 +171,7 @@ fn order(
             continue;
         };
         *next += 1;
+        let file = models[*model].file;
         if instance.called != Called::Model {
             continue;
         }
@@ -194,16 +195,20 @@ fn order(
                     told.push(format!("{} more", stack.len() - start - SHOWN));
                 }
                 told.push(escape(names.bytes(models[callee].name)));
-                return Err(Diagnostic::error(
-                    &source.name,
+                let error = Diagnostic::error(
+                    &files[file],
                     Place::line(instance.line),
                     format!(
                         "expected a hierarchy without recursion, found {}",
                         told.join(" -> ")
                     ),
                     "a model cannot contain itself; give one of the instances another model",
-                )
-                .and(models[callee].line, "this model contains itself"));
+                );
+                return Err(if models[callee].file == file {
+                    error.and(models[callee].line, "this model contains itself")
+                } else {
+                    error
+                });
             }
         }
     }
@@ -215,7 +220,7 @@ const DRIVEN: u8 = 1;
 const READ: u8 = 2;
 
 struct Linker<'a> {
-    source: &'a Source,
+    files: &'a [String],
     names: &'a Names,
     by_name: FxHashMap<NameId, usize>,
     tally: &'a mut Tally,
@@ -229,6 +234,7 @@ struct Linker<'a> {
 
 impl Linker<'_> {
     fn model(&mut self, index: usize) {
+        self.tally.file = self.models[index].file;
         let mut marks = vec![0u8; self.models[index].nets.len()];
         self.mark_own(index, &mut marks);
         self.connect(index, &mut marks);
@@ -281,13 +287,15 @@ impl Linker<'_> {
         for (i, instance) in model.instances.iter().enumerate() {
             let callee = match instance.called {
                 Called::Model => self.by_name.get(&instance.model).copied(),
-                Called::Cell | Called::LatchCell => None,
+                Called::Cell | Called::LatchCell | Called::StateTable => None,
             };
             let Some(callee) = callee else {
                 let place = || Place::line(instance.line);
                 let subject = self.names.bytes(instance.model);
-                self.tally
-                    .count(Oddity::Missing(instance.called), subject, 1, place);
+                if instance.called != Called::StateTable {
+                    self.tally
+                        .count(Oddity::Missing(instance.called), subject, 1, place);
+                }
                 linked.callees.push(Callee::Box);
                 continue;
             };
@@ -295,14 +303,15 @@ impl Linker<'_> {
             for at in model.binding_range(i) {
                 let binding = &model.bindings[at];
                 let Some(&(net, drives)) = self.ports[callee].get(&binding.formal) else {
-                    let fault = self.unknown_formal(instance.line, binding.formal, callee);
+                    let fault =
+                        self.unknown_formal(model.file, instance.line, binding.formal, callee);
                     self.errors.push(fault);
                     continue;
                 };
                 if bound_by.insert((callee, net), i) == Some(i) {
                     let formal = quote(self.names.bytes(binding.formal));
                     self.errors.push(Diagnostic::error(
-                        &self.source.name,
+                        &self.files[model.file],
                         Place::line(instance.line),
                         format!("expected port {formal} connected once, found it connected twice"),
                         "leave one of the connections out",
@@ -316,10 +325,10 @@ impl Linker<'_> {
     }
 
     #[cold]
-    fn unknown_formal(&self, line: u32, formal: NameId, callee: usize) -> Diagnostic {
+    fn unknown_formal(&self, file: usize, line: u32, formal: NameId, callee: usize) -> Diagnostic {
         let model = &self.models[callee];
-        Diagnostic::error(
-            &self.source.name,
+        let error = Diagnostic::error(
+            &self.files[file],
             Place::line(line),
             format!(
                 "expected a port of model {}, found {}",
@@ -327,8 +336,12 @@ impl Linker<'_> {
                 quote(self.names.bytes(formal))
             ),
             "connect only names from the model's `.inputs` and `.outputs`",
-        )
-        .and(model.line, "the model begins here")
+        );
+        if model.file == file {
+            error.and(model.line, "the model begins here")
+        } else {
+            error
+        }
     }
 
     /// An actual that nothing else drives is taken as driven by the first box

@@ -5,7 +5,9 @@
 //! that can be many is a flat array with end positions; a model knows nothing of
 //! the others.
 
+use super::constraint::Constraint;
 use super::grammar::Called;
+use super::kiss::Table;
 use crate::netlist::{FunctionId, Initial, NameId, Trigger};
 use rustc_hash::FxHashMap;
 
@@ -54,11 +56,15 @@ pub(super) struct Instance {
     /// Gates of this model that come before it in the text.
     pub(super) gates_before: u32,
     pub(super) end: u32,
+    /// Initial value of a latch cell.
+    pub(super) initial: Initial,
 }
 
 /// One model.
 pub(super) struct Model {
     pub(super) name: NameId,
+    /// The file it stands in: 0 is the one that was asked for.
+    pub(super) file: usize,
     /// Line of `.model`, or where the unnamed model begins.
     pub(super) line: u32,
     pub(super) nets: Vec<NameId>,
@@ -73,12 +79,18 @@ pub(super) struct Model {
     pub(super) bindings: Vec<Binding>,
     /// How often each model has been instantiated here, for instance names.
     pub(super) ordinals: FxHashMap<NameId, u32>,
+    /// Nets listed in `.clock`.
+    pub(super) clocks: Vec<Local>,
+    /// What is said about times, loads and areas, each with its line.
+    pub(super) constraints: Vec<(u32, Constraint<NameId>)>,
+    pub(super) table: Option<Table>,
 }
 
 impl Model {
-    pub(super) fn new(name: NameId, line: u32) -> Self {
+    pub(super) fn new(name: NameId, file: usize, line: u32) -> Self {
         Self {
             name,
+            file,
             line,
             nets: Vec::new(),
             inputs: Vec::new(),
@@ -90,7 +102,15 @@ impl Model {
             instances: Vec::new(),
             bindings: Vec::new(),
             ordinals: FxHashMap::default(),
+            clocks: Vec::new(),
+            constraints: Vec::new(),
+            table: None,
         }
+    }
+
+    /// Whether it holds anything that computes.
+    pub(super) fn has_logic(&self) -> bool {
+        !(self.gates.is_empty() && self.latches.is_empty() && self.instances.is_empty())
     }
 
     /// Fan-ins and output of gate `i`.

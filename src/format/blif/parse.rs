@@ -9,11 +9,15 @@
 //! `.end` is implied by the next `.model` and by the end of the file. Ports that
 //! are not listed at all are inferred later, when directions are known.
 
+use super::constraint::Constraint;
 use super::cover::{Remembered, Rows};
 use super::grammar::{self, Fault, Statement, Words};
+use super::kiss::{self, Table};
 use super::lines::Lines;
 use super::model::{Local, Model};
+use super::search;
 use super::tally::{Oddity, Tally};
+use crate::format::files::FileAccess;
 use crate::netlist::{NameId, NetlistBuilder};
 use crate::source::{Diagnostic, Place, Source, quote};
 use rustc_hash::FxHashMap;
@@ -23,9 +27,11 @@ const MOST_ERRORS: usize = 20;
 /// Most distinct names.
 const MOST_NAMES: usize = 1 << 31;
 
-/// What a file holds.
+/// What a file and the files it names hold.
 pub(super) struct Contents {
     pub(super) models: Vec<Model>,
+    /// Names of the files, the one that was asked for first.
+    pub(super) files: Vec<String>,
     /// The names and functions interned so far; no net yet.
     pub(super) builder: NetlistBuilder,
     pub(super) tally: Tally,
@@ -38,8 +44,7 @@ enum Section {
     Start,
     Logic,
     DontCares,
-    /// A state table and the line it began on.
-    StateTable(u32),
+    StateTable,
     AfterEnd,
 }
 
@@ -58,9 +63,24 @@ pub(super) const INPUT: u8 = 1;
 pub(super) const OUTPUT: u8 = 2;
 pub(super) const CLOCK: u8 = 4;
 
-/// The state of reading one file.
-pub(super) struct Reader<'a> {
-    pub(super) source: &'a Source,
+/// A `.search` line.
+pub(super) struct Search {
+    pub(super) wanted: Vec<u8>,
+    pub(super) place: Place,
+}
+
+/// The state of reading one file after another.
+pub(super) struct Reader {
+    pub(super) files: Vec<String>,
+    /// The name of a model without a name, in the file being read.
+    stem: Vec<u8>,
+    /// Whether further files can be had.
+    searching: bool,
+    /// What the file being read asks for.
+    pub(super) searches: Vec<Search>,
+    /// Lines about times and loads that stand before the first model.
+    early: Vec<(u32, Constraint<NameId>)>,
+    table: Table,
     pub(super) builder: NetlistBuilder,
     pub(super) models: Vec<Model>,
     by_name: FxHashMap<NameId, usize>,
@@ -76,10 +96,18 @@ pub(super) struct Reader<'a> {
     pub(super) tally: Tally,
 }
 
-/// Reads all models of a file.
-pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
+/// Reads all models of a file and of the files it names.
+pub(super) fn parse(
+    source: &Source,
+    access: Option<&dyn FileAccess>,
+) -> Result<Contents, Vec<Diagnostic>> {
     let mut reader = Reader {
-        source,
+        files: Vec::new(),
+        stem: Vec::new(),
+        searching: access.is_some(),
+        searches: Vec::new(),
+        early: Vec::new(),
+        table: Table::default(),
         builder: NetlistBuilder::new(),
         models: Vec::new(),
         by_name: FxHashMap::default(),
@@ -92,41 +120,14 @@ pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
         errors: Vec::new(),
         tally: Tally::default(),
     };
-    let mut lines = Lines::new(source);
-    loop {
-        match lines.advance() {
-            Ok(true) => reader.line(&lines),
-            Ok(false) => break,
-            Err(error) => {
-                reader.close_block();
-                // What should have been continued follows: not a fault of its own.
-                reader.block = Block::Faulty;
-                reader.errors.push(error);
-            }
-        }
-        if reader.errors.len() >= MOST_ERRORS || reader.too_many_names(&lines) {
-            break;
-        }
-    }
-    reader.close_block();
-    if let Section::StateTable(line) = reader.section {
-        reader.state_table_open(line);
-    }
-    if let Some((line, count)) = lines.glued_comments {
-        let place = || Place::line(line);
-        reader.tally.count(Oddity::GluedComment, b"", count, place);
-    }
-    if reader.errors.is_empty() && reader.models.is_empty() {
-        reader.errors.push(Diagnostic::error(
-            &source.name,
-            Place::File,
-            "expected a model, found only words that are not read",
-            "check that this is the file that was meant",
-        ));
+    reader.file(source);
+    if let Some(access) = access {
+        search::read_all(&mut reader, access);
     }
     if reader.errors.is_empty() {
         Ok(Contents {
             models: reader.models,
+            files: reader.files,
             builder: reader.builder,
             tally: reader.tally,
         })
@@ -135,12 +136,61 @@ pub(super) fn parse(source: &Source) -> Result<Contents, Vec<Diagnostic>> {
     }
 }
 
-impl Reader<'_> {
+impl Reader {
+    /// Reads one file whole.
+    pub(super) fn file(&mut self, source: &Source) {
+        self.tally.file = self.files.len();
+        self.files.push(source.name.clone());
+        self.stem = source.stem().as_bytes().to_vec();
+        self.section = Section::Start;
+        let models = self.models.len();
+        let mut lines = Lines::new(source);
+        loop {
+            match lines.advance() {
+                Ok(true) => self.line(&lines),
+                Ok(false) => break,
+                Err(error) => {
+                    self.close_block();
+                    // What should have been continued follows: not a fault of its own.
+                    self.block = Block::Faulty;
+                    self.errors.push(error);
+                }
+            }
+            if self.errors.len() >= MOST_ERRORS || self.too_many_names(&lines) {
+                break;
+            }
+        }
+        self.close_model();
+        if let Some((line, count)) = lines.glued_comments {
+            let place = || Place::line(line);
+            self.tally.count(Oddity::GluedComment, b"", count, place);
+        }
+        let searches = self.tally.file > 0 || !self.searches.is_empty();
+        if self.errors.is_empty() && self.models.len() == models && !searches {
+            self.errors.push(Diagnostic::error(
+                &source.name,
+                Place::File,
+                "expected a model, found only words that are not read",
+                "check that this is the file that was meant",
+            ));
+        }
+    }
+
+    /// Whether so many errors were found that reading stops.
+    pub(super) fn has_enough_errors(&self) -> bool {
+        self.errors.len() >= MOST_ERRORS
+    }
+
+    /// The name of the file being read.
+    pub(super) fn file_name(&self) -> &str {
+        &self.files[self.tally.file]
+    }
+
     fn too_many_names(&mut self, lines: &Lines<'_>) -> bool {
         let many = self.builder.names().len() > MOST_NAMES;
         if many {
             self.errors.push(Diagnostic::error(
-                &self.source.name,
+                self.file_name(),
                 Place::line(lines.line()),
                 format!("expected at most {MOST_NAMES} different names, found more"),
                 "netlists beyond this size are not read",
@@ -154,7 +204,7 @@ impl Reader<'_> {
         let is_statement = grammar::is_statement(text);
         match self.section {
             Section::Start | Section::Logic => {}
-            Section::StateTable(line) => return self.state_table_line(lines, line),
+            Section::StateTable => return self.state_table_line(lines),
             Section::DontCares | Section::AfterEnd if !is_statement => {
                 return self.passed_over(lines);
             }
@@ -180,7 +230,7 @@ impl Reader<'_> {
     #[cold]
     pub(super) fn fault(&mut self, lines: &Lines<'_>, fault: Fault) {
         self.errors.push(Diagnostic::error(
-            &self.source.name,
+            self.file_name(),
             lines.place(fault.at, fault.length),
             fault.message,
             fault.help,
@@ -199,11 +249,13 @@ impl Reader<'_> {
     fn outside(&mut self, lines: &Lines<'_>, statement: Statement<'_>) {
         match statement {
             Statement::Model(name) => self.begin_model(lines, name),
+            // Between models and in them alike.
+            Statement::Search(file) => self.search(lines, file),
             _ if self.section == Section::AfterEnd => self.passed_over(lines),
             Statement::End(rest) => self.end(lines, rest),
             Statement::Latch(_) | Statement::Instance { .. } => {
                 self.errors.push(Diagnostic::error(
-                    &self.source.name,
+                    self.file_name(),
                     Place::line(lines.line()),
                     "expected only `.inputs`, `.outputs` and `.names` in a section of \
                      don't-cares, found a latch or an instance",
@@ -214,28 +266,73 @@ impl Reader<'_> {
         }
     }
 
-    fn state_table_line(&mut self, lines: &Lines<'_>, began: u32) {
-        let Ok(statement) = grammar::statement(lines.text()) else {
-            return;
-        };
-        match statement {
-            Statement::EndKiss => self.section = Section::Logic,
-            Statement::Model(name) => {
-                self.state_table_open(began);
-                self.begin_model(lines, name);
+    fn state_table_line(&mut self, lines: &Lines<'_>) {
+        let text = lines.text();
+        if kiss::ends(text) {
+            if let Err(fault) = grammar::statement(text) {
+                self.fault(lines, fault);
             }
-            _ => {}
+            return self.close_table();
+        }
+        if let Ok(Statement::Model(name)) = grammar::statement(text)
+            && grammar::is_statement(text)
+        {
+            return self.begin_model(lines, name);
+        }
+        if let Err(fault) = self.table.line(text, lines.line()) {
+            self.fault(lines, fault);
         }
     }
 
-    #[cold]
-    fn state_table_open(&mut self, began: u32) {
-        self.errors.push(Diagnostic::error(
-            &self.source.name,
-            Place::line(began),
-            "expected `.end_kiss` after `.start_kiss`, found the end of the model",
-            "close the state table, or check whether the file is cut short",
-        ));
+    fn open_table(&mut self, line: u32) {
+        let model = self.model(line);
+        if let Some(first) = model.table {
+            let error = Diagnostic::error(
+                self.file_name(),
+                Place::line(line),
+                "expected one state table in a model, found a second",
+                "give each state machine a model of its own",
+            );
+            let error = error.and(first.line, "the first begins here");
+            self.errors.push(error);
+        }
+        self.table = Table {
+            line,
+            ..Table::default()
+        };
+        self.section = Section::StateTable;
+    }
+
+    fn close_table(&mut self) {
+        let table = self.table;
+        self.section = Section::Logic;
+        if let Some((rows, line)) = table.products
+            && rows != table.rows
+        {
+            let place = || Place::line(line);
+            self.tally.count(Oddity::TableRows, b"", 1, place);
+        }
+        self.model(table.line).table = Some(table);
+    }
+
+    /// Ends the open model: what its end implies is settled.
+    fn close_model(&mut self) {
+        self.close_block();
+        match self.section {
+            Section::Start => return,
+            Section::StateTable => {
+                self.section = Section::Logic;
+                let error = Diagnostic::error(
+                    self.file_name(),
+                    Place::line(self.table.line),
+                    "expected `.end_kiss` after `.start_kiss`, found the end of the model",
+                    "close the state table, or check whether the file is cut short",
+                );
+                return self.errors.push(error);
+            }
+            Section::Logic | Section::DontCares | Section::AfterEnd => {}
+        }
+        self.settle_table();
     }
 
     fn row(&mut self, lines: &Lines<'_>, text: &[u8]) {
@@ -247,7 +344,7 @@ impl Reader<'_> {
                 let end = start.iter().position(u8::is_ascii_whitespace);
                 let word = &start[..end.unwrap_or(start.len())];
                 self.errors.push(Diagnostic::error(
-                    &self.source.name,
+                    self.file_name(),
                     lines.place(grammar::offset(text, word), word.len()),
                     format!(
                         "expected a word that begins with a dot, found {}",
@@ -270,7 +367,7 @@ impl Reader<'_> {
             let (now, before) = (u8::from(column), u8::from(!column));
             self.errors.push(
                 Diagnostic::error(
-                    &self.source.name,
+                    self.file_name(),
                     lines.place(at.unwrap_or(0), 1),
                     format!(
                         "expected output column {before} in every row of this cover, found {now}"
@@ -286,7 +383,7 @@ impl Reader<'_> {
     /// The open model; begins the unnamed one where there is none.
     pub(super) fn model(&mut self, line: u32) -> &mut Model {
         if self.section == Section::Start {
-            let name = self.builder.name(self.source.stem().as_bytes());
+            let name = self.builder.name(&self.stem);
             self.push_model(name, line);
         }
         let last = self.models.len() - 1;
@@ -295,26 +392,38 @@ impl Reader<'_> {
 
     fn push_model(&mut self, name: NameId, line: u32) {
         self.by_name.insert(name, self.models.len());
-        self.models.push(Model::new(name, line));
+        let mut model = Model::new(name, self.tally.file, line);
+        model.constraints.append(&mut self.early);
+        self.models.push(model);
         self.marks.clear();
         self.section = Section::Logic;
     }
 
     fn begin_model(&mut self, lines: &Lines<'_>, name: &[u8]) {
-        self.close_block();
+        self.close_model();
         let id = self.builder.name(name);
         if let Some(&other) = self.by_name.get(&id) {
-            self.errors.push(
-                Diagnostic::error(
-                    &self.source.name,
-                    Place::line(lines.line()),
-                    format!("expected one model {}, found a second", quote(name)),
-                    "give each model a name of its own",
-                )
-                .and(self.models[other].line, "the first begins here"),
-            );
+            self.second_model(lines.line(), name, other);
         }
         self.push_model(id, lines.line());
+    }
+
+    #[cold]
+    fn second_model(&mut self, line: u32, name: &[u8], first: usize) {
+        let help = "give each model a name of its own";
+        let message = format!("expected one model {}, found a second", quote(name));
+        let Model { file, line: at, .. } = self.models[first];
+        let error = if file == self.tally.file {
+            Diagnostic::error(self.file_name(), Place::line(line), message, help)
+                .and(at, "the first begins here")
+        } else {
+            let message = format!(
+                "{message}; the first is on line {at} of {}",
+                self.files[file]
+            );
+            Diagnostic::error(self.file_name(), Place::line(line), message, help)
+        };
+        self.errors.push(error);
     }
 
     fn end(&mut self, lines: &Lines<'_>, mut rest: Words<'_>) {
@@ -360,13 +469,26 @@ impl Reader<'_> {
                 self.tally.count(Oddity::DontCares, b"", 1, place);
             }
             Statement::End(rest) => self.end(lines, rest),
-            Statement::StartKiss => {
-                self.model(line);
-                self.section = Section::StateTable(line);
-                let place = || Place::line(line);
-                self.tally.count(Oddity::StateTable, b"", 1, place);
+            Statement::StartKiss => self.open_table(line),
+            Statement::EndKiss => self.without_table(lines, "`.end_kiss`"),
+            Statement::AfterKiss => {
+                let has_table = self
+                    .models
+                    .last()
+                    .is_some_and(|model| model.table.is_some());
+                if self.section == Section::Start || !has_table {
+                    self.without_table(lines, "a line that belongs to one");
+                }
             }
-            Statement::EndKiss => self.unknown(lines, b".end_kiss"),
+            Statement::Search(file) => self.search(lines, file),
+            Statement::Constraint(constraint) => {
+                let constraint = constraint.map(|name| self.builder.name(name));
+                if self.section == Section::Start {
+                    self.early.push((line, constraint));
+                } else {
+                    self.model(line).constraints.push((line, constraint));
+                }
+            }
             Statement::Unknown(word) => self.unknown(lines, word),
         }
     }
@@ -380,5 +502,29 @@ impl Reader<'_> {
     fn singular(&mut self, lines: &Lines<'_>, word: &[u8]) {
         let place = || Place::line(lines.line());
         self.tally.count(Oddity::Singular, word, 1, place);
+    }
+
+    /// What belongs to a state table where there is none.
+    #[cold]
+    fn without_table(&mut self, lines: &Lines<'_>, found: &str) {
+        let error = Diagnostic::error(
+            self.file_name(),
+            Place::line(lines.line()),
+            format!("expected a state table (`.start_kiss`) before this line, found {found}"),
+            "put it after the table in the same model, or take it out",
+        );
+        self.errors.push(error);
+    }
+
+    fn search(&mut self, lines: &Lines<'_>, file: &[u8]) {
+        self.close_block();
+        if self.searching {
+            self.searches.push(Search {
+                wanted: file.to_vec(),
+                place: lines.place(grammar::offset(lines.text(), file), file.len()),
+            });
+        } else {
+            self.unknown(lines, b".search");
+        }
     }
 }

@@ -24,8 +24,18 @@ pub(super) enum Oddity {
     DontCares,
     /// Text between `.end` and the next model.
     AfterEnd,
-    /// A state table.
+    /// A state table whose logic follows.
     StateTable,
+    /// A state table without logic.
+    StateTableAlone,
+    /// A state table with another number of rows than it announces.
+    TableRows,
+    /// A second line that says the same about the same port, or of the model.
+    SaidTwice,
+    /// A line about a port that the model does not have.
+    NoSuchPort,
+    /// Lines about ports of a model that is not the top.
+    BelowTop,
     /// A comment right after a character of a word.
     GluedComment,
     /// A name twice in one list of ports.
@@ -36,6 +46,7 @@ pub(super) enum Oddity {
 
 struct Entry {
     oddity: Oddity,
+    file: usize,
     subject: Vec<u8>,
     place: Place,
     count: u64,
@@ -44,8 +55,10 @@ struct Entry {
 /// The oddities met so far, in the order they were first met.
 #[derive(Default)]
 pub(super) struct Tally {
+    /// The file that is being read, and that counts go to.
+    pub(super) file: usize,
     entries: Vec<Entry>,
-    index: FxHashMap<(Oddity, Vec<u8>), usize>,
+    index: FxHashMap<(Oddity, usize, Vec<u8>), usize>,
 }
 
 impl Tally {
@@ -58,7 +71,7 @@ impl Tally {
         times: u64,
         place: impl FnOnce() -> Place,
     ) {
-        let key = (oddity, subject.to_vec());
+        let key = (oddity, self.file, subject.to_vec());
         if let Some(&at) = self.index.get(&key) {
             self.entries[at].count += times;
             return;
@@ -66,28 +79,29 @@ impl Tally {
         self.index.insert(key, self.entries.len());
         self.entries.push(Entry {
             oddity,
+            file: self.file,
             subject: subject.to_vec(),
             place: place(),
             count: times,
         });
     }
 
-    /// The warnings, by line.
-    pub(super) fn into_warnings(mut self, file: &str) -> Vec<Diagnostic> {
+    /// The warnings, by file and line; `files` holds the files' names.
+    pub(super) fn into_warnings(mut self, files: &[String]) -> Vec<Diagnostic> {
         let line = |entry: &Entry| match entry.place {
-            Place::Line { line, .. } => line,
-            Place::File | Place::Byte(_) => 0,
+            Place::Line { line, .. } => (entry.file, line),
+            Place::File | Place::Byte(_) => (entry.file, 0),
         };
         self.entries.sort_by_key(line);
         let mut warnings: Vec<_> = self
             .entries
             .iter()
             .take(SHOWN)
-            .map(|entry| entry.warning(file))
+            .map(|entry| entry.warning(&files[entry.file]))
             .collect();
         if let Some(next) = self.entries.get(SHOWN) {
             warnings.push(Diagnostic::warning(
-                file,
+                &files[next.file],
                 next.place,
                 format!(
                     "{} more warnings, from here on, are not shown",
@@ -115,7 +129,7 @@ impl Entry {
                     plural(n, "line", "lines")
                 ),
                 if self.subject == b".search" {
-                    "copy the models of the file it names into this one"
+                    "no further file is read here; copy the models it names into this one"
                 } else {
                     "the rest of the file is read as if the lines were not there"
                 },
@@ -152,10 +166,44 @@ impl Entry {
             ),
             Oddity::StateTable => (
                 format!(
-                    "{} (`.start_kiss`) skipped",
+                    "{} (`.start_kiss`) skipped; the logic beside it is read",
                     plural(n, "state table", "state tables")
                 ),
-                "state machines are read as gates and latches only",
+                "whether the two agree is not checked",
+            ),
+            Oddity::StateTableAlone => (
+                format!("the state table of model {subject} has no logic: kept as a black box"),
+                "put the gates and latches of the state machine after the table to see inside",
+            ),
+            Oddity::TableRows => (
+                format!(
+                    "expected as many rows as `.p` announces, found another number in {}",
+                    plural(n, "state table", "state tables")
+                ),
+                "check that the file is not cut short",
+            ),
+            Oddity::SaidTwice => (
+                format!(
+                    "expected {subject} once for each port or model, found it repeated ({}); the \
+                     last one counts",
+                    plural(n, "time", "times")
+                ),
+                "leave the others out",
+            ),
+            Oddity::NoSuchPort => (
+                format!(
+                    "expected a port of the model, found {subject} on {}, left out",
+                    plural(n, "line", "lines")
+                ),
+                "arrival, drive and load of inputs name an input, required time and load of \
+                 outputs an output",
+            ),
+            Oddity::BelowTop => (
+                format!(
+                    "{} about clocks and ports of models below the top left out",
+                    plural(n, "line", "lines")
+                ),
+                "such lines count in the top model only, as the format document has it",
             ),
             Oddity::GluedComment => (
                 format!(
@@ -179,7 +227,7 @@ impl Entry {
                         "a net that nothing else drives is taken as driven by it; put the \
                          model into the file to see inside",
                     ),
-                    Called::Cell | Called::LatchCell => (
+                    _ => (
                         "cell",
                         "a net that nothing else drives is taken as driven by it; state the \
                          function as `.names` or as a model to see inside",

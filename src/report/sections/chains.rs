@@ -211,7 +211,7 @@ pub fn rebuild(chains: &[ChainRecord], set: &RecommendedSet, caps: Caps) -> Opti
     };
     let concerned = |chain: &ChainRecord| chain.proposals.iter().any(|p| is_chosen(chain, p));
     let mut order = urgent_first(chains);
-    order.sort_by_key(|chain| !concerned(chain));
+    order.sort_by_cached_key(|chain| !concerned(chain));
     for chain in order {
         for proposal in &chain.proposals {
             // Of the other chains only what is recommended, if anything is.

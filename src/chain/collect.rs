@@ -1,0 +1,156 @@
+//! From theorems about nodes to chains of nets.
+//!
+//! The nets of all sums and carries are gathered in one pass over the netlist.
+//! A net that no gate drives, and a copy of an operand, is no result of a chain.
+
+use super::built_as::built_as;
+use super::kinds::{order_operands, read};
+use super::label::Labels;
+use super::model::{CarryForm, Chain, Kind, Position};
+use super::verify::Theorem;
+use crate::netlist::{Bit, Driver, NetId, Netlist, Signal};
+use crate::subject::{Literal, NodeId, Subject};
+use fixedbitset::FixedBitSet;
+use rustc_hash::FxHashSet;
+
+/// The signal or constant that carries a literal. Panics when no net does:
+/// entries are only made of nodes on nets.
+pub(super) fn bit(labels: &Labels<'_>, literal: Literal) -> Bit {
+    if literal.node() == NodeId::FALSE {
+        return Bit::Constant(literal == Literal::TRUE);
+    }
+    Bit::Signal(labels.signal(literal).expect("entries are made of nets"))
+}
+
+/// The nets of some nodes, sorted by node.
+struct Nets(Vec<(NodeId, NetId)>);
+
+impl Nets {
+    fn of(netlist: &Netlist, subject: &Subject, theorems: &[Theorem]) -> Self {
+        let mut wanted = FixedBitSet::with_capacity(subject.node_count());
+        for theorem in theorems {
+            for literal in theorem.sums.iter().chain(&theorem.carries).flatten() {
+                wanted.insert(literal.node().index());
+            }
+        }
+        let with_node = netlist.nets().map(|net| (subject.of_net(net).node(), net));
+        let mut nets: Vec<_> = with_node
+            .filter(|(node, _)| wanted.contains(node.index()))
+            .collect();
+        nets.sort_unstable();
+        Self(nets)
+    }
+
+    fn of_node(&self, node: NodeId) -> impl Iterator<Item = NetId> + '_ {
+        let start = self.0.partition_point(|&(n, _)| n < node);
+        self.0[start..]
+            .iter()
+            .take_while(move |&&(n, _)| n == node)
+            .map(|&(_, net)| net)
+    }
+}
+
+/// Reads every theorem as a chain; the widest chain comes first.
+pub(super) fn collect(
+    netlist: &Netlist,
+    subject: &Subject,
+    labels: &Labels<'_>,
+    theorems: Vec<Theorem>,
+) -> Vec<Chain> {
+    let nets = Nets::of(netlist, subject, &theorems);
+    let collector = Collector {
+        netlist,
+        subject,
+        labels,
+        nets,
+    };
+    // Each theorem is given up as its chain is made: both at once are large.
+    let mut chains: Vec<Chain> = theorems
+        .into_iter()
+        .map(|theorem| {
+            let (kind, mut theorem) = read(subject, labels, theorem);
+            if kind != Kind::Subtractor {
+                order_operands(labels, &mut theorem);
+            }
+            collector.chain(kind, &theorem)
+        })
+        .collect();
+    chains.sort_by_cached_key(|chain| {
+        let sums = chain.positions.iter().flat_map(|p| &p.sums);
+        let lowest = sums.map(|s| s.net).min();
+        (std::cmp::Reverse(chain.positions.len()), lowest)
+    });
+    chains
+}
+
+struct Collector<'a> {
+    netlist: &'a Netlist,
+    subject: &'a Subject,
+    labels: &'a Labels<'a>,
+    nets: Nets,
+}
+
+impl Collector<'_> {
+    fn chain(&self, kind: Kind, theorem: &Theorem) -> Chain {
+        let operands: FxHashSet<NodeId> = theorem
+            .bits
+            .iter()
+            .flat_map(|bits| [bits.a.node(), bits.b.node()])
+            .collect();
+        let signals = |literals: &[Literal]| {
+            let mut signals: Vec<Signal> = Vec::new();
+            for literal in literals {
+                for net in self.nets.of_node(literal.node()) {
+                    let inverted = self.subject.of_net(net) != *literal;
+                    let copy = operands.contains(&literal.node()) && inverted;
+                    let driven = matches!(self.netlist.driver(net), Driver::Gate(_));
+                    if driven && !copy {
+                        signals.push(Signal { net, inverted });
+                    }
+                }
+            }
+            signals.sort_by_key(|s| std::cmp::Reverse(self.labels.preference(s.net)));
+            signals.shrink_to_fit();
+            signals
+        };
+        let positions: Vec<Position> = theorem
+            .bits
+            .iter()
+            .zip(theorem.sums.iter().zip(&theorem.carries))
+            .map(|(bits, (sums, carries))| {
+                let mut sums = signals(sums);
+                if sums.is_empty() {
+                    sums.extend(self.labels.signal(bits.sum));
+                }
+                let outside: Vec<Literal> = carries
+                    .iter()
+                    .copied()
+                    .filter(|literal| !operands.contains(&literal.node()))
+                    .collect();
+                Position {
+                    a: bit(self.labels, bits.a),
+                    b: bit(self.labels, bits.b),
+                    sums,
+                    carries: signals(&outside),
+                }
+            })
+            .collect();
+        let has_carry_out = positions.last().is_some_and(|top| !top.carries.is_empty());
+        let carry_form = match (kind, theorem.carries.last().and_then(|c| c.first())) {
+            (Kind::Subtractor, Some(carry))
+                if self.labels.port(carry.node()) == Some(!carry.is_inverted()) =>
+            {
+                CarryForm::Borrow
+            }
+            _ => CarryForm::Carry,
+        };
+        Chain {
+            kind,
+            positions,
+            carry_in: bit(self.labels, theorem.carry_in),
+            has_carry_out,
+            carry_form,
+            built_as: built_as(self.subject, theorem),
+        }
+    }
+}
