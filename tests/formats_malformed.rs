@@ -100,6 +100,17 @@ fn excerpts_stay_short_and_printable() {
 }
 
 #[test]
+fn no_excerpt_is_taken_from_another_input() {
+    let input = source("main.blif", b".model m\nsecret\n");
+    let message = Diagnostic::error("other.blif", Place::line(2), "a fault", "do");
+    let text = message.render(&input, false);
+    assert!(
+        text.contains("other.blif:2") && !text.contains("secret"),
+        "{text}"
+    );
+}
+
+#[test]
 fn every_place_can_be_rendered() {
     let input = source("short.blif", b"a\xff\n\nlast");
     for line in [0, 1, 2, 3, 4, u32::MAX] {

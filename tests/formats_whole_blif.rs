@@ -41,21 +41,21 @@ fn times_loads_and_areas_are_kept_as_they_stand() {
     let arrivals: Vec<_> = c
         .input_arrival
         .iter()
-        .map(|a| (name(a.net), a.at, a.reference, a.line))
+        .map(|a| {
+            let from = a.reference.map(|r| (r.before, edge(n, r.edge)));
+            (name(a.net), a.at, from, a.line)
+        })
         .collect();
-    let clk = n.names().find(b"clk").expect("interned");
-    let after_rise = Reference {
-        before: false,
-        edge: ClockEdge {
-            clock: clk,
-            rising: true,
-        },
-    };
     assert_eq!(
         arrivals,
         [
             ("level".to_owned(), both(2.0, 2.5), None, 6),
-            ("gate".to_owned(), both(1.0, 1.25), Some(after_rise), 7),
+            (
+                "gate".to_owned(),
+                both(1.0, 1.25),
+                Some((false, "r'clk".to_owned())),
+                7
+            ),
         ]
     );
     let required = &c.output_required[0];

@@ -134,7 +134,7 @@ impl Diagnostic {
     }
 
     /// The message with an excerpt of the source, several lines long. `source`
-    /// is the input the message is about.
+    /// is the input the message is about; of another one no excerpt is shown.
     pub fn render(&self, source: &Source, color: bool) -> String {
         let level = match self.severity {
             Severity::Error => Level::ERROR,
@@ -153,11 +153,13 @@ impl Diagnostic {
                 } => format!("{file}:{line}:{column}"),
                 Place::Line { line, .. } => format!("{file}:{line}"),
             }));
+        let is_own = self.file == source.name;
         if let Place::Line {
             line,
             column,
             length,
         } = self.place
+            && is_own
         {
             group = with_excerpt(
                 group,
@@ -171,8 +173,10 @@ impl Diagnostic {
         }
         if let Some((line, label)) = self.second.as_deref() {
             group = group.element(Origin::path(format!("{file}:{line}")));
-            let kind = AnnotationKind::Context;
-            group = with_excerpt(group, source, *line, None, 0, kind, Some(label));
+            if is_own {
+                let kind = AnnotationKind::Context;
+                group = with_excerpt(group, source, *line, None, 0, kind, Some(label));
+            }
         }
         if !self.help.is_empty() {
             group = group.element(Level::HELP.message(self.help.as_str()));

@@ -10,7 +10,7 @@ use super::model::{Binding, Gate, Instance, Latch, Local, Port};
 use super::parse::{Block, CLOCK, INPUT, OUTPUT, Reader};
 use super::tally::Oddity;
 use crate::netlist::{Initial, NameId};
-use crate::source::{Diagnostic, Place, quote};
+use crate::source::{Diagnostic, Place};
 
 impl Reader {
     /// The net of a name in the open model.
@@ -178,7 +178,13 @@ impl Reader {
     }
 
     /// Closes an instance whose connections have been added.
-    fn add_instance(&mut self, line: u32, called: Called, model: NameId, initial: Initial) {
+    pub(super) fn add_instance(
+        &mut self,
+        line: u32,
+        called: Called,
+        model: NameId,
+        initial: Initial,
+    ) {
         let ordinals = &mut self.model(line).ordinals;
         let ordinal = ordinals.entry(model).or_insert(0);
         *ordinal += 1;
@@ -199,60 +205,5 @@ impl Reader {
             }),
             Err(_) => self.too_long(line, "connections"),
         }
-    }
-
-    /// A state table at the end of its model: logic beside it says the same, and
-    /// without logic the model is a black box between its ports.
-    pub(super) fn settle_table(&mut self) {
-        let Some(model) = self.models.last() else {
-            return;
-        };
-        let Some(table) = model.table else { return };
-        let name = model.name;
-        if model.has_logic() {
-            let place = || Place::line(table.line);
-            return self.tally.count(Oddity::StateTable, b"", 1, place);
-        }
-        let clocks = &model.clocks;
-        let inputs = model
-            .inputs
-            .iter()
-            .filter(|port| !clocks.contains(&port.net));
-        let sides = [
-            (".i", "inputs", table.inputs, inputs.count()),
-            (".o", "outputs", table.outputs, model.outputs.len()),
-        ];
-        // A faulty table has been told already.
-        let sides = sides.iter().filter(|_| self.errors.is_empty());
-        for &(word, side, stated, listed) in sides {
-            if stated.map(u64::from) != Some(listed as u64) {
-                let found = stated.map_or("none".to_owned(), |n| n.to_string());
-                let error = Diagnostic::error(
-                    self.file_name(),
-                    Place::line(table.line),
-                    format!(
-                        "expected `{word} {listed}` in this state table, as many as model {} has \
-                         {side}, found {found}",
-                        quote(self.builder.names().bytes(name))
-                    ),
-                    "a state table without logic reads every listed input and drives every output",
-                );
-                self.errors.push(error);
-                return;
-            }
-        }
-        let ports = model.inputs.iter().chain(&model.outputs);
-        let mut bindings: Vec<Binding> = Vec::new();
-        for port in ports {
-            bindings.push(Binding {
-                formal: model.nets[port.net as usize],
-                actual: port.net,
-            });
-        }
-        let subject = self.builder.names().bytes(name);
-        let place = || Place::line(table.line);
-        self.tally.count(Oddity::StateTableAlone, subject, 1, place);
-        self.model(table.line).bindings = bindings;
-        self.add_instance(table.line, Called::StateTable, name, Initial::Unknown);
     }
 }

@@ -3,7 +3,7 @@
 //!
 //! Five steps: physical lines to logical lines (`lines`), a logical line to a
 //! statement (`grammar`, `constraint`, `kiss`), statements to models (`parse`,
-//! `fill`) and the same for the files they name (`search`), models to a linked
+//! `fill`, `table`) and the same for the files they name (`search`), models to a linked
 //! design whose size is known (`link`), the design to a flat netlist (`elaborate`)
 //! and what it says about time (`settle`).
 //!
@@ -23,6 +23,7 @@ mod parse;
 mod rows;
 mod search;
 mod settle;
+mod table;
 mod tally;
 mod write;
 

@@ -12,7 +12,7 @@
 use super::constraint::Constraint;
 use super::cover::{Remembered, Rows};
 use super::grammar::{self, Fault, Statement, Words};
-use super::kiss::{self, Table};
+use super::kiss::Table;
 use super::lines::Lines;
 use super::model::{Local, Model};
 use super::search;
@@ -39,7 +39,7 @@ pub(super) struct Contents {
 
 /// Which part of the file the lines belong to.
 #[derive(Clone, Copy, PartialEq, Eq)]
-enum Section {
+pub(super) enum Section {
     /// No model has begun.
     Start,
     Logic,
@@ -80,7 +80,7 @@ pub(super) struct Reader {
     pub(super) searches: Vec<Search>,
     /// Lines about times and loads that stand before the first model.
     early: Vec<(u32, Constraint<NameId>)>,
-    table: Table,
+    pub(super) table: Table,
     pub(super) builder: NetlistBuilder,
     pub(super) models: Vec<Model>,
     by_name: FxHashMap<NameId, usize>,
@@ -88,7 +88,7 @@ pub(super) struct Reader {
     pub(super) locals: Vec<(u32, Local)>,
     /// By net of the open model: the port lists it is in.
     pub(super) marks: Vec<u8>,
-    section: Section,
+    pub(super) section: Section,
     pub(super) block: Block,
     pub(super) rows: Rows,
     pub(super) remembered: Remembered,
@@ -266,55 +266,6 @@ impl Reader {
         }
     }
 
-    fn state_table_line(&mut self, lines: &Lines<'_>) {
-        let text = lines.text();
-        if kiss::ends(text) {
-            if let Err(fault) = grammar::statement(text) {
-                self.fault(lines, fault);
-            }
-            return self.close_table();
-        }
-        if let Ok(Statement::Model(name)) = grammar::statement(text)
-            && grammar::is_statement(text)
-        {
-            return self.begin_model(lines, name);
-        }
-        if let Err(fault) = self.table.line(text, lines.line()) {
-            self.fault(lines, fault);
-        }
-    }
-
-    fn open_table(&mut self, line: u32) {
-        let model = self.model(line);
-        if let Some(first) = model.table {
-            let error = Diagnostic::error(
-                self.file_name(),
-                Place::line(line),
-                "expected one state table in a model, found a second",
-                "give each state machine a model of its own",
-            );
-            let error = error.and(first.line, "the first begins here");
-            self.errors.push(error);
-        }
-        self.table = Table {
-            line,
-            ..Table::default()
-        };
-        self.section = Section::StateTable;
-    }
-
-    fn close_table(&mut self) {
-        let table = self.table;
-        self.section = Section::Logic;
-        if let Some((rows, line)) = table.products
-            && rows != table.rows
-        {
-            let place = || Place::line(line);
-            self.tally.count(Oddity::TableRows, b"", 1, place);
-        }
-        self.model(table.line).table = Some(table);
-    }
-
     /// Ends the open model: what its end implies is settled.
     fn close_model(&mut self) {
         self.close_block();
@@ -399,7 +350,7 @@ impl Reader {
         self.section = Section::Logic;
     }
 
-    fn begin_model(&mut self, lines: &Lines<'_>, name: &[u8]) {
+    pub(super) fn begin_model(&mut self, lines: &Lines<'_>, name: &[u8]) {
         self.close_model();
         let id = self.builder.name(name);
         if let Some(&other) = self.by_name.get(&id) {
@@ -502,18 +453,6 @@ impl Reader {
     fn singular(&mut self, lines: &Lines<'_>, word: &[u8]) {
         let place = || Place::line(lines.line());
         self.tally.count(Oddity::Singular, word, 1, place);
-    }
-
-    /// What belongs to a state table where there is none.
-    #[cold]
-    fn without_table(&mut self, lines: &Lines<'_>, found: &str) {
-        let error = Diagnostic::error(
-            self.file_name(),
-            Place::line(lines.line()),
-            format!("expected a state table (`.start_kiss`) before this line, found {found}"),
-            "put it after the table in the same model, or take it out",
-        );
-        self.errors.push(error);
     }
 
     fn search(&mut self, lines: &Lines<'_>, file: &[u8]) {
