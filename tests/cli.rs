@@ -597,3 +597,34 @@ fn links_do_not_lead_out_of_the_folder() {
     fs::write(at("inner.blif"), inner).expect("written");
     audit().assert().code(0).stderr(is_empty());
 }
+
+#[test]
+fn cells_give_functions_to_instances() {
+    let text = ".model m\n.inputs a b c\n.outputs s co\n.gate FAX1 A=a B=b CI=c S=s CO=co\n.end\n";
+    let library = fixture("cells/harbour.lib");
+    carrywise()
+        .args(["audit", "-", "-q"])
+        .write_stdin(text)
+        .assert()
+        .code(0)
+        .stdout(contains("Unknown, because"));
+    carrywise()
+        .args(["audit", "-", "-q", "--cells", &library])
+        .write_stdin(text)
+        .assert()
+        .code(0)
+        .stdout(contains("2 gates, no registers; 1 gate delay").and(contains("Unknown").not()));
+    carrywise()
+        .args(["audit", "-", "-q", "--cells", &library])
+        .write_stdin(text.replace("CI=c", "CX=c"))
+        .assert()
+        .code(2)
+        .stdout(is_empty())
+        .stderr(contains("-:4").and(contains("a pin of the cell FAX1, found `CX`")));
+    carrywise()
+        .args(["audit", "-", "--cells", &fixture("README.md")])
+        .write_stdin(text)
+        .assert()
+        .code(2)
+        .stderr(contains("expected cells with functions"));
+}
