@@ -397,6 +397,65 @@ fn a_reader_that_goes_away_is_no_fault() {
     );
 }
 
+#[test]
+fn assumptions_are_read_from_their_file_and_told() {
+    let folder = folder();
+    let yaml = folder.path().join("assume.yaml");
+    fs::write(&yaml, "tied: {b: {value: 0, why: never used here}}\n").expect("written");
+    let good = folder.path().join("good.blif");
+    carrywise()
+        .args(["audit", good.to_str().unwrap(), "--assume"])
+        .arg(&yaml)
+        .assert()
+        .code(0)
+        .stdout(contains("b is 0").and(contains("never used here")))
+        .stderr(is_empty());
+    fs::write(&yaml, "tied:\n  beta: {value: 0, why: never used here}\n").expect("written");
+    carrywise()
+        .args(["audit", good.to_str().unwrap(), "--assume"])
+        .arg(&yaml)
+        .assert()
+        .code(2)
+        .stdout(is_empty())
+        .stderr(contains("assume.yaml:2:3").and(contains("`beta`")));
+    // A report never replaces the file it was made under.
+    carrywise()
+        .args(["audit", good.to_str().unwrap(), "--assume"])
+        .arg(&yaml)
+        .arg("--report")
+        .arg(&yaml)
+        .assert()
+        .code(2);
+    let kept = fs::read_to_string(&yaml).expect("kept");
+    assert!(kept.starts_with("tied:"));
+}
+
+#[test]
+fn fail_on_decides_by_the_worst_finding() {
+    let twice = ".model m\n.inputs a b\n.outputs y\n.names a y\n1 1\n.names b y\n1 1\n.end\n";
+    let boxed = ".model m\n.inputs a\n.outputs y\n.subckt filter in=a out=y\n.end\n";
+    for (text, level, code) in [
+        (twice, "never", 0),
+        (twice, "error", 1),
+        (twice, "warning", 1),
+        (boxed, "error", 0),
+        (boxed, "warning", 1),
+        (GOOD, "warning", 0),
+    ] {
+        carrywise()
+            .args(["audit", "-q", "-", "--fail-on", level])
+            .write_stdin(text)
+            .assert()
+            .code(code)
+            .stdout(contains("-: "));
+    }
+    carrywise()
+        .args(["audit", "-"])
+        .write_stdin(twice)
+        .assert()
+        .code(0);
+}
+
 fn format_fixture(name: &str) -> String {
     fixture(&format!("formats/{name}"))
 }
@@ -550,4 +609,35 @@ fn the_readme_shows_what_its_first_command_prints() {
         .output()
         .expect("it runs");
     assert_eq!(String::from_utf8_lossy(&output.stdout), shown);
+}
+
+#[test]
+fn cells_give_functions_to_instances() {
+    let text = ".model m\n.inputs a b c\n.outputs s co\n.gate FAX1 A=a B=b CI=c S=s CO=co\n.end\n";
+    let library = fixture("cells/harbour.lib");
+    carrywise()
+        .args(["audit", "-", "-q"])
+        .write_stdin(text)
+        .assert()
+        .code(0)
+        .stdout(contains("Unknown, because"));
+    carrywise()
+        .args(["audit", "-", "-q", "--cells", &library])
+        .write_stdin(text)
+        .assert()
+        .code(0)
+        .stdout(contains("2 gates, no registers; 1 gate delay").and(contains("Unknown").not()));
+    carrywise()
+        .args(["audit", "-", "-q", "--cells", &library])
+        .write_stdin(text.replace("CI=c", "CX=c"))
+        .assert()
+        .code(2)
+        .stdout(is_empty())
+        .stderr(contains("-:4").and(contains("a pin of the cell FAX1, found `CX`")));
+    carrywise()
+        .args(["audit", "-", "--cells", &fixture("README.md")])
+        .write_stdin(text)
+        .assert()
+        .code(2)
+        .stderr(contains("expected cells with functions"));
 }

@@ -99,7 +99,7 @@ fn timed(netlist: &Netlist, model: DelayModel) -> (Topology, Timing) {
 }
 
 fn kind(start: StartClass, end: EndClass) -> PathKind {
-    PathKind { start, end }
+    PathKind::between(start, end)
 }
 
 /// c17 of ISCAS'85 (Brglez and Fujiwara 1985): six two-input NANDs, depth 3.

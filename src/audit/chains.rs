@@ -11,7 +11,7 @@ use super::record::{BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, P
 use crate::chain::{BuiltAs, CarryForm, Chain, Kind};
 use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
 use crate::plan::ChainPlan;
-use crate::timing::{NEVER, Timing};
+use crate::timing::Timing;
 use rustc_hash::{FxHashMap, FxHashSet};
 use sha2::{Digest, Sha256};
 use std::cmp::Reverse;
@@ -280,7 +280,7 @@ impl<'a> Sources<'a> {
     fn on_longest_path(&self, chain: &Chain) -> bool {
         let positions = chain.positions.iter();
         let mut results = positions.flat_map(|bits| bits.carries.iter().chain(&bits.sums));
-        results.any(|signal| is_on_longest_path(self.timing, signal.net))
+        results.any(|signal| self.timing.is_on_longest_path(signal.net))
     }
 
     /// Whether every operand bit that changes is a register that stores the sum
@@ -353,13 +353,6 @@ impl<'a> Sources<'a> {
         *ordinal += 1;
         hexadecimal(&Sha256::digest(points.as_bytes())[..8])
     }
-}
-
-/// Whether a longest path of the block runs through `net`.
-pub fn is_on_longest_path(timing: &Timing, net: NetId) -> bool {
-    let at = timing.arrivals.by_net[net.index()];
-    let tail = timing.tails.by_net[net.index()];
-    at != NEVER && tail != NEVER && at + tail == timing.longest()
 }
 
 /// Bytes in hexadecimal digits.

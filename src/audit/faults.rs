@@ -4,19 +4,23 @@
 //! Each rule lists its first few places and counts the rest, so that a netlist
 //! full of one fault still leaves room for the others. Worst first.
 
-use super::chains::is_on_longest_path;
+use super::assumed::late_ports;
 use super::findings::{self, MANY_READERS, RULES, Rule, WIDE_GATE};
 use super::record::{ChainRecord, Finding, UnprovenRecord};
 use super::verdict::cut_on;
-use super::words::{counted, grouped, listed};
+use super::words::{counted, depth_in, grouped, listed};
 use crate::chain::{BuiltAs, Chain};
+use crate::netlist::Assumptions;
+use crate::netlist::assume::Assumed;
 use crate::netlist::health::{Fault, FaultKind, Health};
-use crate::netlist::{Driver, NetId, Netlist, Topology, histogram};
+use crate::netlist::{Driver, NetId, Netlist, RegisterId, Topology, Trigger, histogram};
 use crate::timing::{KindTiming, PathStep, Timing};
 use std::cmp::Reverse;
 
 /// Places listed of one rule.
 const PLACES: usize = 20;
+/// Drivers listed of one net.
+const DRIVERS: usize = 6;
 /// Names listed of one loop.
 const LOOP_NAMES: usize = 8;
 
@@ -83,12 +87,7 @@ impl<'a> Findings<'a> {
                 format!("{name} is read, and nothing drives it"),
             ),
             FaultKind::DrivenTwice => {
-                let lines: Vec<String> = fault
-                    .lines
-                    .iter()
-                    .filter(|&&line| line > 0)
-                    .map(u32::to_string)
-                    .collect();
+                let lines = self.driver_lines(net);
                 let at = if lines.is_empty() {
                     String::new()
                 } else {
@@ -112,6 +111,36 @@ impl<'a> Findings<'a> {
             }
         };
         self.add(slug, Some(net), line, message);
+    }
+
+    /// The line of every driver of a net, and the instance when it is in one.
+    fn driver_lines(&self, net: NetId) -> Vec<String> {
+        let netlist = self.netlist;
+        let Driver::Many(index) = netlist.driver(net) else {
+            return Vec::new();
+        };
+        let drivers = &netlist.contended()[index as usize].drivers;
+        let known = drivers.iter().filter(|(_, line)| *line > 0);
+        let mut lines: Vec<String> = known
+            .clone()
+            .take(DRIVERS)
+            .map(|&(driver, line)| {
+                let scope = match driver {
+                    Driver::Gate(gate) => netlist.scope_path(netlist.gate_scope(gate)),
+                    _ => Vec::new(),
+                };
+                let path: Vec<_> = scope.iter().map(|&n| netlist.names().text(n)).collect();
+                match path.is_empty() {
+                    true => line.to_string(),
+                    false => format!("{line} in {}", path.join("/")),
+                }
+            })
+            .collect();
+        match known.count().saturating_sub(DRIVERS) {
+            0 => {}
+            more => lines.push(format!("{} more", grouped(more as u64))),
+        }
+        lines
     }
 
     fn loop_message(&self, fault: &Fault) -> String {
@@ -174,6 +203,30 @@ impl<'a> Findings<'a> {
         self.left_out += crowded.len().saturating_sub(PLACES) as u64;
     }
 
+    /// Registers that pass their input on while their control says so.
+    pub fn add_transparent(&mut self, registers: &[RegisterId]) {
+        let netlist = self.netlist;
+        for id in registers.iter().take(PLACES) {
+            let register = &netlist.registers()[id.index()];
+            let control = register.control.map(|net| netlist.net_name(net));
+            let control = control.unwrap_or_else(|| "its control".to_owned());
+            let when = match register.trigger {
+                Trigger::ActiveHigh => format!("while {control} is 1"),
+                Trigger::ActiveLow => format!("while {control} is 0"),
+                _ => "at any time".to_owned(),
+            };
+            let name = netlist.net_name(register.output);
+            let message = format!("the register {name} passes its input on {when}");
+            self.add(
+                "transparent-register",
+                Some(register.output),
+                register.line,
+                message,
+            );
+        }
+        self.left_out += registers.len().saturating_sub(PLACES) as u64;
+    }
+
     /// Instances without a known function.
     pub fn add_boxes(&mut self) {
         let boxes = self.netlist.boxes();
@@ -199,6 +252,52 @@ impl<'a> Findings<'a> {
         }
     }
 
+    /// Outputs that are ready after they must be, and paths of several cycles that
+    /// need more of a cycle than the longest path of one.
+    pub fn add_late(
+        &mut self,
+        assumptions: &Assumptions,
+        under: &Assumed,
+        timing: &Timing,
+        unit: &str,
+    ) {
+        let late = late_ports(assumptions, under, timing);
+        for port in late.iter().take(PLACES) {
+            let output = &self.netlist.outputs()[port.output as usize];
+            let message = format!(
+                "{} is ready at {}, and must be at {}: {} over",
+                self.netlist.output_name(output),
+                grouped(port.at),
+                grouped(port.required),
+                depth_in((port.at - port.required) as i64, unit)
+            );
+            self.add("too-deep", Some(output.signal.net), output.line, message);
+        }
+        self.left_out += late.len().saturating_sub(PLACES) as u64;
+        for relaxed in &timing.relaxed {
+            let whole = relaxed.timing.longest.max(0).unsigned_abs();
+            let each = whole.div_ceil(relaxed.cycles);
+            if i64::from(each) > i64::from(timing.longest()) {
+                let message = format!(
+                    "paths that may take {} cycles need {} a cycle, more than the longest path \
+                     of one",
+                    relaxed.cycles,
+                    depth_in(i64::from(each), unit)
+                );
+                self.add("too-deep", None, 0, message);
+            }
+        }
+    }
+
+    /// Assumptions that change nothing.
+    pub fn add_unused(&mut self, unused: &[String]) {
+        for assumption in unused.iter().take(PLACES) {
+            let message = format!("assuming that {assumption} changes nothing");
+            self.add("assumption-unused", None, 0, message);
+        }
+        self.left_out += unused.len().saturating_sub(PLACES) as u64;
+    }
+
     /// Candidates left undecided.
     pub fn add_unproven(&mut self, unproven: &[UnprovenRecord]) {
         for candidate in unproven.iter().take(PLACES) {
@@ -222,7 +321,7 @@ impl<'a> Findings<'a> {
             }
             let on_path = |position: &&crate::chain::Position| {
                 let mut carries = position.carries.iter();
-                carries.any(|carry| is_on_longest_path(timing, carry.net))
+                carries.any(|carry| timing.is_on_longest_path(carry.net))
             };
             let carries = chain.positions.iter().filter(on_path).count();
             if carries < 2 {

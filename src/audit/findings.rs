@@ -7,6 +7,7 @@
 //! practice without a published source, and is said in the entry.
 
 use super::record::Severity;
+use crate::source::distance;
 
 /// Gates with more inputs than this are `gate-too-wide` (common practice: a
 /// series stack of more than four devices is split).
@@ -51,12 +52,24 @@ pub const RULES: &[Rule] = &[
                   `alarm` is 1 for every value of `flood_gate` and `storm`.",
     },
     Rule {
+        slug: "assumption-unused",
+        severity: Severity::Warning,
+        what: "An assumption names places that are there, and changes nothing.",
+        why: "It was written for another block or another revision; what it was meant to say \
+              of this one goes unsaid.",
+        advice: "Compare its names with the netlist, or take it out.",
+        leaves_alone: "Arrival and required times, and excluded paths. An assumption whose \
+                       pattern matches nothing at all is an error, not a finding.",
+        example: "tied: {test_mode: {value: 0, why: \"off in the field\"}}\n\
+                  and no gate reads `test_mode`.",
+    },
+    Rule {
         slug: "cell-without-function",
         severity: Severity::Warning,
         what: "An instance names a model the file does not contain, so its function is unknown.",
         why: "Paths end at it and start again behind it. A chain that runs through it is \
               not seen, and the depth told is only that of the parts around it.",
-        advice: "Give the model in the same file, then audit again.",
+        advice: "Give the model in the same file, or its cell with --cells; then audit again.",
         leaves_alone: "Registers: paths end at them because they should.",
         example: ".subckt gauge_filter in=raw out=level\n\
                   with no `.model gauge_filter` in the file.",
@@ -157,6 +170,18 @@ pub const RULES: &[Rule] = &[
         example: "A 16-bit total `total + level` in which bit 15 waits for bit 0.",
     },
     Rule {
+        slug: "too-deep",
+        severity: Severity::Warning,
+        what: "An output is ready later than it was asserted it must be, or paths that may \
+               take several cycles need more of a cycle than any path of one.",
+        why: "Whoever reads the output samples it before it has settled.",
+        advice: "Shorten the path to it (the longest path of its kind is a start), or ask \
+                 whether the required time is still what is meant.",
+        leaves_alone: "Outputs without a required time in the assumptions.",
+        example: "required: [{ports: \"alarm\", at: 12, why: \"the siren samples early\"}]\n\
+                  and `alarm` is ready at 17 gate delays.",
+    },
+    Rule {
         slug: "too-many-readers",
         severity: Severity::Note,
         what: "A net has more than 32 readers.",
@@ -168,6 +193,21 @@ pub const RULES: &[Rule] = &[
                        constants. The limit of 32 is common practice, from no published \
                        source.",
         example: "`store`, the write enable of a 64-bit sample register.",
+    },
+    Rule {
+        slug: "transparent-register",
+        severity: Severity::Note,
+        what: "A register is level-sensitive: while its control says so, its input passes \
+               straight on.",
+        why: "A path need not end there: what arrives while it is open runs on into the logic \
+              behind it. carrywise ends paths at every register and tells besides how deep the \
+              block is with all such registers open, each counted as one gate; where that is \
+              deeper, the verdict is unknown.",
+        advice: "Read both depths. If the two phases never overlap the smaller holds; otherwise \
+                 make the register edge-triggered or budget the longer path.",
+        leaves_alone: "Edge-triggered registers, and registers of which the file does not say \
+                       what makes them store.",
+        example: ".latch level held ah sample 0\nWhile `sample` is 1, `held` follows `level`.",
     },
 ];
 
@@ -192,20 +232,4 @@ pub fn nearest(word: &str) -> Option<&'static Rule> {
         .filter(|&(distance, rule)| distance <= rule.slug.len() / 3)
         .map(|(_, rule)| rule);
     by_distance.or(contained)
-}
-
-/// Levenshtein's distance, 1965: insertions, deletions and substitutions.
-fn distance(left: &str, right: &str) -> usize {
-    let right: Vec<char> = right.chars().collect();
-    let mut row: Vec<usize> = (0..=right.len()).collect();
-    for (i, l) in left.chars().enumerate() {
-        let mut diagonal = row[0];
-        row[0] = i + 1;
-        for (j, &r) in right.iter().enumerate() {
-            let cost = diagonal + usize::from(l != r);
-            diagonal = row[j + 1];
-            row[j + 1] = cost.min(diagonal + 1).min(row[j] + 1);
-        }
-    }
-    row[right.len()]
 }

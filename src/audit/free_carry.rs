@@ -11,7 +11,7 @@
 use super::carried::{Carried, Role};
 use crate::chain::Chain;
 use crate::netlist::{Bit, Driver, NetId, Netlist, Topology};
-use crate::timing::{NEVER, PinDelays, StartClass, gate_arrival, start_class};
+use crate::timing::{NEVER, PinDelays, StartGroup, gate_arrival, start_times};
 use fixedbitset::FixedBitSet;
 
 /// The latest operand of each position of one chain, as far as known.
@@ -22,22 +22,19 @@ struct Latest {
     by_position: Vec<i32>,
 }
 
-/// Arrivals by net from starts of `class` when carries are free.
+/// Arrivals by net from the starts of `group` when carries are free.
 pub fn arrivals(
     netlist: &Netlist,
     topology: &Topology,
     delays: &PinDelays,
-    class: StartClass,
+    group: StartGroup,
     chains: &[Chain],
     carried: &Carried,
 ) -> Vec<i32> {
     let exclusive_or = if netlist.has_inverted_edges() { 2 } else { 1 };
-    let mut by_net = vec![NEVER; netlist.net_count()];
+    let mut by_net = start_times(netlist, topology, Some(group));
     let mut known = FixedBitSet::with_capacity(netlist.net_count());
     for net in netlist.nets() {
-        if start_class(netlist, topology, net) == Some(class) {
-            by_net[net.index()] = 0;
-        }
         if topology.is_cut(net) || !matches!(netlist.driver(net), Driver::Gate(_)) {
             known.insert(net.index());
         }

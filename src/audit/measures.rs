@@ -9,8 +9,8 @@ use super::record::{
 };
 use crate::netlist::{NetId, Netlist, Topology, histogram};
 use crate::timing::{
-    DelayModel, End, EndClass, KindTiming, NEVER, PathStep, StartClass, Timing, end_arrival, ends,
-    longest_free_buffers,
+    DelayModel, End, EndClass, KindTiming, NEVER, PathKind, PathStep, StartClass, Timing,
+    end_arrival, ends, longest_free_buffers, start_group, start_time,
 };
 use std::collections::BTreeMap;
 
@@ -73,7 +73,7 @@ pub fn depth(
 ) -> Depth {
     let mut bars: BTreeMap<i64, u64> = BTreeMap::new();
     for end in ends(netlist, topology) {
-        let at = end_arrival(netlist, &timing.delays, &timing.arrivals.by_net, end);
+        let at = timing.end_time(netlist, end);
         *bars
             .entry(if at == NEVER { 0 } else { i64::from(at) })
             .or_insert(0) += 1;
@@ -85,6 +85,8 @@ pub fn depth(
     };
     Depth {
         longest: i64::from(timing.longest()),
+        longest_without_assumptions: None,
+        longest_through_transparent: None,
         unit: model.unit_word().to_owned(),
         longest_free_buffers: match model {
             DelayModel::Unit => Some(i64::from(longest_free_buffers(netlist, topology))),
@@ -93,7 +95,7 @@ pub fn depth(
         histogram: bars.into_iter().map(bar).collect(),
         longest_path,
         longest_path_left_out,
-        ports: ports(netlist, timing),
+        ports: ports(netlist, topology, timing),
     }
 }
 
@@ -175,37 +177,53 @@ fn end_record(netlist: &Netlist, kind: &KindTiming) -> Option<StepRecord> {
     })
 }
 
-fn ports(netlist: &Netlist, timing: &Timing) -> Vec<PortDepth> {
-    let deepest = |by_net: &[i32], nets: &[NetId]| {
-        let times = nets.iter().map(|net| by_net[net.index()]);
-        times.filter(|&at| at != NEVER).max().map(i64::from)
+fn ports(netlist: &Netlist, topology: &Topology, timing: &Timing) -> Vec<PortDepth> {
+    // The longest path from an input to an end of one class.
+    let from = |net: NetId, class: EndClass| {
+        let start = start_group(netlist, topology, net)?;
+        let tails = timing.by_end().filter(|&(end, _)| {
+            end.class == class && timing.kind(PathKind { start, end }).is_some()
+        });
+        let tail = tails.map(|(_, by_net)| by_net[net.index()]).max();
+        let tail = tail.filter(|&tail| tail != NEVER)?;
+        Some(i64::from(start_time(netlist, net) + tail))
     };
-    let tails = |class| timing.by_end().find(|&(end, _)| end == class);
-    let arrivals = |class| timing.by_start().find(|&(start, _)| start == class);
-    let names: Vec<String> = netlist
-        .inputs()
-        .iter()
-        .map(|&n| netlist.net_name(n))
-        .collect();
+    // The longest path to an output from a start of one class.
+    let to = |output: usize, class: StartClass| {
+        let end = End::Output(output as u32);
+        let group = end.group(netlist)?;
+        let starts = timing.by_start().filter(|&(start, _)| {
+            start.class == class && timing.kind(PathKind { start, end: group }).is_some()
+        });
+        let at = starts
+            .map(|(_, by_net)| end_arrival(netlist, &timing.delays, by_net, end))
+            .max();
+        at.filter(|&at| at != NEVER).map(i64::from)
+    };
+    let inputs = netlist.inputs();
+    let names: Vec<String> = inputs.iter().map(|&n| netlist.net_name(n)).collect();
     let mut ports = Vec::new();
     for (bus, range) in port_buses(&names) {
-        let nets = &netlist.inputs()[range];
+        let deepest = |class| {
+            let nets = inputs[range.clone()].iter();
+            nets.filter_map(|&net| from(net, class)).max()
+        };
         ports.push(PortDepth {
             bus,
-            deepest_in: tails(EndClass::Register).and_then(|(_, t)| deepest(t, nets)),
+            deepest_in: deepest(EndClass::Register),
             deepest_out: None,
-            deepest_through: tails(EndClass::Output).and_then(|(_, t)| deepest(t, nets)),
+            deepest_through: deepest(EndClass::Output),
         });
     }
     let outputs = netlist.outputs();
     let names: Vec<String> = outputs.iter().map(|o| netlist.output_name(o)).collect();
     for (bus, range) in port_buses(&names) {
-        let nets: Vec<NetId> = outputs[range].iter().map(|o| o.signal.net).collect();
+        let deepest = |class| range.clone().filter_map(|i| to(i, class)).max();
         ports.push(PortDepth {
             bus,
             deepest_in: None,
-            deepest_out: arrivals(StartClass::Register).and_then(|(_, t)| deepest(t, &nets)),
-            deepest_through: arrivals(StartClass::Input).and_then(|(_, t)| deepest(t, &nets)),
+            deepest_out: deepest(StartClass::Register),
+            deepest_through: deepest(StartClass::Input),
         });
     }
     if ports.len() > PORTS {

@@ -5,6 +5,7 @@
 //! findings. It changes nothing and cannot fail on a valid netlist, except when
 //! what was asked for does not fit the netlist's format.
 
+mod assumed;
 mod carried;
 mod chains;
 mod faults;
@@ -15,23 +16,28 @@ mod measures;
 mod names;
 mod rebuilds;
 pub mod record;
+mod sight;
 mod verdict;
 pub mod words;
 
 use crate::chain;
 use crate::format::Format;
+use crate::netlist::assume::Misfit;
 use crate::netlist::health::Health;
 use crate::netlist::{Netlist, Topology};
 use crate::plan::{self, ChainPlan, Ground, Request, Settings, SettingsError};
 use crate::timing::{DelayModel, Timing};
+pub use assumed::Asserting;
+use assumed::Without;
 use carried::{Carried, Cones};
 use faults::Findings;
 use measures::ChainMap;
 use record::{
-    Audit, DelayModelFacts, NetlistFacts, SCHEMA, Seen, Settings as SettingsRecord, Tool,
+    Audit, DelayModelFacts, Depth, NetlistFacts, SCHEMA, Seen, Settings as SettingsRecord, Tool,
     UnprovenRecord,
 };
 use sha2::{Digest, Sha256};
+use sight::{Open, Sight};
 use verdict::Evidence;
 
 /// What an audit does not settle.
@@ -74,20 +80,53 @@ pub fn digest(bytes: &[u8]) -> String {
     chains::hexadecimal(&Sha256::digest(bytes))
 }
 
-/// Audits one netlist.
+/// Why a netlist was not audited.
+#[derive(Clone, PartialEq, Eq, Debug, thiserror::Error)]
+pub enum AuditError {
+    /// The limits asked for on new gates do not fit the netlist's format.
+    #[error(transparent)]
+    Settings(#[from] SettingsError),
+    /// The assumptions do not fit the netlist.
+    #[error(transparent)]
+    Misfit(#[from] Misfit),
+}
+
+/// Audits one netlist as it was read.
 ///
 /// # Errors
 /// When the limits asked for on new gates do not fit the netlist's format.
-pub fn audit(
-    netlist: &Netlist,
+pub fn audit(netlist: &Netlist, origin: &Origin, options: &Options) -> Result<Audit, AuditError> {
+    audit_under(netlist, origin, options, None)
+}
+
+/// Audits one netlist, under assumptions when there are some. Structure faults,
+/// fan-in and fan-out are those of the netlist as read; everything about paths and
+/// chains holds under the assumptions.
+///
+/// # Errors
+/// When the limits on new gates or the assumptions do not fit the netlist.
+pub fn audit_under(
+    read: &Netlist,
     origin: &Origin,
     options: &Options,
-) -> Result<Audit, SettingsError> {
-    let settings = Settings::resolve(options.request, netlist)?;
+    asserting: Option<&Asserting<'_>>,
+) -> Result<Audit, AuditError> {
+    let settings = Settings::resolve(options.request, read)?;
     let model = settings.model;
     let unit = model.unit_word();
-    let topology = Topology::of(netlist);
-    let health = Health::of(netlist, &topology);
+    let applied = match asserting {
+        None => None,
+        Some(asserting) => Some((asserting, asserting.assumptions.apply(read)?)),
+    };
+    let mut topology = Topology::of(read);
+    let health = Health::of(read, &topology);
+    let without = applied
+        .is_some()
+        .then(|| Without::of(read, &topology, model));
+    let netlist = applied.as_ref().map_or(read, |(_, under)| &under.netlist);
+    if applied.is_some() {
+        topology = Topology::of(netlist);
+    }
     // The search needs the most memory, so it runs before the timing is held.
     let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
@@ -119,6 +158,7 @@ pub fn audit(
         cones: &cones,
         ids: &ids,
     };
+    let open = Open::of(netlist, model);
     let verdict = Evidence {
         netlist,
         topology: &topology,
@@ -126,17 +166,37 @@ pub fn audit(
         chains: &chains,
         records: &records,
         map: map(),
-        undecided: unproven.len(),
+        sight: Sight {
+            netlist,
+            topology: &topology,
+            timing: &timing,
+            undecided: unproven.len(),
+            open: open.as_ref(),
+            unit,
+        },
         min_bits: options.chains.min_bits,
         longest: longest_path,
         set: &recommended_set,
         unit,
+        without: without.as_ref(),
     }
     .verdict();
+    let assumed = applied
+        .as_ref()
+        .map_or_else(Vec::new, |(asserting, under)| {
+            assumed::records(asserting.assumptions, under, &timing, unit)
+        });
 
     let mut findings = Findings::new(netlist);
+    if let Some((asserting, under)) = &applied {
+        findings.add_late(asserting.assumptions, under, &timing, unit);
+        findings.add_unused(&assumed::unused(asserting.assumptions, read, &timing));
+    }
     findings.add_health(&health);
     findings.add_boxes();
+    if let Some(open) = &open {
+        findings.add_transparent(&open.registers);
+    }
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
     findings.add_unproven(&unproven);
@@ -150,7 +210,10 @@ pub fn audit(
             version: env!("CARGO_PKG_VERSION").to_owned(),
         },
         netlist: netlist_facts(netlist, origin),
-        settings: settings_record(&settings, options),
+        settings: SettingsRecord {
+            assumptions_sha256: asserting.map(|asserting| asserting.sha256.clone()),
+            ..settings_record(&settings, options)
+        },
         seen: Seen {
             gates_with_function: netlist.gate_count() as u64,
             gates_without_function: netlist.boxes().len() as u64,
@@ -159,9 +222,13 @@ pub fn audit(
             chains_unproven: unproven.len() as u64,
         },
         verdict,
-        depth: measures::depth(netlist, &topology, &timing, model, longest_path, &map()),
-        fan_in: measures::fan_in(netlist),
-        fan_out: measures::fan_out(netlist),
+        depth: Depth {
+            longest_through_transparent: open.as_ref().map(|open| open.longest),
+            longest_without_assumptions: without.as_ref().map(|without| without.longest),
+            ..measures::depth(netlist, &topology, &timing, model, longest_path, &map())
+        },
+        fan_in: measures::fan_in(read),
+        fan_out: measures::fan_out(read),
         chains: records,
         recommended_set,
         arrays: Vec::new(),
@@ -169,7 +236,7 @@ pub fn audit(
         unproven,
         findings,
         findings_left_out,
-        assumed: Vec::new(),
+        assumed,
         caution: CAUTION.to_owned(),
     })
 }

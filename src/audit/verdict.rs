@@ -2,21 +2,23 @@
 //!
 //! Carry is the limit when the block would be shallower if the carries of the
 //! proven chains were free (see [`super::free_carry`]), for then no path as long
-//! as the longest avoids them. Otherwise no proven chain is the limit. Where a loop,
-//! a net with several drivers or an instance without a function lies on a way
-//! from a start to an end, a longer path may be hidden behind it; where a
-//! candidate was left undecided, a chain may be. Then the verdict is unknown,
-//! and says what hid it and what holds for the rest.
+//! as the longest avoids them. Otherwise no proven chain is the limit. Where something
+//! could hide a longer path or a chain (see [`super::sight`]) the verdict is
+//! unknown, and says what hid it and what holds for the rest.
 
+use super::assumed::Without;
 use super::carried::Cones;
 use super::free_carry;
 use super::measures::ChainMap;
 use super::rebuilds::scheme_phrase;
 use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
+use super::sight::Sight;
 use super::words::{counted, depth_in, grouped, grouped_signed, listed};
 use crate::chain::Chain;
 use crate::netlist::{NetId, Netlist, Topology};
-use crate::timing::{KindTiming, NEVER, PathStep, Timing, end_arrival, end_net, ends};
+use crate::timing::{
+    KindTiming, NEVER, PathKind, PathStep, Timing, end_arrival, end_net, grouped_ends,
+};
 use std::cmp::Reverse;
 use std::collections::BTreeMap;
 
@@ -34,8 +36,8 @@ pub struct Evidence<'a> {
     pub records: &'a [ChainRecord],
     /// Their gates and nets.
     pub map: ChainMap<'a>,
-    /// Candidates left undecided.
-    pub undecided: usize,
+    /// What could hide part of the answer.
+    pub sight: Sight<'a>,
     /// Chains below this width were left out.
     pub min_bits: usize,
     /// The longest path of the block.
@@ -44,6 +46,8 @@ pub struct Evidence<'a> {
     pub set: &'a RecommendedSet,
     /// Unit of depths.
     pub unit: &'a str,
+    /// The figures without assumptions, when there are some.
+    pub without: Option<&'a Without>,
 }
 
 impl Evidence<'_> {
@@ -56,13 +60,13 @@ impl Evidence<'_> {
             .map(|kind| kind.depth_if_carry_were_free);
         let free = free.max().unwrap_or(0);
         let carry = free < longest;
-        let hidden = self.hidden(carry);
+        let hidden = self.sight.hidden(carry);
         let (chain, seen) = if carry {
             self.carry_sentence(longest, free)
         } else {
             (None, self.elsewhere_sentence(longest))
         };
-        let (limit, sentence) = match hidden {
+        let (limit, mut sentence) = match hidden {
             None if carry => (Limit::Carry, seen),
             None => (Limit::Elsewhere, seen),
             Some(hidden) => (
@@ -73,6 +77,12 @@ impl Evidence<'_> {
                 ),
             ),
         };
+        if let Some(blind) = self.sight.blind() {
+            sentence = blind;
+        }
+        if let Some(without) = self.without {
+            sentence.push_str(&self.without_sentence(without, longest));
+        }
         Verdict {
             limit,
             chain,
@@ -81,40 +91,71 @@ impl Evidence<'_> {
         }
     }
 
+    fn without_sentence(&self, without: &Without, longest: i64) -> String {
+        if without.longest == longest {
+            return " This holds under the assumptions listed; without them the longest path is \
+                    as long."
+                .to_owned();
+        }
+        format!(
+            " This holds under the assumptions listed; without them the longest path is {} long.",
+            depth_in(without.longest, self.unit)
+        )
+    }
+
     fn kinds(&self) -> Vec<PathKindFacts> {
+        let (netlist, topology, timing) = (self.netlist, self.topology, self.timing);
         let mut free: BTreeMap<_, i32> = BTreeMap::new();
-        for (start, _) in self.timing.by_start() {
+        for (start, _) in timing.by_start() {
             let by_net = free_carry::arrivals(
-                self.netlist,
-                self.topology,
-                &self.timing.delays,
+                netlist,
+                topology,
+                &timing.delays,
                 start,
                 self.chains,
                 self.map.carried,
             );
-            for end in ends(self.netlist, self.topology) {
-                let at = end_arrival(self.netlist, &self.timing.delays, &by_net, end);
-                let deepest = free.entry((start, end.class())).or_insert(NEVER);
-                *deepest = (*deepest).max(at);
+            for (end, group) in grouped_ends(netlist, topology) {
+                let kind = PathKind { start, end: group };
+                if timing.kind(kind).is_some() {
+                    let at = end_arrival(netlist, &timing.delays, &by_net, end);
+                    let deepest = free.entry(kind.classes()).or_insert(NEVER);
+                    *deepest = (*deepest).max(at);
+                }
             }
         }
-        let mut kinds: Vec<&KindTiming> = self.timing.kinds.iter().collect();
+        let mut kinds = timing.kinds_by_class(netlist, topology);
         kinds.sort_by_key(|kind| Reverse(kind.longest));
         kinds
-            .into_iter()
-            .map(|timing| {
-                let kind = timing.kind;
-                let path = self.timing.path_of(self.netlist, self.topology, timing);
+            .iter()
+            .map(|of_class| {
+                let path = timing.path_of(netlist, topology, of_class);
                 let levels = levels_by_chain(&path, self.map.cones);
+                let longest = i64::from(of_class.longest);
+                let free = free
+                    .get(&of_class.kind.classes())
+                    .map_or(0, |&at| i64::from(at));
+                let main = levels
+                    .iter()
+                    .max_by_key(|&(&chain, &n)| (n, Reverse(chain)));
                 PathKindFacts {
-                    path_kind: kind.to_string(),
-                    longest: i64::from(timing.longest),
+                    path_kind: of_class.kind.to_string(),
+                    limit: if free < longest {
+                        Limit::Carry
+                    } else {
+                        Limit::Elsewhere
+                    },
+                    chain: main
+                        .filter(|_| free < longest)
+                        .map(|(&chain, _)| self.records[chain as usize].id.clone()),
+                    longest,
+                    longest_without_assumptions: self
+                        .without
+                        .map(|without| without.of_kind(of_class.kind)),
                     levels_in_carries: levels.values().sum(),
-                    depth_if_carry_were_free: free
-                        .get(&(kind.start, kind.end))
-                        .map_or(0, |&at| i64::from(at)),
-                    ends_at_longest: timing.ends_at_longest as u64,
-                    next_below: timing.next_below.map(i64::from),
+                    depth_if_carry_were_free: free,
+                    ends_at_longest: of_class.ends_at_longest as u64,
+                    next_below: of_class.next_below.map(i64::from),
                 }
             })
             .collect()
@@ -242,56 +283,6 @@ impl Evidence<'_> {
                 counted(through.unsigned_abs(), "level", "levels")
             )
         }
-    }
-
-    /// What could hide a longer path or a chain, in words.
-    fn hidden(&self, carry: bool) -> Option<String> {
-        let tails = &self.timing.tails.by_net;
-        let reaches_an_end = |net: &NetId| tails[net.index()] != NEVER;
-        let mut parts = Vec::new();
-        let loops = self.topology.loops.iter();
-        match loops.filter(|nets| nets.iter().any(reaches_an_end)).count() {
-            0 => {}
-            1 => parts.push("a loop without a register is cut".to_owned()),
-            n => parts.push(format!(
-                "{} loops without a register are cut",
-                grouped(n as u64)
-            )),
-        }
-        let contended = self.netlist.contended().iter();
-        match contended.filter(|each| reaches_an_end(&each.net)).count() {
-            0 => {}
-            1 => parts.push("a net with several drivers is cut".to_owned()),
-            n => parts.push(format!(
-                "{} nets with several drivers are cut",
-                grouped(n as u64)
-            )),
-        }
-        let arrivals = &self.timing.arrivals.by_net;
-        let boxes = self.netlist.boxes().iter().filter(|each| {
-            let reached = each.inputs.iter().any(|net| arrivals[net.index()] != NEVER);
-            reached && each.outputs.iter().any(reaches_an_end)
-        });
-        match boxes.count() {
-            0 => {}
-            1 => {
-                parts.push("a path may run through an instance without a known function".to_owned())
-            }
-            n => parts.push(format!(
-                "paths may run through {} instances without a known function",
-                grouped(n as u64)
-            )),
-        }
-        if !carry && self.undecided > 0 {
-            parts.push(match self.undecided {
-                1 => "a candidate for a carry chain was left undecided".to_owned(),
-                n => format!(
-                    "{} candidates for carry chains were left undecided",
-                    grouped(n as u64)
-                ),
-            });
-        }
-        (!parts.is_empty()).then(|| listed(&parts))
     }
 }
 

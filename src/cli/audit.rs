@@ -7,9 +7,11 @@ use super::search::SearchFolders;
 use super::targets::{self, Target};
 use super::terminal::{colour_on_stderr, complain, page, say};
 use crate::audit::record::Audit;
-use crate::audit::{self, Origin};
+use crate::audit::{self, Asserting, AuditError, Origin};
+use crate::format::assumptions::{self, AssumptionsFile};
 use crate::format::files::FileAccess;
 use crate::format::{self, Parsed};
+use crate::netlist::cell::{Cells, Unbound};
 use crate::report::{self, Form, MOST_CHARACTERS, Page};
 use crate::source::{self, Diagnostic, Limits, Place, ReadError, Source};
 use std::fs::File;
@@ -34,12 +36,23 @@ pub fn run(arguments: &AuditArguments) -> Status {
         .filter(|f| !is_stdin(f))
         .cloned()
         .collect();
-    let mut targets = match targets::open(&arguments.report, &named) {
+    let besides = arguments.assume.iter().chain(&arguments.cells);
+    let read_besides = named.iter().chain(besides).cloned();
+    let read_besides: Vec<PathBuf> = read_besides.collect();
+    let mut targets = match targets::open(&arguments.report, &read_besides) {
         Ok(targets) => targets,
         Err(error) => {
             complain(&format!("{error:#}"));
             return Status::Unusable;
         }
+    };
+    let cells = match arguments.cells.as_deref().map(cells).transpose() {
+        Ok(cells) => cells,
+        Err(worse) => return worse,
+    };
+    let asserted = match arguments.assume.as_deref().map(assume).transpose() {
+        Ok(asserted) => asserted,
+        Err(worse) => return worse,
     };
     let share = (MOST_CHARACTERS / arguments.files.len()).max(FEWEST_CHARACTERS);
     let page = Page {
@@ -50,7 +63,9 @@ pub fn run(arguments: &AuditArguments) -> Status {
     let mut status = Status::Done;
     for file in &arguments.files {
         // A fault of ours in one netlist is told as such, and the others go on.
-        let audited = catch_unwind(AssertUnwindSafe(|| audit_file(file, arguments)));
+        let audited = catch_unwind(AssertUnwindSafe(|| {
+            audit_file(file, arguments, asserted.as_ref(), cells.as_ref())
+        }));
         let audited = audited.unwrap_or_else(|_| {
             complain(&format!(
                 "{}: a fault of carrywise itself, told above; the netlist is not to blame",
@@ -58,7 +73,15 @@ pub fn run(arguments: &AuditArguments) -> Status {
             ));
             Err(Status::Fault)
         });
-        let written = audited.and_then(|audit| write(&audit, page, &mut stdout, &mut targets));
+        let written = audited.and_then(|audit| {
+            write(&audit, page, &mut stdout, &mut targets)?;
+            let fails = arguments.fail_on.least();
+            let held = fails.is_none_or(|least| {
+                let mut findings = audit.findings.iter();
+                !findings.any(|finding| !finding.accepted && finding.severity >= least)
+            });
+            if held { Ok(()) } else { Err(Status::NotHeld) }
+        });
         if let Err(worse) = written {
             status = status.max(worse);
         }
@@ -84,26 +107,42 @@ fn shown(file: &Path) -> String {
     source::escape(file.to_string_lossy().as_bytes())
 }
 
-fn audit_file(file: &Path, arguments: &AuditArguments) -> Result<Audit, Status> {
+/// Reads a cell library. Cells without a function are not told: the instances
+/// that name one are findings.
+fn cells(file: &Path) -> Result<Cells, Status> {
+    let name = file.to_string_lossy();
+    let source = load_or_say(file, &name, Limits::for_gates(0))?;
+    match format::cells::read(&source) {
+        Ok(library) => Ok(library.cells),
+        Err(errors) => {
+            for error in &errors {
+                say(&error.render(&source, colour_on_stderr()));
+            }
+            Err(Status::Unusable)
+        }
+    }
+}
+
+/// Reads a file of assumptions.
+fn assume(file: &Path) -> Result<AssumptionsFile, Status> {
+    let name = file.to_string_lossy();
+    let source = load_or_say(file, &name, Limits::for_gates(0))?;
+    assumptions::read(source.clone()).map_err(|error| {
+        say(&error.render(&source, colour_on_stderr()));
+        Status::Unusable
+    })
+}
+
+fn audit_file(
+    file: &Path,
+    arguments: &AuditArguments,
+    asserted: Option<&AssumptionsFile>,
+    cells: Option<&Cells>,
+) -> Result<Audit, Status> {
     let colour = colour_on_stderr();
     let name = file.to_string_lossy().into_owned();
     let limits = Limits::for_gates(arguments.max_gates);
-    let source = load(file, &name, limits).map_err(|error| {
-        let nothing = Source {
-            name: name.clone(),
-            bytes: Vec::new(),
-        };
-        let fault = match error {
-            ReadError::Packed(fault) => *fault,
-            ReadError::Io(error) => {
-                let text = format!("cannot read the file: {error}");
-                let help = "check its name and that it may be read";
-                Diagnostic::error(&name, Place::File, text, help)
-            }
-        };
-        say(&fault.render(&nothing, colour));
-        Status::Unusable
-    })?;
+    let source = load_or_say(file, &name, limits)?;
     let folders = SearchFolders::new(file, &arguments.search_dir, limits).map_err(|error| {
         complain(&error);
         Status::Unusable
@@ -130,6 +169,29 @@ fn audit_file(file: &Path, arguments: &AuditArguments) -> Result<Audit, Status> 
     if !arguments.quiet {
         warnings.iter().for_each(tell);
     }
+    let netlist = match cells {
+        None => netlist,
+        Some(cells) => {
+            cells
+                .bind(netlist, arguments.max_gates)
+                .map_err(|fault| {
+                    let (place, help) = match &fault {
+                        Unbound::NoPin { line, .. } => {
+                            (Place::line(*line), "compare with the library")
+                        }
+                        Unbound::Twice { line, .. } => {
+                            (Place::line(*line), "leave one of the connections out")
+                        }
+                        Unbound::TooLarge { .. } => {
+                            (Place::File, "raise --max-gates if this is meant")
+                        }
+                    };
+                    tell(&Diagnostic::error(&name, place, fault.to_string(), help));
+                    Status::Unusable
+                })?
+                .netlist
+        }
+    };
     let origin = Origin {
         file: name,
         format,
@@ -137,8 +199,38 @@ fn audit_file(file: &Path, arguments: &AuditArguments) -> Result<Audit, Status> 
     };
     // The text is not needed any more, and can be as large as the netlist.
     drop(source);
-    audit::audit(&netlist, &origin, &arguments.auditing()).map_err(|error| {
-        complain(&format!("{}: {error}", shown(file)));
+    let asserting = asserted.map(|file| Asserting {
+        assumptions: &file.assumptions,
+        sha256: audit::digest(&file.source().bytes),
+    });
+    let audited = audit::audit_under(&netlist, &origin, &arguments.auditing(), asserting.as_ref());
+    audited.map_err(|error| {
+        match (&error, asserted) {
+            (AuditError::Misfit(misfit), Some(file)) => {
+                let told = file.misfit(misfit, &origin.file);
+                say(&told.render(file.source(), colour));
+            }
+            _ => complain(&format!("{}: {error}", shown(file))),
+        }
+        Status::Unusable
+    })
+}
+
+fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
+    load(file, name, limits).map_err(|error| {
+        let nothing = Source {
+            name: name.to_owned(),
+            bytes: Vec::new(),
+        };
+        let fault = match error {
+            ReadError::Packed(fault) => *fault,
+            ReadError::Io(error) => {
+                let text = format!("cannot read the file: {error}");
+                let help = "check its name and that it may be read";
+                Diagnostic::error(name, Place::File, text, help)
+            }
+        };
+        say(&fault.render(&nothing, colour_on_stderr()));
         Status::Unusable
     })
 }

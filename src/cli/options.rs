@@ -3,6 +3,7 @@
 //! No clap type leaves this room; each stage gets its own small options value.
 
 use crate::audit;
+use crate::audit::record::Severity;
 use crate::chain;
 use crate::format::ReadOptions;
 use crate::format::files::FileAccess;
@@ -108,6 +109,19 @@ pub struct AuditArguments {
     #[arg(long, value_name = "N", default_value_t = 20_000)]
     pub effort: u64,
 
+    /// Functions of cells: a BLIF file of one-cell models, or a Liberty library
+    #[arg(long, value_name = "PATH")]
+    pub cells: Option<PathBuf>,
+
+    /// A YAML file of what may be assumed about the block: tied nets, paths that do not count,
+    /// paths of several cycles, arrival and required times
+    #[arg(long, value_name = "PATH")]
+    pub assume: Option<PathBuf>,
+
+    /// Exit with 1 when a finding is at least this bad
+    #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
+    pub fail_on: FailWord,
+
     /// No warnings on standard error; errors still
     #[arg(long, short)]
     pub quiet: bool,
@@ -145,6 +159,28 @@ pub enum DelayWord {
     Unit,
     /// Levels of two-input gates
     Pairs,
+}
+
+/// Words of `--fail-on`.
+#[derive(ValueEnum, Clone, Copy, Debug)]
+pub enum FailWord {
+    /// On an error
+    Error,
+    /// On a warning or an error
+    Warning,
+    /// On none
+    Never,
+}
+
+impl FailWord {
+    /// The least severity that fails, when one does.
+    pub fn least(self) -> Option<Severity> {
+        match self {
+            Self::Error => Some(Severity::Error),
+            Self::Warning => Some(Severity::Warning),
+            Self::Never => None,
+        }
+    }
 }
 
 /// Words of `--new-gates`.

@@ -1,4 +1,5 @@
-//! Text and bytes to netlist: BLIF, AIGER ASCII and AIGER binary.
+//! Text and bytes to netlist: BLIF, AIGER ASCII and AIGER binary; and the user's
+//! own files about one.
 //!
 //! The content decides the format, never the file's extension. Each reader turns
 //! a [`Source`] into a [`Netlist`] plus warnings, or into located errors; there
@@ -10,10 +11,13 @@
 //! what a hierarchy expands to before it builds any of it.
 
 pub mod aiger;
+pub mod assumptions;
 pub mod blif;
+pub mod cells;
 pub mod constraints;
 pub mod files;
 mod names;
+mod yaml;
 
 use constraints::Constraints;
 use files::FileAccess;

@@ -60,9 +60,42 @@ impl NetlistBuilder {
                 properties: Vec::new(),
                 contended: Vec::new(),
                 inverted_edges: false,
+                asserted: None,
             },
             constants: [None; 2],
         }
+    }
+
+    /// Opens a finished netlist again, with its boxes taken out of it: nets, gates,
+    /// registers and ports stay and are driven anew. Names can be read, not added.
+    pub(super) fn reopen(mut netlist: Netlist) -> (Self, Vec<BlackBox>) {
+        let boxes = std::mem::take(&mut netlist.boxes);
+        netlist.contended.clear();
+        let mut constants = [None; 2];
+        for (i, driver) in netlist.drivers.iter_mut().enumerate() {
+            match *driver {
+                Driver::Constant(value) => constants[usize::from(value)] = Some(NetId::new(i)),
+                _ => *driver = Driver::None,
+            }
+        }
+        let mut builder = Self { netlist, constants };
+        for i in 0..builder.netlist.inputs.len() {
+            let net = builder.netlist.inputs[i];
+            builder.drive(net, Driver::Input(i as u32), 0);
+        }
+        for i in 0..builder.netlist.gate_outputs.len() {
+            let (net, line) = (
+                builder.netlist.gate_outputs[i],
+                builder.netlist.gate_lines[i],
+            );
+            builder.drive(net, Driver::Gate(GateId::new(i)), line);
+        }
+        for i in 0..builder.netlist.registers.len() {
+            let register = builder.netlist.registers[i];
+            let driver = Driver::Register(RegisterId::new(i));
+            builder.drive(register.output, driver, register.line);
+        }
+        (builder, boxes)
     }
 
     /// Says that inversions on edges are free (AIGER).

@@ -256,14 +256,14 @@ fn cycle_through(netlist: &Netlist, start: NetId, inside: &FixedBitSet) -> Vec<N
 }
 
 /// Nets known to be constant, by propagation of constants alone.
-struct Known {
+pub(super) struct Known {
     is: FixedBitSet,
     one: FixedBitSet,
     any: bool,
 }
 
 impl Known {
-    fn new(netlist: &Netlist) -> Self {
+    pub(super) fn new(netlist: &Netlist) -> Self {
         let mut known = Self {
             is: FixedBitSet::with_capacity(netlist.net_count()),
             one: FixedBitSet::with_capacity(netlist.net_count()),
@@ -277,19 +277,19 @@ impl Known {
         known
     }
 
-    fn set(&mut self, net: NetId, value: bool) {
+    pub(super) fn set(&mut self, net: NetId, value: bool) {
         self.any = true;
         self.is.insert(net.index());
         self.one.set(net.index(), value);
     }
 
-    fn get(&self, net: NetId) -> Option<bool> {
+    pub(super) fn get(&self, net: NetId) -> Option<bool> {
         self.is
             .contains(net.index())
             .then(|| self.one.contains(net.index()))
     }
 
-    fn gate(&self, netlist: &Netlist, gate: GateId) -> Option<bool> {
+    pub(super) fn gate(&self, netlist: &Netlist, gate: GateId) -> Option<bool> {
         let fan_ins = netlist.fan_ins(gate);
         match netlist.function(gate) {
             Function::Table(table) => {

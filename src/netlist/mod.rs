@@ -7,10 +7,16 @@
 //!
 //! Invariants: every id held by a netlist is in range; the number of fan-ins of
 //! a gate equals the inputs of its function; a net with [`Driver::Many`] is
-//! listed in [`Netlist::contended`] with every one of its drivers.
+//! listed in [`Netlist::contended`] with every one of its drivers. What a user
+//! asserts about a block makes *another* netlist ([`Assumptions::apply`]); the one
+//! that was read stays as it is.
 
+mod apply;
+mod asserted;
+pub mod assume;
 mod builder;
 pub mod bus;
+pub mod cell;
 pub mod function;
 mod graph;
 pub mod health;
@@ -18,7 +24,12 @@ pub mod histogram;
 mod id;
 mod model;
 mod names;
+mod pattern;
+mod tie;
+mod transparent;
 
+pub use asserted::{Asserted, EndPoint, Pairing};
+pub use assume::Assumptions;
 pub use builder::{NetlistBuilder, TooLarge};
 pub use function::{Cover, Function, Shape, TruthTable};
 pub use graph::{NetGraph, Readers, Topology};
@@ -28,3 +39,4 @@ pub use model::{
     Register, Signal, Trigger,
 };
 pub use names::{NameId, Names};
+pub use pattern::Pattern;

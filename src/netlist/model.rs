@@ -1,5 +1,6 @@
 //! The netlist value and its read-only views.
 
+use super::asserted::Asserted;
 use super::function::{Function, Functions};
 use super::id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 use super::names::{NameId, Names};
@@ -226,6 +227,7 @@ pub struct Netlist {
     pub(super) properties: Vec<Property>,
     pub(super) contended: Vec<Contention>,
     pub(super) inverted_edges: bool,
+    pub(super) asserted: Option<Box<Asserted>>,
 }
 
 impl Netlist {
@@ -356,6 +358,20 @@ impl Netlist {
         &self.contended
     }
 
+    /// What a user asserted about paths, when anything was.
+    #[inline]
+    pub fn asserted(&self) -> Option<&Asserted> {
+        self.asserted.as_deref()
+    }
+
+    /// Whether no path through `net` counts, because a user asserted it.
+    #[inline]
+    pub fn is_barred(&self, net: NetId) -> bool {
+        self.asserted
+            .as_deref()
+            .is_some_and(|asserted| asserted.is_barred(net))
+    }
+
     /// Whether an inversion on an edge is free (AIGER) or needs a gate (BLIF).
     pub fn has_inverted_edges(&self) -> bool {
         self.inverted_edges
@@ -375,13 +391,13 @@ impl Netlist {
     }
 
     /// The net's full name: instance path, `/`, own name. Nets without a name
-    /// are written `v` and their number, constants `0` and `1`.
+    /// are written `v` and their number, constants without one `0` and `1`.
     pub fn net_name(&self, net: NetId) -> String {
-        if let Driver::Constant(value) = self.driver(net) {
-            return u8::from(value).to_string();
-        }
         let Some(name) = self.local_name(net) else {
-            return format!("v{}", net.0);
+            return match self.driver(net) {
+                Driver::Constant(value) => u8::from(value).to_string(),
+                _ => format!("v{}", net.0),
+            };
         };
         let mut text = String::new();
         for part in self.scope_path(self.net_scope(net)) {

@@ -12,7 +12,7 @@ use super::overlay::{GateStyle, Literal, Node, Operator, Overlay};
 use super::site::Site;
 use crate::netlist::{GateId, NetId};
 use crate::network::{CarryNetwork, Propagate, build};
-use crate::timing::{End, EndClass, NEVER, PathKind};
+use crate::timing::{End, EndGroup, NEVER, PathKind};
 
 /// What becomes of the longest path of one kind.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -322,8 +322,8 @@ impl<'s, 'a> DryRun<'s, 'a> {
         })
     }
 
-    fn latest_through(&self, times: &[i32], class: EndClass, length: i32) -> Option<NetId> {
-        let (_, tails) = self.site.tails.iter().find(|(each, _)| *each == class)?;
+    fn latest_through(&self, times: &[i32], group: EndGroup, length: i32) -> Option<NetId> {
+        let (_, tails) = self.site.tails.iter().find(|(each, _)| *each == group)?;
         let nets = self.site.needed.iter().zip(times);
         nets.filter(|&(_, &time)| time != NEVER)
             .find(|(needed, time)| tails.get(&needed.net).is_some_and(|t| *time + t == length))

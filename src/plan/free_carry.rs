@@ -6,7 +6,7 @@
 
 use super::ground::Ground;
 use crate::chain::Chain;
-use crate::timing::{NEVER, PathKind, end_arrival, ends, gate_arrival, start_class};
+use crate::timing::{NEVER, PathKind, end_arrival, gate_arrival, grouped_ends, start_times};
 use fixedbitset::FixedBitSet;
 use std::collections::BTreeMap;
 
@@ -24,25 +24,17 @@ pub fn depth_with_free_carry(ground: &Ground<'_>, chains: &[Chain]) -> BTreeMap<
     }
     let mut longest = BTreeMap::new();
     for (start, _) in ground.timing.by_start() {
-        let mut times = vec![NEVER; netlist.net_count()];
-        for net in netlist.nets() {
-            if start_class(netlist, topology, net) == Some(start) {
-                times[net.index()] = 0;
-            }
-        }
+        let mut times = start_times(netlist, topology, Some(start));
         for &gate in &topology.order {
             let output = netlist.gate_output(gate);
             if !topology.is_cut(output) && !free.contains(output.index()) {
                 times[output.index()] = gate_arrival(netlist, delays, &times, gate);
             }
         }
-        for end in ends(netlist, topology) {
+        for (end, group) in grouped_ends(netlist, topology) {
             let time = end_arrival(netlist, delays, &times, end);
-            if time != NEVER {
-                let kind = PathKind {
-                    start,
-                    end: end.class(),
-                };
+            let kind = PathKind { start, end: group };
+            if time != NEVER && ground.timing.kind(kind).is_some() {
                 let slot = longest.entry(kind).or_insert(time);
                 *slot = time.max(*slot);
             }

@@ -7,7 +7,7 @@ use super::settings::Settings;
 use crate::netlist::histogram::reader_counts;
 use crate::netlist::{Driver, GateId, NetId, Netlist, Readers, Topology};
 use crate::timing::{
-    End, EndClass, NEVER, PathKind, StartClass, Timing, end_arrival, end_net, ends,
+    End, EndGroup, NEVER, PathKind, StartGroup, Timing, end_arrival, end_net, ends,
 };
 
 /// See the head of the module.
@@ -24,8 +24,8 @@ pub struct Ground<'a> {
     uses: Vec<u32>,
     ranks: Vec<u32>,
     ends_by_net: Vec<(NetId, End)>,
-    /// For each start class that occurs, all ends, the latest first.
-    ends_by_arrival: Vec<(StartClass, Vec<(i32, End)>)>,
+    /// For each group of starts that occurs, all ends, the latest first.
+    ends_by_arrival: Vec<(StartGroup, Vec<(i32, End)>)>,
 }
 
 impl<'a> Ground<'a> {
@@ -110,12 +110,12 @@ impl<'a> Ground<'a> {
             .iter()
             .find(|&&(start, _)| start == kind.start)?;
         list.iter()
-            .find(|&&(_, end)| end.class() == kind.end && wanted(end))
+            .find(|&&(_, end)| end.group(self.netlist) == Some(kind.end) && wanted(end))
             .copied()
     }
 
-    /// The classes of end that occur.
-    pub(super) fn end_classes(&self) -> Vec<EndClass> {
-        self.timing.by_end().map(|(class, _)| class).collect()
+    /// The groups of ends that occur.
+    pub(super) fn end_groups(&self) -> Vec<EndGroup> {
+        self.timing.by_end().map(|(group, _)| group).collect()
     }
 }

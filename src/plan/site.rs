@@ -15,7 +15,7 @@ use super::overlay::{GateStyle, Literal, Overlay};
 use crate::chain::Chain;
 use crate::netlist::{GateId, NetId, Shape};
 use crate::network::Addends;
-use crate::timing::{End, EndClass, NEVER, PathKind, StartClass, end_net};
+use crate::timing::{End, EndGroup, NEVER, PathKind, StartGroup, end_net};
 use rustc_hash::{FxHashMap, FxHashSet};
 
 /// Readers of one operand looked at for gates to reuse.
@@ -71,7 +71,7 @@ pub struct Site<'a> {
     pub(super) region: Vec<GateId>,
     pub(super) region_set: FxHashSet<GateId>,
     pub(super) beside: Vec<Beside>,
-    pub(super) tails: Vec<(EndClass, FxHashMap<NetId, i32>)>,
+    pub(super) tails: Vec<(EndGroup, FxHashMap<NetId, i32>)>,
     pub(super) base: Overlay,
     pub(super) addends: Addends<Literal>,
     pub(super) negated: bool,
@@ -210,11 +210,11 @@ impl<'a> Site<'a> {
     /// The longest paths that pass no replaced net.
     fn measure_beside(&mut self) {
         let ground = self.ground;
-        let classes = ground.end_classes();
+        let groups = ground.end_groups();
         for (start, by_net) in ground.timing.by_start() {
             let (times, cut_ends) = self.arrivals_beside(by_net);
-            for &class in &classes {
-                let kind = PathKind { start, end: class };
+            for &group in &groups {
+                let kind = PathKind { start, end: group };
                 let mut longest = ground.latest_end(kind, |end| !self.is_behind(end));
                 let mut offer = |time: i32, end: End| {
                     if time != NEVER && longest.is_none_or(|(most, _)| time > most) {
@@ -224,13 +224,15 @@ impl<'a> Site<'a> {
                 for &gate in &self.region {
                     let output = ground.netlist.gate_output(gate);
                     if let Some(&time) = times.get(&output) {
-                        for end in ground.ends_at(output).filter(|end| end.class() == class) {
-                            offer(time, end);
+                        for end in ground.ends_at(output) {
+                            if end.group(ground.netlist) == Some(group) {
+                                offer(time, end);
+                            }
                         }
                     }
                 }
-                if class == EndClass::Output {
-                    for &(time, end) in &cut_ends {
+                for &(time, end) in &cut_ends {
+                    if end.group(ground.netlist) == Some(group) {
                         offer(time, end);
                     }
                 }
@@ -262,6 +264,9 @@ impl<'a> Site<'a> {
                 }
             }
             let output = ground.netlist.gate_output(gate);
+            if ground.netlist.is_barred(output) {
+                latest = NEVER;
+            }
             if ground.gate_of(output) == Some(gate) {
                 times.insert(output, latest);
             } else {
@@ -289,11 +294,13 @@ impl<'a> Site<'a> {
     /// The longest tail behind every replaced net that passes no other.
     fn measure_tails(&mut self) {
         let ground = self.ground;
-        for class in ground.end_classes() {
+        for group in ground.end_groups() {
             let mut tails: FxHashMap<NetId, i32> = FxHashMap::default();
-            let ends_here = |net: NetId| ground.ends_at(net).any(|end| end.class() == class);
+            let wanted = |end: End| end.group(ground.netlist) == Some(group);
+            let ends_here = |net: NetId| ground.ends_at(net).any(wanted);
+            let barred = |net: NetId| ground.netlist.is_barred(net);
             for needed in &self.needed {
-                if ends_here(needed.net) {
+                if ends_here(needed.net) && !barred(needed.net) {
                     tails.insert(needed.net, 0);
                 }
             }
@@ -303,9 +310,9 @@ impl<'a> Site<'a> {
                     let behind = tails.get(&output).copied();
                     behind.or_else(|| ends_here(output).then_some(0))
                 } else {
-                    (class == EndClass::Output).then_some(0)
+                    wanted(End::Cut(gate)).then_some(0)
                 };
-                let Some(tail) = tail else {
+                let Some(tail) = tail.filter(|_| !barred(output)) else {
                     continue;
                 };
                 tails.insert(output, tail);
@@ -314,7 +321,7 @@ impl<'a> Site<'a> {
                     .delays
                     .of_function(ground.netlist.function_id(gate));
                 for (&net, delay) in ground.netlist.fan_ins(gate).iter().zip(delays) {
-                    let inside = self.replaced.contains_key(&net)
+                    let inside = self.replaced.contains_key(&net) && !barred(net)
                         || ground
                             .gate_of(net)
                             .is_some_and(|gate| self.region_set.contains(&gate));
@@ -324,18 +331,19 @@ impl<'a> Site<'a> {
                     }
                 }
             }
-            self.tails.push((class, tails));
+            self.tails.push((group, tails));
         }
     }
 
     /// The end that the longest tail behind a replaced net leads to.
-    pub(super) fn end_behind(&self, mut net: NetId, class: EndClass) -> Option<End> {
+    pub(super) fn end_behind(&self, mut net: NetId, group: EndGroup) -> Option<End> {
         let ground = self.ground;
-        let (_, tails) = self.tails.iter().find(|(each, _)| *each == class)?;
+        let wanted = |end: End| end.group(ground.netlist) == Some(group);
+        let (_, tails) = self.tails.iter().find(|(each, _)| *each == group)?;
         loop {
             let tail = *tails.get(&net)?;
             if tail == 0
-                && let Some(end) = ground.ends_at(net).find(|end| end.class() == class)
+                && let Some(end) = ground.ends_at(net).find(|&end| wanted(end))
             {
                 return Some(end);
             }
@@ -343,7 +351,7 @@ impl<'a> Site<'a> {
                 let output = ground.netlist.gate_output(gate);
                 let cut = ground.gate_of(output) != Some(gate);
                 let behind = if cut {
-                    (class == EndClass::Output).then_some(0)
+                    wanted(End::Cut(gate)).then_some(0)
                 } else {
                     tails.get(&output).copied()
                 };
@@ -395,8 +403,8 @@ impl<'a> Site<'a> {
         swept
     }
 
-    /// Arrivals of each start class by net, as the timing has them.
-    pub(super) fn starts(&self) -> impl Iterator<Item = (StartClass, &'a [i32])> {
+    /// Arrivals from each group of starts by net, as the timing has them.
+    pub(super) fn starts(&self) -> impl Iterator<Item = (StartGroup, &'a [i32])> {
         self.ground.timing.by_start()
     }
 }

@@ -11,11 +11,13 @@
 
 mod diagnostic;
 mod excerpt;
+mod nearest;
 mod unpack;
 mod zstd_frames;
 
 pub use diagnostic::{Diagnostic, Place, Severity};
 pub use excerpt::{escape, quote};
+pub use nearest::{distance, nearest};
 pub use unpack::{Limits, ReadError, read_unpacked};
 
 use std::io::{self, Read};

@@ -2,8 +2,12 @@
 //!
 //! A cut net is a free input: paths that start there count as from an input,
 //! and a gate that drives a cut net ends its path as an output would.
+//!
+//! Where assumptions tell starts or ends of one class apart (see
+//! [`crate::netlist::Asserted`]), a class falls into groups, each timed on its
+//! own; without assumptions every class is one group.
 
-use crate::netlist::{BoxId, Driver, GateId, NetId, Netlist, RegisterId, Topology};
+use crate::netlist::{BoxId, Driver, EndPoint, GateId, NetId, Netlist, RegisterId, Topology};
 
 /// What a path starts from.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
@@ -55,18 +59,54 @@ impl EndClass {
     }
 }
 
+/// Starts that assumptions do not tell apart.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub struct StartGroup {
+    /// Their class.
+    pub class: StartClass,
+    /// Their set among the assumptions, 0 without any.
+    pub set: u8,
+}
+
+/// Ends that assumptions do not tell apart.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub struct EndGroup {
+    /// Their class.
+    pub class: EndClass,
+    /// Their set among the assumptions, 0 without any.
+    pub set: u8,
+}
+
 /// A kind of path.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
 pub struct PathKind {
     /// Where such paths start.
-    pub start: StartClass,
+    pub start: StartGroup,
     /// Where they end.
-    pub end: EndClass,
+    pub end: EndGroup,
+}
+
+impl PathKind {
+    /// The kind between two classes of which no assumption tells members apart.
+    pub fn between(start: StartClass, end: EndClass) -> Self {
+        Self {
+            start: StartGroup {
+                class: start,
+                set: 0,
+            },
+            end: EndGroup { class: end, set: 0 },
+        }
+    }
+
+    /// The classes the path runs between.
+    pub fn classes(self) -> (StartClass, EndClass) {
+        (self.start.class, self.end.class)
+    }
 }
 
 impl std::fmt::Display for PathKind {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
-        write!(f, "{}→{}", self.start.word(), self.end.word())
+        write!(f, "{}→{}", self.start.class.word(), self.end.class.word())
     }
 }
 
@@ -93,6 +133,21 @@ impl End {
             Self::RegisterInput(_) | Self::RegisterControl(_) => EndClass::Register,
             Self::BoxInput(..) => EndClass::Box,
         }
+    }
+
+    /// The group the end belongs to; `None` when no path to it counts.
+    pub fn group(self, netlist: &Netlist) -> Option<EndGroup> {
+        let class = self.class();
+        let set = match netlist.asserted() {
+            None => 0,
+            Some(asserted) => asserted.end_set(match self {
+                Self::Output(i) => EndPoint::Output(i),
+                Self::RegisterInput(id) | Self::RegisterControl(id) => EndPoint::Register(id),
+                Self::BoxInput(id, _) => EndPoint::Box(id),
+                Self::Cut(gate) => EndPoint::Net(netlist.gate_output(gate)),
+            })?,
+        };
+        Some(EndGroup { class, set })
     }
 
     /// Its place in a record: the port or net, in plain words.
@@ -122,8 +177,22 @@ pub fn end_net(netlist: &Netlist, end: End) -> Option<NetId> {
     }
 }
 
-/// Every end, in a fixed order: outputs, registers, boxes, cuts.
+/// Every end to which paths count, with its group, in a fixed order: outputs,
+/// registers, boxes, cuts.
+pub fn grouped_ends<'a>(
+    netlist: &'a Netlist,
+    topology: &'a Topology,
+) -> impl Iterator<Item = (End, EndGroup)> + 'a {
+    all_ends(netlist, topology).filter_map(|end| Some((end, end.group(netlist)?)))
+}
+
+/// The ends of [`grouped_ends`].
 pub fn ends<'a>(netlist: &'a Netlist, topology: &'a Topology) -> impl Iterator<Item = End> + 'a {
+    grouped_ends(netlist, topology).map(|(end, _)| end)
+}
+
+/// Every end there is.
+fn all_ends<'a>(netlist: &'a Netlist, topology: &'a Topology) -> impl Iterator<Item = End> + 'a {
     let outputs = (0..netlist.outputs().len() as u32).map(End::Output);
     let registers = netlist
         .registers()
@@ -160,8 +229,27 @@ pub fn ends<'a>(netlist: &'a Netlist, topology: &'a Topology) -> impl Iterator<I
         .chain(contended)
 }
 
+/// The group of starts a net belongs to, if it is a start from which paths count.
+#[inline]
+pub fn start_group(netlist: &Netlist, topology: &Topology, net: NetId) -> Option<StartGroup> {
+    let class = start_class(netlist, topology, net)?;
+    let set = match netlist.asserted() {
+        None => 0,
+        Some(asserted) => asserted.start_set(net)?,
+    };
+    Some(StartGroup { class, set })
+}
+
+/// When a start is ready, in whole units of the delay model.
+#[inline]
+pub fn start_time(netlist: &Netlist, net: NetId) -> i32 {
+    netlist
+        .asserted()
+        .map_or(0, |asserted| asserted.arrival(net))
+}
+
 /// What kind of start a net is, if it is one.
-pub fn start_class(netlist: &Netlist, topology: &Topology, net: NetId) -> Option<StartClass> {
+fn start_class(netlist: &Netlist, topology: &Topology, net: NetId) -> Option<StartClass> {
     if topology.is_cut(net) {
         return Some(StartClass::Input);
     }

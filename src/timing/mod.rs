@@ -16,8 +16,11 @@ mod passes;
 mod path;
 mod report;
 
-pub use ends::{End, EndClass, PathKind, StartClass, end_net, ends, start_class};
+pub use ends::{
+    End, EndClass, EndGroup, PathKind, StartClass, StartGroup, end_net, ends, grouped_ends,
+    start_group, start_time,
+};
 pub use model::{DelayModel, PinDelays};
-pub use passes::{Arrivals, NEVER, StartSet, Tails, end_arrival, gate_arrival};
+pub use passes::{Arrivals, NEVER, Tails, end_arrival, gate_arrival, start_times};
 pub use path::{PathStep, longest_path};
 pub use report::{KindTiming, Slack, Timing, depth_histogram, longest_free_buffers};

@@ -4,33 +4,12 @@
 //! net is the longest path from it to an end. Both are one loop over the gates
 //! in topological order (the longest-path recurrence on an acyclic graph).
 
-use super::ends::{End, EndClass, StartClass, end_net, ends, start_class};
+use super::ends::{End, EndGroup, StartGroup, end_net, grouped_ends, start_group, start_time};
 use super::model::PinDelays;
 use crate::netlist::{GateId, NetId, Netlist, Topology};
 
 /// The time of what no path reaches; below every real time.
 pub const NEVER: i32 = i32::MIN;
-
-/// Which starts a pass begins at.
-#[derive(Clone, Copy, PartialEq, Eq, Debug)]
-pub struct StartSet([bool; 3]);
-
-impl StartSet {
-    /// Every start.
-    pub const ALL: Self = Self([true; 3]);
-
-    /// The starts of one class.
-    pub fn only(class: StartClass) -> Self {
-        let mut set = [false; 3];
-        set[class as usize] = true;
-        Self(set)
-    }
-
-    /// Whether the class is in the set.
-    pub fn contains(self, class: StartClass) -> bool {
-        self.0[class as usize]
-    }
-}
 
 /// Arrival times by net.
 pub struct Arrivals {
@@ -41,22 +20,17 @@ pub struct Arrivals {
 impl Arrivals {
     /// Arrivals from every start.
     pub fn of(netlist: &Netlist, topology: &Topology, delays: &PinDelays) -> Self {
-        Self::from(netlist, topology, delays, StartSet::ALL)
+        Self::from(netlist, topology, delays, None)
     }
 
-    /// Arrivals from some starts only.
+    /// Arrivals from every start, or from those of one group.
     pub fn from(
         netlist: &Netlist,
         topology: &Topology,
         delays: &PinDelays,
-        starts: StartSet,
+        group: Option<StartGroup>,
     ) -> Self {
-        let mut by_net = vec![NEVER; netlist.net_count()];
-        for net in netlist.nets() {
-            if start_class(netlist, topology, net).is_some_and(|class| starts.contains(class)) {
-                by_net[net.index()] = 0;
-            }
-        }
+        let mut by_net = start_times(netlist, topology, group);
         for &gate in &topology.order {
             let output = netlist.gate_output(gate);
             if !topology.is_cut(output) {
@@ -74,11 +48,26 @@ impl Arrivals {
     }
 }
 
+/// When every start is ready, or those of one group; [`NEVER`] at all other nets.
+pub fn start_times(netlist: &Netlist, topology: &Topology, group: Option<StartGroup>) -> Vec<i32> {
+    let mut by_net = vec![NEVER; netlist.net_count()];
+    for net in netlist.nets() {
+        let own = start_group(netlist, topology, net);
+        if own.is_some_and(|own| group.is_none_or(|only| only == own)) {
+            by_net[net.index()] = start_time(netlist, net);
+        }
+    }
+    by_net
+}
+
 /// When the output of `gate` is ready, from the arrivals at its pins.
 #[inline]
 pub fn gate_arrival(netlist: &Netlist, delays: &PinDelays, by_net: &[i32], gate: GateId) -> i32 {
-    let ticks = delays.of_function(netlist.function_id(gate));
     let mut latest = NEVER;
+    if netlist.is_barred(netlist.gate_output(gate)) {
+        return latest;
+    }
+    let ticks = delays.of_function(netlist.function_id(gate));
     for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
         let at = by_net[net.index()];
         if at != NEVER {
@@ -104,29 +93,29 @@ pub struct Tails {
 }
 
 impl Tails {
-    /// Tails to every end, or to those of one class.
+    /// Tails to every end, or to those of one group.
     pub fn of(
         netlist: &Netlist,
         topology: &Topology,
         delays: &PinDelays,
-        class: Option<EndClass>,
+        group: Option<EndGroup>,
     ) -> Self {
-        let wanted = |end: EndClass| class.is_none_or(|only| only == end);
+        let wanted = |own: EndGroup| group.is_none_or(|only| only == own);
         let mut by_net = vec![NEVER; netlist.net_count()];
-        for end in ends(netlist, topology) {
-            if let (true, Some(net)) = (wanted(end.class()), end_net(netlist, end)) {
+        for (end, own) in grouped_ends(netlist, topology) {
+            if let (true, Some(net)) = (wanted(own), end_net(netlist, end)) {
                 by_net[net.index()] = 0;
             }
         }
-        let cut_tail = if wanted(EndClass::Output) { 0 } else { NEVER };
         for &gate in topology.order.iter().rev() {
             let output = netlist.gate_output(gate);
             let tail = if topology.is_cut(output) {
-                cut_tail
+                let own = End::Cut(gate).group(netlist);
+                if own.is_some_and(wanted) { 0 } else { NEVER }
             } else {
                 by_net[output.index()]
             };
-            if tail == NEVER {
+            if tail == NEVER || netlist.is_barred(output) {
                 continue;
             }
             let ticks = delays.of_function(netlist.function_id(gate));

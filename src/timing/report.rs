@@ -4,12 +4,12 @@
 //! one class occurs; a purely combinational netlist pays for one of each.
 //! Slack is counted against the longest path of the same kind.
 
-use super::ends::{End, EndClass, PathKind, StartClass, end_net, ends, start_class};
+use super::ends::{End, EndGroup, PathKind, StartGroup, end_net, grouped_ends, start_group};
 use super::model::{DelayModel, PinDelays};
-use super::passes::{Arrivals, NEVER, StartSet, Tails, end_arrival};
+use super::passes::{Arrivals, NEVER, Tails, end_arrival};
 use super::path::{PathStep, longest_path};
-use crate::netlist::{NetId, Netlist, Topology};
-use std::collections::BTreeMap;
+use crate::netlist::{NetId, Netlist, Pairing, Topology};
+use std::collections::{BTreeMap, BTreeSet};
 
 /// What is known of one path kind.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -24,6 +24,17 @@ pub struct KindTiming {
     pub next_below: Option<i32>,
     /// The first end at the longest.
     pub end: End,
+}
+
+/// Paths that may take several cycles.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct Relaxed {
+    /// Their timing, over all cycles.
+    pub timing: KindTiming,
+    /// How many cycles they may take.
+    pub cycles: u32,
+    /// The assumption that says so.
+    pub entry: u32,
 }
 
 /// Slack of a net.
@@ -46,8 +57,10 @@ pub struct Timing {
     pub tails: Tails,
     /// The path kinds that occur, in the order of their classes.
     pub kinds: Vec<KindTiming>,
-    starts: Vec<(StartClass, Option<Arrivals>)>,
-    ends: Vec<(EndClass, Option<Tails>)>,
+    /// Kinds of path that may take several cycles; none of them is in `kinds`.
+    pub relaxed: Vec<Relaxed>,
+    starts: Vec<(StartGroup, Option<Arrivals>)>,
+    ends: Vec<(EndGroup, Option<Tails>)>,
 }
 
 impl Timing {
@@ -56,26 +69,27 @@ impl Timing {
         let delays = PinDelays::of(netlist, model);
         let arrivals = Arrivals::of(netlist, topology, &delays);
         let tails = Tails::of(netlist, topology, &delays, None);
-        let starts = classes_of_starts(netlist, topology);
+        let starts: BTreeSet<StartGroup> = netlist
+            .nets()
+            .filter_map(|net| start_group(netlist, topology, net))
+            .collect();
         let several = starts.len() > 1;
-        let starts: Vec<_> = starts
+        let starts = starts
             .into_iter()
-            .map(|class| {
-                let set = StartSet::only(class);
-                let own = several.then(|| Arrivals::from(netlist, topology, &delays, set));
-                (class, own)
+            .map(|group| {
+                let own = || Arrivals::from(netlist, topology, &delays, Some(group));
+                (group, several.then(own))
             })
             .collect();
-        let present: Vec<EndClass> = EndClass::ALL
-            .into_iter()
-            .filter(|&class| ends(netlist, topology).any(|end| end.class() == class))
+        let present: BTreeSet<EndGroup> = grouped_ends(netlist, topology)
+            .map(|(_, group)| group)
             .collect();
         let several = present.len() > 1;
         let end_tails = present
             .into_iter()
-            .map(|class| {
-                let own = several.then(|| Tails::of(netlist, topology, &delays, Some(class)));
-                (class, own)
+            .map(|group| {
+                let own = || Tails::of(netlist, topology, &delays, Some(group));
+                (group, several.then(own))
             })
             .collect();
         let mut timing = Self {
@@ -83,40 +97,44 @@ impl Timing {
             arrivals,
             tails,
             kinds: Vec::new(),
+            relaxed: Vec::new(),
             starts,
             ends: end_tails,
         };
-        timing.kinds = timing.measure_kinds(netlist, topology);
+        timing.measure_kinds(netlist, topology);
         timing
     }
 
-    /// The classes of start that occur, each with its arrivals by net.
-    pub fn by_start(&self) -> impl Iterator<Item = (StartClass, &[i32])> {
+    /// The groups of starts that occur, each with its arrivals by net.
+    pub fn by_start(&self) -> impl Iterator<Item = (StartGroup, &[i32])> {
         self.starts
             .iter()
             .map(|(class, own)| (*class, &own.as_ref().unwrap_or(&self.arrivals).by_net[..]))
     }
 
-    /// The classes of end that occur, each with its tails by net.
-    pub fn by_end(&self) -> impl Iterator<Item = (EndClass, &[i32])> {
+    /// The groups of ends that occur, each with its tails by net.
+    pub fn by_end(&self) -> impl Iterator<Item = (EndGroup, &[i32])> {
         self.ends
             .iter()
             .map(|(class, own)| (*class, &own.as_ref().unwrap_or(&self.tails).by_net[..]))
     }
 
-    fn measure_kinds(&self, netlist: &Netlist, topology: &Topology) -> Vec<KindTiming> {
+    fn measure_kinds(&mut self, netlist: &Netlist, topology: &Topology) {
         let mut kinds: BTreeMap<PathKind, KindTiming> = BTreeMap::new();
+        let mut relaxed = BTreeMap::new();
         for (start, by_net) in self.by_start() {
-            for end in ends(netlist, topology) {
+            for (end, group) in grouped_ends(netlist, topology) {
                 let arrival = end_arrival(netlist, &self.delays, by_net, end);
                 if arrival == NEVER {
                     continue;
                 }
-                let kind = PathKind {
-                    start,
-                    end: end.class(),
+                let kind = PathKind { start, end: group };
+                let counted = match pairing(netlist, kind) {
+                    Pairing::Counts => &mut kinds,
+                    Pairing::Cycles { .. } => &mut relaxed,
+                    Pairing::Never => continue,
                 };
-                let entry = kinds.entry(kind).or_insert(KindTiming {
+                let entry = counted.entry(kind).or_insert(KindTiming {
                     kind,
                     longest: arrival,
                     ends_at_longest: 0,
@@ -126,7 +144,88 @@ impl Timing {
                 entry.count(arrival, end);
             }
         }
-        kinds.into_values().collect()
+        self.kinds = kinds.into_values().collect();
+        self.relaxed = relaxed
+            .into_values()
+            .filter_map(|timing: KindTiming| match pairing(netlist, timing.kind) {
+                Pairing::Cycles { cycles, entry } => Some(Relaxed {
+                    timing,
+                    cycles,
+                    entry,
+                }),
+                Pairing::Counts | Pairing::Never => None,
+            })
+            .collect();
+    }
+
+    /// The path kinds with the groups of a class taken together; the `kind` of
+    /// each is that of its longest path.
+    pub fn kinds_by_class(&self, netlist: &Netlist, topology: &Topology) -> Vec<KindTiming> {
+        let mut merged: Vec<KindTiming> = Vec::new();
+        for kind in &self.kinds {
+            let classes = kind.kind.classes();
+            match merged.iter_mut().find(|m| m.kind.classes() == classes) {
+                Some(known) if kind.longest > known.longest => *known = *kind,
+                Some(_) => {}
+                None => merged.push(*kind),
+            }
+        }
+        if merged.len() == self.kinds.len() {
+            return merged;
+        }
+        // Ends are counted anew: one may be reached from several groups.
+        for kind in &mut merged {
+            let (start_class, end_class) = kind.kind.classes();
+            (kind.ends_at_longest, kind.next_below) = (0, None);
+            for (end, group) in grouped_ends(netlist, topology) {
+                if group.class != end_class {
+                    continue;
+                }
+                let starts = self.by_start().filter(|&(start, _)| {
+                    start.class == start_class
+                        && self.kind(PathKind { start, end: group }).is_some()
+                });
+                let latest = starts
+                    .map(|(_, by_net)| end_arrival(netlist, &self.delays, by_net, end))
+                    .max();
+                match latest.filter(|&at| at != NEVER) {
+                    Some(at) if at == kind.longest => kind.ends_at_longest += 1,
+                    below => kind.next_below = kind.next_below.max(below),
+                }
+            }
+        }
+        merged
+    }
+
+    /// When the latest path that counts arrives at an end, or [`NEVER`].
+    pub fn end_time(&self, netlist: &Netlist, end: End) -> i32 {
+        let Some(group) = end.group(netlist) else {
+            return NEVER;
+        };
+        let starts = self
+            .by_start()
+            .filter(|&(start, _)| self.kind(PathKind { start, end: group }).is_some());
+        starts
+            .map(|(_, by_net)| end_arrival(netlist, &self.delays, by_net, end))
+            .max()
+            .unwrap_or(NEVER)
+    }
+
+    /// Whether a longest path of the block runs through `net`.
+    pub fn is_on_longest_path(&self, net: NetId) -> bool {
+        let longest = self.longest();
+        self.kinds.iter().any(|timing| {
+            let find = |(_, by_net): (_, &[i32])| by_net[net.index()];
+            let at = self
+                .by_start()
+                .find(|&(group, _)| group == timing.kind.start);
+            let tail = self.by_end().find(|&(group, _)| group == timing.kind.end);
+            let (at, tail) = (
+                at.map_or(NEVER, |(_, by_net)| by_net[net.index()]),
+                tail.map_or(NEVER, find),
+            );
+            at != NEVER && tail != NEVER && at + tail == longest
+        })
     }
 
     /// The kind that holds the longest path of all; the first of equals.
@@ -208,28 +307,39 @@ impl KindTiming {
     }
 }
 
-fn classes_of_starts(netlist: &Netlist, topology: &Topology) -> Vec<StartClass> {
-    let mut present = [false; 3];
-    for net in netlist.nets() {
-        if let Some(class) = start_class(netlist, topology, net) {
-            present[class as usize] = true;
-        }
-    }
-    StartClass::ALL
-        .into_iter()
-        .filter(|&class| present[class as usize])
-        .collect()
+fn pairing(netlist: &Netlist, kind: PathKind) -> Pairing {
+    netlist.asserted().map_or(Pairing::Counts, |asserted| {
+        asserted.pairing(kind.start.set, kind.end.set)
+    })
 }
 
 /// The longest path under `unit` when buffers and inverters cost nothing.
 pub fn longest_free_buffers(netlist: &Netlist, topology: &Topology) -> i32 {
     let delays = PinDelays::free_buffers(netlist);
-    let arrivals = Arrivals::of(netlist, topology, &delays);
-    ends(netlist, topology)
-        .map(|end| end_arrival(netlist, &delays, &arrivals.by_net, end))
-        .max()
-        .unwrap_or(0)
-        .max(0)
+    let starts: BTreeSet<StartGroup> = netlist
+        .nets()
+        .filter_map(|net| start_group(netlist, topology, net))
+        .collect();
+    // One pass is enough while every pair of a start and an end counts.
+    let together = netlist.asserted().is_none();
+    let groups: Vec<Option<StartGroup>> = if together {
+        vec![None]
+    } else {
+        starts.into_iter().map(Some).collect()
+    };
+    let mut longest = 0;
+    for group in groups {
+        let arrivals = Arrivals::from(netlist, topology, &delays, group);
+        for (end, own) in grouped_ends(netlist, topology) {
+            let counts = group.is_none_or(|start| {
+                pairing(netlist, PathKind { start, end: own }) == Pairing::Counts
+            });
+            if counts {
+                longest = longest.max(end_arrival(netlist, &delays, &arrivals.by_net, end));
+            }
+        }
+    }
+    longest
 }
 
 /// How many output ports lie at each depth, shallowest first; ports that show

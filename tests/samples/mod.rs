@@ -181,7 +181,10 @@ pub fn tide_logger() -> Audit {
             by_path_kind: vec![
                 PathKindFacts {
                     path_kind: "input→register".into(),
+                    limit: Limit::Carry,
+                    chain: Some("C1".into()),
                     longest: 33,
+                    longest_without_assumptions: None,
                     levels_in_carries: 31,
                     depth_if_carry_were_free: 4,
                     ends_at_longest: 1,
@@ -189,7 +192,10 @@ pub fn tide_logger() -> Audit {
                 },
                 PathKindFacts {
                     path_kind: "register→output".into(),
+                    limit: Limit::Elsewhere,
+                    chain: None,
                     longest: 6,
+                    longest_without_assumptions: None,
                     levels_in_carries: 0,
                     depth_if_carry_were_free: 6,
                     ends_at_longest: 18,
@@ -199,6 +205,8 @@ pub fn tide_logger() -> Audit {
         },
         depth: Depth {
             longest: 33,
+            longest_without_assumptions: None,
+            longest_through_transparent: None,
             unit: "gate delays".into(),
             longest_free_buffers: Some(33),
             histogram: (1..=33)
@@ -356,7 +364,12 @@ pub fn hostile() -> Audit {
     audit.unproven[0].operands = vec![evil(), evil()];
     audit.findings[0].net = Some(evil());
     audit.findings[0].message = format!("{HOSTILE} is late");
-    audit.assumed = vec![evil()];
+    audit.assumed = vec![AssumedRecord {
+        assumption: evil(),
+        why: evil(),
+        places: 1,
+        effect: Some(evil()),
+    }];
     audit
 }
 

@@ -58,9 +58,22 @@ pub struct Audit {
     /// Findings beyond the cap on the list.
     pub findings_left_out: u64,
     /// What the user asserted about the block.
-    pub assumed: Vec<String>,
+    pub assumed: Vec<AssumedRecord>,
     /// What this record does not settle.
     pub caution: String,
+}
+
+/// One assertion.
+#[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
+pub struct AssumedRecord {
+    /// What is asserted, in words.
+    pub assumption: String,
+    /// Why, as the user wrote it.
+    pub why: String,
+    /// How many nets, ports or path ends its narrowest pattern matches.
+    pub places: u64,
+    /// What came of it, where it can be measured by itself.
+    pub effect: Option<String>,
 }
 
 /// The program.
@@ -172,10 +185,16 @@ pub struct Verdict {
 pub struct PathKindFacts {
     /// In words: `register→register`.
     pub path_kind: String,
+    /// What limits the paths of this kind that are seen: `carry` or `elsewhere`.
+    pub limit: Limit,
+    /// The chain that does, when it is carry.
+    pub chain: Option<String>,
     /// Depth of the longest path of this kind.
     pub longest: i64,
     /// Of these, levels inside proven chains, between operands and results.
     pub levels_in_carries: i64,
+    /// The longest path when nothing is assumed; null without assumptions.
+    pub longest_without_assumptions: Option<i64>,
     /// The longest path if every proven carry were ready with its operands.
     pub depth_if_carry_were_free: i64,
     /// Ends at which a path of this length arrives.
@@ -189,6 +208,11 @@ pub struct PathKindFacts {
 pub struct Depth {
     /// The longest path of any kind.
     pub longest: i64,
+    /// The longest path when nothing is assumed; null without assumptions.
+    pub longest_without_assumptions: Option<i64>,
+    /// The longest path with every transparent register open; null when the
+    /// netlist has none.
+    pub longest_through_transparent: Option<i64>,
     /// The unit of every depth in this record.
     pub unit: String,
     /// The longest path with buffers and inverters free; null when the model

@@ -2,7 +2,7 @@
 
 use super::cut;
 use crate::audit::record::{
-    Depth, DepthBar, FanIn, FanInBar, FanOut, FanOutBar, PathKindFacts, PortDepth,
+    Depth, DepthBar, FanIn, FanInBar, FanOut, FanOutBar, Limit, PathKindFacts, PortDepth,
 };
 use crate::report::number::{
     counted, depth_in, doubling_bars, equal_bars, grouped, grouped_signed, mean, or_dash,
@@ -20,7 +20,9 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
     }
     let columns = vec![
         ("path kind", false),
+        ("limit", false),
         ("longest", true),
+        ("nothing assumed", true),
         ("in carries", true),
         ("carries free", true),
         ("ends there", true),
@@ -29,7 +31,10 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
     let row = |kind: &PathKindFacts| {
         let PathKindFacts {
             path_kind,
+            limit,
+            chain,
             longest,
+            longest_without_assumptions,
             levels_in_carries,
             depth_if_carry_were_free,
             ends_at_longest,
@@ -37,7 +42,14 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
         } = kind;
         vec![
             clipped(path_kind, caps.name),
+            match (limit, chain) {
+                (Limit::Carry, Some(chain)) => format!("carry, {}", clipped(chain, caps.name)),
+                (Limit::Carry, None) => "carry".to_owned(),
+                (Limit::Elsewhere, _) => "elsewhere".to_owned(),
+                (Limit::Unknown, _) => "unknown".to_owned(),
+            },
             grouped_signed(*longest),
+            or_dash(longest_without_assumptions.map(grouped_signed)),
             grouped_signed(*levels_in_carries),
             grouped_signed(*depth_if_carry_were_free),
             grouped(*ends_at_longest),
@@ -56,6 +68,8 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
 pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> Option<Section> {
     let Depth {
         longest,
+        longest_without_assumptions: _,
+        longest_through_transparent,
         unit,
         longest_free_buffers,
         histogram: depth_bars,
@@ -70,6 +84,12 @@ pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> 
         counted(fan_out.largest, "reader", "readers"),
         mean(fan_out.mean),
     );
+    if let Some(open) = longest_through_transparent {
+        let open = depth_in(*open, unit);
+        lead.push_str(&format!(
+            " With its transparent registers open the block is {open} deep."
+        ));
+    }
     if let Some(free) = longest_free_buffers {
         if free == longest {
             lead.push_str(" The depth is the same with buffers and inverters free.");

@@ -1,7 +1,7 @@
 //! Findings, candidates left undecided, and what the user asserted.
 
 use super::{Block, cut};
-use crate::audit::record::{Finding, UnprovenRecord};
+use crate::audit::record::{AssumedRecord, Finding, UnprovenRecord};
 use crate::report::number::{grouped, lines, listed, or_dash};
 use crate::report::outline::{Caps, Section};
 use crate::report::text::clipped;
@@ -99,17 +99,37 @@ pub fn undecided(unproven: &[UnprovenRecord], caps: Caps) -> Option<Section> {
 }
 
 /// What the user asserted.
-pub fn assumed(assumed: &[String], caps: Caps) -> Option<Section> {
+pub fn assumed(assumed: &[AssumedRecord], caps: Caps) -> Option<Section> {
     if assumed.is_empty() {
         return None;
     }
-    let rows = assumed.iter().take(caps.rows);
-    let rows = rows.map(|a| vec![clipped(a, caps.sentence)]).collect();
+    let row = |each: &AssumedRecord| {
+        let AssumedRecord {
+            assumption,
+            why,
+            places,
+            effect,
+        } = each;
+        vec![
+            clipped(assumption, caps.sentence),
+            clipped(why, caps.sentence),
+            grouped(*places),
+            effect
+                .as_deref()
+                .map_or_else(|| "-".to_owned(), |effect| clipped(effect, caps.sentence)),
+        ]
+    };
+    let rows = assumed.iter().take(caps.rows).map(row).collect();
     Some(Section {
         heading: "Assumed",
         aside: false,
         blocks: cut(
-            vec![("assumption", false)],
+            vec![
+                ("assumption", false),
+                ("why", false),
+                ("places", true),
+                ("effect", false),
+            ],
             rows,
             assumed.len(),
             caps.rows,

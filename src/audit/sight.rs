@@ -1,0 +1,204 @@
+//! What could hide a longer path or a chain, in words that name it.
+//!
+//! Behind a cut net the real path may be longer by an unknown amount; inside an
+//! instance without a function anything may run; a register that is open passes
+//! paths on; a candidate left undecided may be a chain. As long as one of these
+//! touches a path, a verdict about the whole block would claim more than was
+//! seen. Every instance counts: without a function not even the directions of its
+//! pins are certain.
+
+use super::words::{counted, depth_in, grouped, listed};
+use crate::netlist::{Driver, NetId, Netlist, RegisterId, Topology};
+use crate::timing::{DelayModel, NEVER, Timing};
+use std::cmp::Reverse;
+use std::collections::BTreeMap;
+
+/// Names given of one kind of thing.
+const NAMES: usize = 3;
+
+/// The block with its transparent registers open.
+pub struct Open {
+    /// They.
+    pub registers: Vec<RegisterId>,
+    /// The longest path then.
+    pub longest: i64,
+}
+
+impl Open {
+    /// Times the block with its transparent registers open, when it has any.
+    pub fn of(netlist: &Netlist, model: DelayModel) -> Option<Self> {
+        let open = netlist.looked_through()?;
+        let topology = Topology::of(&open);
+        Some(Self {
+            registers: netlist.transparent_registers().collect(),
+            longest: i64::from(Timing::of(&open, &topology, model).longest()),
+        })
+    }
+}
+
+/// What sight is judged from.
+pub struct Sight<'a> {
+    /// The netlist.
+    pub netlist: &'a Netlist,
+    /// Its order and cuts.
+    pub topology: &'a Topology,
+    /// Its timing.
+    pub timing: &'a Timing,
+    /// Candidates left undecided.
+    pub undecided: usize,
+    /// The block with its transparent registers open.
+    pub open: Option<&'a Open>,
+    /// Unit of depths.
+    pub unit: &'a str,
+}
+
+impl Sight<'_> {
+    /// What hid part of the answer; `carry` when carry limits what is seen.
+    pub fn hidden(&self, carry: bool) -> Option<String> {
+        let mut parts = Vec::new();
+        parts.extend(self.cut());
+        parts.extend(self.boxes());
+        parts.extend(self.transparent());
+        if !carry && self.undecided > 0 {
+            parts.push(match self.undecided {
+                1 => "a candidate for a carry chain was left undecided".to_owned(),
+                n => format!(
+                    "{} candidates for carry chains were left undecided",
+                    grouped(n as u64)
+                ),
+            });
+        }
+        (!parts.is_empty()).then(|| listed(&parts))
+    }
+
+    /// Said when there is nothing but instances without a function.
+    pub fn blind(&self) -> Option<String> {
+        let boxes = self.netlist.boxes();
+        if self.netlist.gate_count() > 0 || boxes.is_empty() {
+            return None;
+        }
+        let which = match boxes.len() {
+            1 => "the only instance".to_owned(),
+            n => format!("not one of the {} instances", grouped(n as u64)),
+        };
+        let has = if boxes.len() == 1 { "has no" } else { "has a" };
+        Some(format!(
+            "Unknown, because {which} {has} known function ({}): no path could be followed and \
+             no chain looked for.",
+            self.models()
+        ))
+    }
+
+    fn reaches_an_end(&self, net: NetId) -> bool {
+        self.timing.tails.by_net[net.index()] != NEVER
+    }
+
+    fn cut(&self) -> Vec<String> {
+        let loops = self.topology.loops.iter();
+        let on_loops: Vec<NetId> = loops
+            .filter_map(|nets| nets.iter().copied().find(|&net| self.reaches_an_end(net)))
+            .collect();
+        let contended = self.netlist.contended().iter().map(|each| each.net);
+        let mut contended: Vec<NetId> = contended.filter(|&net| self.reaches_an_end(net)).collect();
+        contended.sort_unstable();
+        let cut = self.topology.cut.ones().map(NetId::new);
+        let bare: Vec<NetId> = cut
+            .filter(|&net| self.netlist.driver(net) == Driver::None && self.reaches_an_end(net))
+            .collect();
+        let mut parts = Vec::new();
+        match on_loops.len() {
+            0 => {}
+            1 => parts.push(format!(
+                "a loop without a register is cut (at {})",
+                self.names(&on_loops)
+            )),
+            n => parts.push(format!(
+                "{} loops without a register are cut (at {})",
+                grouped(n as u64),
+                self.names(&on_loops)
+            )),
+        }
+        for (nets, which) in [(&contended, "several drivers"), (&bare, "no driver")] {
+            match nets.len() {
+                0 => {}
+                1 => parts.push(format!("a net with {which} is cut ({})", self.names(nets))),
+                n => parts.push(format!(
+                    "{} nets with {which} are cut ({})",
+                    grouped(n as u64),
+                    self.names(nets)
+                )),
+            }
+        }
+        parts
+    }
+
+    fn boxes(&self) -> Option<String> {
+        let count = self.netlist.boxes().len() as u64;
+        let instances = match count {
+            0 => return None,
+            1 => "an instance".to_owned(),
+            n => format!("{} instances", grouped(n)),
+        };
+        Some(format!(
+            "paths and chains may run through {instances} without a known function ({})",
+            self.models()
+        ))
+    }
+
+    fn transparent(&self) -> Option<String> {
+        let open = self.open?;
+        if open.longest <= i64::from(self.timing.longest()) {
+            return None;
+        }
+        let outputs: Vec<NetId> = open
+            .registers
+            .iter()
+            .map(|id| self.netlist.registers()[id.index()].output)
+            .collect();
+        Some(format!(
+            "paths may run on through {} ({}), and then take up to {}",
+            counted(
+                outputs.len() as u64,
+                "transparent register",
+                "transparent registers"
+            ),
+            self.names(&outputs),
+            depth_in(open.longest, self.unit)
+        ))
+    }
+
+    fn names(&self, nets: &[NetId]) -> String {
+        let shown = nets.iter().take(NAMES);
+        let mut names: Vec<String> = shown.map(|&net| self.netlist.net_name(net)).collect();
+        if nets.len() > NAMES {
+            names.push(format!("{} more", grouped((nets.len() - NAMES) as u64)));
+        }
+        listed(&names)
+    }
+
+    /// The models without a function, the most frequent first.
+    fn models(&self) -> String {
+        let mut counts: BTreeMap<_, u64> = BTreeMap::new();
+        for each in self.netlist.boxes() {
+            *counts.entry(each.model).or_insert(0) += 1;
+        }
+        let mut models: Vec<_> = counts.into_iter().collect();
+        models.sort_by_key(|&(_, count)| Reverse(count));
+        let mut words: Vec<String> = models
+            .iter()
+            .take(NAMES)
+            .map(|&(model, count)| {
+                let name = self.netlist.names().text(model);
+                match (count, models.len()) {
+                    (1, 1) => name.into_owned(),
+                    _ => format!("{} {name}", grouped(count)),
+                }
+            })
+            .collect();
+        if models.len() > NAMES {
+            let more = (models.len() - NAMES) as u64;
+            words.push(format!("{} more models", grouped(more)));
+        }
+        listed(&words)
+    }
+}

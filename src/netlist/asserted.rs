@@ -1,0 +1,89 @@
+//! What a user asserted about the paths of a netlist, as the passes need it.
+//!
+//! Starts and ends fall into numbered *sets* whose members no assumption tells
+//! apart; a pair of a start set and an end set counts, never counts, or may take
+//! several cycles. So an exact account of excluded paths costs one pass per set
+//! and nothing per path. Set 0 holds what no assumption names. A start, an end or
+//! a net that no path may use at all is *barred* and belongs to no set.
+
+use super::id::{BoxId, NetId, RegisterId};
+use rustc_hash::{FxHashMap, FxHashSet};
+
+/// Whether the paths between two sets count.
+#[derive(Clone, Copy, PartialEq, Eq, Debug, Default)]
+pub enum Pairing {
+    /// They do.
+    #[default]
+    Counts,
+    /// They are no paths.
+    Never,
+    /// They may take several cycles.
+    Cycles {
+        /// How many.
+        cycles: u32,
+        /// The assumption that says so, by index.
+        entry: u32,
+    },
+}
+
+/// A place where paths end.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub enum EndPoint {
+    /// An output port, by index.
+    Output(u32),
+    /// A register.
+    Register(RegisterId),
+    /// A box.
+    Box(BoxId),
+    /// A cut net.
+    Net(NetId),
+}
+
+/// The set of what is barred.
+pub(super) const BARRED: u8 = u8::MAX;
+
+/// What was asserted about paths.
+#[derive(Clone, PartialEq, Eq, Debug, Default)]
+pub struct Asserted {
+    pub(super) starts: FxHashMap<NetId, u8>,
+    pub(super) ends: FxHashMap<EndPoint, u8>,
+    pub(super) barred: FxHashSet<NetId>,
+    pub(super) arrivals: FxHashMap<NetId, i32>,
+    /// By start set, by end set; sets past the table count.
+    pub(super) pairings: Vec<Vec<Pairing>>,
+}
+
+impl Asserted {
+    /// The set of a start; `None` when no path from it counts.
+    #[inline]
+    pub fn start_set(&self, net: NetId) -> Option<u8> {
+        let set = self.starts.get(&net).copied().unwrap_or(0);
+        (set != BARRED).then_some(set)
+    }
+
+    /// The set of an end; `None` when no path to it counts.
+    #[inline]
+    pub fn end_set(&self, end: EndPoint) -> Option<u8> {
+        let set = self.ends.get(&end).copied().unwrap_or(0);
+        (set != BARRED).then_some(set)
+    }
+
+    /// Whether the paths from a start set to an end set count.
+    pub fn pairing(&self, start: u8, end: u8) -> Pairing {
+        let row = self.pairings.get(usize::from(start));
+        row.and_then(|row| row.get(usize::from(end)))
+            .copied()
+            .unwrap_or_default()
+    }
+
+    /// Whether no path through `net` counts.
+    #[inline]
+    pub fn is_barred(&self, net: NetId) -> bool {
+        self.barred.contains(&net)
+    }
+
+    /// When a start is ready, in whole units of the delay model.
+    pub fn arrival(&self, net: NetId) -> i32 {
+        self.arrivals.get(&net).copied().unwrap_or(0)
+    }
+}
