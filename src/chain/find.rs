@@ -98,6 +98,10 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
     for path in &mut waiting {
         context.settle_start(path);
     }
+    // Only a counter can still gain a bit below.
+    waiting.retain(|path| {
+        path.len() >= options.min_bits || path.iter().all(|&entry| !entries.has_two(entry))
+    });
     let mut wanted = FxHashSet::default();
     for path in &waiting {
         context.wanted(path, &mut wanted);

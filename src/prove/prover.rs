@@ -8,7 +8,8 @@ use rustc_hash::{FxHashMap, FxHashSet};
 /// depend on the machine.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
 pub struct Effort {
-    /// Solver conflicts per question.
+    /// Solver conflicts per question, where at most a thousand nodes are
+    /// encoded; in proportion fewer beyond, since each then costs more.
     pub conflicts: u64,
     /// Nodes encoded over the life of one prover.
     pub nodes: usize,
@@ -24,6 +25,9 @@ impl std::ops::Not for Fact {
         Self(!self.0)
     }
 }
+
+/// Nodes up to which a question has its full effort.
+const FULL_EFFORT_NODES: usize = 1000;
 
 /// Levels below the stops that an optional question may reach.
 const NEARBY: usize = 8;
@@ -230,6 +234,12 @@ impl<'a> Prover<'a> {
     }
 
     fn solve(&mut self, assumption: batsat::Lit) -> lbool {
+        let nodes = self.encoded.len().max(FULL_EFFORT_NODES) as u64;
+        let full = self
+            .effort
+            .conflicts
+            .saturating_mul(FULL_EFFORT_NODES as u64);
+        self.solver.cb_mut().limit = full / nodes;
         let before = self.solver.cb().spent;
         let result = self.solver.solve_limited(&[assumption]);
         self.conflicts += self.solver.cb().spent - before;
