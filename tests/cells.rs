@@ -59,7 +59,7 @@ fn adder() -> String {
     for i in (0..8).rev() {
         let _ = writeln!(
             blif,
-            ".gate FAX1 A=a[{i}] B=b[{i}] CI=c{i} S=s[{i}] CO=c{}",
+            ".gate sum_cell A=a[{i}] B=b[{i}] CI=c{i} S=s[{i}] CO=c{}",
             i + 1
         );
     }
@@ -255,7 +255,7 @@ fn instances_that_do_not_fit_their_cell_are_refused() {
     );
     // An open pin has no driver, and that is a finding.
     let open = bound(
-        ".model m\n.inputs a\n.outputs s\n.gate FAX1 A=a B=a S=s\n.end\n",
+        ".model m\n.inputs a\n.outputs s\n.gate sum_cell A=a B=a S=s\n.end\n",
         &library,
     );
     let audit = audited(&open);

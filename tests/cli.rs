@@ -613,7 +613,8 @@ fn the_readme_shows_what_its_first_command_prints() {
 
 #[test]
 fn cells_give_functions_to_instances() {
-    let text = ".model m\n.inputs a b c\n.outputs s co\n.gate FAX1 A=a B=b CI=c S=s CO=co\n.end\n";
+    let text =
+        ".model m\n.inputs a b c\n.outputs s co\n.gate sum_cell A=a B=b CI=c S=s CO=co\n.end\n";
     let library = fixture("cells/harbour.lib");
     carrywise()
         .args(["audit", "-", "-q"])
@@ -633,7 +634,7 @@ fn cells_give_functions_to_instances() {
         .assert()
         .code(2)
         .stdout(is_empty())
-        .stderr(contains("-:4").and(contains("a pin of the cell FAX1, found `CX`")));
+        .stderr(contains("-:4").and(contains("a pin of the cell sum_cell, found `CX`")));
     carrywise()
         .args(["audit", "-", "--cells", &fixture("README.md")])
         .write_stdin(text)

@@ -63,7 +63,7 @@ fn a_netlist_only_of_unknown_cells_is_unknown_and_says_so() {
     for i in 0..8 {
         let _ = writeln!(
             blif,
-            ".gate FAX1 A=a[{i}] B=b[{i}] CI=c{i} S=s[{i}] CO=c{}",
+            ".gate sum_cell A=a[{i}] B=b[{i}] CI=c{i} S=s[{i}] CO=c{}",
             i + 1
         );
     }
@@ -72,7 +72,7 @@ fn a_netlist_only_of_unknown_cells_is_unknown_and_says_so() {
     assert_eq!(audit.verdict.limit, Limit::Unknown);
     assert_eq!(
         audit.verdict.sentence,
-        "Unknown, because not one of the 9 instances has a known function (8 FAX1 and 1 BUF2): \
+        "Unknown, because not one of the 9 instances has a known function (8 sum_cell and 1 BUF2): \
          no path could be followed and no chain looked for."
     );
     assert_eq!(audit.seen.gates_with_function, 0);

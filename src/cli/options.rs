@@ -105,7 +105,8 @@ pub struct AuditArguments {
     #[arg(long, value_name = "N", default_value_t = 100_000_000)]
     pub max_gates: u64,
 
-    /// Solver conflicts allowed per question of a proof
+    /// Solver conflicts allowed per question of a proof, in proportion fewer in cones over a
+    /// thousand nodes
     #[arg(long, value_name = "N", default_value_t = 20_000)]
     pub effort: u64,
 
