@@ -317,7 +317,7 @@ fn finds_lookahead_prefix_and_skip_adders_and_does_not_call_them_ripple() {
     // skip, and is a ripple.
     for bits in [12, 16, 32] {
         let fast = Word::every_fast(bits).into_iter();
-        // Select adders come with the virtual carries of a later slice.
+        // Select adders keep their carries on no net; only their blocks are found.
         let found = fast.filter(|w| !matches!(w.architecture, Architecture::CarrySelect(_)));
         circuits.extend(found.map(|word| word.generate()));
     }
