@@ -50,39 +50,58 @@ impl Operands {
         }
     }
 
-    /// The addends as literals. A carry-in of constant 1 is taken away by
-    /// adding the complements: `a + b + 1 = ~(~a + ~b)`; then the second result
-    /// is true and every sum and carry comes out inverted.
+    /// The addends as literals; see [`rooted`].
     pub(super) fn addends(
         &self,
         ground: &Ground<'_>,
         chain: &Chain,
         overlay: &mut Overlay,
     ) -> (Addends<Literal>, bool) {
-        let negated = chain.carry_in == Bit::Constant(true);
-        let mut literal = |bit: Bit| match bit {
+        let (bits, negated) = rooted(ground, chain);
+        let literal = |bit: Bit| match bit {
             Bit::Constant(value) => Literal::FALSE.invert_if(value),
             Bit::Signal(signal) => {
-                let root = root(ground, signal, |_| ());
-                let arrival = ground.timing.arrivals.by_net[root.net.index()];
-                overlay.net(root.net, arrival).invert_if(root.inverted)
+                let arrival = ground.timing.arrivals.by_net[signal.net.index()];
+                overlay.net(signal.net, arrival).invert_if(signal.inverted)
             }
         };
-        let a = chain
-            .positions
-            .iter()
-            .map(|p| literal(p.a).invert_if(negated));
-        let a = a.collect();
-        let b = chain
-            .positions
-            .iter()
-            .map(|p| literal(p.b).invert_if(negated));
-        let b = b.collect();
-        let carry_in = match chain.carry_in {
+        (each(&bits, literal), negated)
+    }
+}
+
+/// What a chain adds, buffers and inverters looked through. A carry-in of
+/// constant 1 is taken away by adding the complements: `a + b + 1 = ~(~a + ~b)`;
+/// then the second result is true and every sum and carry comes out inverted.
+pub(super) fn rooted(ground: &Ground<'_>, chain: &Chain) -> (Addends<Bit>, bool) {
+    let negated = chain.carry_in == Bit::Constant(true);
+    let behind = |bit: Bit, negated: bool| match bit {
+        Bit::Constant(value) => Bit::Constant(value != negated),
+        Bit::Signal(signal) => {
+            let root = root(ground, signal, |_| ());
+            Bit::Signal(Signal {
+                inverted: root.inverted != negated,
+                ..root
+            })
+        }
+    };
+    let positions = || chain.positions.iter();
+    let addends = Addends {
+        a: positions().map(|each| behind(each.a, negated)).collect(),
+        b: positions().map(|each| behind(each.b, negated)).collect(),
+        carry_in: match chain.carry_in {
             Bit::Constant(_) => None,
-            bit @ Bit::Signal(_) => Some(literal(bit)),
-        };
-        (Addends { a, b, carry_in }, negated)
+            bit @ Bit::Signal(_) => Some(behind(bit, false)),
+        },
+    };
+    (addends, negated)
+}
+
+/// The addends with every bit made by `make`: first addend, second, carry-in.
+pub(super) fn each<T>(bits: &Addends<Bit>, mut make: impl FnMut(Bit) -> T) -> Addends<T> {
+    Addends {
+        a: bits.a.iter().map(|&bit| make(bit)).collect(),
+        b: bits.b.iter().map(|&bit| make(bit)).collect(),
+        carry_in: bits.carry_in.map(make),
     }
 }
 
@@ -185,4 +204,37 @@ pub(super) fn sweep(
         }
     }
     (removed, uses)
+}
+
+/// Gates removed beyond those of [`sweep`], because no new gate reads some
+/// operand. No operand given may depend on what is replaced.
+pub(super) fn sweep_unread(
+    ground: &Ground<'_>,
+    operands: &[NetId],
+    uses_left: &FxHashMap<NetId, u32>,
+    is_read: impl Fn(NetId) -> bool,
+) -> Vec<GateId> {
+    let mut uses: FxHashMap<NetId, u32> = FxHashMap::default();
+    let left = |uses: &FxHashMap<NetId, u32>, net: NetId| {
+        let known = uses.get(&net).or_else(|| uses_left.get(&net));
+        known.copied().unwrap_or_else(|| ground.uses(net))
+    };
+    let mut stack: Vec<GateId> = operands
+        .iter()
+        .filter(|&&net| ground.uses(net) > 0 && left(&uses, net) == 0 && !is_read(net))
+        .filter_map(|&net| ground.gate_of(net))
+        .collect();
+    let mut swept = Vec::new();
+    while let Some(gate) = stack.pop() {
+        swept.push(gate);
+        for &net in ground.netlist.fan_ins(gate) {
+            let now = left(&uses, net) - 1;
+            uses.insert(net, now);
+            if now == 0 && !is_read(net) {
+                stack.extend(ground.gate_of(net));
+            }
+        }
+    }
+    swept.sort_unstable();
+    swept
 }
