@@ -25,7 +25,7 @@ use crate::format::Format;
 use crate::netlist::assume::Misfit;
 use crate::netlist::health::Health;
 use crate::netlist::{Netlist, Topology};
-use crate::plan::{self, ChainPlan, Ground, Request, Settings, SettingsError};
+use crate::plan::{self, ChainPlan, Ground, Request, Settings, SettingsError, Together};
 use crate::timing::{DelayModel, Timing};
 pub use assumed::Asserting;
 use assumed::Without;
@@ -131,7 +131,7 @@ pub fn audit_under(
     let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
-    let plans = plans(netlist, &topology, &timing, &settings, &chains);
+    let (plans, together) = plans(netlist, &topology, &timing, &settings, &chains);
 
     let carried = Carried::of(netlist, &chains);
     let cones = Cones::of(netlist, &topology, &chains);
@@ -142,7 +142,8 @@ pub fn audit_under(
     drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
     let timing = Timing::of(netlist, &topology, model);
-    let recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
+    let recommended_set =
+        rebuilds::recommended_set(netlist, &records, &plans, together.as_ref(), &timing, unit);
     let unproven: Vec<UnprovenRecord> = unproven
         .iter()
         .map(|candidate| unproven_record(netlist, candidate))
@@ -246,12 +247,14 @@ fn plans(
     timing: &Timing,
     settings: &Settings,
     chains: &[chain::Chain],
-) -> Vec<ChainPlan> {
+) -> (Vec<ChainPlan>, Option<Together>) {
     if chains.is_empty() {
-        return Vec::new();
+        return (Vec::new(), None);
     }
     let ground = Ground::of(netlist, topology, timing, settings);
-    plan::plan_all(&ground, chains)
+    let mut plans = plan::plan_all(&ground, chains);
+    let together = plan::choose_together(&ground, chains, &mut plans);
+    (plans, together)
 }
 
 fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {

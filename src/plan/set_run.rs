@@ -8,14 +8,16 @@
 //! and stretches for each group of starts, beside the ends that nothing of the set
 //! reaches.
 
-use super::cone::{each, sweep_unread};
+use super::cone::{each, rooted, sweep_unread};
 use super::dry_run::{Estimate, KindChange, TakesOver};
+use super::ground::Ground;
 use super::made::Made;
 use super::materialise::Stretch;
 use super::overlay::{Literal, Overlay};
 use super::set_site::SetSite;
+use crate::chain::Chain;
 use crate::netlist::{Bit, GateId, NetId};
-use crate::network::{CarryNetwork, Propagate, build};
+use crate::network::{CarryNetwork, GateSink, Propagate, build};
 use crate::timing::{NEVER, PathKind, StartGroup};
 
 /// The figures of a set.
@@ -59,6 +61,8 @@ pub struct SetRun<'s, 'a> {
     pub(super) made: Made,
     /// Gates removed beyond the site's.
     pub(super) swept: Vec<GateId>,
+    /// By member: the carries out of its positions.
+    carries: Vec<Vec<Literal>>,
     /// By member: the nodes up to and with its own.
     pub(super) node_ends: Vec<usize>,
     /// The times from each group of starts.
@@ -77,7 +81,7 @@ impl<'s, 'a> SetRun<'s, 'a> {
         let limits = ground.settings.limits();
         let mut overlay = site.base.clone();
         let mut results: Vec<Literal> = Vec::with_capacity(site.results.len());
-        let mut node_ends = Vec::new();
+        let (mut node_ends, mut carries_of) = (Vec::new(), Vec::new());
         let all = &ground.timing.arrivals.by_net;
         let mut times = Times::default();
         for (place, member) in site.members.iter().enumerate() {
@@ -102,6 +106,8 @@ impl<'s, 'a> SetRun<'s, 'a> {
                 };
                 results.push(list[role.position].invert_if(member.negated != role.inverted));
             }
+            let carries = built.carries.into_iter();
+            carries_of.push(carries.map(|c| c.invert_if(member.negated)).collect());
             node_ends.push(overlay.len());
             advance(
                 site,
@@ -130,6 +136,7 @@ impl<'s, 'a> SetRun<'s, 'a> {
             literals,
             made,
             swept,
+            carries: carries_of,
             node_ends,
             times: Vec::new(),
             estimate: SetEstimate {
@@ -159,6 +166,18 @@ impl<'s, 'a> SetRun<'s, 'a> {
     /// The figures.
     pub fn estimate(&self) -> &SetEstimate {
         &self.estimate
+    }
+
+    /// When the carry out of each position of each chain is ready, `None` for
+    /// constants; in the order the chains were given.
+    pub fn carry_arrivals(&self) -> Vec<Vec<Option<i32>>> {
+        let mut list = vec![Vec::new(); self.site.members.len()];
+        for (member, carries) in self.site.members.iter().zip(&self.carries) {
+            let times = carries.iter().map(|&c| self.overlay.arrival(c));
+            let times = times.map(|time| (time != NEVER).then_some(time));
+            list[member.given] = times.collect();
+        }
+        list
     }
 
     /// A measure of the work this run was.
@@ -376,4 +395,25 @@ fn advance(
         slots[site.results.len() + gate] = latest;
         through[site.results.len() + gate] = passing;
     }
+}
+
+/// When the latest sum or the last carry of a chain would be ready if all operands
+/// were at 0.
+pub(super) fn depth_by_itself(
+    ground: &Ground<'_>,
+    chain: &Chain,
+    network: &CarryNetwork,
+    propagate: Propagate,
+) -> i32 {
+    let mut overlay = Overlay::new(ground.settings.style, ground.settings.model);
+    let (bits, _) = rooted(ground, chain);
+    let addends = each(&bits, |bit| match bit {
+        Bit::Constant(value) => Literal::FALSE.invert_if(value),
+        Bit::Signal(signal) => overlay.net(signal.net, 0).invert_if(signal.inverted),
+    });
+    let limits = ground.settings.limits();
+    let built = build(network, &addends, limits, propagate, &mut overlay);
+    let results = built.sums.iter().chain(built.carries.last());
+    let times = results.map(|&literal| overlay.arrival(literal));
+    times.max().unwrap_or(NEVER)
 }

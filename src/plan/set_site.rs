@@ -187,7 +187,7 @@ impl<'a> SetSite<'a> {
     fn list_pins(&mut self) {
         let (ground, netlist) = (self.ground, self.ground.netlist);
         for &gate in &self.region {
-            let delays = ground.timing.delays.of_function(netlist.function_id(gate));
+            let delays = ground.timing.delays.of_gate(netlist, gate);
             let pins = netlist.fan_ins(gate).iter().zip(delays);
             self.pins.extend(pins.map(|(&net, &delay)| Pin {
                 net,

@@ -11,11 +11,14 @@
 //! The search is greedy and bounded by a fixed amount of work, never by time: all
 //! chains on a longest path at once, round by round; then one at a time, each the
 //! best step; then cheaper proposals, and leaving chains out, while the goal holds.
+//! A chain may take the best of every scheme, also what gains nothing on the
+//! netlist as read: behind a chain that gets faster it may.
 
+use super::choose::rank;
 use super::dry_run::TakesOver;
 use super::ground::Ground;
 use super::propose::{ChainPlan, Proposal};
-use super::set_run::{SetEstimate, SetRun};
+use super::set_run::{SetEstimate, SetRun, depth_by_itself};
 use super::set_site::{MOST_TOGETHER, SetSite};
 use super::trace::{Results, chains_on_longest};
 use crate::chain::Chain;
@@ -26,11 +29,9 @@ use std::collections::BTreeMap;
 /// Rounds in which all chains on a longest path join the set.
 const ROUNDS: usize = 8;
 /// Single steps.
-const STEPS: usize = 64;
+const STEPS: usize = 32;
 /// Chains tried at one single step.
-const TRIED_AT_A_STEP: usize = 8;
-/// Proposals of one chain tried at one single step.
-const PROPOSALS_AT_A_STEP: usize = 3;
+const TRIED_AT_A_STEP: usize = 4;
 /// Rounds of making the set cheaper.
 const CHEAPER_ROUNDS: usize = 3;
 /// Work allowed, in pins and nodes passed, beside [`WORK_PER_GATE`].
@@ -40,8 +41,63 @@ const WORK_PER_GATE: usize = 100;
 /// What looking at a set costs in terms of one pass over it.
 const SITE_PASSES: usize = 12;
 
-/// Which proposal is taken for which chain.
+/// Which proposal of its pool is taken for which chain.
 type Choice = BTreeMap<usize, usize>;
+
+/// What a chain may take.
+struct Pool {
+    proposals: Vec<Proposal>,
+    /// The fastest on the netlist as read.
+    first: usize,
+    /// The fastest if all operands were ready together.
+    fastest: usize,
+    /// That of the fewest gates.
+    cheapest: usize,
+}
+
+impl Pool {
+    fn of(ground: &Ground<'_>, chain: &Chain, plan: &ChainPlan) -> Option<Self> {
+        let mut proposals = plan.proposals.clone();
+        for best in &plan.best_of_scheme {
+            if proposals.iter().all(|known| known.number != best.number) {
+                proposals.push(best.clone());
+            }
+        }
+        let order = || 0..proposals.len();
+        let first = order().min_by_key(|&i| rank(&proposals[i]))?;
+        let alone = |i: &usize| {
+            let proposal = &proposals[*i];
+            let depth =
+                depth_by_itself(ground, chain, &proposal.fitted.network, proposal.propagate);
+            (depth, added(proposal))
+        };
+        let fastest = order().map(|i| (alone(&i), i)).min()?.1;
+        let cheapest = order().min_by_key(|&i| added(&proposals[i]))?;
+        Some(Self {
+            proposals,
+            first,
+            fastest,
+            cheapest,
+        })
+    }
+
+    /// What is tried at a single step.
+    fn tried(&self) -> Vec<usize> {
+        let mut list = vec![self.first];
+        for option in [self.fastest, self.cheapest] {
+            if !list.contains(&option) {
+                list.push(option);
+            }
+        }
+        list
+    }
+}
+
+/// Gate equivalents added less those removed.
+fn added(proposal: &Proposal) -> i64 {
+    let estimate = &proposal.estimate;
+    estimate.gate_equivalents_added as i64 - estimate.gate_equivalents_removed as i64
+}
 
 /// A recommended set.
 #[derive(Clone, PartialEq, Eq, Debug)]
@@ -52,6 +108,8 @@ pub struct Together {
     pub members: Vec<(usize, usize)>,
     /// Its figures.
     pub estimate: SetEstimate,
+    /// By member, when the carry out of each position is ready then.
+    pub carries: Vec<Vec<Option<i32>>>,
     /// The longest path of the kinds in question today.
     pub before: i32,
     /// And with the set.
@@ -76,10 +134,19 @@ pub fn choose_together(
     chains: &[Chain],
     plans: &mut [ChainPlan],
 ) -> Option<Together> {
+    let pools: Vec<Option<Pool>> = chains
+        .iter()
+        .zip(plans.iter())
+        .map(|(chain, plan)| Pool::of(ground, chain, plan))
+        .collect();
+    if pools.iter().all(Option::is_none) {
+        return None;
+    }
     let mut search = Search {
         ground,
         chains,
-        plans,
+        pools,
+        own: plans.iter().map(|plan| plan.recommended).collect(),
         results: Results::of(chains),
         target: Vec::new(),
         site: None,
@@ -87,15 +154,21 @@ pub fn choose_together(
         work: WORK.saturating_add(WORK_PER_GATE.saturating_mul(ground.netlist.gate_count())),
         stopped: false,
     };
-    if search.plans.iter().all(|plan| plan.proposals.is_empty()) {
-        return None;
-    }
-    let found = search.targets().into_iter().find_map(|target| {
+    let mut found = search.targets().into_iter().find_map(|target| {
         search.target = target;
         search.known.clear();
         search.find()
     })?;
     let kinds = search.target.clone();
+    for (chain, option) in &mut found.members {
+        let taken = search.proposal((chain, option));
+        let listed = &mut plans[*chain].proposals;
+        let known = listed.iter().position(|each| each.number == taken.number);
+        *option = known.unwrap_or(listed.len());
+        if known.is_none() {
+            listed.push(taken.clone());
+        }
+    }
     tell(plans, &found, &kinds);
     Some(found)
 }
@@ -103,8 +176,12 @@ pub fn choose_together(
 /// Marks the set in the plans.
 fn tell(plans: &mut [ChainPlan], found: &Together, kinds: &[PathKind]) {
     for (chain, plan) in plans.iter_mut().enumerate() {
-        let member = found.members.iter().find(|(each, _)| *each == chain);
-        if let Some(&(_, proposal)) = member {
+        let member = found.members.iter().position(|(each, _)| *each == chain);
+        if let Some(member) = member {
+            let (_, proposal) = found.members[member];
+            plan.proposals[proposal]
+                .carries
+                .clone_from(&found.carries[member]);
             if plan.recommended != Some(proposal) {
                 plan.recommended = Some(proposal);
                 plan.reason.clone_from(&found.reason);
@@ -129,6 +206,7 @@ struct Outcome {
     /// By chain: its nets on a longest path.
     on: BTreeMap<usize, usize>,
     takes_over: Option<TakesOver>,
+    carries: Vec<Vec<Option<i32>>>,
 }
 
 impl Outcome {
@@ -140,7 +218,10 @@ impl Outcome {
 struct Search<'g, 'p> {
     ground: &'g Ground<'g>,
     chains: &'p [Chain],
-    plans: &'p [ChainPlan],
+    /// By chain: what it may take; none where it is not planned.
+    pools: Vec<Option<Pool>>,
+    /// By chain: what its own plan recommends.
+    own: Vec<Option<usize>>,
     results: Results,
     target: Vec<PathKind>,
     /// The site of the last set of chains; most choices in a row share it.
@@ -173,7 +254,14 @@ impl Search<'_, '_> {
     }
 
     fn proposal(&self, (&chain, &option): (&usize, &usize)) -> &Proposal {
-        &self.plans[chain].proposals[option]
+        let pool = self.pools[chain].as_ref();
+        &pool.expect("only planned chains are in a set").proposals[option]
+    }
+
+    fn pool(&self, chain: usize) -> &Pool {
+        self.pools[chain]
+            .as_ref()
+            .expect("only planned chains are in a set")
     }
 
     fn before(&self) -> i32 {
@@ -241,11 +329,12 @@ impl Search<'_, '_> {
             ends,
             on,
             takes_over,
+            carries: run.carry_arrivals(),
         })
     }
 
     fn can_join(&self, chain: usize) -> bool {
-        !self.plans[chain].proposals.is_empty()
+        self.pools[chain].is_some()
     }
 
     fn find(&mut self) -> Option<Together> {
@@ -257,10 +346,18 @@ impl Search<'_, '_> {
         let gains = |outcome: &Outcome| {
             outcome.after < before && outcome.estimate.whole.block_after <= block
         };
-        let reached = self.all_at_once(&today);
+        let reached = self.all_at_once(&today, |pool| pool.first);
         if !(gains(&reached) && reached.on.is_empty()) {
-            self.one_at_a_time(today);
-            self.one_at_a_time(reached);
+            let other = self.all_at_once(&today, |pool| pool.fastest);
+            if !(gains(&other) && other.on.is_empty()) {
+                self.one_at_a_time(today);
+                let better = if other.progress() < reached.progress() {
+                    other
+                } else {
+                    reached
+                };
+                self.one_at_a_time(better);
+            }
         }
         let tried: Vec<Outcome> = self.known.values().flatten().cloned().collect();
         let gaining = || tried.iter().filter(|outcome| gains(outcome));
@@ -291,15 +388,15 @@ impl Search<'_, '_> {
         Some(self.together(chosen, (best, off)))
     }
 
-    /// Every chain on a longest path joins with its fastest proposal, until no more
-    /// can; gives the best on the way.
-    fn all_at_once(&mut self, today: &Outcome) -> Outcome {
+    /// Every chain on a longest path joins with the proposal `take` says, until no
+    /// more can; gives the best on the way.
+    fn all_at_once(&mut self, today: &Outcome, take: impl Fn(&Pool) -> usize) -> Outcome {
         let (mut now, mut best) = (today.clone(), today.clone());
         for _ in 0..ROUNDS {
             let mut choice = now.choice.clone();
             for &chain in now.on.keys() {
                 if self.can_join(chain) && choice.len() < MOST_TOGETHER {
-                    choice.entry(chain).or_insert(0);
+                    choice.entry(chain).or_insert(take(self.pool(chain)));
                 }
             }
             if choice == now.choice {
@@ -325,8 +422,7 @@ impl Search<'_, '_> {
             on.retain(|&(chain, _)| self.can_join(chain));
             let mut best = now.clone();
             for &(chain, _) in on.iter().take(TRIED_AT_A_STEP) {
-                let options = self.plans[chain].proposals.len().min(PROPOSALS_AT_A_STEP);
-                for option in 0..options {
+                for option in self.pool(chain).tried() {
                     let mut choice = now.choice.clone();
                     choice.insert(chain, option);
                     let Some(next) = self.attempt(&choice) else {
@@ -347,21 +443,18 @@ impl Search<'_, '_> {
 
     /// Leaves members out and takes cheaper proposals while the goal holds.
     fn cheaper(&mut self, mut now: Outcome, holds: &dyn Fn(&Outcome) -> bool) -> Outcome {
-        let cost = |proposal: &Proposal| {
-            let estimate = &proposal.estimate;
-            estimate.gate_equivalents_added as i64 - estimate.gate_equivalents_removed as i64
-        };
         for _ in 0..CHEAPER_ROUNDS {
             let before = now.estimate.cost();
             let mut members: Vec<(i64, usize)> = now
                 .choice
                 .iter()
-                .map(|each| (-cost(self.proposal(each)), *each.0))
+                .map(|each| (-added(self.proposal(each)), *each.0))
                 .collect();
             members.sort_unstable();
             for (_, chain) in members {
-                let mut options: Vec<usize> = (0..self.plans[chain].proposals.len()).collect();
-                options.sort_by_key(|&option| cost(&self.plans[chain].proposals[option]));
+                let pool = &self.pool(chain).proposals;
+                let mut options: Vec<usize> = (0..pool.len()).collect();
+                options.sort_by_key(|&option| added(&pool[option]));
                 let taken = now.choice[&chain];
                 let dearest = options.iter().position(|&option| option == taken);
                 options.truncate(dearest.unwrap_or(0));
@@ -393,7 +486,7 @@ impl Search<'_, '_> {
         let (Some(&only), None) = (members.next(), members.next()) else {
             return chosen;
         };
-        let Some(own) = self.plans[only].recommended else {
+        let Some(own) = self.own[only] else {
             return chosen;
         };
         match self.attempt(&Choice::from([(only, own)])) {
@@ -409,29 +502,28 @@ impl Search<'_, '_> {
         let alone: Vec<bool> = chosen
             .choice
             .iter()
-            .map(|(&chain, &option)| {
-                let proposal = &self.plans[chain].proposals[option];
-                proposal.gains()
-            })
+            .map(|each| self.proposal(each).gains())
             .collect();
-        let after = chosen.after;
+        let time = |ticks: i32| self.ground.timing.time(ticks);
+        let (after, reached) = (time(chosen.after), time(best));
         let reason = if off {
             format!(
                 "the cheapest found that takes carry off the longest path, which is {after} {unit} then"
             )
-        } else if after == best {
-            format!("the cheapest found at the best depth reached, {best} {unit}")
+        } else if chosen.after == best {
+            format!("the cheapest found at the best depth reached, {reached} {unit}")
         } else {
             format!(
-                "the cheapest found within one level of the best depth reached: {after} {unit}, the best is {best}"
+                "the cheapest found within one level of the best depth reached: {after} {unit}, the best is {reached}"
             )
         };
         Together {
             kind: self.target[0],
             members: chosen.choice.into_iter().collect(),
             before: self.before(),
-            after,
+            after: chosen.after,
             takes_over: chosen.takes_over,
+            carries: chosen.carries,
             chains_left: chosen.on.into_keys().collect(),
             none_alone: !alone.contains(&true),
             estimate: chosen.estimate,

@@ -119,7 +119,7 @@ pub(super) fn chains_on_longest(
                 let Some(gate) = ground.gate_of(net) else {
                     continue;
                 };
-                let delays = ground.timing.delays.of_function(netlist.function_id(gate));
+                let delays = ground.timing.delays.of_gate(netlist, gate);
                 for (&pin, delay) in netlist.fan_ins(gate).iter().zip(delays) {
                     let at = by_net[pin.index()];
                     if at != NEVER && at + delay == by_net[net.index()] {
@@ -145,7 +145,7 @@ fn gate_pins(
     };
     let ground = run.site.ground;
     let netlist = ground.netlist;
-    let delays = ground.timing.delays.of_function(netlist.function_id(gate));
+    let delays = ground.timing.delays.of_gate(netlist, gate);
     let pins = netlist.fan_ins(gate).iter().zip(delays);
     pins.filter(|&(pin, delay)| by_net[pin.index()] != NEVER && by_net[pin.index()] + delay == time)
         .map(|(&pin, _)| Place::Net(pin))
