@@ -13,7 +13,7 @@ use carrywise::format::assumptions::{self, AssumptionsFile};
 use carrywise::format::cells;
 use carrywise::netlist::{Netlist, Topology};
 use carrywise::source::Source;
-use carrywise::timing::{DelayModel, NEVER, Timing};
+use carrywise::timing::{DelayModel, NEVER, Time, Timing};
 use petgraph::graph::{DiGraph, NodeIndex};
 use reading::{VARIABLE, accept, told, values};
 use std::collections::BTreeMap;
@@ -63,17 +63,37 @@ fn a_declared_delay_lets_paths_run_through_a_box() {
          - {box: \"M*\", from: B, to: \"?\", delay: 7, why: data sheet}\n",
     );
     let audit = audited(&netlist, &both).expect("it fits");
-    assert_eq!(audit.depth.longest, 10.into());
-    assert_eq!(audit.depth.longest_without_assumptions, Some(2.into()));
-    let kinds: Vec<_> = audit.verdict.by_path_kind.iter().map(|k| &k.path_kind).collect();
+    assert_eq!(audit.depth.longest, Time::whole(10));
+    assert_eq!(
+        audit.depth.longest_without_assumptions,
+        Some(Time::whole(2))
+    );
+    let kinds: Vec<_> = audit
+        .verdict
+        .by_path_kind
+        .iter()
+        .map(|k| &k.path_kind)
+        .collect();
     assert_eq!(kinds, ["input→output"]);
-    let path: Vec<_> = audit.depth.longest_path.iter().map(|s| s.net.as_str()).collect();
+    let path: Vec<_> = audit
+        .depth
+        .longest_path
+        .iter()
+        .map(|s| s.net.as_str())
+        .collect();
     assert_eq!(path, ["y", "y1", "b", "q", "z"]);
     // What limits inside the box is not known.
     assert_eq!(audit.verdict.limit, Limit::Unknown);
     let said = "the longest path runs through MEM, of which only the delay is known";
-    assert!(audit.verdict.sentence.contains(said), "{}", audit.verdict.sentence);
-    assert_eq!(audit.assumed[0].assumption, "MEM takes 4 gate delays from A to Q");
+    assert!(
+        audit.verdict.sentence.contains(said),
+        "{}",
+        audit.verdict.sentence
+    );
+    assert_eq!(
+        audit.assumed[0].assumption,
+        "MEM takes 4 gate delays from A to Q"
+    );
     assert_eq!(audit.netlist.gates, 4, "as read");
     // One pair: B ends its paths at the box still, and Q starts some.
     let one = file("box_delay: [{box: MEM, from: A, to: Q, delay: 4, why: data sheet}]");
@@ -87,13 +107,16 @@ fn a_declared_delay_lets_paths_run_through_a_box() {
     assert_eq!(
         kinds,
         BTreeMap::from([
-            ("input→output", 6.into()),
-            ("input→box", 2.into()),
-            ("box→output", 1.into()),
+            ("input→output", Time::whole(6)),
+            ("input→box", Time::whole(2)),
+            ("box→output", Time::whole(1)),
         ])
     );
     assert!(
-        audit.verdict.sentence.contains("an instance without a known function (MEM)"),
+        audit
+            .verdict
+            .sentence
+            .contains("an instance without a known function (MEM)"),
         "{}",
         audit.verdict.sentence
     );
@@ -101,23 +124,30 @@ fn a_declared_delay_lets_paths_run_through_a_box() {
 
 #[test]
 fn a_box_beside_the_longest_path_hides_nothing_once_its_delay_is_declared() {
-    let mut blif = String::from(
-        ".model m\n.inputs x y\n.outputs z s\n.subckt MEM A=y Q=q\n.names q s\n0 1\n",
-    );
+    let mut blif =
+        String::from(".model m\n.inputs x y\n.outputs z s\n.subckt MEM A=y Q=q\n.names q s\n0 1\n");
     blif.push_str(".names x n0\n0 1\n");
     for i in 1..9 {
         let _ = writeln!(blif, ".names n{} n{i}\n0 1", i - 1);
     }
     blif.push_str(".names n8 z\n0 1\n.end\n");
     let netlist = accept("test.blif", &blif).netlist;
-    let declared = |delay| file(&format!(
-        "box_delay: [{{box: MEM, from: A, to: Q, delay: {delay}, why: data sheet}}]"
-    ));
+    let declared = |delay| {
+        file(&format!(
+            "box_delay: [{{box: MEM, from: A, to: Q, delay: {delay}, why: data sheet}}]"
+        ))
+    };
     let audit = audited(&netlist, &declared(3)).expect("it fits");
-    assert_eq!((audit.depth.longest, audit.verdict.limit), (10.into(), Limit::Elsewhere));
+    assert_eq!(
+        (audit.depth.longest, audit.verdict.limit),
+        (Time::whole(10), Limit::Elsewhere)
+    );
     assert_eq!(audit.seen.gates_without_function, 1, "it is still counted");
     let audit = audited(&netlist, &declared(30)).expect("it fits");
-    assert_eq!((audit.depth.longest, audit.verdict.limit), (31.into(), Limit::Unknown));
+    assert_eq!(
+        (audit.depth.longest, audit.verdict.limit),
+        (Time::whole(31), Limit::Unknown)
+    );
 }
 
 #[test]
@@ -128,30 +158,58 @@ fn a_loop_through_a_box_is_cut_and_told() {
     let declared = file("box_delay: [{box: MEM, from: A, to: Q, delay: 3, why: data sheet}]");
     let audit = audited(&netlist, &declared).expect("it fits");
     assert_eq!(audit.verdict.limit, Limit::Unknown);
-    assert!(audit.verdict.sentence.contains("a loop without a register is cut"), "{}", audit.verdict.sentence);
+    assert!(
+        audit
+            .verdict
+            .sentence
+            .contains("a loop without a register is cut"),
+        "{}",
+        audit.verdict.sentence
+    );
 }
 
 #[test]
 fn patterns_of_boxes_and_pins_that_name_nothing_are_refused_at_their_line() {
     let netlist = accept("test.blif", BOXED).netlist;
     for (entry, said) in [
-        ("{box: MAM, from: A, to: Q,", "expected a box, found none that `MAM` matches"),
-        ("{box: MEM, from: C, to: Q,", "expected an input of that box, found none that `C`"),
-        ("{box: MEM, from: A, to: R,", "expected an output of that box, found none that `R`"),
+        (
+            "{box: MAM, from: A, to: Q,",
+            "expected a box, found none that `MAM` matches",
+        ),
+        (
+            "{box: MEM, from: C, to: Q,",
+            "expected an input of that box, found none that `C`",
+        ),
+        (
+            "{box: MEM, from: A, to: R,",
+            "expected an output of that box, found none that `R`",
+        ),
     ] {
-        let file = file(&format!("box_delay:\n- {entry} delay: 1, why: data sheet}}\n"));
+        let file = file(&format!(
+            "box_delay:\n- {entry} delay: 1, why: data sheet}}\n"
+        ));
         let error = audited(&netlist, &file).expect_err("it does not fit");
         assert!(error.contains(said) && error.contains(":2:"), "{error}");
     }
 }
 
 /// A random netlist with boxes, and beside it the graph of its delays.
-fn random(seed: u64) -> (String, String, DiGraph<(), i32>, Vec<NodeIndex>, Vec<NodeIndex>) {
+fn random(
+    seed: u64,
+) -> (
+    String,
+    String,
+    DiGraph<(), i32>,
+    Vec<NodeIndex>,
+    Vec<NodeIndex>,
+) {
     let mut random = fastrand::Rng::with_seed(seed);
     let mut graph = DiGraph::new();
     let mut blif = String::from(".model r\n.inputs i0 i1 i2 i3\n.outputs o0 o1 o2\n");
     let mut yaml = String::from("box_delay:\n");
-    let mut nets: Vec<(String, NodeIndex)> = (0..4).map(|i| (format!("i{i}"), graph.add_node(()))).collect();
+    let mut nets: Vec<(String, NodeIndex)> = (0..4)
+        .map(|i| (format!("i{i}"), graph.add_node(())))
+        .collect();
     let starts: Vec<NodeIndex> = nets.iter().map(|&(_, node)| node).collect();
     let mut boxes = 0;
     for n in 0..14 {
@@ -170,7 +228,10 @@ fn random(seed: u64) -> (String, String, DiGraph<(), i32>, Vec<NodeIndex>, Vec<N
                 for (to, sink) in [("P", p), ("Q", q)] {
                     let delay = random.i32(0..9);
                     graph.add_edge(source, sink, delay);
-                    let _ = writeln!(yaml, "- {{box: B{boxes}, from: {from}, to: {to}, delay: {delay}, why: drawn}}");
+                    let _ = writeln!(
+                        yaml,
+                        "- {{box: B{boxes}, from: {from}, to: {to}, delay: {delay}, why: drawn}}"
+                    );
                 }
             }
             boxes += 1;
@@ -211,15 +272,20 @@ fn delays_through_boxes_agree_with_petgraph() {
         for node in order {
             for edge in graph.edges(node) {
                 use petgraph::visit::EdgeRef;
-                if at[node.index()] != i32::MIN {
+                let from = at[node.index()];
+                if from != i32::MIN {
                     let slot = &mut at[edge.target().index()];
-                    *slot = (*slot).max(at[node.index()] + edge.weight());
+                    *slot = (*slot).max(from + edge.weight());
                 }
             }
         }
         for (i, end) in ends.iter().enumerate() {
             let seen = timing.end_time(&under, carrywise::timing::End::Output(i as u32));
-            let wanted = if at[end.index()] == i32::MIN { NEVER } else { at[end.index()] };
+            let wanted = if at[end.index()] == i32::MIN {
+                NEVER
+            } else {
+                at[end.index()]
+            };
             assert_eq!(seen, wanted, "seed {seed}, output {i}\n{blif}\n{yaml}");
         }
     }
@@ -250,7 +316,11 @@ fn of_cells(each: usize) -> String {
         let model = ["", "FA", "ADD2", "", "ADD4"][each];
         let _ = write!(blif, ".subckt {model} CI=c{low} CO=c{}", low + each);
         for i in 0..each {
-            let pin = if each == 1 { String::new() } else { i.to_string() };
+            let pin = if each == 1 {
+                String::new()
+            } else {
+                i.to_string()
+            };
             let at = low + i;
             let _ = write!(blif, " A{pin}=a[{at}] B{pin}=b[{at}] S{pin}=s[{at}]");
             if each == 2 && i == 0 {
@@ -301,7 +371,7 @@ fn carry_cells_take_their_declared_delays_and_do_what_they_did() {
         }
         assert_eq!(VARIABLE.len(), 6);
         let audit = audited(&netlist, &declared).expect("it fits");
-        assert_eq!(audit.depth.longest, deepest.into(), "{model}");
+        assert_eq!(audit.depth.longest, Time::whole(deepest), "{model}");
         let chain = &audit.chains[0];
         assert_eq!((chain.kind.as_str(), chain.bits), ("adder", 8), "{model}");
         assert_eq!(chain.formula(), "a[7:0] + b[7:0] + c0");
@@ -309,14 +379,14 @@ fn carry_cells_take_their_declared_delays_and_do_what_they_did() {
         assert_eq!(audit.assumed[0].places, cells, "{model}");
         // A rebuild is compared with what the cells take.
         for proposal in &chain.proposals {
-            assert_eq!(proposal.chain_depth.before, deepest.into());
+            assert_eq!(proposal.chain_depth.before, Time::whole(deepest));
         }
         // Undeclared, the same chain is a ripple of gates.
         let none = file("arrival: [{ports: c0, at: 0, why: none}]");
         let plain = bound(&of_cells(each), &none).expect("it fits");
         let audit = audited(&plain, &none).expect("it fits");
         assert_eq!(audit.chains[0].built_as.name, "ripple");
-        assert_eq!(audit.depth.longest, 8.into());
+        assert_eq!(audit.depth.longest, Time::whole(8));
     }
 }
 
@@ -329,19 +399,28 @@ fn a_tied_pin_of_a_carry_cell_keeps_the_other_delays() {
     let netlist = bound(&of_cells(1), &declared).expect("it fits");
     let audit = audited(&netlist, &declared).expect("it fits");
     // a + 0 + c0 counts up still: eight cells of 2.
-    assert_eq!(audit.depth.longest, 16.into());
+    assert_eq!(audit.depth.longest, Time::whole(16));
 }
 
 #[test]
 fn a_carry_cell_with_a_pair_left_out_is_refused() {
     let refuse = |yaml: &str| bound(&of_cells(1), &file(yaml)).err().unwrap_or_default();
     let error = refuse("carry_cells: [{cell: FA, delays: [{from: CI, to: CO, delay: 1}], why: x}]");
-    assert!(error.contains("expected a delay from A to S of the carry cell FA"), "{error}");
+    assert!(
+        error.contains("expected a delay from A to S of the carry cell FA"),
+        "{error}"
+    );
     let error = refuse("carry_cells:\n- {cell: MUL, delays: [], why: x}\n");
-    assert!(error.contains("found none that `MUL` matches") && error.contains(":2:"), "{error}");
+    assert!(
+        error.contains("found none that `MUL` matches") && error.contains(":2:"),
+        "{error}"
+    );
     let error = refuse(
         "carry_cells:\n- cell: FA\n  delays:\n  - {from: \"*\", to: \"*\", delay: 1}\n  \
          - {from: CJ, to: CO, delay: 1}\n  why: x\n",
     );
-    assert!(error.contains("expected an input pin, found none that `CJ`") && error.contains(":5:"), "{error}");
+    assert!(
+        error.contains("expected an input pin, found none that `CJ`") && error.contains(":5:"),
+        "{error}"
+    );
 }

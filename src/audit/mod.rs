@@ -142,8 +142,7 @@ pub fn audit_under(
     drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
     let timing = Timing::of(netlist, &topology, model);
-    let longest = i64::from(timing.longest());
-    let recommended_set = rebuilds::recommended_set(&records, &plans, longest, unit);
+    let recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
     let unproven: Vec<UnprovenRecord> = unproven
         .iter()
         .map(|candidate| unproven_record(netlist, candidate))

@@ -9,7 +9,7 @@
 
 use super::words::{counted, depth_in, grouped, listed};
 use crate::netlist::{BlackBox, BoxId, Driver, NetId, Netlist, RegisterId, Topology};
-use crate::timing::{DelayModel, NEVER, PathStep, Timing};
+use crate::timing::{DelayModel, NEVER, PathStep, Time, Timing};
 use std::cmp::Reverse;
 use std::collections::BTreeMap;
 
@@ -21,7 +21,7 @@ pub struct Open {
     /// They.
     pub registers: Vec<RegisterId>,
     /// The longest path then.
-    pub longest: i64,
+    pub longest: Time,
 }
 
 impl Open {
@@ -31,7 +31,7 @@ impl Open {
         let topology = Topology::of(&open);
         Some(Self {
             registers: netlist.transparent_registers().collect(),
-            longest: i64::from(Timing::of(&open, &topology, model).longest()),
+            longest: model.time(Timing::of(&open, &topology, model).longest()),
         })
     }
 }
@@ -178,7 +178,7 @@ impl Sight<'_> {
 
     fn transparent(&self) -> Option<String> {
         let open = self.open?;
-        if open.longest <= i64::from(self.timing.longest()) {
+        if open.longest <= self.timing.time(self.timing.longest()) {
             return None;
         }
         let outputs: Vec<NetId> = open

@@ -7,6 +7,7 @@
 //! [`crate::netlist::Asserted`]), a class falls into groups, each timed on its
 //! own; without assumptions every class is one group.
 
+use super::model::DelayModel;
 use crate::netlist::{BoxId, Driver, EndPoint, GateId, NetId, Netlist, RegisterId, Topology};
 
 /// What a path starts from.
@@ -245,12 +246,13 @@ pub fn start_group(netlist: &Netlist, topology: &Topology, net: NetId) -> Option
     Some(StartGroup { class, set })
 }
 
-/// When a start is ready, in whole units of the delay model.
+/// When a start is ready, in ticks of the delay model.
 #[inline]
-pub fn start_time(netlist: &Netlist, net: NetId) -> i32 {
-    netlist
-        .asserted()
-        .map_or(0, |asserted| asserted.arrival(net))
+pub fn start_time(netlist: &Netlist, model: DelayModel, net: NetId) -> i32 {
+    netlist.asserted().map_or(0, |asserted| {
+        let units = asserted.arrival(net);
+        units.saturating_mul(model.ticks_per_unit())
+    })
 }
 
 /// What kind of start a net is, if it is one.

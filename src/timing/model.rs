@@ -10,7 +10,8 @@
 //! form, the published way to compare wide with narrow gates.
 
 use super::factored;
-use crate::netlist::{Function, FunctionId, Netlist, Shape};
+use super::time::Time;
+use crate::netlist::{Function, FunctionId, GateId, Netlist, Shape};
 
 /// How gates are priced.
 #[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
@@ -50,6 +51,11 @@ impl DelayModel {
     /// Ticks in one unit: both models here count whole units.
     pub fn ticks_per_unit(self) -> i32 {
         1
+    }
+
+    /// Ticks as a time in the unit of the model.
+    pub fn time(self, ticks: i32) -> Time {
+        Time::of_ticks(ticks, self.ticks_per_unit())
     }
 
     /// The delay from each pin of `function` to its output, in ticks.
@@ -119,10 +125,10 @@ impl PinDelays {
         self.model
     }
 
-    /// The delays of one function, pin 0 first.
+    /// The delays of one gate, pin 0 first.
     #[inline]
-    pub fn of_function(&self, id: FunctionId) -> &[i32] {
-        let i = id.index();
+    pub fn of_gate(&self, netlist: &Netlist, gate: GateId) -> &[i32] {
+        let i = netlist.function_id(gate).index();
         &self.ticks[self.starts[i] as usize..self.starts[i + 1] as usize]
     }
 }
