@@ -8,7 +8,8 @@
 //! `majority(¬a, b, c) = majority(a, b, c) ⊕ b ⊕ c`, and so on.
 
 use crate::subject::{
-    Hash, LinearSet, NodeId, Patterns, Running, Signatures, Simulation, Subject, linear_sets,
+    FLIP_WORDS, Hash, Linear, LinearSet, NodeId, NodeKind, Patterns, Running, Signatures,
+    Simulation, Subject, Words, linear_pairs, linear_sets,
 };
 use fixedbitset::FixedBitSet;
 
@@ -31,6 +32,33 @@ impl Variant {
     pub(super) fn inverted(self) -> (bool, bool, bool) {
         (self == Self::A, self == Self::B, self == Self::Carry)
     }
+}
+
+/// Leaves of one sum that are paired with each other, and free ones of them
+/// that are always among them.
+const LEAVES: usize = 6;
+const FREE_LEAVES: usize = 4;
+
+/// The values that flips are looked for under: the first word, which is uniform,
+/// and the last, which is directed where some value is rare.
+fn chosen_words(subject: &Subject, patterns: &Patterns) -> Vec<Words> {
+    let mut values = vec![[0; FLIP_WORDS]; subject.node_count()];
+    let last = patterns.words() - 1;
+    for (slot, word) in [0, last].into_iter().enumerate() {
+        let mut simulation = Simulation::at(subject, patterns, word);
+        let words = simulation.advance().unwrap_or_default();
+        for (value, &word) in values.iter_mut().zip(words) {
+            value[slot] = word;
+        }
+    }
+    values
+}
+
+/// The pairs of the first sum.
+fn own_pairs(pairs: &[Linear]) -> Option<&[Linear]> {
+    let first = pairs.first()?;
+    let end = pairs.iter().position(|pair| pair.sum != first.sum);
+    Some(&pairs[..end.unwrap_or(pairs.len())])
 }
 
 /// All entries; those of one sum are neighbours.
@@ -56,11 +84,23 @@ impl Entries {
             b: Vec::new(),
             majority: Vec::new(),
         };
+        let pairs = linear_pairs(subject, &chosen_words(subject, patterns), on_net);
+        let mut rest = pairs.as_slice();
         linear_sets(subject, |set| {
             if on_net.contains(set.sum.index()) {
+                while let Some(own) = own_pairs(rest)
+                    && own[0].sum < set.sum
+                {
+                    entries.nominate_flips(subject, signatures, own, &pairs);
+                    rest = &rest[own.len()..];
+                }
                 entries.nominate(set, on_net);
             }
         });
+        while let Some(own) = own_pairs(rest) {
+            entries.nominate_flips(subject, signatures, own, &pairs);
+            rest = &rest[own.len()..];
+        }
         entries.sum.shrink_to_fit();
         entries.a.shrink_to_fit();
         entries.b.shrink_to_fit();
@@ -68,26 +108,67 @@ impl Entries {
         entries
     }
 
-    fn nominate(&mut self, set: LinearSet, on_net: &FixedBitSet) {
-        let mut offer = |a: NodeId, b: NodeId| {
-            if a == NodeId::FALSE && b == NodeId::FALSE {
-                return;
-            }
-            if !on_net.contains(a.index()) || !on_net.contains(b.index()) {
-                return;
-            }
-            let (a, b) = if a == NodeId::FALSE { (b, a) } else { (a, b) };
-            for i in (0..self.sum.len())
-                .rev()
-                .take_while(|&i| self.sum[i] == set.sum)
-            {
-                if self.a[i] == a && self.b[i] == b {
-                    return;
+    /// Adds an entry, unless it is there among those of the same sum, which are
+    /// the last ones.
+    fn offer(&mut self, sum: NodeId, a: NodeId, b: NodeId) {
+        let (a, b) = if a == NodeId::FALSE { (b, a) } else { (a, b) };
+        let own = (0..self.sum.len()).rev();
+        let mut own = own.take_while(|&i| self.sum[i] == sum);
+        if a == NodeId::FALSE || own.any(|i| self.a[i] == a && self.b[i] == b) {
+            return;
+        }
+        self.sum.push(sum);
+        self.a.push(a);
+        self.b.push(b);
+    }
+
+    /// Nominates from the leaves in which one sum was found to be linear.
+    fn nominate_flips(
+        &mut self,
+        subject: &Subject,
+        signatures: &Signatures,
+        own: &[Linear],
+        all: &[Linear],
+    ) {
+        let sum = own[0].sum;
+        let is_free = |leaf: NodeId| matches!(subject.kind(leaf), NodeKind::Free(_));
+        let free = own.iter().filter(|pair| is_free(pair.leaf)).count();
+        // A node linear in many inputs is a parity; its near leaves may matter.
+        let mut leaves: Vec<NodeId> = own
+            .iter()
+            .rev()
+            .map(|pair| pair.leaf)
+            .filter(|&leaf| free <= FREE_LEAVES || !is_free(leaf))
+            .take(LEAVES)
+            .collect();
+        if free <= FREE_LEAVES {
+            leaves.extend(own.iter().map(|pair| pair.leaf).filter(|&l| is_free(l)));
+            leaves.sort_unstable();
+            leaves.dedup();
+        }
+        let depends = |sum, leaf| all.binary_search(&Linear { sum, leaf }).is_ok();
+        let hash = |node| signatures.hash(node);
+        for (i, &x) in leaves.iter().enumerate() {
+            for &y in &leaves[i + 1..] {
+                // Both are to enter the sum, not one through the other.
+                let carry = hash(sum) ^ hash(x) ^ hash(y);
+                if carry != 0 && !depends(x, y) && !depends(y, x) {
+                    self.offer(sum, x, y);
                 }
             }
-            self.sum.push(set.sum);
-            self.a.push(a);
-            self.b.push(b);
+        }
+        if leaves.len() <= 2 {
+            for &x in leaves.iter().filter(|&&x| is_free(x)) {
+                self.offer(sum, x, NodeId::FALSE);
+            }
+        }
+    }
+
+    fn nominate(&mut self, set: LinearSet, on_net: &FixedBitSet) {
+        let mut offer = |a: NodeId, b: NodeId| {
+            if on_net.contains(a.index()) && on_net.contains(b.index()) {
+                self.offer(set.sum, a, b);
+            }
         };
         match *set.leaves() {
             [x] => offer(x, NodeId::FALSE),

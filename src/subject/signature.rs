@@ -51,10 +51,15 @@ pub struct Simulation<'a> {
 impl<'a> Simulation<'a> {
     /// Starts before the first word.
     pub fn new(subject: &'a Subject, patterns: &'a Patterns) -> Self {
+        Self::at(subject, patterns, 0)
+    }
+
+    /// Starts before word `next`.
+    pub fn at(subject: &'a Subject, patterns: &'a Patterns, next: usize) -> Self {
         Self {
             subject,
             patterns,
-            next: 0,
+            next,
             words: vec![0; subject.node_count()],
         }
     }
