@@ -8,8 +8,8 @@
 //! `majority(¬a, b, c) = majority(a, b, c) ⊕ b ⊕ c`, and so on.
 
 use crate::subject::{
-    FLIP_WORDS, Hash, Linear, LinearSet, NodeId, NodeKind, Patterns, Running, Signatures,
-    Simulation, Subject, Words, linear_pairs, linear_sets,
+    Hash, Linear, LinearSet, NodeId, NodeKind, Patterns, Running, Signatures, Simulation, Subject,
+    linear_sets,
 };
 use fixedbitset::FixedBitSet;
 
@@ -39,21 +39,6 @@ impl Variant {
 const LEAVES: usize = 6;
 const FREE_LEAVES: usize = 4;
 
-/// The values that flips are looked for under: the first word, which is uniform,
-/// and the last, which is directed where some value is rare.
-fn chosen_words(subject: &Subject, patterns: &Patterns) -> Vec<Words> {
-    let mut values = vec![[0; FLIP_WORDS]; subject.node_count()];
-    let last = patterns.words() - 1;
-    for (slot, word) in [0, last].into_iter().enumerate() {
-        let mut simulation = Simulation::at(subject, patterns, word);
-        let words = simulation.advance().unwrap_or_default();
-        for (value, &word) in values.iter_mut().zip(words) {
-            value[slot] = word;
-        }
-    }
-    values
-}
-
 /// The pairs of the first sum.
 fn own_pairs(pairs: &[Linear]) -> Option<&[Linear]> {
     let first = pairs.first()?;
@@ -77,6 +62,8 @@ impl Entries {
         signatures: &Signatures,
         patterns: &Patterns,
         on_net: &FixedBitSet,
+        pairs: &[Linear],
+        moded: &[(NodeId, NodeId, NodeId)],
     ) -> Self {
         let mut entries = Self {
             sum: Vec::new(),
@@ -84,21 +71,20 @@ impl Entries {
             b: Vec::new(),
             majority: Vec::new(),
         };
-        let pairs = linear_pairs(subject, &chosen_words(subject, patterns), on_net);
-        let mut rest = pairs.as_slice();
+        let mut rest = pairs;
         linear_sets(subject, |set| {
             if on_net.contains(set.sum.index()) {
                 while let Some(own) = own_pairs(rest)
                     && own[0].sum < set.sum
                 {
-                    entries.nominate_flips(subject, signatures, own, &pairs);
+                    entries.nominate_flips(subject, signatures, own, pairs, moded);
                     rest = &rest[own.len()..];
                 }
                 entries.nominate(set, on_net);
             }
         });
         while let Some(own) = own_pairs(rest) {
-            entries.nominate_flips(subject, signatures, own, &pairs);
+            entries.nominate_flips(subject, signatures, own, pairs, moded);
             rest = &rest[own.len()..];
         }
         entries.sum.shrink_to_fit();
@@ -129,6 +115,7 @@ impl Entries {
         signatures: &Signatures,
         own: &[Linear],
         all: &[Linear],
+        moded: &[(NodeId, NodeId, NodeId)],
     ) {
         let sum = own[0].sum;
         let is_free = |leaf: NodeId| matches!(subject.kind(leaf), NodeKind::Free(_));
@@ -156,6 +143,11 @@ impl Entries {
                     self.offer(sum, x, y);
                 }
             }
+        }
+        let start = moded.partition_point(|&(other, _, _)| other < sum);
+        let moded = moded[start..].iter().take_while(|each| each.0 == sum);
+        for &(_, plain, other) in moded {
+            self.offer(sum, plain, other);
         }
         if leaves.len() <= 2 {
             for &x in leaves.iter().filter(|&&x| is_free(x)) {

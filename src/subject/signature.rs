@@ -159,6 +159,19 @@ impl Signatures {
         }
     }
 
+    /// Signs nodes that were added to the graph since: exclusive ors, whose
+    /// signatures follow from those of their fan-ins.
+    pub fn extend(&mut self, subject: &Subject) {
+        for node in subject.nodes().skip(self.hashes.len()) {
+            let NodeKind::Xor(x, y) = subject.kind(node) else {
+                unreachable!("only exclusive ors are added");
+            };
+            self.hashes.push(self.hash(x) ^ self.hash(y));
+            self.first.grow(subject.node_count());
+            self.first.set(node.index(), self.first(x) ^ self.first(y));
+        }
+    }
+
     /// The normalised hash of a node.
     #[inline]
     pub fn hash(&self, node: NodeId) -> Hash {
