@@ -15,7 +15,7 @@ use carrywise::netlist::{
     Assumptions, Driver, NetGraph, NetId, Netlist, Pattern, Readers, Topology,
 };
 use carrywise::source::Source;
-use carrywise::timing::{DelayModel, Timing};
+use carrywise::timing::{DelayModel, Time, Timing};
 use reading::accept;
 use std::collections::hash_map::RandomState;
 use std::fmt::Write;
@@ -105,7 +105,7 @@ fn a_tied_test_mode_takes_its_multiplexer_leg_off_the_longest_path() {
     assert_eq!(audit.depth.longest, 10);
     assert_eq!(
         audit.depth.longest_without_assumptions,
-        Some(i64::from(plain))
+        Some(Time::whole(plain.into()))
     );
     assert_eq!(audit.verdict.limit, Limit::Carry);
     let without = format!("without them the longest path is {plain} gate delays long");
@@ -452,7 +452,11 @@ fn faults_of_the_file_are_told_where_they_are() {
         "arrival: [{ports: a, at: -1, why: x}]",
         "arrival: [{at: 1, why: x}]",
         "required: [{ports: [a], at: 1, why: x}]",
-        "box_delay: [{box: M, from: A, to: Q, delay: 4, why: x}]",
+        "box_delay: [{box: M, from: A, to: Q, delay: -1, why: x}]",
+        "box_delay: [{box: M, from: A, delay: 4, why: x}]",
+        "box_delay: [{model: M, from: A, to: Q, delay: 4, why: x}]",
+        "carry_cells: [{cell: C, why: x}]",
+        "carry_cells:\n- cell: C\n  delays: [{frm: A, to: Q, delay: 1}]\n  why: x\n",
         "tied: {a: {value: 0, why: x}\nb",
     ];
     let mut told = String::new();

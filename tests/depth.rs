@@ -210,7 +210,7 @@ fn arrivals_agree_with_petgraph() {
                     let gate = pair[1].gate.unwrap();
                     let reads = netlist.fan_ins(gate).iter().enumerate();
                     let delays = PinDelays::of(&netlist, model);
-                    let delays = delays.of_function(netlist.function_id(gate));
+                    let delays = delays.of_gate(&netlist, gate);
                     assert!(reads.into_iter().any(|(pin, &net)| {
                         net == pair[0].net && pair[0].arrival + delays[pin] == pair[1].arrival
                     }));

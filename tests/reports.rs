@@ -11,6 +11,7 @@ mod samples;
 use carrywise::audit::record::{Audit, Wire};
 use carrywise::audit::words;
 use carrywise::report::{Form, Page, number, write};
+use carrywise::timing::Time;
 use samples::{HOSTILE, hostile, tide_logger};
 
 fn rendered(audit: &Audit, form: Form, page: Page) -> String {
@@ -391,5 +392,8 @@ fn counts_agree_with_their_nouns() {
     assert_eq!(words::counted(1, "gate", "gates"), "1 gate");
     assert_eq!(words::counted(1_020, "gate", "gates"), "1,020 gates");
     assert_eq!(words::grouped(1_000_000), "1,000,000");
-    assert_eq!(words::depth_in(1, "gate delays"), "1 gate delay");
+    assert_eq!(
+        words::depth_in(Time::whole(1), "gate delays"),
+        "1 gate delay"
+    );
 }

@@ -11,6 +11,7 @@ mod reading;
 use carrywise::audit::record::{Audit, Finding, Limit, Severity};
 use carrywise::audit::{self, Options, Origin};
 use carrywise::netlist::{Initial, Trigger};
+use carrywise::timing::Time;
 use reading::accept;
 use std::fmt::Write;
 
@@ -270,7 +271,7 @@ fn open_registers_are_told_and_their_paths_noted() {
     assert_eq!(edge.verdict.limit, Limit::Elsewhere);
     assert_eq!(
         (edge.depth.longest, edge.depth.longest_through_transparent),
-        (6, None)
+        (Time::whole(6), None)
     );
     assert!(of_rule(&edge, "transparent-register").is_empty());
     for (kind, told) in [
@@ -281,7 +282,10 @@ fn open_registers_are_told_and_their_paths_noted() {
         let open = audited(&text(kind));
         assert_eq!(open.verdict.limit, Limit::Unknown, "{kind}");
         // Six gates, the open register, five gates.
-        assert_eq!(open.depth.longest_through_transparent, Some(12));
+        assert_eq!(
+            open.depth.longest_through_transparent,
+            Some(Time::whole(12))
+        );
         assert_eq!(open.depth.longest, 6);
         let sentence = &open.verdict.sentence;
         let hint = "paths may run on through 1 transparent register (q), and then take up to 12 \
@@ -310,7 +314,7 @@ fn open_registers_that_lengthen_nothing_leave_the_verdict_certain() {
     assert_eq!(open.verdict.limit, Limit::Unknown);
     assert_eq!(
         open.depth.longest_through_transparent,
-        Some(open.depth.longest + 1)
+        Some(open.depth.longest + Time::whole(1))
     );
     // At the outputs they add nothing to any path.
     let mut late = format!(

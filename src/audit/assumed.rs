@@ -1,10 +1,14 @@
 //! Assumptions into the record: what was asserted, why, and what came of it.
 
 use super::record::AssumedRecord;
-use super::words::{counted, depth_in};
+use super::words::{counted, depth_in, listed};
 use crate::netlist::assume::{Assumed, Cycles, Item, Paths, Tied};
+use crate::netlist::carry_cell::{CarryCell, PinPair};
 use crate::netlist::{Assumptions, Netlist, Pattern, Topology, histogram};
-use crate::timing::{DelayModel, End, EndClass, NEVER, PathKind, StartClass, Timing};
+use crate::timing::{DelayModel, End, EndClass, NEVER, PathKind, StartClass, Time, Timing};
+
+/// Delays told of one carry cell.
+const PAIRS: usize = 4;
 
 /// Assumptions to audit under.
 #[derive(Clone, PartialEq, Eq, Debug)]
@@ -18,8 +22,8 @@ pub struct Asserting<'a> {
 /// Figures of the netlist as read.
 pub struct Without {
     /// The longest path.
-    pub longest: i64,
-    kinds: Vec<((StartClass, EndClass), i64)>,
+    pub longest: Time,
+    kinds: Vec<((StartClass, EndClass), Time)>,
 }
 
 impl Without {
@@ -27,17 +31,17 @@ impl Without {
     pub fn of(netlist: &Netlist, topology: &Topology, model: DelayModel) -> Self {
         let timing = Timing::of(netlist, topology, model);
         let kind =
-            |kind: &crate::timing::KindTiming| (kind.kind.classes(), i64::from(kind.longest));
+            |kind: &crate::timing::KindTiming| (kind.kind.classes(), timing.time(kind.longest));
         Self {
-            longest: i64::from(timing.longest()),
+            longest: timing.time(timing.longest()),
             kinds: timing.kinds.iter().map(kind).collect(),
         }
     }
 
     /// The longest path of a kind; 0 when there was none.
-    pub fn of_kind(&self, kind: PathKind) -> i64 {
+    pub fn of_kind(&self, kind: PathKind) -> Time {
         let found = self.kinds.iter().find(|(each, _)| *each == kind.classes());
-        found.map_or(0, |&(_, longest)| longest)
+        found.map_or(Time::ZERO, |&(_, longest)| longest)
     }
 }
 
@@ -46,9 +50,9 @@ pub struct Late {
     /// The port.
     pub output: u32,
     /// When it is ready.
-    pub at: u64,
+    pub at: Time,
     /// When it must be.
-    pub required: u64,
+    pub required: Time,
 }
 
 /// The outputs that miss their required times, each against its tightest.
@@ -57,8 +61,8 @@ pub fn late_ports(assumptions: &Assumptions, under: &Assumed, timing: &Timing) -
     for (time, ports) in assumptions.required.iter().zip(&under.required) {
         for &output in ports {
             let at = timing.end_time(&under.netlist, End::Output(output));
-            if at > time.at {
-                let (at, required) = (at.unsigned_abs().into(), time.at.unsigned_abs().into());
+            let (at, required) = (timing.time(at), Time::whole(time.at.into()));
+            if at > required {
                 match late.iter_mut().find(|each| each.output == output) {
                     Some(known) => known.required = known.required.min(required),
                     None => late.push(Late {
@@ -88,6 +92,11 @@ pub fn unused(assumptions: &Assumptions, read: &Netlist, timing: &Timing) -> Vec
         }
         let ties = assumptions.tied.iter().zip(used).filter(|(_, used)| !used);
         unused.extend(ties.map(|(each, _)| tie_words(each)));
+    }
+    for (i, each) in assumptions.carry_cells.iter().enumerate() {
+        if read.declared().is_none_or(|own| own.carry_cells_of(i) == 0) {
+            unused.push(format!("{} is a carry cell", each.cell.text()));
+        }
     }
     for (i, each) in assumptions.cycles.iter().enumerate() {
         if !timing.relaxed.iter().any(|r| r.entry as usize == i) {
@@ -149,10 +158,10 @@ pub fn records(
         let own = timing.relaxed.iter().filter(|r| r.entry as usize == i);
         let longest = own.map(|relaxed| relaxed.timing.longest).max();
         let effect = longest.map(|longest| {
-            let each_cycle = longest.max(0).unsigned_abs().div_ceil(each.cycles);
+            let each_cycle = timing.time(per_cycle(longest, each.cycles));
             format!(
                 "the longest of them takes {}: {each_cycle} a cycle",
-                depth_in(i64::from(longest), unit)
+                depth_in(timing.time(longest), unit)
             )
         });
         let places = places(&[Item::CyclesFrom(i), Item::CyclesTo(i)]);
@@ -169,19 +178,53 @@ pub fn records(
             .map(|&output| timing.end_time(&under.netlist, End::Output(output)));
         let latest = times.filter(|&at| at != NEVER).max();
         let effect = latest.map(|latest| {
-            let spare = i64::from(each.at) - i64::from(latest);
-            let (levels, word) = (
-                spare.unsigned_abs(),
-                if spare < 0 { "over" } else { "to spare" },
-            );
-            format!(
-                "the latest is ready at {latest}: {} {word}",
-                counted(levels, unit.trim_end_matches('s'), unit)
-            )
+            let latest = timing.time(latest);
+            let spare = Time::whole(each.at.into()) - latest;
+            let word = if spare < 0 { "over" } else { "to spare" };
+            let spare = match spare.abs() {
+                Time::ZERO => format!("no {unit}"),
+                some => depth_in(some, unit),
+            };
+            format!("the latest is ready at {latest}: {spare} {word}")
         });
         add(text, &each.why, places(&[Item::Required(i)]), effect);
     }
+    for (i, each) in assumptions.box_delay.iter().enumerate() {
+        let text = format!(
+            "{} takes {} from {} to {}",
+            each.name.text(),
+            depth_in(Time::whole(each.delay.into()), unit),
+            each.from.text(),
+            each.to.text()
+        );
+        add(text, &each.why, places(&[Item::BoxName(i)]), None);
+    }
+    for (i, each) in assumptions.carry_cells.iter().enumerate() {
+        let declared = under.netlist.declared();
+        let cells = declared.map_or(0, |declared| declared.carry_cells_of(i)) as u64;
+        add(carry_cell_words(each), &each.why, cells, None);
+    }
     records
+}
+
+/// A carry cell and its delays, a few of them when they are many.
+fn carry_cell_words(each: &CarryCell) -> String {
+    let pair = |pair: &PinPair| {
+        let (from, to) = (pair.from.text(), pair.to.text());
+        format!("{from} to {to} in {}", pair.delay)
+    };
+    let shown = each.delays.iter().take(PAIRS).map(pair);
+    let mut words: Vec<String> = shown.collect();
+    if let Some(more @ 1..) = each.delays.len().checked_sub(PAIRS) {
+        words.push(counted(more as u64, "more pair", "more pairs"));
+    }
+    format!("{} is a carry cell: {}", each.cell.text(), listed(&words))
+}
+
+/// The share of one cycle, in ticks, rounded up.
+pub fn per_cycle(longest: i32, cycles: u32) -> i32 {
+    let share = longest.max(0).unsigned_abs().div_ceil(cycles);
+    i32::try_from(share).unwrap_or(i32::MAX)
 }
 
 fn between(from: Option<&Pattern>, to: Option<&Pattern>) -> String {

@@ -11,7 +11,7 @@ use super::record::{BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, P
 use crate::chain::{BuiltAs, CarryForm, Chain, Kind};
 use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
 use crate::plan::ChainPlan;
-use crate::timing::Timing;
+use crate::timing::{Time, Timing};
 use rustc_hash::{FxHashMap, FxHashSet};
 use sha2::{Digest, Sha256};
 use std::cmp::Reverse;
@@ -140,9 +140,11 @@ impl<'a> Sources<'a> {
         let netlist = self.netlist;
         let name = |signal: Signal| netlist.signal_name(signal);
         let depth = ChainDepth {
-            arrives: i64::from(plan.arrives),
-            leaves: i64::from(plan.leaves),
-            carries: plan.carries.iter().map(|at| at.map(i64::from)).collect(),
+            arrives: self.timing.time(plan.arrives),
+            leaves: self.timing.time(plan.leaves),
+            carries: (plan.carries.iter())
+                .map(|at| at.map(|at| self.timing.time(at)))
+                .collect(),
             exercised: None,
         };
         let own: FxHashSet<_> = self.cones.gates[index].iter().copied().collect();
@@ -177,9 +179,9 @@ impl<'a> Sources<'a> {
             place: self.place(chain),
             depth,
             on_longest_path: self.on_longest_path(chain),
-            slack: plan.slack.map(|slack| i64::from(slack.ticks)),
-            not_planned: rebuilds::not_planned(plan),
-            proposals: rebuilds::proposals(netlist, plan),
+            slack: plan.slack.map(|slack| self.timing.time(slack.ticks)),
+            not_planned: rebuilds::not_planned(self.timing, plan),
+            proposals: rebuilds::proposals(netlist, self.timing, plan),
         }
     }
 
@@ -217,6 +219,11 @@ impl<'a> Sources<'a> {
                 Some("ripple".to_owned()),
                 "every carry is made from the carry just below it",
             ),
+            BuiltAs::CarryCell => (
+                "carry-cell",
+                None,
+                "its carries run inside cells declared carry cells, with their declared delays",
+            ),
             BuiltAs::Mixed => (
                 "mixed",
                 None,
@@ -229,7 +236,7 @@ impl<'a> Sources<'a> {
             name: name.to_owned(),
             nearest,
             group: None,
-            levels: Some((depth.leaves - depth.arrives).max(0)),
+            levels: Some((depth.leaves - depth.arrives).max(Time::ZERO)),
             largest_fan_out: readers.max().map(u64::from),
             detail: detail.to_owned(),
         }

@@ -4,7 +4,7 @@
 //! Each rule lists its first few places and counts the rest, so that a netlist
 //! full of one fault still leaves room for the others. Worst first.
 
-use super::assumed::late_ports;
+use super::assumed::{late_ports, per_cycle};
 use super::findings::{self, MANY_READERS, RULES, Rule, WIDE_GATE};
 use super::record::{ChainRecord, Finding, UnprovenRecord};
 use super::verdict::cut_on;
@@ -162,9 +162,9 @@ impl<'a> Findings<'a> {
         }
     }
 
-    /// Gates with many inputs and nets with many readers, the worst first.
-    pub fn add_crowds(&mut self) {
-        let netlist = self.netlist;
+    /// Gates with many inputs and nets with many readers of the netlist as read, the
+    /// worst first.
+    pub fn add_crowds(&mut self, netlist: &Netlist) {
         let mut wide: Vec<_> = netlist
             .gates()
             .filter(|&gate| netlist.fan_ins(gate).len() as u64 > WIDE_GATE)
@@ -267,22 +267,21 @@ impl<'a> Findings<'a> {
             let message = format!(
                 "{} is ready at {}, and must be at {}: {} over",
                 self.netlist.output_name(output),
-                grouped(port.at),
-                grouped(port.required),
-                depth_in((port.at - port.required) as i64, unit)
+                port.at,
+                port.required,
+                depth_in(port.at - port.required, unit)
             );
             self.add("too-deep", Some(output.signal.net), output.line, message);
         }
         self.left_out += late.len().saturating_sub(PLACES) as u64;
         for relaxed in &timing.relaxed {
-            let whole = relaxed.timing.longest.max(0).unsigned_abs();
-            let each = whole.div_ceil(relaxed.cycles);
-            if i64::from(each) > i64::from(timing.longest()) {
+            let each = per_cycle(relaxed.timing.longest, relaxed.cycles);
+            if each > timing.longest() {
                 let message = format!(
                     "paths that may take {} cycles need {} a cycle, more than the longest path \
                      of one",
                     relaxed.cycles,
-                    depth_in(i64::from(each), unit)
+                    depth_in(timing.time(each), unit)
                 );
                 self.add("too-deep", None, 0, message);
             }

@@ -32,7 +32,7 @@ pub fn arrivals(
     carried: &Carried,
 ) -> Vec<i32> {
     let exclusive_or = if netlist.has_inverted_edges() { 2 } else { 1 };
-    let mut by_net = start_times(netlist, topology, Some(group));
+    let mut by_net = start_times(netlist, topology, delays.model(), Some(group));
     let mut known = FixedBitSet::with_capacity(netlist.net_count());
     for net in netlist.nets() {
         if topology.is_cut(net) || !matches!(netlist.driver(net), Driver::Gate(_)) {

@@ -9,7 +9,7 @@ use super::record::{
 };
 use crate::netlist::{NetId, Netlist, Topology, histogram};
 use crate::timing::{
-    DelayModel, End, EndClass, KindTiming, NEVER, PathKind, PathStep, StartClass, Timing,
+    DelayModel, End, EndClass, KindTiming, NEVER, PathKind, PathStep, StartClass, Time, Timing,
     end_arrival, ends, longest_free_buffers, start_group, start_time,
 };
 use std::collections::BTreeMap;
@@ -71,25 +71,29 @@ pub fn depth(
     longest: Option<(&KindTiming, &[PathStep])>,
     chains: &ChainMap<'_>,
 ) -> Depth {
-    let mut bars: BTreeMap<i64, u64> = BTreeMap::new();
+    let mut bars: BTreeMap<Time, u64> = BTreeMap::new();
     for end in ends(netlist, topology) {
         let at = timing.end_time(netlist, end);
         *bars
-            .entry(if at == NEVER { 0 } else { i64::from(at) })
+            .entry(if at == NEVER {
+                Time::ZERO
+            } else {
+                timing.time(at)
+            })
             .or_insert(0) += 1;
     }
     let bar = |(depth, outputs)| DepthBar { depth, outputs };
     let (longest_path, longest_path_left_out) = match longest {
-        Some((kind, path)) => path_record(netlist, topology, kind, path, chains),
+        Some((kind, path)) => path_record(netlist, topology, timing, kind, path, chains),
         None => (Vec::new(), 0),
     };
     Depth {
-        longest: i64::from(timing.longest()),
+        longest: timing.time(timing.longest()),
         longest_without_assumptions: None,
         longest_through_transparent: None,
         unit: model.unit_word().to_owned(),
         longest_free_buffers: match model {
-            DelayModel::Unit => Some(i64::from(longest_free_buffers(netlist, topology))),
+            DelayModel::Unit => Some(model.time(longest_free_buffers(netlist, topology))),
             DelayModel::Pairs => None,
         },
         histogram: bars.into_iter().map(bar).collect(),
@@ -102,6 +106,7 @@ pub fn depth(
 fn path_record(
     netlist: &Netlist,
     topology: &Topology,
+    timing: &Timing,
     kind: &KindTiming,
     path: &[PathStep],
     chains: &ChainMap<'_>,
@@ -115,15 +120,16 @@ fn path_record(
     };
     let steps = front.iter().chain(back);
     let mut record: Vec<StepRecord> = steps
-        .map(|step| step_record(netlist, topology, step, chains))
+        .map(|step| step_record(netlist, topology, timing, step, chains))
         .collect();
-    record.extend(end_record(netlist, kind));
+    record.extend(end_record(netlist, timing, kind));
     (record, left_out as u64)
 }
 
 fn step_record(
     netlist: &Netlist,
     topology: &Topology,
+    timing: &Timing,
     step: &PathStep,
     chains: &ChainMap<'_>,
 ) -> StepRecord {
@@ -147,14 +153,14 @@ fn step_record(
         },
         line: (line > 0).then_some(u64::from(line)),
         fan_in: gate.map(|_| fan_in as u64),
-        arrival: i64::from(arrival),
+        arrival: timing.time(arrival),
         chain: chain.map(|chain| chains.ids[chain as usize].clone()),
         bit: member.map(|member| u64::from(member.position)),
     }
 }
 
 /// The end of a path, where it has a name of its own.
-fn end_record(netlist: &Netlist, kind: &KindTiming) -> Option<StepRecord> {
+fn end_record(netlist: &Netlist, timing: &Timing, kind: &KindTiming) -> Option<StepRecord> {
     let (gate, line) = match kind.end {
         End::Output(i) => {
             let output = &netlist.outputs()[i as usize];
@@ -171,7 +177,7 @@ fn end_record(netlist: &Netlist, kind: &KindTiming) -> Option<StepRecord> {
         gate: gate.to_owned(),
         line: (line > 0).then_some(u64::from(line)),
         fan_in: None,
-        arrival: i64::from(kind.longest),
+        arrival: timing.time(kind.longest),
         chain: None,
         bit: None,
     })
@@ -186,7 +192,8 @@ fn ports(netlist: &Netlist, topology: &Topology, timing: &Timing) -> Vec<PortDep
         });
         let tail = tails.map(|(_, by_net)| by_net[net.index()]).max();
         let tail = tail.filter(|&tail| tail != NEVER)?;
-        Some(i64::from(start_time(netlist, net) + tail))
+        let start = start_time(netlist, timing.delays.model(), net);
+        Some(timing.time(start + tail))
     };
     // The longest path to an output from a start of one class.
     let to = |output: usize, class: StartClass| {
@@ -198,7 +205,7 @@ fn ports(netlist: &Netlist, topology: &Topology, timing: &Timing) -> Vec<PortDep
         let at = starts
             .map(|(_, by_net)| end_arrival(netlist, &timing.delays, by_net, end))
             .max();
-        at.filter(|&at| at != NEVER).map(i64::from)
+        at.filter(|&at| at != NEVER).map(|at| timing.time(at))
     };
     let inputs = netlist.inputs();
     let names: Vec<String> = inputs.iter().map(|&n| netlist.net_name(n)).collect();

@@ -18,28 +18,29 @@ use crate::timing::{DelayModel, Timing};
 const CHAINS_UNDER_OTHER_MODELS: usize = 16;
 
 /// Why a chain was not planned.
-pub fn not_planned(plan: &ChainPlan) -> Option<NotPlanned> {
+pub fn not_planned(timing: &Timing, plan: &ChainPlan) -> Option<NotPlanned> {
     plan.not_planned.as_ref().map(|reason| NotPlanned {
         why: reason.why.clone(),
-        slack: reason.slack.map(i64::from),
+        slack: reason.slack.map(|slack| timing.time(slack)),
     })
 }
 
 /// The proposals of one chain.
-pub fn proposals(netlist: &Netlist, plan: &ChainPlan) -> Vec<ProposalRecord> {
+pub fn proposals(netlist: &Netlist, timing: &Timing, plan: &ChainPlan) -> Vec<ProposalRecord> {
     let chosen = |index| plan.recommended == Some(index);
     plan.proposals
         .iter()
         .enumerate()
         .map(|(index, proposal)| {
             let reason = chosen(index).then(|| plan.reason.clone());
-            proposal_record(netlist, index, proposal, reason)
+            proposal_record(netlist, timing, index, proposal, reason)
         })
         .collect()
 }
 
 fn proposal_record(
     netlist: &Netlist,
+    timing: &Timing,
     index: usize,
     proposal: &Proposal,
     reason: Option<String>,
@@ -48,8 +49,8 @@ fn proposal_record(
     let fitted = &proposal.fitted;
     let recommended = reason.is_some();
     let change = |before: i32, after: i32| Change {
-        before: before.into(),
-        after: after.into(),
+        before: timing.time(before),
+        after: timing.time(after),
     };
     let takes_over = proposal.takes_over.map(|path| {
         let way = if path.through_chain {
@@ -60,7 +61,10 @@ fn proposal_record(
         let end = path.end.describe(netlist);
         format!("{} to {end}, {way}", path.kind)
     });
-    let arrivals = proposal.carries.iter().map(|at| at.map(i64::from));
+    let arrivals = proposal
+        .carries
+        .iter()
+        .map(|at| at.map(|at| timing.time(at)));
     ProposalRecord {
         id: format!("P{}", index + 1),
         scheme: fitted.scheme.to_owned(),
@@ -82,7 +86,7 @@ fn proposal_record(
         largest_fan_in: estimate.largest_fan_in as u64,
         largest_fan_out: estimate.largest_fan_out as u64,
         wire_tracks: None,
-        above_bound: Some(proposal.above_bound.into()),
+        above_bound: Some(timing.time(proposal.above_bound)),
         carries: recommended.then(|| arrivals.collect()),
         network: recommended.then(|| spans(&fitted.network)),
     }
@@ -111,7 +115,7 @@ fn spans(network: &CarryNetwork) -> Vec<String> {
 pub fn recommended_set(
     records: &[ChainRecord],
     plans: &[ChainPlan],
-    longest: i64,
+    timing: &Timing,
     unit: &str,
 ) -> RecommendedSet {
     let chosen: Vec<(&ChainRecord, &ProposalRecord, Option<KindChange>)> = records
@@ -132,8 +136,8 @@ pub fn recommended_set(
         return RecommendedSet {
             proposals: Vec::new(),
             block_depth: Change {
-                before: longest,
-                after: longest,
+                before: timing.time(timing.longest()),
+                after: timing.time(timing.longest()),
             },
             sentence: no_set_sentence(records, plans),
         };
@@ -145,8 +149,8 @@ pub fn recommended_set(
         Some(kind) if after >= before && kind.after < kind.before => format!(
             "the longest {} path goes from {} to {}, while the block stays as deep as it is",
             kind.kind,
-            kind.before,
-            depth_in(kind.after.into(), unit)
+            timing.time(kind.before),
+            depth_in(timing.time(kind.after), unit)
         ),
         _ => format!("the block goes from {before} to {}", depth_in(after, unit)),
     };

@@ -7,17 +7,16 @@
 //! unknown, and says what hid it and what holds for the rest.
 
 use super::assumed::Without;
-use super::carried::Cones;
 use super::free_carry;
 use super::measures::ChainMap;
 use super::rebuilds::scheme_phrase;
 use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
 use super::sight::Sight;
-use super::words::{counted, depth_in, grouped, grouped_signed, listed};
+use super::words::{counted, depth_in, grouped, listed};
 use crate::chain::Chain;
 use crate::netlist::{NetId, Netlist, Topology};
 use crate::timing::{
-    KindTiming, NEVER, PathKind, PathStep, Timing, end_arrival, end_net, grouped_ends,
+    KindTiming, NEVER, PathKind, PathStep, Time, Timing, end_arrival, end_net, grouped_ends,
 };
 use std::cmp::Reverse;
 use std::collections::BTreeMap;
@@ -54,11 +53,11 @@ impl Evidence<'_> {
     /// The verdict.
     pub fn verdict(&self) -> Verdict {
         let by_path_kind = self.kinds();
-        let longest = i64::from(self.timing.longest());
+        let longest = self.timing.time(self.timing.longest());
         let free = by_path_kind
             .iter()
             .map(|kind| kind.depth_if_carry_were_free);
-        let free = free.max().unwrap_or(0);
+        let free = free.max().unwrap_or(Time::ZERO);
         let carry = free < longest;
         let hidden = self.sight.hidden(carry);
         let (chain, seen) = if carry {
@@ -91,7 +90,7 @@ impl Evidence<'_> {
         }
     }
 
-    fn without_sentence(&self, without: &Without, longest: i64) -> String {
+    fn without_sentence(&self, without: &Without, longest: Time) -> String {
         if without.longest == longest {
             return " This holds under the assumptions listed; without them the longest path is \
                     as long."
@@ -130,11 +129,11 @@ impl Evidence<'_> {
             .iter()
             .map(|of_class| {
                 let path = timing.path_of(netlist, topology, of_class);
-                let levels = levels_by_chain(&path, self.map.cones);
-                let longest = i64::from(of_class.longest);
+                let levels = self.levels_by_chain(&path);
+                let longest = timing.time(of_class.longest);
                 let free = free
                     .get(&of_class.kind.classes())
-                    .map_or(0, |&at| i64::from(at));
+                    .map_or(Time::ZERO, |&at| timing.time(at));
                 let main = levels
                     .iter()
                     .max_by_key(|&(&chain, &n)| (n, Reverse(chain)));
@@ -152,20 +151,20 @@ impl Evidence<'_> {
                     longest_without_assumptions: self
                         .without
                         .map(|without| without.of_kind(of_class.kind)),
-                    levels_in_carries: levels.values().sum(),
+                    levels_in_carries: levels.values().copied().sum(),
                     depth_if_carry_were_free: free,
                     ends_at_longest: of_class.ends_at_longest as u64,
-                    next_below: of_class.next_below.map(i64::from),
+                    next_below: of_class.next_below.map(|at| timing.time(at)),
                 }
             })
             .collect()
     }
 
-    fn carry_sentence(&self, longest: i64, free: i64) -> (Option<String>, String) {
+    fn carry_sentence(&self, longest: Time, free: Time) -> (Option<String>, String) {
         let Some((kind, path)) = self.longest else {
             return (None, String::new());
         };
-        let levels = levels_by_chain(path, self.map.cones);
+        let levels = self.levels_by_chain(path);
         let Some((&main, &own)) = levels
             .iter()
             .max_by_key(|&(&chain, &n)| (n, Reverse(chain)))
@@ -178,11 +177,10 @@ impl Evidence<'_> {
         };
         let record = &self.records[main as usize];
         let others = levels.len() - 1;
-        let rest: i64 = levels.values().sum::<i64>() - own;
+        let rest = levels.values().copied().sum::<Time>() - own;
         let share = if own == longest {
             format!("all {} of the longest path", depth_in(longest, self.unit))
         } else {
-            let own = grouped_signed(own);
             format!(
                 "{own} of the {} of the longest path",
                 depth_in(longest, self.unit)
@@ -190,11 +188,10 @@ impl Evidence<'_> {
         };
         let together = match others {
             0 => String::new(),
-            1 => format!(", another chain {} of them", grouped_signed(rest)),
+            1 => format!(", another chain {rest} of them"),
             n => format!(
-                ", {} {} of them",
+                ", {} {rest} of them",
                 counted(n as u64, "more chain", "more chains"),
-                grouped_signed(rest)
             ),
         };
         let text = format!(
@@ -206,7 +203,7 @@ impl Evidence<'_> {
         (Some(record.id.clone()), text)
     }
 
-    fn rebuild_clause(&self, longest: i64) -> String {
+    fn rebuild_clause(&self, longest: Time) -> String {
         let RecommendedSet {
             proposals,
             block_depth,
@@ -248,13 +245,13 @@ impl Evidence<'_> {
             "with {} the block is {} deep instead of {}, for {cost}, no new gate wider than {}",
             listed(&how),
             depth_in(block_depth.after, self.unit),
-            grouped_signed(longest),
+            longest,
             counted(widest, "input", "inputs"),
         )
     }
 
-    fn elsewhere_sentence(&self, longest: i64) -> String {
-        let Some((kind, path)) = self.longest.filter(|_| longest > 0) else {
+    fn elsewhere_sentence(&self, longest: Time) -> String {
+        let Some((kind, path)) = self.longest.filter(|_| longest > Time::ZERO) else {
             return "No proven carry chain limits this block: no path passes a gate that takes \
                     time."
                 .to_owned();
@@ -263,14 +260,14 @@ impl Evidence<'_> {
         let (from, to) = (from.unwrap_or_default(), kind.end.describe(self.netlist));
         let deep = depth_in(longest, self.unit);
         let kind = kind.kind;
-        let through: i64 = levels_by_chain(path, self.map.cones).values().sum();
+        let through: Time = self.levels_by_chain(path).values().copied().sum();
         if self.records.is_empty() {
             format!(
                 "No proven carry chain limits this block: none of {} or more was found; the \
                  longest path ({kind}, {deep}) runs from {from} to {to}.",
                 counted(self.min_bits as u64, "bit", "bits")
             )
-        } else if through == 0 {
+        } else if through == Time::ZERO {
             format!(
                 "No proven carry chain limits this block: the longest path ({kind}, {deep}, from \
                  {from} to {to}) runs beside every one."
@@ -280,8 +277,31 @@ impl Evidence<'_> {
                 "No proven carry chain limits this block: the longest path ({kind}, {deep}, from \
                  {from} to {to}) spends {} in carries, but with all carries free the block would \
                  be as deep.",
-                counted(through.unsigned_abs(), "level", "levels")
+                self.levels(through)
             )
+        }
+    }
+
+    /// How much of a path lies in each chain's gates.
+    fn levels_by_chain(&self, path: &[PathStep]) -> BTreeMap<u32, Time> {
+        let mut levels = BTreeMap::new();
+        for pair in path.windows(2) {
+            let [before, step] = pair else { continue };
+            if let Some(chain) = step.gate.and_then(|gate| self.map.cones.chain_of(gate)) {
+                let own = self.timing.time(step.arrival - before.arrival);
+                let sum = levels.entry(chain).or_insert(Time::ZERO);
+                *sum = *sum + own;
+            }
+        }
+        levels.retain(|_, n| *n > Time::ZERO);
+        levels
+    }
+
+    /// Levels where gates are counted, else the unit of the model.
+    fn levels(&self, depth: Time) -> String {
+        match self.timing.delays.model().ticks_per_unit() {
+            1 => depth_in(depth, "levels"),
+            _ => depth_in(depth, self.unit),
         }
     }
 }
@@ -304,19 +324,6 @@ pub fn chain_phrase(record: &ChainRecord) -> String {
         record.id,
         record.kind
     )
-}
-
-/// Levels of a path that lie in each chain's gates.
-fn levels_by_chain(path: &[PathStep], cones: &Cones) -> BTreeMap<u32, i64> {
-    let mut levels = BTreeMap::new();
-    for pair in path.windows(2) {
-        let [before, step] = pair else { continue };
-        if let Some(chain) = step.gate.and_then(|gate| cones.chain_of(gate)) {
-            *levels.entry(chain).or_insert(0) += i64::from(step.arrival - before.arrival);
-        }
-    }
-    levels.retain(|_, n| *n > 0);
-    levels
 }
 
 /// The nets a path may be cut at: its start, or the gate its end names.

@@ -3,6 +3,8 @@
 //! Every count in a record's sentences and in a report passes here, so that a
 //! reader never meets `1 gates` or a million without its commas.
 
+use crate::timing::Time;
+
 /// A number with a comma between thousands.
 pub fn grouped(number: u64) -> String {
     let digits = number.to_string();
@@ -32,13 +34,13 @@ pub fn counted(number: u64, one: &str, many: &str) -> String {
 }
 
 /// A depth in the unit of the delay model, whose name is in the plural.
-pub fn depth_in(depth: i64, unit: &str) -> String {
-    let unit = if depth == 1 {
+pub fn depth_in(depth: Time, unit: &str) -> String {
+    let unit = if depth == Time::whole(1) {
         unit.trim_end_matches('s')
     } else {
         unit
     };
-    format!("{} {unit}", grouped_signed(depth))
+    format!("{depth} {unit}")
 }
 
 /// `a`, `a and b`, `a, b and c`.

@@ -101,7 +101,7 @@ fn recommend(ground: &Ground<'_>, tried: &[Proposal], kind: PathKind) -> (Option
         .filter(|&i| !tried[i].kind.chain_is_on_it())
         .collect();
     if let Some(i) = cheapest(&off) {
-        let after = tried[i].kind.after;
+        let after = ground.settings.model.time(tried[i].kind.after);
         let reason = format!(
             "the cheapest that takes carry off the longest {kind} path, which is {after} {unit} then"
         );
@@ -122,7 +122,8 @@ fn recommend(ground: &Ground<'_>, tried: &[Proposal], kind: PathKind) -> (Option
         .collect();
     let chosen = cheapest(&near);
     let reason = chosen.map_or_else(String::new, |i| {
-        let after = tried[i].kind.after;
+        let model = ground.settings.model;
+        let (after, own) = (model.time(tried[i].kind.after), model.time(own));
         if after == own {
             format!("the cheapest at the best reachable {kind} depth, {own} {unit}")
         } else {
@@ -140,6 +141,7 @@ fn nothing_gained(ground: &Ground<'_>, tried: &[Proposal], kind: PathKind) -> St
     let shorter = tried
         .iter()
         .any(|proposal| proposal.kind.through < Some(longest));
+    let longest = ground.timing.time(longest);
     if shorter {
         format!("another {kind} path of {longest} {unit} stays, whatever this chain is built as")
     } else {

@@ -24,7 +24,7 @@ pub fn depth_with_free_carry(ground: &Ground<'_>, chains: &[Chain]) -> BTreeMap<
     }
     let mut longest = BTreeMap::new();
     for (start, _) in ground.timing.by_start() {
-        let mut times = start_times(netlist, topology, Some(start));
+        let mut times = start_times(netlist, topology, delays.model(), Some(start));
         for &gate in &topology.order {
             let output = netlist.gate_output(gate);
             if !topology.is_cut(output) && !free.contains(output.index()) {

@@ -123,9 +123,10 @@ fn plan_from(ground: &Ground<'_>, chain: &Chain, mut plan: ChainPlan) -> ChainPl
         .map_or(0, |kind| kind.longest);
     let margin = ground.settings.margin_at(longest);
     if slack.ticks > margin {
-        let (ticks, kind) = (slack.ticks, slack.kind);
+        let (spare, kind) = (ground.timing.time(slack.ticks), slack.kind);
+        let margin = ground.timing.time(margin);
         let why = format!(
-            "{ticks} to spare against the longest {kind} path, more than the margin of {margin}"
+            "{spare} to spare against the longest {kind} path, more than the margin of {margin}"
         );
         return refuse(plan, why);
     }

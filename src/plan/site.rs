@@ -248,10 +248,7 @@ impl<'a> Site<'a> {
         let mut times: FxHashMap<NetId, i32> = FxHashMap::default();
         let mut cut_ends = Vec::new();
         for &gate in &self.region {
-            let delays = ground
-                .timing
-                .delays
-                .of_function(ground.netlist.function_id(gate));
+            let delays = ground.timing.delays.of_gate(ground.netlist, gate);
             let mut latest = NEVER;
             for (&net, delay) in ground.netlist.fan_ins(gate).iter().zip(delays) {
                 let at = if self.replaced.contains_key(&net) {
@@ -316,10 +313,7 @@ impl<'a> Site<'a> {
                     continue;
                 };
                 tails.insert(output, tail);
-                let delays = ground
-                    .timing
-                    .delays
-                    .of_function(ground.netlist.function_id(gate));
+                let delays = ground.timing.delays.of_gate(ground.netlist, gate);
                 for (&net, delay) in ground.netlist.fan_ins(gate).iter().zip(delays) {
                     let inside = self.replaced.contains_key(&net) && !barred(net)
                         || ground
@@ -355,10 +349,7 @@ impl<'a> Site<'a> {
                 } else {
                     tails.get(&output).copied()
                 };
-                let delays = ground
-                    .timing
-                    .delays
-                    .of_function(ground.netlist.function_id(gate));
+                let delays = ground.timing.delays.of_gate(ground.netlist, gate);
                 let pins = ground.netlist.fan_ins(gate).iter().zip(delays);
                 let fits = self.region_set.contains(&gate)
                     && pins.into_iter().any(|(&pin, delay)| {

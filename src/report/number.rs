@@ -7,6 +7,7 @@
 pub use crate::audit::words::{counted, depth_in, grouped, grouped_signed, listed};
 
 use crate::audit::record::Change;
+use crate::timing::Time;
 
 /// A mean, to two places.
 pub fn mean(value: f64) -> String {
@@ -17,9 +18,9 @@ pub fn mean(value: f64) -> String {
 pub fn change(change: Change) -> String {
     let Change { before, after } = change;
     if before == after {
-        grouped_signed(before)
+        before.to_string()
     } else {
-        format!("{} → {}", grouped_signed(before), grouped_signed(after))
+        format!("{before} → {after}")
     }
 }
 
@@ -53,6 +54,48 @@ pub fn lines(first: u64, last: u64) -> String {
     } else {
         format!("{first}–{last}")
     }
+}
+
+/// `7`, or `7–9`, of times.
+pub fn span(first: Time, last: Time) -> String {
+    if first == last {
+        first.to_string()
+    } else {
+        format!("{first}–{last}")
+    }
+}
+
+/// As [`equal_bars`] over times. Where they are not all whole a bar holds what
+/// lies from its first figure up to but not at its second.
+pub fn time_bars(values: &[(Time, u64)], bars: usize) -> Vec<(String, u64)> {
+    let whole: Option<Vec<(i64, u64)>> = values
+        .iter()
+        .map(|&(time, count)| Some((time.as_whole()?, count)))
+        .collect();
+    if let Some(whole) = whole {
+        return equal_bars(&whole, bars);
+    }
+    let (Some(&(first, _)), Some(&(last, _))) = (values.first(), values.last()) else {
+        return Vec::new();
+    };
+    let room = (last - first).in_thousandths() / bars.max(1) as i64 + 1;
+    // The least of 1, 2, 5, 10, … that leaves no more bars than there is room for.
+    let steps = (0..16).flat_map(|power| [1, 2, 5].map(|digit| digit * 10_i64.pow(power)));
+    let width = steps.into_iter().find(|&step| step >= room);
+    let width = width.unwrap_or(room);
+    let mut rows: Vec<(i64, u64)> = Vec::new();
+    for &(time, count) in values {
+        let low = time.in_thousandths().div_euclid(width) * width;
+        match rows.last_mut() {
+            Some((known, total)) if *known == low => *total += count,
+            _ => rows.push((low, count)),
+        }
+    }
+    let told = |(low, count)| {
+        let edges = (Time::thousandths(low), Time::thousandths(low + width));
+        (span(edges.0, edges.1), count)
+    };
+    rows.into_iter().map(told).collect()
 }
 
 /// At most `bars` bars of equal width over the values, each `(values, count)`;

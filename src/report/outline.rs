@@ -11,6 +11,7 @@ use super::number::{counted, depth_in, grouped};
 use super::sections;
 use super::text::clipped;
 use crate::audit::record::{Audit, DelayModelFacts, NetlistFacts, Seen, Settings, Tool, Verdict};
+use crate::timing::Time;
 
 /// How much of a long list and a long name is shown.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -138,7 +139,7 @@ fn without_blanks(mut section: Section) -> Section {
     section
 }
 
-fn read(netlist: &NetlistFacts, longest: i64, unit: &str, caps: Caps) -> String {
+fn read(netlist: &NetlistFacts, longest: Time, unit: &str, caps: Caps) -> String {
     let mut parts = vec![
         counted(netlist.inputs, "input", "inputs"),
         counted(netlist.outputs, "output", "outputs"),

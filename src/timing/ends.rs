@@ -7,6 +7,7 @@
 //! [`crate::netlist::Asserted`]), a class falls into groups, each timed on its
 //! own; without assumptions every class is one group.
 
+use super::model::DelayModel;
 use crate::netlist::{BoxId, Driver, EndPoint, GateId, NetId, Netlist, RegisterId, Topology};
 
 /// What a path starts from.
@@ -138,6 +139,11 @@ impl End {
     /// The group the end belongs to; `None` when no path to it counts.
     pub fn group(self, netlist: &Netlist) -> Option<EndGroup> {
         let class = self.class();
+        if let (Self::BoxInput(id, pin), Some(declared)) = (self, netlist.declared())
+            && declared.passes(id, pin)
+        {
+            return None;
+        }
         let set = match netlist.asserted() {
             None => 0,
             Some(asserted) => asserted.end_set(match self {
@@ -232,7 +238,7 @@ fn all_ends<'a>(netlist: &'a Netlist, topology: &'a Topology) -> impl Iterator<I
 /// The group of starts a net belongs to, if it is a start from which paths count.
 #[inline]
 pub fn start_group(netlist: &Netlist, topology: &Topology, net: NetId) -> Option<StartGroup> {
-    let class = start_class(netlist, topology, net)?;
+    let class = start_class(netlist, topology, net).filter(|_| !netlist.is_barred(net))?;
     let set = match netlist.asserted() {
         None => 0,
         Some(asserted) => asserted.start_set(net)?,
@@ -240,12 +246,13 @@ pub fn start_group(netlist: &Netlist, topology: &Topology, net: NetId) -> Option
     Some(StartGroup { class, set })
 }
 
-/// When a start is ready, in whole units of the delay model.
+/// When a start is ready, in ticks of the delay model.
 #[inline]
-pub fn start_time(netlist: &Netlist, net: NetId) -> i32 {
-    netlist
-        .asserted()
-        .map_or(0, |asserted| asserted.arrival(net))
+pub fn start_time(netlist: &Netlist, model: DelayModel, net: NetId) -> i32 {
+    netlist.asserted().map_or(0, |asserted| {
+        let units = asserted.arrival(net);
+        units.saturating_mul(model.ticks_per_unit())
+    })
 }
 
 /// What kind of start a net is, if it is one.

@@ -15,6 +15,7 @@ mod model;
 mod passes;
 mod path;
 mod report;
+mod time;
 
 pub use ends::{
     End, EndClass, EndGroup, PathKind, StartClass, StartGroup, end_net, ends, grouped_ends,
@@ -24,3 +25,4 @@ pub use model::{DelayModel, PinDelays};
 pub use passes::{Arrivals, NEVER, Tails, end_arrival, gate_arrival, start_times};
 pub use path::{PathStep, longest_path};
 pub use report::{KindTiming, Slack, Timing, depth_histogram, longest_free_buffers};
+pub use time::Time;

@@ -10,7 +10,8 @@
 //! form, the published way to compare wide with narrow gates.
 
 use super::factored;
-use crate::netlist::{Function, FunctionId, Netlist, Shape};
+use super::time::Time;
+use crate::netlist::{Function, FunctionId, GateId, Netlist, Shape};
 
 /// How gates are priced.
 #[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
@@ -50,6 +51,11 @@ impl DelayModel {
     /// Ticks in one unit: both models here count whole units.
     pub fn ticks_per_unit(self) -> i32 {
         1
+    }
+
+    /// Ticks as a time in the unit of the model.
+    pub fn time(self, ticks: i32) -> Time {
+        Time::of_ticks(ticks, self.ticks_per_unit())
     }
 
     /// The delay from each pin of `function` to its output, in ticks.
@@ -100,7 +106,11 @@ impl PinDelays {
     fn priced(netlist: &Netlist, model: DelayModel, price: impl Fn(&Function) -> Vec<i32>) -> Self {
         let (mut starts, mut ticks) = (vec![0], Vec::new());
         for id in 0..netlist.function_count() {
-            ticks.extend(price(netlist.function_of(FunctionId::new(id))));
+            let id = FunctionId::new(id);
+            match netlist.declared_delays(id) {
+                Some(own) => ticks.extend(own.iter().map(|own| own * model.ticks_per_unit())),
+                None => ticks.extend(price(netlist.function_of(id))),
+            }
             starts.push(ticks.len() as u32);
         }
         Self {
@@ -115,10 +125,10 @@ impl PinDelays {
         self.model
     }
 
-    /// The delays of one function, pin 0 first.
+    /// The delays of one gate, pin 0 first.
     #[inline]
-    pub fn of_function(&self, id: FunctionId) -> &[i32] {
-        let i = id.index();
+    pub fn of_gate(&self, netlist: &Netlist, gate: GateId) -> &[i32] {
+        let i = netlist.function_id(gate).index();
         &self.ticks[self.starts[i] as usize..self.starts[i + 1] as usize]
     }
 }

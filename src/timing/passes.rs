@@ -5,7 +5,7 @@
 //! in topological order (the longest-path recurrence on an acyclic graph).
 
 use super::ends::{End, EndGroup, StartGroup, end_net, grouped_ends, start_group, start_time};
-use super::model::PinDelays;
+use super::model::{DelayModel, PinDelays};
 use crate::netlist::{GateId, NetId, Netlist, Topology};
 
 /// The time of what no path reaches; below every real time.
@@ -30,7 +30,7 @@ impl Arrivals {
         delays: &PinDelays,
         group: Option<StartGroup>,
     ) -> Self {
-        let mut by_net = start_times(netlist, topology, group);
+        let mut by_net = start_times(netlist, topology, delays.model(), group);
         for &gate in &topology.order {
             let output = netlist.gate_output(gate);
             if !topology.is_cut(output) {
@@ -49,12 +49,17 @@ impl Arrivals {
 }
 
 /// When every start is ready, or those of one group; [`NEVER`] at all other nets.
-pub fn start_times(netlist: &Netlist, topology: &Topology, group: Option<StartGroup>) -> Vec<i32> {
+pub fn start_times(
+    netlist: &Netlist,
+    topology: &Topology,
+    model: DelayModel,
+    group: Option<StartGroup>,
+) -> Vec<i32> {
     let mut by_net = vec![NEVER; netlist.net_count()];
     for net in netlist.nets() {
         let own = start_group(netlist, topology, net);
         if own.is_some_and(|own| group.is_none_or(|only| only == own)) {
-            by_net[net.index()] = start_time(netlist, net);
+            by_net[net.index()] = start_time(netlist, model, net);
         }
     }
     by_net
@@ -67,7 +72,7 @@ pub fn gate_arrival(netlist: &Netlist, delays: &PinDelays, by_net: &[i32], gate:
     if netlist.is_barred(netlist.gate_output(gate)) {
         return latest;
     }
-    let ticks = delays.of_function(netlist.function_id(gate));
+    let ticks = delays.of_gate(netlist, gate);
     for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
         let at = by_net[net.index()];
         if at != NEVER {
@@ -118,7 +123,7 @@ impl Tails {
             if tail == NEVER || netlist.is_barred(output) {
                 continue;
             }
-            let ticks = delays.of_function(netlist.function_id(gate));
+            let ticks = delays.of_gate(netlist, gate);
             for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
                 let slot = &mut by_net[net.index()];
                 *slot = (*slot).max(tail + delay);

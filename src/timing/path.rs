@@ -85,7 +85,7 @@ fn latest_pin(
     gate: GateId,
     arrival: i32,
 ) -> Option<NetId> {
-    let ticks = delays.of_function(netlist.function_id(gate));
+    let ticks = delays.of_gate(netlist, gate);
     let pins = netlist.fan_ins(gate).iter().zip(ticks);
     pins.into_iter()
         .find(|(net, delay)| {

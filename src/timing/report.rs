@@ -8,6 +8,7 @@ use super::ends::{End, EndGroup, PathKind, StartGroup, end_net, grouped_ends, st
 use super::model::{DelayModel, PinDelays};
 use super::passes::{Arrivals, NEVER, Tails, end_arrival};
 use super::path::{PathStep, longest_path};
+use super::time::Time;
 use crate::netlist::{NetId, Netlist, Pairing, Topology};
 use std::collections::{BTreeMap, BTreeSet};
 
@@ -103,6 +104,11 @@ impl Timing {
         };
         timing.measure_kinds(netlist, topology);
         timing
+    }
+
+    /// Ticks as a time in the unit of the model.
+    pub fn time(&self, ticks: i32) -> Time {
+        self.delays.model().time(ticks)
     }
 
     /// The groups of starts that occur, each with its arrivals by net.

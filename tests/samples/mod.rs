@@ -6,6 +6,11 @@ use carrywise::audit::record::*;
 use carrywise::audit::{self, Options, Origin};
 use carrywise::format::{self, ReadOptions};
 use carrywise::source::Source;
+use carrywise::timing::Time;
+
+fn at(units: i64) -> Time {
+    Time::whole(units)
+}
 
 /// Text that would do harm unescaped, in Markdown, a terminal, YAML or JSON.
 #[allow(dead_code)]
@@ -45,7 +50,7 @@ pub fn tide_logger() -> Audit {
             name: "ripple".into(),
             nearest: Some("ripple".into()),
             group: None,
-            levels: Some(31),
+            levels: Some(at(31)),
             largest_fan_out: Some(3),
             detail: String::new(),
         },
@@ -56,13 +61,13 @@ pub fn tide_logger() -> Audit {
             line_last: Some(120),
         },
         depth: ChainDepth {
-            arrives: 1,
-            leaves: 32,
-            carries: (0..16).map(|bit| Some(2 + 2 * bit)).collect(),
+            arrives: at(1),
+            leaves: at(32),
+            carries: (0..16).map(|bit| Some(at(2 + 2 * bit))).collect(),
             exercised: None,
         },
         on_longest_path: true,
-        slack: Some(0),
+        slack: Some(at(0)),
         not_planned: None,
         proposals: vec![
             proposal("P1", "brent-kung", 12, 14, 92, false),
@@ -91,16 +96,16 @@ pub fn tide_logger() -> Audit {
             line_last: Some(144),
         },
         depth: ChainDepth {
-            arrives: 0,
-            leaves: 7,
-            carries: (0..8).map(Some).collect(),
+            arrives: at(0),
+            leaves: at(7),
+            carries: (0..8).map(|bit| Some(at(bit))).collect(),
             exercised: None,
         },
         on_longest_path: false,
-        slack: Some(25),
+        slack: Some(at(25)),
         not_planned: Some(NotPlanned {
             why: "25 gate delays to spare".into(),
-            slack: Some(25),
+            slack: Some(at(25)),
         }),
         proposals: vec![],
         ..total.clone()
@@ -110,7 +115,7 @@ pub fn tide_logger() -> Audit {
         gate: gate.into(),
         line,
         fan_in,
-        arrival,
+        arrival: at(arrival),
         chain: None,
         bit: None,
     };
@@ -183,35 +188,35 @@ pub fn tide_logger() -> Audit {
                     path_kind: "input→register".into(),
                     limit: Limit::Carry,
                     chain: Some("C1".into()),
-                    longest: 33,
+                    longest: at(33),
                     longest_without_assumptions: None,
-                    levels_in_carries: 31,
-                    depth_if_carry_were_free: 4,
+                    levels_in_carries: at(31),
+                    depth_if_carry_were_free: at(4),
                     ends_at_longest: 1,
-                    next_below: Some(31),
+                    next_below: Some(at(31)),
                 },
                 PathKindFacts {
                     path_kind: "register→output".into(),
                     limit: Limit::Elsewhere,
                     chain: None,
-                    longest: 6,
+                    longest: at(6),
                     longest_without_assumptions: None,
-                    levels_in_carries: 0,
-                    depth_if_carry_were_free: 6,
+                    levels_in_carries: at(0),
+                    depth_if_carry_were_free: at(6),
                     ends_at_longest: 18,
                     next_below: None,
                 },
             ],
         },
         depth: Depth {
-            longest: 33,
+            longest: at(33),
             longest_without_assumptions: None,
             longest_through_transparent: None,
             unit: "gate delays".into(),
-            longest_free_buffers: Some(33),
+            longest_free_buffers: Some(at(33)),
             histogram: (1..=33)
                 .map(|depth| DepthBar {
-                    depth,
+                    depth: at(depth),
                     outputs: 1 + (depth % 3) as u64,
                 })
                 .collect(),
@@ -219,9 +224,9 @@ pub fn tide_logger() -> Audit {
             longest_path_left_out: 0,
             ports: vec![PortDepth {
                 bus: "level[15:0]".into(),
-                deepest_in: Some(33),
+                deepest_in: Some(at(33)),
                 deepest_out: None,
-                deepest_through: Some(4),
+                deepest_through: Some(at(4)),
             }],
         },
         fan_in: FanIn {
@@ -260,8 +265,8 @@ pub fn tide_logger() -> Audit {
         recommended_set: RecommendedSet {
             proposals: vec!["C1/P2".into()],
             block_depth: Change {
-                before: 33,
-                after: 11,
+                before: at(33),
+                after: at(11),
             },
             sentence: "Rebuild C1 as sklansky (C1/P2): the block goes from 33 to 11 gate delays \
                        for 110 gates built and 48 removed."
@@ -316,12 +321,12 @@ fn proposal(
             vec![]
         },
         chain_depth: Change {
-            before: 31,
-            after: chain,
+            before: at(31),
+            after: at(chain),
         },
         block_depth: Change {
-            before: 33,
-            after: block,
+            before: at(33),
+            after: at(block),
         },
         takes_over: recommended.then(|| "level[3] to alarm, 11 gate delays".into()),
         gates_added: added,
@@ -330,7 +335,7 @@ fn proposal(
         largest_fan_in: 4,
         largest_fan_out: 9,
         wire_tracks: None,
-        above_bound: Some(2),
+        above_bound: Some(at(2)),
         carries: None,
         network: None,
     }

@@ -7,6 +7,7 @@
 //! bit up.
 
 use super::Wire;
+use crate::timing::Time;
 use serde::{Deserialize, Serialize};
 
 /// A proven chain.
@@ -59,7 +60,7 @@ pub struct ChainRecord {
     pub on_longest_path: bool,
     /// How much later its results could be without lengthening the longest
     /// path of their kind; null when no path leads through it.
-    pub slack: Option<i64>,
+    pub slack: Option<Time>,
     /// Why no rebuild was tried; null when some were.
     pub not_planned: Option<NotPlanned>,
     /// The rebuilds worth choosing between.
@@ -130,8 +131,8 @@ pub struct BuiltAsRecord {
     pub nearest: Option<String>,
     /// Group size.
     pub group: Option<u64>,
-    /// Levels from first operand to last result.
-    pub levels: Option<i64>,
+    /// From its latest operand to its last result, in the unit of the record.
+    pub levels: Option<Time>,
     /// Most readers of one net inside the chain.
     pub largest_fan_out: Option<u64>,
     /// A few words more.
@@ -153,11 +154,11 @@ pub struct Place {
 #[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct ChainDepth {
     /// Its latest operand bit, the carry-in included.
-    pub arrives: i64,
+    pub arrives: Time,
     /// Its latest sum or carry.
-    pub leaves: i64,
+    pub leaves: Time,
     /// The carry out of each bit; null where no net carries it.
-    pub carries: Vec<Option<i64>>,
+    pub carries: Vec<Option<Time>>,
     /// Whether the longest path through it can be exercised.
     pub exercised: Option<Exercised>,
 }
@@ -168,7 +169,7 @@ pub struct Exercised {
     /// `possible`, `impossible` or `undecided`.
     pub verdict: String,
     /// The longest depth that can be.
-    pub depth: Option<i64>,
+    pub depth: Option<Time>,
 }
 
 /// Why a chain was not planned.
@@ -177,16 +178,16 @@ pub struct NotPlanned {
     /// The reason.
     pub why: String,
     /// Its slack, where a path leads through it.
-    pub slack: Option<i64>,
+    pub slack: Option<Time>,
 }
 
 /// A figure without and with a proposal.
 #[derive(Clone, Copy, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct Change {
     /// As read.
-    pub before: i64,
+    pub before: Time,
     /// After.
-    pub after: i64,
+    pub after: Time,
 }
 
 /// A rebuild of one chain, made gate by gate on a scratch copy and measured.
@@ -230,11 +231,11 @@ pub struct ProposalRecord {
     pub largest_fan_out: u64,
     /// Wiring tracks, where published.
     pub wire_tracks: Option<u64>,
-    /// Levels above what any network could reach.
-    pub above_bound: Option<i64>,
+    /// How far above what any network could reach.
+    pub above_bound: Option<Time>,
     /// When each carry settles, null where it is constant; for the recommended
     /// one only.
-    pub carries: Option<Vec<Option<i64>>>,
+    pub carries: Option<Vec<Option<Time>>>,
     /// Its span nodes, each `[7:4] = [7:6] [5:4]`, position -1 being the
     /// carry-in; for the recommended one only.
     pub network: Option<Vec<String>>,

@@ -4,19 +4,22 @@
 //! Schema `carrywise/audit/1`. Field names and their order are part of the
 //! schema: fields may be added, never renamed. A fact that this version does
 //! not work out is `null` or an empty list, never a guess. Depths, arrivals and
-//! slacks count in the unit of the delay model, named beside them.
+//! slacks count in the unit of the delay model, named beside them, whole where the
+//! model counts whole units and else to a thousandth.
 //!
 //! Net names are written as in the netlist; an inverted net is `~name`, and a
 //! name that itself begins with `~` carries a backslash. A constant bit is the
 //! number 0 or 1, never a string, so that a net called `1` stays apart from it.
 
 mod chain;
+mod time;
 
 pub use chain::{
     BuiltAsRecord, ChainDepth, ChainRecord, Change, Exercised, Feedback, NotPlanned, Operand,
     Place, ProposalRecord,
 };
 
+use crate::timing::Time;
 use serde::{Deserialize, Serialize};
 
 /// The schema this version writes.
@@ -190,34 +193,34 @@ pub struct PathKindFacts {
     /// The chain that does, when it is carry.
     pub chain: Option<String>,
     /// Depth of the longest path of this kind.
-    pub longest: i64,
+    pub longest: Time,
     /// Of these, levels inside proven chains, between operands and results.
-    pub levels_in_carries: i64,
+    pub levels_in_carries: Time,
     /// The longest path when nothing is assumed; null without assumptions.
-    pub longest_without_assumptions: Option<i64>,
+    pub longest_without_assumptions: Option<Time>,
     /// The longest path if every proven carry were ready with its operands.
-    pub depth_if_carry_were_free: i64,
+    pub depth_if_carry_were_free: Time,
     /// Ends at which a path of this length arrives.
     pub ends_at_longest: u64,
     /// Depth of the deepest end below those; null when there is none.
-    pub next_below: Option<i64>,
+    pub next_below: Option<Time>,
 }
 
 /// Depth of the block.
 #[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct Depth {
     /// The longest path of any kind.
-    pub longest: i64,
+    pub longest: Time,
     /// The longest path when nothing is assumed; null without assumptions.
-    pub longest_without_assumptions: Option<i64>,
+    pub longest_without_assumptions: Option<Time>,
     /// The longest path with every transparent register open; null when the
     /// netlist has none.
-    pub longest_through_transparent: Option<i64>,
+    pub longest_through_transparent: Option<Time>,
     /// The unit of every depth in this record.
     pub unit: String,
     /// The longest path with buffers and inverters free; null when the model
     /// has them free already.
-    pub longest_free_buffers: Option<i64>,
+    pub longest_free_buffers: Option<Time>,
     /// Path ends by depth, ascending. An end is an output, a register input or
     /// a box input.
     pub histogram: Vec<DepthBar>,
@@ -233,7 +236,7 @@ pub struct Depth {
 #[derive(Clone, Copy, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct DepthBar {
     /// The depth.
-    pub depth: i64,
+    pub depth: Time,
     /// Path ends at it.
     pub outputs: u64,
 }
@@ -250,7 +253,7 @@ pub struct PathStep {
     /// Inputs of the gate; null at a start.
     pub fan_in: Option<u64>,
     /// When the net settles.
-    pub arrival: i64,
+    pub arrival: Time,
     /// The chain the step lies in.
     pub chain: Option<String>,
     /// The chain's position whose carry or sum the net is.
@@ -263,11 +266,11 @@ pub struct PortDepth {
     /// The bus.
     pub bus: String,
     /// Longest path from this input bus to a register.
-    pub deepest_in: Option<i64>,
+    pub deepest_in: Option<Time>,
     /// Longest path from a register to this output bus.
-    pub deepest_out: Option<i64>,
+    pub deepest_out: Option<Time>,
     /// Longest path from an input to an output that has this bus at an end.
-    pub deepest_through: Option<i64>,
+    pub deepest_through: Option<Time>,
 }
 
 /// Gate inputs.

@@ -6,10 +6,11 @@ use crate::audit::record::{
     RecommendedSet,
 };
 use crate::report::number::{
-    change, counted, grouped, grouped_signed, lines as lines_of, listed, or_dash, range, signed,
+    change, counted, depth_in, grouped, lines as lines_of, listed, or_dash, signed, span,
 };
 use crate::report::outline::{Caps, Grid, Section};
 use crate::report::text::clipped;
+use crate::timing::Time;
 
 /// One row per chain, those on a longest path first.
 pub fn chains(
@@ -132,15 +133,15 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
         _ => "-".to_owned(),
     };
     let spare = match slack {
-        Some(0) if *on_longest_path => "none".to_owned(),
-        _ => or_dash(slack.map(grouped_signed)),
+        Some(Time::ZERO) if *on_longest_path => "none".to_owned(),
+        _ => or_dash(slack.map(|slack| slack.to_string())),
     };
     vec![
         what,
         clipped(id, caps.name),
         grouped(*bits),
         clipped(name, caps.name),
-        range(*arrives, *leaves),
+        span(*arrives, *leaves),
         spare,
         lines,
     ]
@@ -313,7 +314,10 @@ fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Stri
         signed(proposal.gate_equivalents_added)
     ));
     if let Some(levels) = proposal.above_bound {
-        let levels = counted(levels.unsigned_abs(), "level", "levels");
+        let levels = match levels {
+            Time::ZERO => "no level".to_owned(),
+            some => depth_in(some, "levels"),
+        };
         parts.push(format!("{levels} above the lower bound for such gates"));
     }
     if let Some(path) = &proposal.takes_over {
@@ -343,7 +347,7 @@ fn not_planned(chains: &[ChainRecord], caps: Caps) -> Vec<Block> {
             Some(vec![
                 clipped(&chain.id, caps.name),
                 clipped(why, caps.sentence),
-                or_dash(slack.map(grouped_signed)),
+                or_dash(slack.map(|slack| slack.to_string())),
             ])
         })
         .collect();

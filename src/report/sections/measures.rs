@@ -4,9 +4,7 @@ use super::cut;
 use crate::audit::record::{
     Depth, DepthBar, FanIn, FanInBar, FanOut, FanOutBar, Limit, PathKindFacts, PortDepth,
 };
-use crate::report::number::{
-    counted, depth_in, doubling_bars, equal_bars, grouped, grouped_signed, mean, or_dash,
-};
+use crate::report::number::{counted, depth_in, doubling_bars, grouped, mean, or_dash, time_bars};
 use crate::report::outline::{Block, Caps, Grid, Section};
 use crate::report::text::clipped;
 
@@ -48,12 +46,12 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
                 (Limit::Elsewhere, _) => "elsewhere".to_owned(),
                 (Limit::Unknown, _) => "unknown".to_owned(),
             },
-            grouped_signed(*longest),
-            or_dash(longest_without_assumptions.map(grouped_signed)),
-            grouped_signed(*levels_in_carries),
-            grouped_signed(*depth_if_carry_were_free),
+            longest.to_string(),
+            or_dash(longest_without_assumptions.map(|at| at.to_string())),
+            levels_in_carries.to_string(),
+            depth_if_carry_were_free.to_string(),
             grouped(*ends_at_longest),
-            or_dash(next_below.map(grouped_signed)),
+            or_dash(next_below.map(|at| at.to_string())),
         ]
     };
     let rows = kinds.iter().take(caps.rows).map(row).collect();
@@ -113,7 +111,7 @@ pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> 
             &fan_out.histogram.iter().map(nets).collect::<Vec<_>>(),
             bars,
         ),
-        equal_bars(&depth_bars.iter().map(ends).collect::<Vec<_>>(), bars),
+        time_bars(&depth_bars.iter().map(ends).collect::<Vec<_>>(), bars),
     ];
     let height = columns.iter().map(Vec::len).max().unwrap_or(0);
     let rows = (0..height).map(|i| {
@@ -167,9 +165,9 @@ pub fn ports(depth: &Depth, caps: Caps) -> Option<Section> {
         } = port;
         vec![
             clipped(bus, caps.name),
-            or_dash(deepest_in.map(grouped_signed)),
-            or_dash(deepest_out.map(grouped_signed)),
-            or_dash(deepest_through.map(grouped_signed)),
+            or_dash(deepest_in.map(|at| at.to_string())),
+            or_dash(deepest_out.map(|at| at.to_string())),
+            or_dash(deepest_through.map(|at| at.to_string())),
         ]
     };
     let rows = depth.ports.iter().take(caps.rows).map(row).collect();

@@ -3,7 +3,7 @@
 
 use super::Block;
 use crate::audit::record::{Depth, PathStep};
-use crate::report::number::{counted, grouped, lines as lines_of, or_dash, range};
+use crate::report::number::{counted, grouped, lines as lines_of, or_dash, range, span};
 use crate::report::outline::{Caps, Grid, Section};
 use crate::report::text::clipped;
 
@@ -83,7 +83,7 @@ fn step_row(step: &PathStep, caps: Caps) -> Vec<String> {
         name.push_str(&format!(" ({}{bit})", clipped(chain, caps.name)));
     }
     vec![
-        range(*arrival, *arrival),
+        arrival.to_string(),
         name,
         clipped(gate, caps.name),
         or_dash(fan_in.map(grouped)),
@@ -106,7 +106,7 @@ fn stretch_row(steps: &[PathStep], chain: &str, caps: Caps) -> Vec<String> {
     };
     let (first, last) = (&steps[0], &steps[steps.len() - 1]);
     vec![
-        range(first.arrival, last.arrival),
+        span(first.arrival, last.arrival),
         format!("{}{place}", clipped(chain, caps.name)),
         counted(steps.len() as u64, "gate", "gates"),
         most(fan_ins().min(), fan_ins().max()),
