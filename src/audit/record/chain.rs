@@ -58,9 +58,12 @@ pub struct ChainRecord {
     pub depth: ChainDepth,
     /// Whether a longest path of the block runs through a sum or carry of it.
     pub on_longest_path: bool,
-    /// How much later its results could be without lengthening the longest
-    /// path of their kind; null when no path leads through it.
+    /// How much later its results could be without missing what `slack_against`
+    /// names, negative where they do; null when no path leads through it.
     pub slack: Option<Time>,
+    /// What slack is counted against: `required time`, `cycle`, `target depth`, or
+    /// else the `longest path of the kind`; null when no path leads through it.
+    pub slack_against: Option<String>,
     /// Why no rebuild was tried; null when some were.
     pub not_planned: Option<NotPlanned>,
     /// The rebuilds worth choosing between.
