@@ -10,7 +10,7 @@ use super::overlay::{Literal, Overlay};
 use super::site::Role;
 use crate::chain::Chain;
 use crate::netlist::{Bit, GateId, NetId, Shape, Signal};
-use crate::network::Addends;
+use crate::network::{Addends, GateSink};
 use rustc_hash::{FxHashMap, FxHashSet};
 
 /// Buffers and inverters before an operand are looked through up to this many.
@@ -32,6 +32,7 @@ impl Operands {
         let given: Vec<(usize, Bit)> = bits
             .flat_map(|(i, position)| [(i, position.a), (i, position.b)])
             .chain([(0, chain.carry_in)])
+            .chain(chain.mode.map(|mode| (0, Bit::Signal(mode))))
             .collect();
         let mut on_the_way = FxHashSet::default();
         let mut roots = Vec::new();
@@ -57,51 +58,73 @@ impl Operands {
         chain: &Chain,
         overlay: &mut Overlay,
     ) -> (Addends<Literal>, bool) {
-        let (bits, negated) = rooted(ground, chain);
-        let literal = |bit: Bit| match bit {
-            Bit::Constant(value) => Literal::FALSE.invert_if(value),
-            Bit::Signal(signal) => {
-                let arrival = ground.timing.arrivals.by_net[signal.net.index()];
-                overlay.net(signal.net, arrival).invert_if(signal.inverted)
-            }
-        };
-        (each(&bits, literal), negated)
+        let rooted = Rooted::of(ground, chain);
+        let addends = rooted.literals(overlay, |overlay, net| {
+            overlay.net(net, ground.timing.arrivals.by_net[net.index()])
+        });
+        (addends, rooted.negated)
     }
 }
 
 /// What a chain adds, buffers and inverters looked through. A carry-in of
 /// constant 1 is taken away by adding the complements: `a + b + 1 = ~(~a + ~b)`;
 /// then the second result is true and every sum and carry comes out inverted.
-pub(super) fn rooted(ground: &Ground<'_>, chain: &Chain) -> (Addends<Bit>, bool) {
-    let negated = chain.carry_in == Bit::Constant(true);
-    let behind = |bit: Bit, negated: bool| match bit {
-        Bit::Constant(value) => Bit::Constant(value != negated),
-        Bit::Signal(signal) => {
-            let root = root(ground, signal, |_| ());
-            Bit::Signal(Signal {
-                inverted: root.inverted != negated,
-                ..root
-            })
-        }
-    };
-    let positions = || chain.positions.iter();
-    let addends = Addends {
-        a: positions().map(|each| behind(each.a, negated)).collect(),
-        b: positions().map(|each| behind(each.b, negated)).collect(),
-        carry_in: match chain.carry_in {
-            Bit::Constant(_) => None,
-            bit @ Bit::Signal(_) => Some(behind(bit, false)),
-        },
-    };
-    (addends, negated)
+pub(super) struct Rooted {
+    addends: Addends<Bit>,
+    /// What the second addend is combined with by XOR.
+    mode: Option<Bit>,
+    pub(super) negated: bool,
 }
 
-/// The addends with every bit made by `make`: first addend, second, carry-in.
-pub(super) fn each<T>(bits: &Addends<Bit>, mut make: impl FnMut(Bit) -> T) -> Addends<T> {
-    Addends {
-        a: bits.a.iter().map(|&bit| make(bit)).collect(),
-        b: bits.b.iter().map(|&bit| make(bit)).collect(),
-        carry_in: bits.carry_in.map(make),
+impl Rooted {
+    pub(super) fn of(ground: &Ground<'_>, chain: &Chain) -> Self {
+        let negated = chain.carry_in == Bit::Constant(true);
+        let behind = |bit: Bit, negated: bool| match bit {
+            Bit::Constant(value) => Bit::Constant(value != negated),
+            Bit::Signal(signal) => {
+                let root = root(ground, signal, |_| ());
+                Bit::Signal(Signal {
+                    inverted: root.inverted != negated,
+                    ..root
+                })
+            }
+        };
+        let positions = || chain.positions.iter();
+        let addends = Addends {
+            a: positions().map(|each| behind(each.a, negated)).collect(),
+            b: positions().map(|each| behind(each.b, negated)).collect(),
+            carry_in: match chain.carry_in {
+                Bit::Constant(_) => None,
+                bit @ Bit::Signal(_) => Some(behind(bit, false)),
+            },
+        };
+        let mode = chain.mode.map(|mode| behind(Bit::Signal(mode), false));
+        Self {
+            addends,
+            mode,
+            negated,
+        }
+    }
+
+    /// The addends in an overlay, where `of_net` gives the literal of a net.
+    pub(super) fn literals(
+        &self,
+        overlay: &mut Overlay,
+        mut of_net: impl FnMut(&mut Overlay, NetId) -> Literal,
+    ) -> Addends<Literal> {
+        let mut literal = |bit: Bit| match bit {
+            Bit::Constant(value) => Literal::FALSE.invert_if(value),
+            Bit::Signal(signal) => of_net(overlay, signal.net).invert_if(signal.inverted),
+        };
+        let a = self.addends.a.iter().map(|&bit| literal(bit)).collect();
+        let b: Vec<Literal> = self.addends.b.iter().map(|&bit| literal(bit)).collect();
+        let carry_in = self.addends.carry_in.map(&mut literal);
+        let mode = self.mode.map(&mut literal);
+        let b = match mode {
+            Some(mode) => b.into_iter().map(|b| overlay.xor(b, mode)).collect(),
+            None => b,
+        };
+        Addends { a, b, carry_in }
     }
 }
 

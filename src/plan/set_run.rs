@@ -8,7 +8,7 @@
 //! and stretches for each group of starts, beside the ends that nothing of the set
 //! reaches.
 
-use super::cone::{each, rooted, sweep_unread};
+use super::cone::{Rooted, sweep_unread};
 use super::dry_run::{Estimate, KindChange, TakesOver};
 use super::ground::Ground;
 use super::made::Made;
@@ -16,7 +16,7 @@ use super::materialise::Stretch;
 use super::overlay::{Literal, Overlay};
 use super::set_site::SetSite;
 use crate::chain::Chain;
-use crate::netlist::{Bit, GateId, NetId};
+use crate::netlist::{GateId, NetId};
 use crate::network::{CarryNetwork, GateSink, Propagate, build};
 use crate::timing::{NEVER, PathKind, StartGroup};
 
@@ -86,17 +86,13 @@ impl<'s, 'a> SetRun<'s, 'a> {
         let mut times = Times::default();
         for (place, member) in site.members.iter().enumerate() {
             let (network, propagate) = choices[member.given];
-            let addends = each(&member.addends, |bit| match bit {
-                Bit::Constant(value) => Literal::FALSE.invert_if(value),
-                Bit::Signal(signal) => {
-                    let literal = match site.slot(signal.net) {
-                        Some(slot) if slot < results.len() => results[slot],
-                        Some(slot) => overlay.net(signal.net, times.slots[slot]),
-                        None => overlay.net(signal.net, all[signal.net.index()]),
-                    };
-                    literal.invert_if(signal.inverted)
-                }
+            let operands = &member.operands;
+            let addends = operands.literals(&mut overlay, |overlay, net| match site.slot(net) {
+                Some(slot) if slot < results.len() => results[slot],
+                Some(slot) => overlay.net(net, times.slots[slot]),
+                None => overlay.net(net, all[net.index()]),
             });
+            let negated = operands.negated;
             let built = build(network, &addends, limits, propagate, &mut overlay);
             for (_, role) in &site.results[member.results.clone()] {
                 let list = if role.carry {
@@ -104,10 +100,10 @@ impl<'s, 'a> SetRun<'s, 'a> {
                 } else {
                     &built.sums
                 };
-                results.push(list[role.position].invert_if(member.negated != role.inverted));
+                results.push(list[role.position].invert_if(negated != role.inverted));
             }
             let carries = built.carries.into_iter();
-            carries_of.push(carries.map(|c| c.invert_if(member.negated)).collect());
+            carries_of.push(carries.map(|c| c.invert_if(negated)).collect());
             node_ends.push(overlay.len());
             advance(
                 site,
@@ -406,11 +402,8 @@ pub(super) fn depth_by_itself(
     propagate: Propagate,
 ) -> i32 {
     let mut overlay = Overlay::new(ground.settings.style, ground.settings.model);
-    let (bits, _) = rooted(ground, chain);
-    let addends = each(&bits, |bit| match bit {
-        Bit::Constant(value) => Literal::FALSE.invert_if(value),
-        Bit::Signal(signal) => overlay.net(signal.net, 0).invert_if(signal.inverted),
-    });
+    let operands = Rooted::of(ground, chain);
+    let addends = operands.literals(&mut overlay, |overlay, net| overlay.net(net, 0));
     let limits = ground.settings.limits();
     let built = build(network, &addends, limits, propagate, &mut overlay);
     let results = built.sums.iter().chain(built.carries.last());

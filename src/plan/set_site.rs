@@ -10,14 +10,13 @@
 //! The dependences are found in one pass that carries a set of members per gate, a
 //! word of bits, which is why a set is bounded.
 
-use super::cone::{Operands, fan_out_of, replaced_nets, rooted, sweep};
+use super::cone::{Operands, Rooted, fan_out_of, replaced_nets, sweep};
 use super::ground::Ground;
 use super::overlay::{GateStyle, Overlay};
 use super::reuse::find_reusable;
 use super::site::{Needed, Refused, Role};
 use crate::chain::Chain;
-use crate::netlist::{Bit, GateId, NetId};
-use crate::network::Addends;
+use crate::netlist::{GateId, NetId};
 use crate::timing::{End, EndGroup, PathKind, StartGroup, end_net};
 use rustc_hash::{FxHashMap, FxHashSet};
 use std::ops::Range;
@@ -29,8 +28,7 @@ pub const MOST_TOGETHER: usize = u128::BITS as usize;
 pub(super) struct Member {
     /// Which of the chains given it is.
     pub(super) given: usize,
-    pub(super) addends: Addends<Bit>,
-    pub(super) negated: bool,
+    pub(super) operands: Rooted,
     /// Its results among those of the site.
     pub(super) results: Range<usize>,
     /// Its needed nets among those of the site.
@@ -147,11 +145,9 @@ impl<'a> SetSite<'a> {
             }
             let behind = numbered.partition_point(|&(s, _)| s < place as u32)
                 ..numbered.partition_point(|&(s, _)| s <= place as u32);
-            let (addends, negated) = rooted(ground, chains[i]);
             members.push(Member {
                 given: i,
-                addends,
-                negated,
+                operands: Rooted::of(ground, chains[i]),
                 results: ranges[place].clone(),
                 needed: start..needed.len(),
                 behind,
