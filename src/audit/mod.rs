@@ -8,6 +8,7 @@
 mod assumed;
 mod carried;
 mod chains;
+pub mod closeup;
 mod faults;
 pub mod findings;
 mod free_carry;
@@ -220,6 +221,7 @@ pub fn audit_under(
     }
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
+    findings.add_faster(&records);
     findings.add_unproven(&unproven);
     findings.add_crowds(read);
     let (findings, findings_left_out) = findings.sorted();
@@ -279,6 +281,7 @@ fn plans(
     let ground = Ground::of(netlist, topology, timing, settings);
     let mut plans = plan::plan_all(&ground, chains);
     let together = plan::choose_together(&ground, chains, &mut plans);
+    plan::note_savings(&ground, chains, &mut plans);
     (plans, together)
 }
 
@@ -308,6 +311,8 @@ fn settings_record(settings: &Settings, options: &Options) -> SettingsRecord {
         new_gates_reason: settings.new_gates_reason.clone(),
         gate_inputs: settings.gate_inputs as u64,
         gate_inputs_reason: settings.gate_inputs_reason.clone(),
+        plan_margin_percent: (!settings.plans_all())
+            .then_some(plan::DEFAULT_MARGIN_PERCENT.unsigned_abs().into()),
         min_bits: options.chains.min_bits as u64,
         effort: options.chains.effort,
         patterns_seed: options.chains.seed,

@@ -2,7 +2,7 @@
 //! file that fails does not stop the others.
 
 use super::Status;
-use super::options::AuditArguments;
+use super::options::{AuditArguments, SharedArguments};
 use super::search::SearchFolders;
 use super::targets::{self, Target};
 use super::terminal::{colour_on_stderr, complain, page, say};
@@ -11,6 +11,7 @@ use crate::audit::{self, Asserting, AuditError, Origin};
 use crate::format::assumptions::{self, AssumptionsFile};
 use crate::format::files::FileAccess;
 use crate::format::{self, Parsed};
+use crate::netlist::Netlist;
 use crate::netlist::cell::{Cells, Unbound};
 use crate::report::{self, Form, MOST_CHARACTERS, Page};
 use crate::source::{self, Diagnostic, Limits, Place, ReadError, Source};
@@ -38,7 +39,11 @@ pub fn run(arguments: &AuditArguments) -> Status {
         .filter(|f| !is_stdin(f))
         .cloned()
         .collect();
-    let besides = arguments.assume.iter().chain(&arguments.cells);
+    let besides = arguments
+        .shared
+        .assume
+        .iter()
+        .chain(&arguments.shared.cells);
     let read_besides = named.iter().chain(besides).cloned();
     let read_besides: Vec<PathBuf> = read_besides.collect();
     let mut targets = match targets::open(&arguments.report, &read_besides) {
@@ -48,32 +53,28 @@ pub fn run(arguments: &AuditArguments) -> Status {
             return Status::Unusable;
         }
     };
-    let quiet = arguments.quiet;
-    let library = |file: &PathBuf| cells(file, quiet);
-    let mut cells = match arguments.cells.as_ref().map(library).transpose() {
-        Ok(cells) => cells,
+    let inputs = match Inputs::of(&arguments.shared) {
+        Ok(inputs) => inputs,
         Err(worse) => return worse,
     };
-    let asserted = match arguments.assume.as_deref().map(assume).transpose() {
-        Ok(asserted) => asserted,
-        Err(worse) => return worse,
-    };
-    if let Some(file) = &asserted
-        && let Err(worse) = declare_carry(file, cells.as_mut(), arguments)
-    {
-        return worse;
-    }
     let share = (MOST_CHARACTERS / arguments.files.len()).max(FEWEST_CHARACTERS);
     let page = Page {
         characters: share.min(MOST_CHARACTERS),
         ..page()
     };
-    let mut stdout = Stdout::new(arguments.form.form());
+    let mut stdout = Stdout::new(arguments.shared.form.form());
     let mut status = Status::Done;
     for file in &arguments.files {
         // A fault of ours in one netlist is told as such, and the others go on.
         let audited = catch_unwind(AssertUnwindSafe(|| {
-            audit_file(file, arguments, asserted.as_ref(), cells.as_ref())
+            with_netlist(
+                file,
+                &arguments.shared,
+                &inputs,
+                |netlist, origin, asserting| {
+                    audit::audit_under(netlist, origin, &arguments.auditing(), asserting)
+                },
+            )
         }));
         let audited = audited.unwrap_or_else(|_| {
             complain(&format!(
@@ -105,6 +106,24 @@ pub fn run(arguments: &AuditArguments) -> Status {
         }
     }
     status
+}
+
+/// What is read beside the netlists, once for all of them.
+pub(super) struct Inputs {
+    cells: Option<Cells>,
+    asserted: Option<AssumptionsFile>,
+}
+
+impl Inputs {
+    pub(super) fn of(arguments: &SharedArguments) -> Result<Self, Status> {
+        let library = |file: &PathBuf| cells(file, arguments.quiet);
+        let mut cells = arguments.cells.as_ref().map(library).transpose()?;
+        let asserted = arguments.assume.as_deref().map(assume).transpose()?;
+        if let Some(file) = &asserted {
+            declare_carry(file, cells.as_mut(), arguments)?;
+        }
+        Ok(Self { cells, asserted })
+    }
 }
 
 fn is_stdin(file: &Path) -> bool {
@@ -145,7 +164,7 @@ fn cells(file: &Path, quiet: bool) -> Result<Cells, Status> {
 fn declare_carry(
     file: &AssumptionsFile,
     cells: Option<&mut Cells>,
-    arguments: &AuditArguments,
+    arguments: &SharedArguments,
 ) -> Result<(), Status> {
     let declared = &file.assumptions.carry_cells;
     if declared.is_empty() {
@@ -172,12 +191,15 @@ fn assume(file: &Path) -> Result<AssumptionsFile, Status> {
     })
 }
 
-fn audit_file(
+/// Reads one netlist and gives it to `make` with where it came from and what is
+/// assumed of it. What goes wrong is told.
+pub(super) fn with_netlist<T>(
     file: &Path,
-    arguments: &AuditArguments,
-    asserted: Option<&AssumptionsFile>,
-    cells: Option<&Cells>,
-) -> Result<Audit, Status> {
+    arguments: &SharedArguments,
+    inputs: &Inputs,
+    make: impl FnOnce(&Netlist, &Origin, Option<&Asserting<'_>>) -> Result<T, AuditError>,
+) -> Result<T, Status> {
+    let (cells, asserted) = (inputs.cells.as_ref(), inputs.asserted.as_ref());
     let colour = colour_on_stderr();
     let name = file.to_string_lossy().into_owned();
     let limits = Limits::for_gates(arguments.max_gates);
@@ -242,8 +264,7 @@ fn audit_file(
         assumptions: &file.assumptions,
         sha256: audit::digest(&file.source().bytes),
     });
-    let audited = audit::audit_under(&netlist, &origin, &arguments.auditing(), asserting.as_ref());
-    audited.map_err(|error| {
+    make(&netlist, &origin, asserting.as_ref()).map_err(|error| {
         match (&error, asserted) {
             (AuditError::Misfit(misfit), Some(file)) => {
                 let told = file.misfit(misfit, &origin.file);
