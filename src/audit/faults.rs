@@ -288,6 +288,13 @@ impl<'a> Findings<'a> {
         }
     }
 
+    /// A delay model that does not fit the netlist.
+    pub fn add_misfit(&mut self, misfit: Option<&str>) {
+        if let Some(misfit) = misfit {
+            self.add("delay-model-does-not-fit", None, 0, misfit.to_owned());
+        }
+    }
+
     /// Assumptions that change nothing.
     pub fn add_unused(&mut self, unused: &[String]) {
         for assumption in unused.iter().take(PLACES) {

@@ -25,6 +25,7 @@ mod id;
 mod model;
 mod names;
 mod pattern;
+mod product;
 mod tie;
 mod transparent;
 

@@ -158,6 +158,7 @@ pub fn tide_logger() -> Audit {
             delay_model: DelayModelFacts {
                 name: "unit".into(),
                 unit: "gate delays".into(),
+                misfit: None,
             },
             new_gates: "single-operator".into(),
             new_gates_reason: "the netlist uses no other function of three or more inputs".into(),
@@ -214,6 +215,7 @@ pub fn tide_logger() -> Audit {
             longest_through_transparent: None,
             unit: "gate delays".into(),
             longest_free_buffers: Some(at(33)),
+            longest_in_fo4: None,
             histogram: (1..=33)
                 .map(|depth| DepthBar {
                     depth: at(depth),
