@@ -37,7 +37,11 @@ impl PinDelays {
         }
         let (mut starts, mut ticks) = (vec![0], Vec::new());
         for id in 0..netlist.function_count() {
-            ticks.extend(model.pin_delays(netlist.function_of(FunctionId::new(id))));
+            let id = FunctionId::new(id);
+            match netlist.declared_delays(id) {
+                Some(own) => ticks.extend(own.iter().map(|own| own * model.ticks_per_unit())),
+                None => ticks.extend(model.pin_delays(netlist.function_of(id))),
+            }
             starts.push(ticks.len() as u32);
         }
         Self {
@@ -69,8 +73,11 @@ impl PinDelays {
         let free_inversions = netlist.has_inverted_edges();
         let (mut starts, mut prices) = (vec![0], Vec::new());
         for id in 0..netlist.function_count() {
-            let function = netlist.function_of(FunctionId::new(id));
-            prices.extend(model.prices(function, free_inversions));
+            let id = FunctionId::new(id);
+            match netlist.declared_delays(id) {
+                Some(own) => prices.extend(own.iter().map(|&own| model.declared_price(own))),
+                None => prices.extend(model.prices(netlist.function_of(id), free_inversions)),
+            }
             starts.push(prices.len() as u32);
         }
         let mut delays = Self {

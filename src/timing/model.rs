@@ -132,6 +132,15 @@ impl DelayModel {
         }
     }
 
+    /// The price of a pin whose delay was declared, in whole units: it loads what an
+    /// end of a path does.
+    pub(super) fn declared_price(self, delay: i32) -> PinPrice {
+        PinPrice {
+            load: self.end_load(),
+            ..PinPrice::without_load(delay.saturating_mul(self.ticks_per_unit()))
+        }
+    }
+
     /// The delay from each pin of `function` to its output, in ticks; where delay
     /// depends on load, under an assumed one, for what is not placed yet.
     pub fn pin_delays(self, function: &Function) -> Vec<i32> {
