@@ -279,8 +279,8 @@ fn in_order(
     gates.sort_unstable_by_key(|&gate| ground.rank(gate));
     // The members whose results a net depends on, not looking behind results.
     let mut reached: FxHashMap<NetId, u128> = FxHashMap::default();
-    for (&net, &(i, _)) in owners {
-        reached.insert(net, 1 << i);
+    for (i, order) in orders.iter().enumerate() {
+        reached.extend(order.iter().map(|&net| (net, 1 << i)));
     }
     for gate in gates {
         let output = ground.netlist.gate_output(gate);
