@@ -144,7 +144,7 @@ pub fn audit_under(
     let asserted = applied
         .as_ref()
         .map(|(asserting, under)| (asserting.assumptions, under));
-    let asked = goals::asked(asserted, options.target_depth, model);
+    let asked = goals::asked(netlist, asserted, options.target_depth, model);
     let spares = Spares::of(netlist, &topology, &timing, &asked);
     let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains, &spares);
     let mut records = sources.records(&chains, &plans);

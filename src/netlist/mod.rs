@@ -29,6 +29,7 @@ mod names;
 mod passage;
 mod pattern;
 mod tie;
+mod times;
 mod transparent;
 
 pub use asserted::{Asserted, EndPoint, Pairing};
@@ -44,3 +45,4 @@ pub use model::{
 };
 pub use names::{NameId, Names};
 pub use pattern::Pattern;
+pub use times::FileTimes;

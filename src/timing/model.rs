@@ -53,6 +53,12 @@ impl DelayModel {
         1
     }
 
+    /// Whether it measures time and does not count levels: then times that a file
+    /// states mean something.
+    pub fn counts_time(self) -> bool {
+        self.ticks_per_unit() > 1
+    }
+
     /// Ticks as a time in the unit of the model.
     pub fn time(self, ticks: i32) -> Time {
         Time::of_ticks(ticks, self.ticks_per_unit())
@@ -108,7 +114,10 @@ impl PinDelays {
         for id in 0..netlist.function_count() {
             let id = FunctionId::new(id);
             match netlist.declared_delays(id) {
-                Some(own) => ticks.extend(own.iter().map(|own| own * model.ticks_per_unit())),
+                Some(own) => ticks.extend(
+                    own.iter()
+                        .map(|own| own.saturating_mul(model.ticks_per_unit())),
+                ),
                 None => ticks.extend(price(netlist.function_of(id))),
             }
             starts.push(ticks.len() as u32);

@@ -78,7 +78,7 @@ pub fn gate_arrival(netlist: &Netlist, delays: &PinDelays, by_net: &[i32], gate:
     for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
         let at = by_net[net.index()];
         if at != NEVER {
-            latest = latest.max(at + delay);
+            latest = latest.max(at.saturating_add(*delay));
         }
     }
     latest
@@ -143,7 +143,7 @@ impl Tails {
             let ticks = delays.of_gate(netlist, gate);
             for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
                 let slot = &mut by_net[net.index()];
-                *slot = (*slot).max(tail + delay);
+                *slot = (*slot).max(tail.saturating_add(*delay));
             }
         }
         Self { by_net }
