@@ -179,7 +179,7 @@ impl<'a> Sources<'a> {
             result: None,
             relation: None,
             signed: None,
-            mode: None,
+            mode: chain.mode.map(name),
             feedback: self.feedback(chain, registers),
             duplicates: None,
             built_as: self.built_as(index, chain, &depth),
@@ -315,7 +315,7 @@ impl<'a> Sources<'a> {
                 outputs.push(self.netlist.net_name(register.output));
             }
             let role = match chain.kind {
-                Kind::Adder | Kind::Subtractor => "accumulator",
+                Kind::Adder | Kind::Subtractor | Kind::AdderSubtractor => "accumulator",
                 Kind::Incrementer | Kind::Decrementer => "counter",
             };
             (!outputs.is_empty()).then(|| Feedback {
@@ -384,7 +384,9 @@ fn operands(netlist: &Netlist, chain: &Chain) -> Vec<Operand> {
     let b = chain.positions.iter().map(|bits| bits.b);
     let mut operands = vec![operand(netlist, &a)];
     match chain.kind {
-        Kind::Adder => operands.push(operand(netlist, &b.collect::<Vec<_>>())),
+        Kind::Adder | Kind::AdderSubtractor => {
+            operands.push(operand(netlist, &b.collect::<Vec<_>>()));
+        }
         // As it is subtracted: what is added is its complement.
         Kind::Subtractor => operands.push(operand(netlist, &b.map(complement).collect::<Vec<_>>())),
         Kind::Incrementer | Kind::Decrementer => {}

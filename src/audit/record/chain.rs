@@ -72,9 +72,17 @@ pub struct ChainRecord {
 
 impl ChainRecord {
     /// What is computed, written as arithmetic on the operands' names:
-    /// `level[15:0] + offset[15:0]`, `count[7:0] + 1`, `a - b - 1 + borrow_in`.
+    /// `level[15:0] + offset[15:0]`, `count[7:0] + 1`, `a - b - 1 + borrow_in`,
+    /// `a +/- b, minus when sub`.
     pub fn formula(&self) -> String {
         let names: Vec<&str> = self.operands.iter().map(|o| o.name.as_str()).collect();
+        if let (Some(mode), [a, b]) = (&self.mode, &names[..]) {
+            return match &self.carry_in {
+                Some(Wire::Net(net)) if net == mode => format!("{a} +/- {b}, minus when {mode}"),
+                Some(carry_in) => format!("{a} + ({b} xor {mode}) + {}", carry_in.text()),
+                None => format!("{a} + ({b} xor {mode})"),
+            };
+        }
         let (first, constant) = match self.kind.as_str() {
             "subtractor" => (names.join(" - "), -1),
             "decrementer" => (names.join(" + "), -1),
