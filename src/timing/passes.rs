@@ -4,8 +4,9 @@
 //! net is the longest path from it to an end. Both are one loop over the gates
 //! in topological order (the longest-path recurrence on an acyclic graph).
 
+use super::delays::PinDelays;
 use super::ends::{End, EndGroup, StartGroup, end_net, grouped_ends, start_group, start_time};
-use super::model::{DelayModel, PinDelays};
+use super::model::DelayModel;
 use crate::netlist::{GateId, NetId, Netlist, Topology};
 
 /// The time of what no path reaches; below every real time.
