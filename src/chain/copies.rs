@@ -8,6 +8,13 @@ use super::verify::Theorem;
 use crate::subject::{Literal, NodeId, NodeKind, Subject};
 use rustc_hash::{FxHashMap, FxHashSet};
 
+/// Where a pair of operands stands, and whether inverted against its normal form.
+struct Place {
+    theorem: usize,
+    position: usize,
+    inverted: bool,
+}
+
 /// Operands up to their order and up to duality, and whether they were inverted
 /// for that.
 fn normal(a: Literal, b: Literal) -> ((Literal, Literal), bool) {
@@ -25,13 +32,17 @@ pub(super) fn fold_copies(
     theorems: &mut Vec<Theorem>,
     min_bits: usize,
 ) {
-    let mut places: FxHashMap<(Literal, Literal), Vec<(usize, usize, bool)>> = FxHashMap::default();
+    let mut places: FxHashMap<(Literal, Literal), Vec<Place>> = FxHashMap::default();
     for (index, theorem) in theorems.iter().enumerate() {
         for (at, bits) in theorem.bits.iter().enumerate() {
             let (key, inverted) = normal(bits.a, bits.b);
             let known = places.entry(key).or_default();
             if known.len() < MOST_PLACES {
-                known.push((index, at, inverted));
+                known.push(Place {
+                    theorem: index,
+                    position: at,
+                    inverted,
+                });
             }
         }
     }
@@ -48,7 +59,8 @@ pub(super) fn fold_copies(
             .map(|bits| normal(bits.a, bits.b))
             .collect();
         let starts = places.get(&keys[0].0).map_or(&[][..], Vec::as_slice);
-        copies[index] = starts.iter().any(|&(wider, from, inverted)| {
+        copies[index] = starts.iter().any(|place| {
+            let (wider, from, inverted) = (place.theorem, place.position, place.inverted);
             if wider == index || widths[wider] <= widths[index] {
                 return false;
             }
