@@ -15,6 +15,7 @@ mod free_carry;
 mod gate_words;
 mod goals;
 mod measures;
+mod model_fit;
 mod names;
 mod rebuilds;
 pub mod record;
@@ -135,7 +136,11 @@ pub fn audit_under(
         topology = Topology::of(netlist);
     }
     // The search needs the most memory, so it runs before the timing is held.
-    let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
+    let chain::Found {
+        chains,
+        unproven,
+        witnessed,
+    } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
     let (plans, together) = plans(netlist, &topology, &timing, &settings, &chains);
@@ -145,7 +150,7 @@ pub fn audit_under(
     let asserted = applied
         .as_ref()
         .map(|(asserting, under)| (asserting.assumptions, under));
-    let asked = goals::asked(asserted, options.target_depth, model);
+    let asked = goals::asked(netlist, asserted, options.target_depth, model);
     let spares = Spares::of(netlist, &topology, &timing, &asked);
     let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains, &spares);
     let mut records = sources.records(&chains, &plans);
@@ -223,6 +228,8 @@ pub fn audit_under(
     findings.add_ripples(&timing, &chains, &records);
     findings.add_faster(&records);
     findings.add_unproven(&unproven);
+    let misfit = model_fit::misfit(read, model);
+    findings.add_misfit(misfit.as_deref());
     findings.add_crowds(read);
     let (findings, findings_left_out) = findings.sorted();
 
@@ -235,13 +242,14 @@ pub fn audit_under(
         netlist: netlist_facts(read, origin),
         settings: SettingsRecord {
             assumptions_sha256: asserting.map(|asserting| asserting.sha256.clone()),
-            ..settings_record(&settings, options)
+            ..settings_record(&settings, options, misfit)
         },
         seen: Seen {
             gates_with_function: read.gate_count() as u64,
             gates_without_function: netlist.boxes().len() as u64,
             nets_cut: topology.cut.count_ones(..) as u64,
             chains_proven: records.len() as u64,
+            chains_witnessed: witnessed as u64,
             chains_unproven: unproven.len() as u64,
         },
         verdict,
@@ -301,11 +309,16 @@ fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {
     }
 }
 
-fn settings_record(settings: &Settings, options: &Options) -> SettingsRecord {
+fn settings_record(
+    settings: &Settings,
+    options: &Options,
+    misfit: Option<String>,
+) -> SettingsRecord {
     SettingsRecord {
         delay_model: DelayModelFacts {
             name: settings.model.name().to_owned(),
             unit: settings.model.unit_word().to_owned(),
+            misfit,
         },
         new_gates: settings.new_gates.word().to_owned(),
         new_gates_reason: settings.new_gates_reason.clone(),

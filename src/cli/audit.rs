@@ -225,8 +225,10 @@ pub(super) fn with_netlist<T>(
         netlist,
         format,
         warnings,
-        ..
+        constraints,
     } = parsed;
+    let times = constraints.times(&netlist);
+    let netlist = netlist.with_times(times);
     if !arguments.quiet {
         warnings.iter().for_each(tell);
     }

@@ -144,10 +144,12 @@ pub struct Settings {
 /// The delay model.
 #[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct DelayModelFacts {
-    /// `unit` or `pairs`.
+    /// `unit`, `pairs` or `logical-effort`.
     pub name: String,
     /// What one step counts, in the plural: `gate delays`.
     pub unit: String,
+    /// Why the model does not fit the netlist; null where it does.
+    pub misfit: Option<String>,
 }
 
 /// How much could be seen.
@@ -161,6 +163,8 @@ pub struct Seen {
     pub nets_cut: u64,
     /// Chains proven.
     pub chains_proven: u64,
+    /// Of these, chains that decision diagrams confirmed as a second witness.
+    pub chains_witnessed: u64,
     /// Candidates left undecided.
     pub chains_unproven: u64,
 }
@@ -241,6 +245,9 @@ pub struct Depth {
     /// The longest path with buffers and inverters free; null when the model
     /// has them free already.
     pub longest_free_buffers: Option<Time>,
+    /// The longest path in inverters that drive four like them (FO4); null
+    /// unless the model is logical effort.
+    pub longest_in_fo4: Option<Time>,
     /// Path ends by depth, ascending. An end is an output, a register input or
     /// a box input.
     pub histogram: Vec<DepthBar>,
