@@ -39,7 +39,10 @@ fn a_chain_is_found_by_id_fingerprint_and_net() {
 
 #[test]
 fn a_name_of_no_chain_says_what_there_is() {
-    let output = carrywise().args(["closeup", LOGGER, "C9"]).output().unwrap();
+    let output = carrywise()
+        .args(["closeup", LOGGER, "C9"])
+        .output()
+        .unwrap();
     assert_eq!(output.status.code(), Some(2));
     let told = String::from_utf8(output.stderr).unwrap();
     assert!(told.contains("`C9`") && told.contains("C1"), "{told}");
@@ -91,7 +94,11 @@ fn every_chain_is_planned_on_request() {
         let arguments = [&["audit", LOGGER, "--as", "json"], more].concat();
         let audit: Audit = serde_json::from_str(&printed(&arguments)).unwrap();
         let planned = audit.chains.iter().filter(|c| c.not_planned.is_none());
-        (planned.count(), audit.chains.len(), audit.settings.plan_margin_percent)
+        (
+            planned.count(),
+            audit.chains.len(),
+            audit.settings.plan_margin_percent,
+        )
     };
     let (some, all, margin) = planned(&[]);
     assert!(some < all);

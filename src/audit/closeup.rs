@@ -12,7 +12,8 @@ use super::record::{
     BitRecord, ChainRecord, Change, Closeup, SchemeBest, Settings as SettingsRecord, Tool,
 };
 use super::{
-    Asserting, AuditError, CAUTION, Options, Origin, chains, goals, netlist_facts, settings_record,
+    Asserting, AuditError, CAUTION, Options, Origin, chains, goals, model_fit, netlist_facts,
+    settings_record,
 };
 use crate::chain::{self, Chain};
 use crate::netlist::{Bit, NetId, Netlist, Topology};
@@ -85,7 +86,7 @@ pub fn closeup(
     let asserted = applied
         .as_ref()
         .map(|(asserting, under)| (asserting.assumptions, under));
-    let asked = goals::asked(asserted, options.target_depth, model);
+    let asked = goals::asked(netlist, asserted, options.target_depth, model);
     let spares = Spares::of(netlist, &topology, &timing, &asked);
     let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains, &spares);
     let named = sources.records(&chains, &plans);
@@ -105,7 +106,7 @@ pub fn closeup(
         netlist: netlist_facts(netlist, origin),
         settings: SettingsRecord {
             assumptions_sha256: asserting.map(|asserting| asserting.sha256.clone()),
-            ..settings_record(&settings, options)
+            ..settings_record(&settings, options, model_fit::misfit(read, model))
         },
         block_depth: timing.time(timing.longest()),
         unit: model.unit_word().to_owned(),
