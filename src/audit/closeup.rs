@@ -260,7 +260,17 @@ fn schemes(timing: &Timing, plan: &ChainPlan) -> Vec<SchemeBest> {
         before: timing.time(before),
         after: timing.time(after),
     };
-    let rows = plan.best_of_scheme.iter().map(|best| {
+    let mut best: Vec<&plan::Proposal> = plan.best_of_scheme.iter().collect();
+    // The recommended one is told too, where its scheme has a faster one.
+    if let Some(index) = plan.recommended {
+        let own = &plan.proposals[index];
+        let depths = |each: &plan::Proposal| (each.estimate.block_after, each.estimate.chain_after);
+        if best.iter().all(|each| each.number != own.number) {
+            let at = best.iter().position(|each| depths(each) > depths(own));
+            best.insert(at.unwrap_or(best.len()), own);
+        }
+    }
+    let rows = best.into_iter().map(|best| {
         let estimate = &best.estimate;
         let listed = plan.proposals.iter().position(|p| p.number == best.number);
         SchemeBest {

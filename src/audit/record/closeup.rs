@@ -26,7 +26,7 @@ pub struct Closeup {
     pub chain: ChainRecord,
     /// Its bits.
     pub bits: Vec<BitRecord>,
-    /// The best of every scheme, best first.
+    /// The best of every scheme, best first, and the recommended one among them.
     pub schemes: Vec<SchemeBest>,
     /// Why one is recommended, or none.
     pub reason: String,
