@@ -13,7 +13,9 @@ mod delays;
 pub mod effort;
 mod ends;
 mod factored;
+mod goals;
 mod model;
+mod near;
 mod passes;
 mod path;
 mod price;
@@ -25,7 +27,9 @@ pub use ends::{
     End, EndClass, EndGroup, PathKind, StartClass, StartGroup, end_net, ends, grouped_ends,
     start_group, start_time,
 };
+pub use goals::{Basis, Goals, Spare, Spares};
 pub use model::DelayModel;
+pub use near::{MANY, Near};
 pub use passes::{Arrivals, NEVER, Tails, end_arrival, gate_arrival, start_times};
 pub use path::{PathStep, longest_path};
 pub use price::{Curve, PinPrice};
