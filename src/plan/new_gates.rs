@@ -6,9 +6,9 @@
 //! that was there before, or a slot, which is a net driven anew or a new one.
 
 use super::dry_run::DryRun;
-use super::overlay::{GateStyle, Node};
+use super::overlay::{GateStyle, Node, Operator};
 use super::site::Site;
-use crate::netlist::{Function, GateId, NetId};
+use crate::netlist::{Driver, Function, GateId, NetId};
 use crate::timing::PinPrice;
 use rustc_hash::FxHashMap;
 use std::rc::Rc;
@@ -43,8 +43,6 @@ pub(super) struct NewGates {
     pub(super) slot_loads: Vec<i32>,
     /// Of nets that stay, where it changes.
     pub(super) loads: FxHashMap<NetId, i32>,
-    /// Slots below this are the needed nets themselves, in order.
-    own_slots: u32,
 }
 
 impl NewGates {
@@ -55,22 +53,17 @@ impl NewGates {
         maker.finish(loads)
     }
 
-    /// Whether a slot is a needed net itself.
-    pub(super) fn is_of_needed(&self, slot: u32) -> bool {
-        slot < self.own_slots
-    }
-
     /// The gates that stay and whose load changes, ascending.
     pub(super) fn reloaded_drivers(&self, site: &Site<'_>) -> Vec<GateId> {
         let netlist = site.ground.netlist;
         let mut gates: Vec<GateId> = Vec::new();
         for &net in self.loads.keys() {
             match netlist.driver(net) {
-                crate::netlist::Driver::Gate(gate) => gates.push(gate),
-                crate::netlist::Driver::Many(index) => {
+                Driver::Gate(gate) => gates.push(gate),
+                Driver::Many(index) => {
                     let drivers = &netlist.contended()[index as usize].drivers;
                     gates.extend(drivers.iter().filter_map(|&(driver, _)| match driver {
-                        crate::netlist::Driver::Gate(gate) => Some(gate),
+                        Driver::Gate(gate) => Some(gate),
                         _ => None,
                     }));
                 }
@@ -124,7 +117,6 @@ impl<'r, 's, 'a> Maker<'r, 's, 'a> {
         let run = self.run;
         let first = run.first_nets();
         for node in run.overlay.nodes() {
-            use super::overlay::Operator;
             match run.overlay.operator(node) {
                 Operator::Constant => self.shown[node.index()] = Some((Place::Constant, false)),
                 Operator::Net(net) => self.shown[node.index()] = Some((Place::Net(net), false)),
@@ -241,17 +233,12 @@ impl<'r, 's, 'a> Maker<'r, 's, 'a> {
                 changed.insert(net, now);
             }
         }
-        let own_slots = match self.style {
-            GateStyle::AndInverter => 0,
-            _ => site.needed.len() as u32,
-        };
         NewGates {
             list: self.list,
             shown: self.shown,
             needed,
             slot_loads: self.slot_loads,
             loads: changed,
-            own_slots,
         }
     }
 }

@@ -9,13 +9,13 @@
 //! beside them.
 //!
 //! Invariant: every figure equals that of a netlist made from the dry run and
-//! measured from nothing (`tests/plans_loaded.rs`).
+//! measured from nothing (`tests/plans_recounted.rs`).
 
 use super::dry_run::{DryRun, KindChange};
 use super::new_gates::{NewGates, Place};
 use super::site::Site;
 use crate::netlist::{GateId, NetId};
-use crate::timing::{End, NEVER, PathKind, PinPrice, end_net};
+use crate::timing::{End, EndGroup, NEVER, PathKind, PinPrice, StartGroup, end_net};
 use rustc_hash::{FxHashMap, FxHashSet};
 use std::cmp::Reverse;
 use std::collections::BinaryHeap;
@@ -67,9 +67,10 @@ impl Retimed {
             gates: &gates,
         };
         let timing = run.site.ground.timing;
-        let (changed, _) = work.before_the_chain(&timing.arrivals.by_net);
-        let slots = work.new_times(&timing.arrivals.by_net, &changed);
-        let at = |place| work.at(place, &timing.arrivals.by_net, &changed, &slots);
+        let by_net = &timing.arrivals.by_net;
+        let (changed, _) = work.before_the_chain(0, by_net);
+        let slots = work.new_times(by_net, &changed);
+        let at = |place| work.at(place, by_net, &changed, &slots);
         let needed = gates.needed.iter().map(|&place| at(place));
         let chain_after = needed.max().unwrap_or(NEVER);
         let carries = run.carries.iter().map(|literal| {
@@ -77,17 +78,13 @@ impl Retimed {
             let time = at(place.map_or(Place::Constant, |(place, _)| place));
             (time != NEVER).then_some(time)
         });
-        let mut retimed = Self {
-            chain_after,
-            carries: carries.collect(),
-            kinds: Vec::new(),
-        };
+        let carries = carries.collect();
+        let mut kinds = Vec::new();
         for (start, by_net) in run.site.starts() {
-            let paths = work.paths(by_net);
-            for (end, [beside, through]) in paths {
+            for (end, [beside, through]) in work.paths(start, by_net) {
                 let kind = PathKind { start, end };
                 if timing.kind(kind).is_some() {
-                    retimed.kinds.push(KindPaths {
+                    kinds.push(KindPaths {
                         kind,
                         beside,
                         through,
@@ -95,8 +92,12 @@ impl Retimed {
                 }
             }
         }
-        retimed.kinds.sort_unstable_by_key(|each| each.kind);
-        Some(retimed)
+        kinds.sort_unstable_by_key(|each| each.kind);
+        Some(Self {
+            chain_after,
+            kinds,
+            carries,
+        })
     }
 
     /// What becomes of every kind.
@@ -126,12 +127,12 @@ impl Work<'_, '_, '_> {
         !self.site.removed.contains(&gate) && self.swept.binary_search(&gate).is_err()
     }
 
-    /// When the output of a gate that stays is ready.
-    fn arrival(&self, gate: GateId, mut at: impl FnMut(NetId) -> i32) -> i32 {
+    /// When the output of a gate that stays is ready by paths of a way.
+    fn arrival(&self, way: u8, gate: GateId, mut at: impl FnMut(NetId) -> i32) -> i32 {
         let ground = self.site.ground;
         let (netlist, delays) = (ground.netlist, &ground.timing.delays);
         let output = netlist.gate_output(gate);
-        if netlist.is_barred(output) {
+        if netlist.is_barred_on(way, output) {
             return NEVER;
         }
         let pins = netlist.fan_ins(gate).iter();
@@ -150,7 +151,11 @@ impl Work<'_, '_, '_> {
 
     /// The gates that stay and do not depend on the chain: arrivals that change,
     /// and those of gates that drive cut nets.
-    fn before_the_chain(&self, by_net: &[i32]) -> (FxHashMap<NetId, i32>, Vec<(GateId, i32)>) {
+    fn before_the_chain(
+        &self,
+        way: u8,
+        by_net: &[i32],
+    ) -> (FxHashMap<NetId, i32>, Vec<(GateId, i32)>) {
         let site = self.site;
         let ground = site.ground;
         let concerns = |gate: GateId| self.stays(gate) && !site.region_set.contains(&gate);
@@ -164,11 +169,8 @@ impl Work<'_, '_, '_> {
         let mut changed: FxHashMap<NetId, i32> = FxHashMap::default();
         let mut cuts = Vec::new();
         while let Some(Reverse((_, gate))) = waiting.pop() {
-            let at = |net: NetId| match changed.get(&net) {
-                Some(&time) => time,
-                None => by_net[net.index()],
-            };
-            let time = self.arrival(gate, at);
+            let at = |net: NetId| known(&changed, by_net, net);
+            let time = self.arrival(way, gate, at);
             let output = ground.netlist.gate_output(gate);
             if ground.gate_of(output) != Some(gate) {
                 cuts.push((gate, time));
@@ -196,7 +198,7 @@ impl Work<'_, '_, '_> {
     ) -> i32 {
         match place {
             Place::Constant => NEVER,
-            Place::Net(net) => changed.get(&net).copied().unwrap_or(by_net[net.index()]),
+            Place::Net(net) => known(changed, by_net, net),
             Place::Slot(slot) => slots[slot as usize],
         }
     }
@@ -208,35 +210,24 @@ impl Work<'_, '_, '_> {
             let load = self.gates.slot_loads[gate.slot as usize];
             let pins = gate.inputs.iter().zip(gate.prices.iter());
             let pin = |(&place, price): (&Place, &PinPrice)| {
-                later(
-                    self.at(place, by_net, changed, &slots),
-                    price.delay.at(load),
-                )
+                let at = self.at(place, by_net, changed, &slots);
+                later(at, price.delay.at(load))
             };
             slots[gate.slot as usize] = pins.map(pin).max().unwrap_or(NEVER);
-        }
-        // In BLIF a replaced net may be barred, as any net.
-        for (needed, &place) in self.site.needed.iter().zip(&self.gates.needed) {
-            if let Place::Slot(slot) = place
-                && self.gates.is_of_needed(slot)
-                && self.site.ground.netlist.is_barred(needed.net)
-            {
-                slots[slot as usize] = NEVER;
-            }
         }
         slots
     }
 
     /// By group of ends: the longest path beside the chain's results and through
     /// them.
-    fn paths(&self, by_net: &[i32]) -> Vec<(crate::timing::EndGroup, [Longest; 2])> {
+    fn paths(&self, start: StartGroup, by_net: &[i32]) -> Vec<(EndGroup, [Longest; 2])> {
         let site = self.site;
         let ground = site.ground;
-        let (changed, cuts) = self.before_the_chain(by_net);
+        let (changed, cuts) = self.before_the_chain(start.way, by_net);
         let slots = self.new_times(by_net, &changed);
         let mut results: FxHashMap<NetId, i32> = FxHashMap::default();
         for (needed, &place) in site.needed.iter().zip(&self.gates.needed) {
-            let barred = ground.netlist.is_barred(needed.net);
+            let barred = ground.netlist.is_barred_on(start.way, needed.net);
             let time = if barred {
                 NEVER
             } else {
@@ -244,93 +235,93 @@ impl Work<'_, '_, '_> {
             };
             results.insert(needed.net, time);
         }
-        // Behind the chain, by net: the latest beside it and through it.
-        let mut behind: FxHashMap<NetId, [i32; 2]> = FxHashMap::default();
-        let mut cut_behind: Vec<(End, [i32; 2])> = Vec::new();
-        for &gate in &site.region {
-            let side = |through: bool| {
-                self.arrival(gate, |net| match (behind.get(&net), results.get(&net)) {
-                    (Some(times), _) => times[usize::from(through)],
-                    (None, Some(&time)) => {
-                        if through {
-                            time
-                        } else {
-                            NEVER
-                        }
-                    }
-                    (None, None) if through || site.replaced.contains_key(&net) => NEVER,
-                    (None, None) => match changed.get(&net) {
-                        Some(&time) => time,
-                        None => by_net[net.index()],
-                    },
-                })
-            };
-            let times = [side(false), side(true)];
-            let output = ground.netlist.gate_output(gate);
-            if ground.gate_of(output) == Some(gate) {
-                behind.insert(output, times);
-            } else {
-                cut_behind.push((End::Cut(gate), times));
+        let (behind, cut_behind) = self.behind_the_chain(start.way, by_net, &changed, &results);
+        let groups = ground.end_groups();
+        let mut paths: Vec<(EndGroup, [Longest; 2])> =
+            groups.iter().map(|&group| (group, [None, None])).collect();
+        let mut add = |end: End, [beside, through]: [i32; 2]| {
+            for (group, longest) in &mut paths {
+                if end.is_in(ground.netlist, *group) {
+                    offer(&mut longest[0], beside, end);
+                    offer(&mut longest[1], through, end);
+                }
             }
-        }
+        };
         let moved_cuts: FxHashSet<GateId> = cuts.iter().map(|&(gate, _)| gate).collect();
         let is_moved = |end: End| match (end, end_net(ground.netlist, end)) {
             (End::Cut(gate), _) => moved_cuts.contains(&gate),
             (_, Some(net)) => changed.contains_key(&net),
             (_, None) => false,
         };
-        let groups = ground.end_groups();
-        let start = site
-            .starts()
-            .find(|(_, times)| std::ptr::eq(*times, by_net));
-        let mut paths: Vec<_> = groups.iter().map(|&group| (group, [None, None])).collect();
-        let mut add = |end: End, [beside, through]: [i32; 2]| {
-            let Some(group) = end.group(ground.netlist) else {
-                return;
-            };
-            if let Some((_, longest)) = paths.iter_mut().find(|(each, _)| *each == group) {
-                offer(&mut longest[0], beside, end);
-                offer(&mut longest[1], through, end);
-            }
-        };
-        if let Some((start, _)) = start {
-            for &end in &groups {
-                let still = |end: End| !site.is_behind(end) && !is_moved(end);
-                let kind = PathKind { start, end };
-                if let Some((time, end)) = ground.latest_end(kind, still) {
-                    add(end, [time, NEVER]);
-                }
+        for &end in &groups {
+            let still = |end: End| !site.is_behind(end) && !is_moved(end);
+            if let Some((time, end)) = ground.latest_end(PathKind { start, end }, still) {
+                add(end, [time, NEVER]);
             }
         }
         for (gate, time) in cuts {
             add(End::Cut(gate), [time, NEVER]);
         }
-        let mut moved: Vec<(NetId, i32)> = changed.into_iter().collect();
+        let mut moved: Vec<(NetId, i32)> = changed.iter().map(|(&net, &at)| (net, at)).collect();
         moved.sort_unstable();
         for (net, time) in moved {
-            for end in ground.ends_at(net) {
-                add(end, [time, NEVER]);
-            }
+            ground.ends_at(net).for_each(|end| add(end, [time, NEVER]));
         }
         for needed in &site.needed {
-            for end in ground.ends_at(needed.net) {
-                add(end, [NEVER, results[&needed.net]]);
-            }
+            let time = results[&needed.net];
+            let ends = ground.ends_at(needed.net);
+            ends.for_each(|end| add(end, [NEVER, time]));
         }
-        for &gate in &site.region {
-            let output = ground.netlist.gate_output(gate);
-            if let Some(&times) = behind
-                .get(&output)
-                .filter(|_| ground.gate_of(output) == Some(gate))
-            {
-                for end in ground.ends_at(output) {
-                    add(end, times);
-                }
-            }
+        for (net, times) in behind {
+            ground.ends_at(net).for_each(|end| add(end, times));
         }
         for (end, times) in cut_behind {
             add(end, times);
         }
         paths
     }
+
+    /// What the chain's results reach, in the order of the region: the latest
+    /// beside them and through them, by net and at gates that drive cut nets.
+    fn behind_the_chain(
+        &self,
+        way: u8,
+        by_net: &[i32],
+        changed: &FxHashMap<NetId, i32>,
+        results: &FxHashMap<NetId, i32>,
+    ) -> (Vec<(NetId, [i32; 2])>, Vec<(End, [i32; 2])>) {
+        let site = self.site;
+        let ground = site.ground;
+        let mut times: FxHashMap<NetId, [i32; 2]> = FxHashMap::default();
+        let (mut nets, mut cuts) = (Vec::new(), Vec::new());
+        for &gate in &site.region {
+            let side = |through: bool| {
+                self.arrival(way, gate, |net| {
+                    if let Some(times) = times.get(&net) {
+                        return times[usize::from(through)];
+                    }
+                    match (results.get(&net), through) {
+                        (Some(&time), true) => time,
+                        (None, false) if !site.replaced.contains_key(&net) => {
+                            known(changed, by_net, net)
+                        }
+                        _ => NEVER,
+                    }
+                })
+            };
+            let own = [side(false), side(true)];
+            let output = ground.netlist.gate_output(gate);
+            if ground.gate_of(output) == Some(gate) {
+                times.insert(output, own);
+                nets.push((output, own));
+            } else {
+                cuts.push((End::Cut(gate), own));
+            }
+        }
+        (nets, cuts)
+    }
+}
+
+fn known(changed: &FxHashMap<NetId, i32>, by_net: &[i32], net: NetId) -> i32 {
+    changed.get(&net).copied().unwrap_or(by_net[net.index()])
 }
