@@ -219,13 +219,7 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
     /// shows it, else a new net.
     fn make_gates(&mut self) -> Result<(), TooLarge> {
         let run = self.run;
-        let mut first: FxHashMap<Node, (NetId, bool)> = FxHashMap::default();
-        if run.overlay.style() != GateStyle::AndInverter {
-            for (needed, literal) in run.site.needed.iter().zip(&run.literals) {
-                let entry = first.entry(literal.node());
-                entry.or_insert((needed.net, literal.is_inverted()));
-            }
-        }
+        let first = run.first_nets();
         for node in run
             .overlay
             .nodes()
@@ -242,8 +236,8 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
                 continue;
             }
             let (output, inverted) = match first.get(&node) {
-                Some(&(net, inverted)) => (self.net_now(net), inverted),
-                None => (self.new_net()?, false),
+                Some(&(index, inverted)) => (self.net_now(run.site.needed[index].net), inverted),
+                None => (self.new_net()?, run.is_complemented(node)),
             };
             self.add_gate(node, output, inverted)?;
             self.shown[node.index()] = Some(Signal {
@@ -274,21 +268,7 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
             pins.push(self.show(input)?);
         }
         let flags: Vec<bool> = pins.iter().map(|pin| pin.inverted).collect();
-        let function = match overlay.operator(node) {
-            Operator::And => Function::product(&flags, inverted),
-            Operator::Xor => {
-                let odd = flags.iter().fold(inverted, |odd, &flag| odd != flag);
-                Function::parity(flags.len(), odd)
-            }
-            Operator::Cover(table) => {
-                let mut table = table;
-                for (pin, _) in flags.iter().enumerate().filter(|&(_, &flag)| flag) {
-                    table = table.flip(pin);
-                }
-                Function::Table(if inverted { table.complement() } else { table })
-            }
-            Operator::Constant | Operator::Net(_) => unreachable!("only gates are made"),
-        };
+        let function = overlay.operator(node).written(&flags, inverted);
         let nets: Vec<NetId> = pins.iter().map(|pin| pin.net).collect();
         let id = self.builder.function(function);
         self.builder
