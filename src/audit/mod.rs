@@ -307,6 +307,7 @@ fn settings_record(
         delay_model: DelayModelFacts {
             name: settings.model.name().to_owned(),
             unit: settings.model.unit_word().to_owned(),
+            note: settings.model.as_table().map(|table| table.note.clone()),
             misfit,
         },
         new_gates: settings.new_gates.word().to_owned(),

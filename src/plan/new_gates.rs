@@ -8,8 +8,7 @@
 use super::dry_run::DryRun;
 use super::overlay::{GateStyle, Node, Operator};
 use super::site::Site;
-use crate::netlist::{Driver, Function, GateId, NetId};
-use crate::timing::PinPrice;
+use crate::netlist::{Driver, Function, GateId, NetId, PinPrice};
 use rustc_hash::FxHashMap;
 use std::rc::Rc;
 

@@ -14,8 +14,8 @@
 use super::dry_run::{DryRun, KindChange};
 use super::new_gates::{NewGates, Place};
 use super::site::Site;
-use crate::netlist::{GateId, NetId};
-use crate::timing::{End, EndGroup, NEVER, PathKind, PinPrice, StartGroup, end_net};
+use crate::netlist::{GateId, NetId, PinPrice};
+use crate::timing::{End, EndGroup, NEVER, PathKind, StartGroup, end_net};
 use rustc_hash::{FxHashMap, FxHashSet};
 use std::cmp::Reverse;
 use std::collections::BinaryHeap;
