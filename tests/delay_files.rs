@@ -16,7 +16,9 @@ use reading::accept;
 use std::path::{Path, PathBuf};
 
 fn fixture(name: &str) -> PathBuf {
-    Path::new(env!("CARGO_MANIFEST_DIR")).join("fixtures/delays").join(name)
+    Path::new(env!("CARGO_MANIFEST_DIR"))
+        .join("fixtures/delays")
+        .join(name)
 }
 
 fn source(name: &str) -> Source {
@@ -53,7 +55,9 @@ fn pins(netlist: &Netlist, model: DelayModel, net: &str) -> Vec<i32> {
         .gates()
         .find(|&gate| netlist.net_name(netlist.gate_output(gate)) == net)
         .expect("the gate is there");
-    PinDelays::of(netlist, model).of_gate(netlist, gate).to_vec()
+    PinDelays::of(netlist, model)
+        .of_gate(netlist, gate)
+        .to_vec()
 }
 
 #[test]
@@ -124,7 +128,11 @@ fn a_library_is_interpolated_at_a_fixed_slew() {
     let model = harbour("harbour.lib");
     assert_eq!((model.name(), model.unit_word()), ("library", "ns"));
     let table = model.as_table().expect("it is one");
-    assert!(table.note.contains("fixed input slew of 0.1 ns"), "{}", table.note);
+    assert!(
+        table.note.contains("fixed input slew of 0.1 ns"),
+        "{}",
+        table.note
+    );
     let Ok(library) = cells::read(&source("harbour.lib")) else {
         panic!("the library reads");
     };
@@ -163,12 +171,32 @@ fn gates_that_are_no_cell_have_a_price_under_a_library() {
 fn faults_of_a_table_are_told_where_they_are() {
     for (text, place, said) in [
         ("unit: ns\n", "delays.yaml:1", "`gates`"),
-        ("gates:\n  - {inputs: 2, dealy: 0.1}\n", "delays.yaml:2:17", "did you mean `delay`?"),
+        (
+            "gates:\n  - {inputs: 2, dealy: 0.1}\n",
+            "delays.yaml:2:17",
+            "did you mean `delay`?",
+        ),
         ("gtes: []\n", "delays.yaml:1:1", "did you mean `gates`?"),
-        ("gates: [{inputs: 2, slope: 1}]\n", "delays.yaml:1", "expected `delay`"),
-        ("gates: [{inputs: 2, delay: -1}]\n", "delays.yaml:1:28", "a number from 0"),
-        ("gates: [{inputs: 2, delay: fast}]\n", "delays.yaml:1:28", "`fast`"),
-        ("gates: [{inputs: 2, delay: .nan}]\n", "delays.yaml:1:28", "a number from 0"),
+        (
+            "gates: [{inputs: 2, slope: 1}]\n",
+            "delays.yaml:1",
+            "expected `delay`",
+        ),
+        (
+            "gates: [{inputs: 2, delay: -1}]\n",
+            "delays.yaml:1:28",
+            "a number from 0",
+        ),
+        (
+            "gates: [{inputs: 2, delay: fast}]\n",
+            "delays.yaml:1:28",
+            "`fast`",
+        ),
+        (
+            "gates: [{inputs: 2, delay: .nan}]\n",
+            "delays.yaml:1:28",
+            "a number from 0",
+        ),
         (
             "gates: [{inputs: 2, delay: 1}, {inputs: 2, delay: 1}]\n",
             "delays.yaml:1:41",
@@ -177,7 +205,11 @@ fn faults_of_a_table_are_told_where_they_are() {
         ("gates: 3\n", "delays.yaml:1:8", "a list of entries"),
         ("gates: []\n", "delays.yaml:1", "found none"),
         ("- 1\n", "delays.yaml:1", "one of `unit`"),
-        ("unit: 7\ngates: [{inputs: 2, delay: 1}]\n", "delays.yaml:1:7", "`unit`, a word"),
+        (
+            "unit: 7\ngates: [{inputs: 2, delay: 1}]\n",
+            "delays.yaml:1:7",
+            "`unit`, a word",
+        ),
         (
             "gates: [{inputs: 2, delay: 1}]\ncells: {X: {delays: {Y: {A: {}}}}}\n",
             "delays.yaml:2",
@@ -207,16 +239,32 @@ fn faults_of_a_library_are_told_at_their_line() {
         )
     };
     for (text, place, said) in [
-        (cell("cell_rise (t) { values (\"1, 2, 3\"); }"), ":6", "expected 4 values, found 3"),
-        (cell("cell_rise (t) { values (\"1, 2, x, 4\"); }"), ":6", "expected a number"),
-        (cell("cell_rise (u) { values (\"1, 2\"); }"), ":6", "`lu_table_template`"),
+        (
+            cell("cell_rise (t) { values (\"1, 2, 3\"); }"),
+            ":6",
+            "expected 4 values, found 3",
+        ),
+        (
+            cell("cell_rise (t) { values (\"1, 2, x, 4\"); }"),
+            ":6",
+            "expected a number",
+        ),
+        (
+            cell("cell_rise (u) { values (\"1, 2\"); }"),
+            ":6",
+            "`lu_table_template`",
+        ),
         (
             cell("cell_rise (t) { index_1 (\"2, 1\"); values (\"1, 2, 3, 4\"); }"),
             ":6",
             "an axis that ascends",
         ),
         (cell(""), ":1", "expected a cell of one output"),
-        ("library (x) {\n cell (A) {\n".to_owned(), ":3", "expected `}`"),
+        (
+            "library (x) {\n cell (A) {\n".to_owned(),
+            ":3",
+            "expected `}`",
+        ),
     ] {
         let source = Source {
             name: "x.lib".to_owned(),
@@ -235,7 +283,14 @@ fn the_command_line_takes_files_of_delays() {
         let netlist = Path::new(env!("CARGO_MANIFEST_DIR")).join("fixtures/tide_logger.blif");
         assert_cmd::Command::cargo_bin("carrywise")
             .expect("it is built")
-            .args(["audit", &netlist.to_string_lossy(), "--delay", delay, "--as", form])
+            .args([
+                "audit",
+                &netlist.to_string_lossy(),
+                "--delay",
+                delay,
+                "--as",
+                form,
+            ])
             .output()
             .expect("it runs")
     };

@@ -153,7 +153,7 @@ pub fn audit_under(
     drop(sources);
     drop(spares);
     drop(timing);
-    rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
+    rebuilds::note_models(netlist, &topology, &settings, &chains, &plans, &mut records);
     let timing = Timing::of(netlist, &topology, model);
     let mut recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
     if let Some((asserting, _)) = &applied {

@@ -334,6 +334,7 @@ fn proposal(
         } else {
             vec![]
         },
+        flips_under: vec![],
         chain_depth: Change {
             before: at(31),
             after: at(chain),
