@@ -60,7 +60,7 @@ fn every_estimate_under_files_of_delays_is_what_is_built() {
     for name in ["harbour.yaml", "harbour.lib"] {
         let path = format!("{}/fixtures/delays/{name}", env!("CARGO_MANIFEST_DIR"));
         let bytes = std::fs::read(path).expect("the fixture is there");
-        let source = carrywise::source::read(name, &bytes).unwrap();
+        let source = carrywise::source::read(name, &bytes[..]).unwrap();
         let Ok(table) = carrywise::format::delays::read(&source) else {
             panic!("{name} reads");
         };

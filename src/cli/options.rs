@@ -44,7 +44,7 @@ pub struct CommandLine {
 pub enum Command {
     /// Audit netlists: depth, proven carry chains, what a rebuild would bring
     #[command(after_help = AUDIT_EXAMPLES)]
-    Audit(AuditArguments),
+    Audit(Box<AuditArguments>),
     /// Say what a finding means and what to do about it
     #[command(after_help = "Example:\n  carrywise explain net-driven-twice")]
     Explain {

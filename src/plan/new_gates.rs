@@ -56,6 +56,8 @@ impl NewGates {
     pub(super) fn reloaded_drivers(&self, site: &Site<'_>) -> Vec<GateId> {
         let netlist = site.ground.netlist;
         let mut gates: Vec<GateId> = Vec::new();
+        // Sorted below.
+        #[allow(clippy::iter_over_hash_type)]
         for &net in self.loads.keys() {
             match netlist.driver(net) {
                 Driver::Gate(gate) => gates.push(gate),

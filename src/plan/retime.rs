@@ -41,6 +41,16 @@ pub(super) struct Retimed {
 /// A longest path so far.
 type Longest = Option<(i32, End)>;
 
+/// A time beside the chain's results, and one through them.
+type Sides = [i32; 2];
+
+/// What the chain's results reach: nets, and ends that are no net's.
+#[derive(Default)]
+struct Behind {
+    nets: Vec<(NetId, Sides)>,
+    cuts: Vec<(End, Sides)>,
+}
+
 fn offer(longest: &mut Longest, time: i32, end: End) {
     if time != NEVER && longest.is_none_or(|(most, _)| time > most) {
         *longest = Some((time, end));
@@ -235,11 +245,11 @@ impl Work<'_, '_, '_> {
             };
             results.insert(needed.net, time);
         }
-        let (behind, cut_behind) = self.behind_the_chain(start.way, by_net, &changed, &results);
+        let behind = self.behind_the_chain(start.way, by_net, &changed, &results);
         let groups = ground.end_groups();
         let mut paths: Vec<(EndGroup, [Longest; 2])> =
             groups.iter().map(|&group| (group, [None, None])).collect();
-        let mut add = |end: End, [beside, through]: [i32; 2]| {
+        let mut add = |end: End, [beside, through]: Sides| {
             for (group, longest) in &mut paths {
                 if end.is_in(ground.netlist, *group) {
                     offer(&mut longest[0], beside, end);
@@ -272,10 +282,10 @@ impl Work<'_, '_, '_> {
             let ends = ground.ends_at(needed.net);
             ends.for_each(|end| add(end, [NEVER, time]));
         }
-        for (net, times) in behind {
+        for (net, times) in behind.nets {
             ground.ends_at(net).for_each(|end| add(end, times));
         }
-        for (end, times) in cut_behind {
+        for (end, times) in behind.cuts {
             add(end, times);
         }
         paths
@@ -289,11 +299,11 @@ impl Work<'_, '_, '_> {
         by_net: &[i32],
         changed: &FxHashMap<NetId, i32>,
         results: &FxHashMap<NetId, i32>,
-    ) -> (Vec<(NetId, [i32; 2])>, Vec<(End, [i32; 2])>) {
+    ) -> Behind {
         let site = self.site;
         let ground = site.ground;
-        let mut times: FxHashMap<NetId, [i32; 2]> = FxHashMap::default();
-        let (mut nets, mut cuts) = (Vec::new(), Vec::new());
+        let mut times: FxHashMap<NetId, Sides> = FxHashMap::default();
+        let mut found = Behind::default();
         for &gate in &site.region {
             let side = |through: bool| {
                 self.arrival(way, gate, |net| {
@@ -313,12 +323,12 @@ impl Work<'_, '_, '_> {
             let output = ground.netlist.gate_output(gate);
             if ground.gate_of(output) == Some(gate) {
                 times.insert(output, own);
-                nets.push((output, own));
+                found.nets.push((output, own));
             } else {
-                cuts.push((End::Cut(gate), own));
+                found.cuts.push((End::Cut(gate), own));
             }
         }
-        (nets, cuts)
+        found
     }
 }
 

@@ -24,6 +24,8 @@ const MOST: f64 = 1_000_000.0;
 const MOST_INPUTS: i64 = 4096;
 
 type Found<T> = Result<T, Box<Diagnostic>>;
+/// A name, the place of what is said of it, and that.
+type Named<'y> = (Vec<u8>, Vec<Step>, &'y Yaml);
 type Values<'y> = Vec<(&'static str, Vec<Step>, &'y Yaml)>;
 
 pub(super) fn read(source: &Source) -> Found<DelayTable> {
@@ -197,16 +199,11 @@ impl Reader<'_> {
     }
 
     /// The entries of a map whose keys are names.
-    fn named<'y>(
-        &self,
-        what: &str,
-        value: &'y Yaml,
-        path: &[Step],
-    ) -> Found<Vec<(Vec<u8>, Vec<Step>, &'y Yaml)>> {
+    fn named<'y>(&self, what: &str, value: &'y Yaml, path: &[Step]) -> Found<Vec<Named<'y>>> {
         let Yaml::Map(entries) = value else {
             return self.expected(path, what, value, "");
         };
-        let mut named: Vec<(Vec<u8>, Vec<Step>, &Yaml)> = Vec::new();
+        let mut named: Vec<Named<'y>> = Vec::new();
         for (n, (key, value)) in entries.iter().enumerate() {
             let name = match key {
                 Yaml::Text(name) if !name.is_empty() => name.clone(),
