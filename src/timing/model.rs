@@ -125,6 +125,17 @@ impl DelayModel {
         }
     }
 
+    /// What counts as one level, in ticks: a gate where gates are counted, an inverter
+    /// that drives four under logical effort, and a two-input gate under the load
+    /// assumed where a file says what it takes.
+    pub fn level(self) -> i32 {
+        match self {
+            Self::Unit | Self::Pairs => 1,
+            Self::LogicalEffort => effort::FO4 as i32 * self.ticks_per_unit(),
+            Self::Table(_) => self.pin_delay(&Function::product(&[false; 2], true), 0),
+        }
+    }
+
     /// The least that a new gate of `inputs` inputs can delay any of them.
     pub fn least_delay(self, inputs: usize) -> i32 {
         let product = Function::product(&vec![false; inputs], true);
