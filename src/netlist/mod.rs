@@ -32,6 +32,7 @@ mod pattern;
 mod price;
 mod product;
 mod tie;
+mod times;
 mod transparent;
 
 pub use asserted::{Asserted, EndPoint, Pairing};
@@ -49,3 +50,4 @@ pub use model::{
 pub use names::{NameId, Names};
 pub use pattern::Pattern;
 pub use price::{Curve, PinPrice};
+pub use times::FileTimes;

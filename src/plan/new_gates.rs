@@ -125,10 +125,10 @@ impl<'r, 's, 'a> Maker<'r, 's, 'a> {
                     if let Some(existing) = run.overlay.existing(node) {
                         let place = Place::Net(existing.net);
                         self.shown[node.index()] = Some((place, existing.inverted));
-                    } else if run.is_made[node.index()] {
+                    } else if run.made.is_made[node.index()] {
                         let (slot, inverted) = match first.get(&node) {
                             Some(&(index, inverted)) => (index as u32, inverted),
-                            None => (self.new_slot(), run.is_complemented(node)),
+                            None => (self.new_slot(), false),
                         };
                         self.gate(node, slot, inverted);
                         self.shown[node.index()] = Some((Place::Slot(slot), inverted));
