@@ -35,8 +35,8 @@ fn finds_what_the_corpus_holds_and_nothing_false() {
     assert!(figures.false_chains.is_empty(), "{report}");
     let words = |group| figures.recall_of(Family::Sums, group).ratio();
     assert!(words("gate level") >= 0.96, "{report}");
-    assert!(words("AND/inverters") >= 0.97, "{report}");
-    assert!(words("mapped") >= 0.85, "{report}");
+    assert!(words("AND/inverters") >= 0.96, "{report}");
+    assert!(words("mapped") >= 0.88, "{report}");
     assert!(figures.kind.ratio() >= 0.98, "{report}");
 }
 

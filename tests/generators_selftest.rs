@@ -54,7 +54,7 @@ fn ripple_words_compute_what_they_say_for_every_operand() {
 
 #[test]
 fn wide_ripple_words_compute_what_they_say() {
-    for bits in [7, 32, 65, 120] {
+    for bits in [7, 32, 65, 120, 128] {
         for word in Word::every_ripple(bits) {
             must_hold(&word.generate());
         }
@@ -232,7 +232,7 @@ fn fast_word(architecture: Architecture, bits: usize, carry_in: bool) -> Word {
 #[test]
 fn every_architecture_adds_at_every_width() {
     for architecture in Architecture::every_fast() {
-        for bits in (1..=20).chain([31, 32, 48, 64, 100]) {
+        for bits in (1..=20).chain([31, 32, 48, 64, 100, 128]) {
             for carry_in in [false, true] {
                 must_hold(&fast_word(architecture, bits, carry_in).generate());
             }

@@ -3,8 +3,8 @@
 //! and time and memory per gate.
 //!
 //! `cargo bench --bench recognition` prints the figures; words behind `--` that
-//! are numbers set the stride (every n-th case, default 1) and the widest word
-//! (default 126). Time and memory by size are taken in processes of their own on
+//! are numbers set the stride (every n-th case, default 1), the widest word
+//! (default 128) and the mutants per chain (default 1). Time and memory by size are taken in processes of their own on
 //! many 64-bit adders side by side, as in the `scale` bench.
 
 #[path = "../generators/mod.rs"]
@@ -39,12 +39,13 @@ fn main() {
     }
     let numbers: Vec<usize> = arguments.iter().filter_map(|a| a.parse().ok()).collect();
     let stride = numbers.first().copied().unwrap_or(1);
-    let widest = numbers.get(1).copied().unwrap_or(126);
+    let widest = numbers.get(1).copied().unwrap_or(128);
+    let each = numbers.get(2).copied().unwrap_or(1);
     let (mut figures, mut mutants) = (Figures::default(), Mutants::default());
     for (at, case) in cases(SEED, stride, widest).enumerate() {
         let (netlist, found, _) = figures.take(&case);
         if case.form.gates() < 1_000 {
-            mutants.take(&case, &netlist, &found, 1, at as u64);
+            mutants.take(&case, &netlist, &found, each, at as u64);
         }
     }
     for case in negative_cases(SEED) {

@@ -4,6 +4,7 @@
 //! a reference circuit with the same ports.
 
 use super::aig::Aig;
+use super::arrays::{Reduction, multiplier, squarer};
 use super::cells::Cell;
 use super::circuit::Circuit;
 use super::comparators::{Comparator, Shape};
@@ -240,7 +241,7 @@ pub fn recipes() -> Vec<Recipe> {
         for architecture in ripples.into_iter().chain(Architecture::every_fast()) {
             let widest = match architecture {
                 Architecture::FlatLookahead => 24,
-                _ => 126,
+                _ => 128,
             };
             let make = move |bits, seed| word(kind, architecture, bits, seed).generate();
             all.push(recipe(name, architecture.word(), widest, make));
@@ -256,7 +257,7 @@ pub fn recipes() -> Vec<Recipe> {
                 let word = word(kind, architecture, bits, seed);
                 Word { borrow, ..word }.generate()
             };
-            all.push(recipe(name, "ripple", 126, make));
+            all.push(recipe(name, "ripple", 128, make));
         }
     }
     for cell in Cell::ALL {
@@ -264,7 +265,7 @@ pub fn recipes() -> Vec<Recipe> {
         all.push(recipe(
             "subtractor",
             "ripple-borrow",
-            126,
+            128,
             move |bits, seed| {
                 let word = word(Kind::Subtractor, Architecture::Ripple(cell), bits, seed);
                 Word {
@@ -274,10 +275,10 @@ pub fn recipes() -> Vec<Recipe> {
                 .generate()
             },
         ));
-        all.push(recipe("adder-subtractor", "ripple", 126, move |bits, _| {
+        all.push(recipe("adder-subtractor", "ripple", 128, move |bits, _| {
             adder_subtractor(bits, cell)
         }));
-        all.push(recipe("accumulator", "ripple", 126, move |bits, seed| {
+        all.push(recipe("accumulator", "ripple", 128, move |bits, seed| {
             let extension = [Extension::Zero, Extension::Sign][seed as usize % 2];
             let operand = if seed & 4 == 4 {
                 bits
@@ -286,7 +287,7 @@ pub fn recipes() -> Vec<Recipe> {
             };
             accumulator(bits, operand, extension, cell)
         }));
-        all.push(recipe("counter", "ripple", 126, move |bits, seed| {
+        all.push(recipe("counter", "ripple", 128, move |bits, seed| {
             counter(bits, seed & 1 == 1, cell)
         }));
         all.push(recipe("adder in series", "ripple", 64, move |bits, _| {
@@ -295,7 +296,7 @@ pub fn recipes() -> Vec<Recipe> {
         all.push(recipe(
             "adder with overflow",
             "ripple",
-            126,
+            128,
             move |bits, _| with_overflow(bits, cell),
         ));
         all.push(recipe("divider row", "ripple", 16, move |bits, seed| {
@@ -307,7 +308,7 @@ pub fn recipes() -> Vec<Recipe> {
             16,
             move |bits, seed| square_root(bits, seed & 1 == 1, cell),
         ));
-        all.push(recipe("maximum", shape_word(shape), 126, move |bits, _| {
+        all.push(recipe("maximum", shape_word(shape), 128, move |bits, _| {
             maximum(bits, shape)
         }));
     }
@@ -324,15 +325,15 @@ pub fn recipes() -> Vec<Recipe> {
         all.push(recipe("a+b and a+b+1", name, 64, move |bits, _| {
             both_sums(bits, architecture)
         }));
-        all.push(recipe("adder cut short", name, 126, move |bits, seed| {
+        all.push(recipe("adder cut short", name, 128, move |bits, seed| {
             let (low, high) = [(0, 2), (2, 0), (3, 2), (1, 1)][seed as usize % 4];
             let word = word(Kind::Adder, architecture, bits + low + high, seed);
             cut_short(word, low, high)
         }));
-        all.push(recipe("gated operands", name, 126, move |bits, seed| {
+        all.push(recipe("gated operands", name, 128, move |bits, seed| {
             gated_operands(word(Kind::Adder, architecture, bits, seed))
         }));
-        all.push(recipe("selected sums", name, 126, move |bits, seed| {
+        all.push(recipe("selected sums", name, 128, move |bits, seed| {
             selected_sums(word(Kind::Adder, architecture, bits, seed))
         }));
         for oddity in Oddity::ALL {
@@ -342,10 +343,28 @@ pub fn recipes() -> Vec<Recipe> {
                 Oddity::InvertedResults => "inverted results",
                 Oddity::Embedded => "embedded",
             };
-            all.push(recipe(kind, name, 126, move |bits, seed| {
+            all.push(recipe(kind, name, 128, move |bits, seed| {
                 odd_word(word(Kind::Adder, architecture, bits, seed), oddity, seed)
             }));
         }
+    }
+    for way in Reduction::ALL {
+        let name = match way {
+            Reduction::Array => "array",
+            Reduction::CarrySave => "carry-save",
+            Reduction::Wallace => "wallace",
+            Reduction::Dadda => "dadda",
+        };
+        all.push(recipe("product", name, 16, move |bits, _| {
+            multiplier(bits, bits, way, Cell::PropagateXor)
+        }));
+        all.push(recipe("product", name, 16, move |bits, seed| {
+            let rows = 4 + (seed % 8) as usize;
+            multiplier(rows, bits, way, Cell::AndInverter)
+        }));
+        all.push(recipe("product", name, 16, move |bits, _| {
+            squarer(bits, way, Cell::MajorityGates)
+        }));
     }
     for comparator in Comparator::every(0) {
         let kind = match (comparator.relation, comparator.signed) {
@@ -356,7 +375,7 @@ pub fn recipes() -> Vec<Recipe> {
         all.push(recipe(
             kind,
             shape_word(comparator.shape),
-            126,
+            128,
             move |bits, _| Comparator { bits, ..comparator }.generate(),
         ));
     }
@@ -371,7 +390,7 @@ fn shape_word(shape: Shape) -> &'static str {
 pub const WIDTHS: [usize; 12] = [4, 5, 6, 8, 11, 12, 16, 20, 24, 32, 48, 64];
 
 /// Every recipe in every disguise, at one width each, which changes from case to
-/// case; every `stride`-th of them. The widest, 126, comes once per disguise.
+/// case; every `stride`-th of them. The widest, 128, comes once per disguise.
 pub fn cases(seed: u64, stride: usize, widest: usize) -> impl Iterator<Item = Case> {
     let mut random = Random::new(seed);
     let recipes = recipes();
@@ -380,7 +399,7 @@ pub fn cases(seed: u64, stride: usize, widest: usize) -> impl Iterator<Item = Ca
         for (d, disguised) in Disguise::ALL.into_iter().enumerate() {
             let width = WIDTHS[(at * 7 + d * 5 + random.below(3)) % WIDTHS.len()];
             let wide = (at + d) % 40 == 0;
-            let bits = if wide { 126 } else { width };
+            let bits = if wide { 128 } else { width };
             let limit = recipes[at].widest.min(widest);
             let bits = if bits <= limit {
                 bits
@@ -390,6 +409,8 @@ pub fn cases(seed: u64, stride: usize, widest: usize) -> impl Iterator<Item = Ca
             plan.push((at, disguised, bits, random.word() >> 8));
         }
     }
+    // So that every n-th case is a fair sample of kinds and disguises.
+    random.shuffle(&mut plan);
     plan.into_iter()
         .step_by(stride)
         .map(move |(at, disguised, bits, seed)| Case::new(&recipes[at], bits, disguised, seed))

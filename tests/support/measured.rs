@@ -58,6 +58,9 @@ pub struct Figures {
     pub unasked: Vec<String>,
     /// Chains told of negatives, true though they are.
     pub on_negatives: Vec<String>,
+    /// Products searched, and chains told in them: rows, and parts of columns.
+    pub products: usize,
+    pub in_products: usize,
     pub unproven: usize,
     /// The smallest case of each kind, architecture and disguise that falls short.
     pub misses: BTreeMap<(&'static str, &'static str, String), (usize, String)>,
@@ -99,6 +102,10 @@ impl Figures {
         self.false_chains
             .extend(judged.false_chains.iter().cloned());
         match case.kind {
+            "product" => {
+                self.products += 1;
+                self.in_products += judged.unasked.len();
+            }
             "negative" => self.on_negatives.extend(judged.unasked.iter().cloned()),
             _ => self.unasked.extend(judged.unasked.iter().cloned()),
         }
@@ -206,6 +213,8 @@ impl Figures {
         self.on_negatives
             .iter()
             .for_each(|line| writeln!(text, "  {line}").unwrap());
+        let (products, rows) = (self.products, self.in_products);
+        writeln!(text, "chains told in {products} products, true: {rows}").unwrap();
         writeln!(text, "left open: {}", self.unproven).unwrap();
         writeln!(text, "true but not asked for: {}", self.unasked.len()).unwrap();
         self.unasked
