@@ -161,6 +161,12 @@ pub fn audit_under(
     let timing = Timing::of(netlist, &topology, model);
     let mut recommended_set =
         rebuilds::recommended_set(netlist, &records, &plans, together.as_ref(), &timing, unit);
+    if model.depends_on_load() && !recommended_set.proposals.is_empty() {
+        recommended_set.sentence.push_str(
+            " Loads as they are today and a usual load of new gates are assumed of the set; a \
+             proposal's own figures have the loads of its rebuild.",
+        );
+    }
     if let Some((asserting, _)) = &applied {
         assumed::hold_under_ties(asserting.assumptions, &mut recommended_set);
     }
