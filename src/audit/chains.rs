@@ -7,8 +7,10 @@
 use super::carried::{Cones, operand_nets};
 use super::names::{operand, wire};
 use super::rebuilds;
-use super::record::{BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, Place, Wire};
-use crate::chain::{BuiltAs, CarryForm, Chain, Kind};
+use super::record::{
+    BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, Place, TaxonomyRecord, Wire,
+};
+use crate::chain::{CarryForm, Chain, Construction, Kind};
 use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
 use crate::plan::ChainPlan;
 use crate::timing::{Time, Timing};
@@ -174,7 +176,7 @@ impl<'a> Sources<'a> {
             mode: None,
             feedback: self.feedback(chain, registers),
             duplicates: None,
-            built_as: self.built_as(index, chain, &depth),
+            built_as: self.built_as(index, chain),
             proven: true,
             place: self.place(chain),
             depth,
@@ -212,28 +214,31 @@ impl<'a> Sources<'a> {
             .collect()
     }
 
-    fn built_as(&self, index: usize, chain: &Chain, depth: &ChainDepth) -> BuiltAsRecord {
-        let (name, nearest, detail) = match chain.built_as {
-            BuiltAs::Ripple => (
-                "ripple",
-                Some("ripple".to_owned()),
-                "every carry is made from the carry just below it",
-            ),
-            BuiltAs::Mixed => (
-                "mixed",
-                None,
-                "not every carry is made from the carry just below it",
-            ),
-        };
+    fn built_as(&self, index: usize, chain: &Chain) -> BuiltAsRecord {
         let outputs = self.cones.gates[index].iter();
         let readers = outputs.map(|&gate| self.readers[self.netlist.gate_output(gate).index()]);
-        BuiltAsRecord {
-            name: name.to_owned(),
+        let Construction {
             nearest,
-            group: None,
-            levels: Some((depth.leaves - depth.arrives).max(Time::ZERO)),
+            group,
+            levels,
+            cells,
+            taxonomy,
+            detail,
+        } = &chain.construction;
+        let count = |n: Option<usize>| n.map(|n| n as u64);
+        BuiltAsRecord {
+            name: chain.built_as.word().to_owned(),
+            nearest: nearest.map(str::to_owned),
+            group: count(*group),
+            levels: count(*levels),
+            cells: count(*cells),
             largest_fan_out: readers.max().map(u64::from),
-            detail: detail.to_owned(),
+            taxonomy: taxonomy.map(|place| TaxonomyRecord {
+                l: place.extra_levels as u64,
+                f: place.fan_out as u64,
+                t: place.tracks as u64,
+            }),
+            detail: detail.clone(),
         }
     }
 

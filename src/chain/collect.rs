@@ -144,13 +144,16 @@ impl Collector<'_> {
             }
             _ => CarryForm::Carry,
         };
+        let on_net = |node| self.labels.net(node).is_some();
+        let (built_as, construction) = built_as(self.subject, theorem, on_net);
         Chain {
             kind,
             positions,
             carry_in: bit(self.labels, theorem.carry_in),
             has_carry_out,
             carry_form,
-            built_as: built_as(self.subject, theorem),
+            built_as,
+            construction,
         }
     }
 }

@@ -22,4 +22,4 @@ mod trim;
 mod verify;
 
 pub use find::{Found, Options, Unproven, find};
-pub use model::{BuiltAs, CarryForm, Chain, Kind, Position};
+pub use model::{BuiltAs, CarryForm, Chain, Construction, Kind, Position, Taxonomy};
