@@ -1,10 +1,10 @@
 //! Proven chains into the record: order, ids, names, place, times, feedback.
 //!
 //! Chains are ordered widest first, then by their lowest operand net, which is
-//! the same on every run. A fingerprint is made from ports and registers only,
-//! so that it survives a revision that renumbers lines and internal nets.
+//! the same on every run.
 
 use super::carried::{Cones, operand_nets};
+use super::fingerprint::Prints;
 use super::names::{operand, wire};
 use super::rebuilds;
 use super::record::{
@@ -13,9 +13,8 @@ use super::record::{
 use crate::chain::{CarryForm, Chain, Construction, Kind};
 use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
 use crate::plan::ChainPlan;
-use crate::timing::{Time, Timing};
+use crate::timing::Timing;
 use rustc_hash::{FxHashMap, FxHashSet};
-use sha2::{Digest, Sha256};
 use std::cmp::Reverse;
 use std::fmt::Write;
 
@@ -66,23 +65,31 @@ impl<'a> Sources<'a> {
         chains: &[Chain],
     ) -> Self {
         let all = || chains.iter().flat_map(|chain| &chain.positions);
-        let results: FxHashSet<NetId> = all()
+        let shown: FxHashSet<NetId> = all()
             .flat_map(|bits| bits.sums.iter().chain(&bits.carries))
             .map(|signal| signal.net)
+            .chain(chains.iter().flat_map(operand_nets))
             .collect();
-        let mut shown_by = FxHashMap::default();
+        // Of several, the first by name: their order in the file may change.
+        let mut shown_by: FxHashMap<NetId, String> = FxHashMap::default();
+        let mut show = |net: NetId, name: String| {
+            let known = shown_by.entry(net).or_insert_with(|| name.clone());
+            if name < *known {
+                *known = name;
+            }
+        };
         for output in netlist.outputs() {
-            if results.contains(&output.signal.net) {
-                shown_by
-                    .entry(output.signal.net)
-                    .or_insert_with(|| format!("out {}", netlist.output_name(output)));
+            if shown.contains(&output.signal.net) {
+                show(
+                    output.signal.net,
+                    format!("out {}", netlist.output_name(output)),
+                );
             }
         }
         for register in netlist.registers() {
-            if results.contains(&register.input.net) {
-                shown_by
-                    .entry(register.input.net)
-                    .or_insert_with(|| format!("reg {}", netlist.net_name(register.output)));
+            if shown.contains(&register.input.net) {
+                let name = netlist.net_name(register.output);
+                show(register.input.net, format!("reg {name}"));
             }
         }
         let mut pins: FxHashMap<NetId, Vec<_>> = all()
@@ -123,12 +130,16 @@ impl<'a> Sources<'a> {
             .enumerate()
             .map(|(i, register)| (register.output, i))
             .collect();
-        let mut prints = FxHashMap::default();
-        chains
-            .iter()
-            .enumerate()
-            .map(|(index, chain)| self.record(index, chain, &plans[index], &registers, &mut prints))
-            .collect()
+        let mut prints = Prints::of(self.netlist, self.topology, &self.shown_by);
+        let earlier = duplicates(chains);
+        let each = chains.iter().enumerate();
+        each.map(|(index, chain)| {
+            let place = self.place(chain);
+            let fingerprint = prints.fingerprint(chain, &place.instance);
+            let marks = (fingerprint, earlier[index].map(id));
+            self.record(index, chain, &plans[index], &registers, place, marks)
+        })
+        .collect()
     }
 
     fn record(
@@ -137,7 +148,8 @@ impl<'a> Sources<'a> {
         chain: &Chain,
         plan: &ChainPlan,
         registers: &FxHashMap<NetId, usize>,
-        prints: &mut FxHashMap<String, u32>,
+        place: Place,
+        (fingerprint, duplicates): (String, Option<String>),
     ) -> ChainRecord {
         let netlist = self.netlist;
         let name = |signal: Signal| netlist.signal_name(signal);
@@ -152,7 +164,7 @@ impl<'a> Sources<'a> {
         let own: FxHashSet<_> = self.cones.gates[index].iter().copied().collect();
         ChainRecord {
             id: id(index),
-            fingerprint: self.fingerprint(chain, prints),
+            fingerprint,
             array: None,
             kind: chain.kind.word().to_owned(),
             bits: bits(chain),
@@ -175,10 +187,10 @@ impl<'a> Sources<'a> {
             signed: None,
             mode: None,
             feedback: self.feedback(chain, registers),
-            duplicates: None,
+            duplicates,
             built_as: self.built_as(index, chain),
             proven: true,
-            place: self.place(chain),
+            place,
             depth,
             on_longest_path: self.on_longest_path(chain),
             slack: plan.slack.map(|slack| self.timing.time(slack.ticks)),
@@ -337,29 +349,25 @@ impl<'a> Sources<'a> {
         }
         false
     }
+}
 
-    /// Sixteen hexadecimal digits of SHA-256 over kind, ports and registers, and
-    /// an ordinal that tells equal ones apart.
-    fn fingerprint(&self, chain: &Chain, prints: &mut FxHashMap<String, u32>) -> String {
-        let mut points = format!("{}\n", chain.kind.word());
-        for bits in &chain.positions {
-            let source = |bit: Bit| match bit {
-                Bit::Constant(value) => u8::from(value).to_string(),
-                Bit::Signal(signal) => match self.netlist.driver(signal.net) {
-                    Driver::Input(_) => format!("in {}", self.netlist.signal_name(signal)),
-                    Driver::Register(_) => format!("reg {}", self.netlist.signal_name(signal)),
-                    _ => "-".to_owned(),
-                },
-            };
-            let shown = bits.sums.iter().find_map(|sum| self.shown_by.get(&sum.net));
-            let shown = shown.map_or("-", String::as_str);
-            let _ = writeln!(points, "{}\t{}\t{shown}", source(bits.a), source(bits.b));
-        }
-        let ordinal = prints.entry(points.clone()).or_insert(0);
-        let _ = writeln!(points, "{ordinal}");
-        *ordinal += 1;
-        hexadecimal(&Sha256::digest(points.as_bytes())[..8])
-    }
+/// By chain, the first earlier one with the same operands and carry-in, and so
+/// the same function.
+fn duplicates(chains: &[Chain]) -> Vec<Option<usize>> {
+    let mut first: FxHashMap<(Kind, Bit, Vec<[Bit; 2]>), usize> = FxHashMap::default();
+    let each = chains.iter().enumerate().map(|(index, chain)| {
+        let operands = chain.positions.iter().map(|bits| {
+            let mut pair = [bits.a, bits.b];
+            if chain.kind != Kind::Subtractor {
+                pair.sort_unstable();
+            }
+            pair
+        });
+        let key = (chain.kind, chain.carry_in, operands.collect());
+        let earlier = *first.entry(key).or_insert(index);
+        (earlier != index).then_some(earlier)
+    });
+    each.collect()
 }
 
 /// Bytes in hexadecimal digits.

@@ -4,9 +4,11 @@
 //! A net that no gate drives, and a copy of an operand, is no result of a chain.
 
 use super::built_as::built_as;
+use super::carry_cells::in_carry_cells;
+use super::copies::copies;
 use super::kinds::{order_operands, read};
 use super::label::Labels;
-use super::model::{CarryForm, Chain, Kind, Position};
+use super::model::{BuiltAs, CarryForm, Chain, Construction, Kind, Position};
 use super::verify::Theorem;
 use crate::netlist::{Bit, Driver, NetId, Netlist, Signal};
 use crate::subject::{Literal, NodeId, Subject};
@@ -67,14 +69,20 @@ pub(super) fn collect(
     // Each theorem is given up as its chain is made: both at once are large.
     let mut chains: Vec<Chain> = theorems
         .into_iter()
-        .map(|theorem| {
+        .flat_map(|theorem| {
             let (kind, mut theorem) = read(subject, labels, theorem);
             if kind != Kind::Subtractor {
                 order_operands(labels, &mut theorem);
             }
-            collector.chain(kind, &theorem)
+            collector.copies(kind, &theorem)
         })
         .collect();
+    // Each copy of a theorem may have been found as one of its own.
+    let mut known: FxHashSet<Vec<NetId>> = FxHashSet::default();
+    chains.retain(|chain| {
+        let sums = chain.positions.iter().map(|position| position.sums[0].net);
+        known.insert(sums.collect())
+    });
     chains.sort_by_cached_key(|chain| {
         let sums = chain.positions.iter().flat_map(|p| &p.sums);
         let lowest = sums.map(|s| s.net).min();
@@ -91,7 +99,29 @@ struct Collector<'a> {
 }
 
 impl Collector<'_> {
-    fn chain(&self, kind: Kind, theorem: &Theorem) -> Chain {
+    /// The chain of a theorem, or one for each time it is built.
+    fn copies(&self, kind: Kind, theorem: &Theorem) -> Vec<Chain> {
+        let nets = |node| self.nets.of_node(node).collect();
+        let Some((count, copy)) = copies(self.netlist, self.subject, theorem, nets) else {
+            return vec![self.chain(kind, theorem, &|_| true)];
+        };
+        let one = |at: usize| {
+            let own = |net: NetId| copy.get(&net).is_none_or(|&copy| copy == at);
+            let has_own = |literal: &Literal| self.nets.of_node(literal.node()).any(own);
+            let mut theorem = theorem.clone();
+            for literals in theorem.sums.iter_mut().chain(&mut theorem.carries) {
+                literals.retain(has_own);
+            }
+            for (bits, sums) in theorem.bits.iter_mut().zip(&theorem.sums) {
+                bits.sum = sums.first().copied().unwrap_or(bits.sum);
+            }
+            self.chain(kind, &theorem, &own)
+        };
+        (0..count).map(one).collect()
+    }
+
+    /// `own` says which nets are the chain's.
+    fn chain(&self, kind: Kind, theorem: &Theorem, own: &dyn Fn(NetId) -> bool) -> Chain {
         let operands: FxHashSet<NodeId> = theorem
             .bits
             .iter()
@@ -104,7 +134,7 @@ impl Collector<'_> {
                     let inverted = self.subject.of_net(net) != *literal;
                     let copy = operands.contains(&literal.node()) && inverted;
                     let driven = matches!(self.netlist.driver(net), Driver::Gate(_));
-                    if driven && !copy {
+                    if driven && !copy && own(net) {
                         signals.push(Signal { net, inverted });
                     }
                 }
@@ -145,15 +175,19 @@ impl Collector<'_> {
             _ => CarryForm::Carry,
         };
         let on_net = |node| self.labels.net(node).is_some();
-        let (built_as, construction) = built_as(self.subject, theorem, on_net);
+        let (built_as, construction) = if in_carry_cells(self.netlist, &positions) {
+            (BuiltAs::CarryCell, Construction::of_carry_cells())
+        } else {
+            built_as(self.subject, theorem, on_net)
+        };
         Chain {
             kind,
-            positions,
             carry_in: bit(self.labels, theorem.carry_in),
             has_carry_out,
             carry_form,
             built_as,
             construction,
+            positions,
         }
     }
 }

@@ -11,7 +11,9 @@
 
 mod built_as;
 mod candidate;
+mod carry_cells;
 mod collect;
+mod copies;
 mod entries;
 mod find;
 mod kinds;

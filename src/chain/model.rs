@@ -56,6 +56,8 @@ pub enum BuiltAs {
     Prefix,
     /// Only the last carry is made, from spans joined in a tree.
     Tree,
+    /// The carries run inside cells declared carry cells.
+    CarryCell,
     /// None of these, or not understood.
     Mixed,
 }
@@ -72,6 +74,7 @@ impl BuiltAs {
             Self::ConditionalSum => "conditional-sum",
             Self::Prefix => "prefix",
             Self::Tree => "tree",
+            Self::CarryCell => "carry-cell",
             Self::Mixed => "mixed",
         }
     }
@@ -104,6 +107,17 @@ pub struct Construction {
     pub taxonomy: Option<Taxonomy>,
     /// A few words more.
     pub detail: String,
+}
+
+impl Construction {
+    /// What is known of a chain inside carry cells.
+    pub(super) fn of_carry_cells() -> Self {
+        Self {
+            detail: "its carries run inside cells declared carry cells, with their declared delays"
+                .to_owned(),
+            ..Self::default()
+        }
+    }
 }
 
 /// One bit position of a chain, least significant first.

@@ -11,21 +11,21 @@
 
 use super::super::model::{BuiltAs, Construction};
 use super::made_from::{Ends, MadeFrom, Parts};
-use super::nearest::{NAMED, nearest};
-use super::{mixed, rows};
-use std::collections::BTreeMap;
+use super::mixed;
+use super::nearest::nearest;
+use super::network::{like, network, same_spans, valency};
+use super::written::written_out;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// Share of positions that have to agree.
 const AGREE: f64 = 0.9;
 /// Positions a step of a ripple may span: a six-input cover takes two.
 const STEP: i32 = 2;
-/// Group sizes of lookahead that are told from distances.
-const GROUPS: std::ops::RangeInclusive<i32> = 3..=16;
 
 /// What is known about how one carry above the start is made.
-struct Evidence {
-    at: i32,
-    parts: Parts,
+pub(super) struct Evidence {
+    pub(super) at: i32,
+    pub(super) parts: Parts,
 }
 
 /// See the head of the module.
@@ -35,12 +35,16 @@ pub(super) fn classify(made: &MadeFrom) -> (BuiltAs, Construction) {
     if evidence.is_empty() || !mostly(evidence.len() - foreign, evidence.len()) {
         return mixed("its carries read nets that are no part of it");
     }
-    let found = stepwise(made, &evidence)
-        .or_else(|| skip(made, &evidence))
-        .or_else(|| chosen(made, &evidence))
-        .or_else(|| passed_on(made, &evidence))
-        .or_else(|| written_out(made, &evidence))
-        .or_else(|| network(made));
+    let found = stepwise(made, &evidence).or_else(|| {
+        let likest = nearest(made, valency(made));
+        same_spans(made, likest)
+            .or_else(|| skip(made, &evidence))
+            .or_else(|| chosen(made, &evidence))
+            .or_else(|| passed_on(made, &evidence))
+            .or_else(|| written_out(made, &evidence))
+            .or_else(|| like(made, likest))
+            .or_else(|| network(made, likest))
+    });
     let Some((form, mut construction)) = found else {
         return mixed("its nets are spans that no published way to build it explains");
     };
@@ -49,7 +53,7 @@ pub(super) fn classify(made: &MadeFrom) -> (BuiltAs, Construction) {
     (form, construction)
 }
 
-fn mostly(some: usize, all: usize) -> bool {
+pub(super) fn mostly(some: usize, all: usize) -> bool {
     some as f64 >= AGREE * all as f64
 }
 
@@ -73,7 +77,7 @@ fn evidence(made: &MadeFrom) -> Vec<Evidence> {
     evidence
 }
 
-fn named(nearest: &'static str, detail: String) -> Construction {
+pub(super) fn named(nearest: &'static str, detail: String) -> Construction {
     Construction {
         nearest: Some(nearest),
         detail,
@@ -106,61 +110,58 @@ fn stepwise(made: &MadeFrom, evidence: &[Evidence]) -> Option<(BuiltAs, Construc
 }
 
 /// Stepwise, with some carries passed over whole blocks where the block
-/// propagates.
+/// propagates; what comes out of the block otherwise may have rippled through it
+/// with the carry or without.
 fn skip(made: &MadeFrom, evidence: &[Evidence]) -> Option<(BuiltAs, Construction)> {
-    let mut blocks = Vec::new();
-    let mut steps = 0;
+    let (mut passed, mut without_carry) = (Vec::new(), Vec::new());
+    let mut steps = BTreeSet::new();
     let rippled = |&(high, low): &Ends| {
-        high - low < 2
-            || made.generates[&(high, low)]
-                .generates
-                .contains(&(high - 1, low))
+        let own = &made.generates[&(high, low)].generates;
+        high - low < 2 || own.contains(&(high - 1, low))
     };
     for Evidence { at, parts } in evidence {
         if !parts.forced.is_empty() || !parts.sums_for.is_empty() {
             return None;
         }
         let below: Vec<i32> = parts.carries.iter().copied().filter(|c| c < at).collect();
-        let (first, last) = (below.first().copied(), below.last().copied());
-        let near = parts.same || last.is_some_and(|last| at - last <= STEP);
-        let far = first.filter(|&first| at - first > 1);
-        let own_block = parts.generates.iter().all(|&(high, _)| high == *at);
-        match (near, far) {
-            // What ripples through the block, or what passes it.
-            (true, Some(far)) if !parts.propagates.is_empty() || parts.leaves.len() > 1 => {
-                blocks.push(at - far);
+        let joins_two = below.len() > usize::from(!parts.same);
+        match below.first() {
+            Some(&far) if joins_two && parts.generates.is_empty() => passed.push(at - far),
+            Some(&far) if !parts.generates.is_empty() => {
+                let own = |ends: &Ends| ends.0 == *at && rippled(ends);
+                if joins_two || !parts.generates.iter().all(own) {
+                    return None;
+                }
+                without_carry.push((far, *at));
             }
-            (false, Some(far))
-                if !parts.generates.is_empty()
-                    && own_block
-                    && parts.generates.iter().all(rippled) =>
-            {
-                blocks.push(at - far);
+            Some(&near) if at - near > STEP => return None,
+            _ => {
+                steps.insert(*at);
             }
-            (_, None) if parts.generates.is_empty() => steps += 1,
-            (true, Some(_)) if parts.generates.is_empty() => steps += 1,
-            // The first block is entered at the start.
-            _ if below.is_empty() => steps += 1,
-            _ => return None,
         }
     }
-    let passed: i32 = blocks.iter().sum();
-    let long = blocks.iter().any(|&block| block > 2);
-    let is_skip = long && steps >= blocks.len() && 3 * passed >= made.positions;
-    let group = common(&blocks)?;
-    is_skip.then(|| {
-        let detail = format!(
-            "the carry ripples through blocks and may pass {} of them, most of {group} positions",
-            blocks.len()
-        );
-        let construction = Construction {
-            group: Some(group as usize),
-            nearest: None,
-            detail,
-            ..Construction::default()
-        };
-        (BuiltAs::Skip, construction)
-    })
+    for &(far, at) in &without_carry {
+        if (far + 1..at).any(|inside| !steps.contains(&inside)) {
+            return None;
+        }
+        passed.push(at - far);
+    }
+    let covered: i32 = passed.iter().sum();
+    let long = passed.iter().any(|&block| block > 2);
+    if !long || 3 * covered < made.positions {
+        return None;
+    }
+    let group = common(&passed)?;
+    let detail = format!(
+        "the carry ripples through blocks and may pass {} of them, most of {group} positions",
+        passed.len()
+    );
+    let construction = Construction {
+        group: Some(group as usize),
+        detail,
+        ..Construction::default()
+    };
+    Some((BuiltAs::Skip, construction))
 }
 
 /// Both results of a block computed, one of them chosen.
@@ -256,7 +257,10 @@ fn passed_on(made: &MadeFrom, evidence: &[Evidence]) -> Option<(BuiltAs, Constru
             *top = (*top).max(*at);
         }
     }
-    if 2 * passed < evidence.len() {
+    // The first block is entered by the real carry.
+    let first = tops.keys().next().map_or(0, |&low| low);
+    let above = evidence.iter().filter(|e| e.at >= first).count();
+    if 2 * passed < above {
         return None;
     }
     let blocks: Vec<i32> = tops.iter().map(|(low, top)| top - low + 1).collect();
@@ -272,186 +276,6 @@ fn passed_on(made: &MadeFrom, evidence: &[Evidence]) -> Option<(BuiltAs, Constru
         )
     };
     Some((BuiltAs::Increment, construction))
-}
-
-/// Carries written out over operands: over all of them, or group by group.
-fn written_out(made: &MadeFrom, evidence: &[Evidence]) -> Option<(BuiltAs, Construction)> {
-    let start = made.lowest.max(0);
-    let flat: Vec<(i32, Parts)> = evidence
-        .iter()
-        .map(|e| (e.at, written(made, e.at, &e.parts)))
-        .collect();
-    let at_once = flat.iter().filter(|(at, parts)| {
-        let below = parts.carries.iter().all(|&c| c <= start || c >= *at);
-        below && parts.generates.is_empty() && parts.forced.is_empty()
-    });
-    if made.positions > 2 && mostly(at_once.count(), flat.len()) {
-        let detail = "every carry is written out over all positions below it";
-        let construction = named("flat-lookahead", detail.to_owned());
-        return Some((BuiltAs::Lookahead, construction));
-    }
-    let agrees = |group: i32| {
-        let agrees = |(at, parts): &&(i32, Parts)| {
-            let inside = at % group;
-            let entry = at - inside - 1;
-            let mut below = parts.carries.iter().copied().filter(|c| c < at);
-            if !parts.forced.is_empty() {
-                return false;
-            }
-            let aligned = |&(high, low): &Ends| low % group == 0 && (high + 1) % group == 0;
-            if inside + 1 < group {
-                let first = entry <= start;
-                let enters = |c: i32| c == entry || (first && c <= start);
-                parts.generates.is_empty() && below.all(enters)
-            } else {
-                parts.generates.iter().all(aligned)
-                    && below.all(|c| c <= start || (c + 1) % group == 0)
-            }
-        };
-        let count = flat.iter().filter(agrees).count();
-        mostly(count, flat.len())
-    };
-    let group = GROUPS
-        .filter(|&group| group < made.positions)
-        .find(|&g| agrees(g))?;
-    let construction = Construction {
-        group: Some(group as usize),
-        ..named(
-            "group-lookahead",
-            format!("carries are written out over groups of {group} positions"),
-        )
-    };
-    Some((BuiltAs::Lookahead, construction))
-}
-
-/// What a net is made from when spans that end at its own top are taken apart:
-/// the products of a written-out carry, added up one by one, are such spans.
-fn written(made: &MadeFrom, top: i32, parts: &Parts) -> Parts {
-    let mut flat = parts.clone();
-    let mut open: Vec<Ends> = Vec::new();
-    flat.generates.retain(|&ends| {
-        if ends.0 == top {
-            open.push(ends);
-        }
-        ends.0 != top
-    });
-    let mut seen = Vec::new();
-    while let Some(ends) = open.pop() {
-        if seen.contains(&ends) {
-            continue;
-        }
-        seen.push(ends);
-        let Some(own) = made.generates.get(&ends) else {
-            continue;
-        };
-        flat.leaves.extend(&own.leaves);
-        flat.carries.extend(&own.carries);
-        flat.forced.extend(&own.forced);
-        for &part in &own.generates {
-            if part.0 == top {
-                open.push(part);
-            } else {
-                flat.generates.push(part);
-            }
-        }
-    }
-    flat
-}
-
-/// A network of spans that meet: by likeness to a scheme, or at least by levels.
-fn network(made: &MadeFrom) -> Option<(BuiltAs, Construction)> {
-    let taxonomy = rows::place(made);
-    let place = |construction: Construction| {
-        let place = taxonomy.map(|place| {
-            format!(
-                "; levels beyond the fewest {}, fan-out 2^{}, tracks 2^{}",
-                place.extra_levels, place.fan_out, place.tracks
-            )
-        });
-        Construction {
-            detail: construction.detail + &place.unwrap_or_default(),
-            taxonomy,
-            ..construction
-        }
-    };
-    let best = nearest(made);
-    if let Some(best) = best.filter(|best| best.index >= NAMED) {
-        let exactly = if best.index == 1.0 {
-            "are"
-        } else {
-            "are nearly"
-        };
-        let detail = format!("its spans {exactly} those of {}", best.scheme);
-        let construction = Construction {
-            group: best.group,
-            ..named(best.scheme, detail)
-        };
-        return match best.scheme {
-            "ripple" | "flat-lookahead" => None,
-            "group-lookahead" => Some((BuiltAs::Lookahead, construction)),
-            "carry-increment" => Some((BuiltAs::Increment, construction)),
-            "carry-select" => Some((BuiltAs::Select, construction)),
-            "conditional-sum" => Some((BuiltAs::ConditionalSum, construction)),
-            _ => Some((BuiltAs::Prefix, place(construction))),
-        };
-    }
-    let spans = made.generates.iter().map(|(&ends, parts)| (ends, parts));
-    let carries = made
-        .carry_nets()
-        .map(|(at, parts)| ((at, made.lowest), parts));
-    let (mut all, mut meet) = (0, 0);
-    for (ends, parts) in spans.chain(carries) {
-        all += 1;
-        meet += usize::from(pieces(made, ends, parts).is_some());
-    }
-    let width = made.positions.max(2) as usize;
-    let few = made.levels <= 2 * width.next_power_of_two().trailing_zeros() as usize;
-    if all == 0 || !mostly(meet, all) || !few {
-        return None;
-    }
-    let no_sums = made.sums.iter().all(Vec::is_empty);
-    let only_top = made.carry_nets().all(|(at, _)| at == made.positions - 1);
-    if no_sums && only_top {
-        let detail = "the last carry is made from spans joined in a tree".to_owned();
-        let construction = Construction {
-            detail,
-            ..Construction::default()
-        };
-        return Some((BuiltAs::Tree, construction));
-    }
-    let likest = best.map(|best| {
-        let percent = (100.0 * best.index).floor();
-        format!(", most like {} ({percent} % of the spans)", best.scheme)
-    });
-    let detail = format!(
-        "every carry is made from spans that meet{}",
-        likest.unwrap_or_default()
-    );
-    let construction = Construction {
-        detail,
-        ..Construction::default()
-    };
-    Some((BuiltAs::Prefix, place(construction)))
-}
-
-/// The spans a net is joined from, highest first; `None` when they do not meet.
-pub(super) fn pieces(made: &MadeFrom, (high, low): Ends, parts: &Parts) -> Option<Vec<Ends>> {
-    let mut pieces = Vec::new();
-    let mut top = high;
-    while top >= low {
-        let carry = parts.carries.contains(&top) && top < high && low == made.lowest;
-        let span = parts.generates.iter().filter(|ends| ends.0 == top);
-        let widest = span.map(|ends| ends.1).filter(|&l| l >= low).min();
-        let own = match widest {
-            _ if carry => low,
-            Some(low) => low,
-            None if parts.leaves.contains(&top) => top,
-            None => return None,
-        };
-        pieces.push((top, own));
-        top = own - 1;
-    }
-    (pieces.len() > 1).then_some(pieces)
 }
 
 /// The most frequent value; the smallest of equals.

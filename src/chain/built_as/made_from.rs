@@ -154,17 +154,19 @@ impl MadeFrom {
     }
 
     fn keep(&mut self, label: Label, parts: Parts) {
-        match label {
-            Label::Carry(at) => self.carries[at as usize].push(parts),
-            Label::Sum(at) => self.sums[at as usize].push(parts),
-            Label::Generate(high, low) => drop(self.generates.entry((high, low)).or_insert(parts)),
-            Label::Forced(high, low) => drop(self.forced.entry((high, low)).or_insert(parts)),
-            Label::Propagate(high, low) => {
-                drop(self.propagates.entry((high, low)).or_insert(parts));
+        let spans = match label {
+            Label::Carry(at) => return self.carries[at as usize].push(parts),
+            Label::Sum(at) => return self.sums[at as usize].push(parts),
+            Label::SumFor(_, high, low) => {
+                self.sums_for.insert((high, low));
+                return;
             }
-            Label::SumFor(_, high, low) => drop(self.sums_for.insert((high, low))),
-            Label::Leaf(_) => {}
-        }
+            Label::Generate(high, low) => self.generates.entry((high, low)),
+            Label::Forced(high, low) => self.forced.entry((high, low)),
+            Label::Propagate(high, low) => self.propagates.entry((high, low)),
+            Label::Leaf(_) => return,
+        };
+        spans.or_insert(parts);
     }
 
     /// Nodes of the carry network on the longest way to a net. A sum adds none,

@@ -16,9 +16,11 @@ mod classify;
 mod cone;
 mod made_from;
 mod nearest;
+mod network;
 mod ripple;
 mod rows;
 mod spans;
+mod written;
 
 use super::model::{BuiltAs, Construction};
 use super::verify::Theorem;

@@ -16,6 +16,8 @@ pub(super) const NAMED: f64 = 0.9;
 
 /// Above so many positions only schemes of linear size are compared.
 const MOST_POSITIONS: i32 = 1024;
+/// The highest valency tried.
+const MOST_VALENCY: usize = 4;
 /// Above so many, none of cubic size.
 const MOST_CUBIC: i32 = 48;
 
@@ -27,8 +29,9 @@ pub(super) struct Likeness {
     pub(super) index: f64,
 }
 
-/// Compares with every scheme in every variation; the first of equals counts.
-pub(super) fn nearest(made: &MadeFrom) -> Option<Likeness> {
+/// Compares with every scheme in every variation up to a valency; the first of
+/// equals counts.
+pub(super) fn nearest(made: &MadeFrom, valency: usize) -> Option<Likeness> {
     let own = Spans::of(made);
     let mut best: Option<Likeness> = None;
     for scheme in all() {
@@ -40,7 +43,7 @@ pub(super) fn nearest(made: &MadeFrom) -> Option<Likeness> {
         if !fits {
             continue;
         }
-        for settings in variations(scheme, made.positions) {
+        for settings in variations(scheme, made.positions, valency) {
             let index = own.likeness(scheme, settings);
             if best.is_none_or(|best| index > best.index) {
                 best = Some(Likeness {
@@ -54,8 +57,13 @@ pub(super) fn nearest(made: &MadeFrom) -> Option<Likeness> {
     best
 }
 
-fn variations(scheme: &Scheme, positions: i32) -> Vec<Settings> {
-    let most = if positions <= MOST_POSITIONS { 4 } else { 2 };
+fn variations(scheme: &Scheme, positions: i32, valency: usize) -> Vec<Settings> {
+    let most = if positions <= MOST_POSITIONS {
+        MOST_VALENCY
+    } else {
+        2
+    };
+    let most = valency.clamp(2, most);
     let levels = (i32::BITS - positions.leading_zeros()) as usize;
     let range = |takes: bool, usual: usize, all: std::ops::RangeInclusive<usize>| {
         if takes { all } else { usual..=usual }

@@ -175,8 +175,8 @@ fn constructions(chains: &[ChainRecord], caps: Caps) -> impl Iterator<Item = Str
         if own.name == "ripple" || own.detail.is_empty() {
             continue;
         }
-        match alike.iter_mut().find(|(known, _)| *known == own) {
-            Some((_, ids)) => ids.push(&chain.id),
+        match alike.iter().position(|(known, _)| *known == own) {
+            Some(at) => alike[at].1.push(&chain.id),
             None if alike.len() < caps.rows => alike.push((own, vec![&chain.id])),
             None => {}
         }
