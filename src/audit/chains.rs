@@ -13,7 +13,7 @@ use super::record::{
 use crate::chain::{CarryForm, Chain, Construction, Kind};
 use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
 use crate::plan::ChainPlan;
-use crate::timing::Timing;
+use crate::timing::{Spares, Timing};
 use rustc_hash::{FxHashMap, FxHashSet};
 use std::cmp::Reverse;
 use std::fmt::Write;
@@ -47,6 +47,7 @@ pub struct Sources<'a> {
     netlist: &'a Netlist,
     topology: &'a Topology,
     timing: &'a Timing,
+    spares: &'a Spares<'a>,
     cones: &'a Cones,
     readers: Vec<u32>,
     /// Output ports and register inputs that show a net, by net.
@@ -63,6 +64,7 @@ impl<'a> Sources<'a> {
         timing: &'a Timing,
         cones: &'a Cones,
         chains: &[Chain],
+        spares: &'a Spares<'a>,
     ) -> Self {
         let all = || chains.iter().flat_map(|chain| &chain.positions);
         let shown: FxHashSet<NetId> = all()
@@ -114,6 +116,7 @@ impl<'a> Sources<'a> {
             netlist,
             topology,
             timing,
+            spares,
             cones,
             readers,
             shown_by,
@@ -161,6 +164,11 @@ impl<'a> Sources<'a> {
                 .collect(),
             exercised: None,
         };
+        let results = chain.positions.iter();
+        let spare = results
+            .flat_map(|bits| bits.sums.iter().chain(&bits.carries))
+            .filter_map(|signal| self.spares.at(signal.net))
+            .min_by_key(|spare| (spare.ticks, spare.basis));
         let own: FxHashSet<_> = self.cones.gates[index].iter().copied().collect();
         ChainRecord {
             id: id(index),
@@ -185,7 +193,7 @@ impl<'a> Sources<'a> {
             result: None,
             relation: None,
             signed: None,
-            mode: None,
+            mode: chain.mode.map(name),
             feedback: self.feedback(chain, registers),
             duplicates,
             built_as: self.built_as(index, chain),
@@ -193,7 +201,8 @@ impl<'a> Sources<'a> {
             place,
             depth,
             on_longest_path: self.on_longest_path(chain),
-            slack: plan.slack.map(|slack| self.timing.time(slack.ticks)),
+            slack: spare.map(|spare| self.timing.time(spare.ticks)),
+            slack_against: spare.map(|spare| spare.basis.words().to_owned()),
             not_planned: rebuilds::not_planned(self.timing, plan),
             proposals: rebuilds::proposals(netlist, self.timing, plan),
         }
@@ -318,7 +327,7 @@ impl<'a> Sources<'a> {
                 outputs.push(self.netlist.net_name(register.output));
             }
             let role = match chain.kind {
-                Kind::Adder | Kind::Subtractor => "accumulator",
+                Kind::Adder | Kind::Subtractor | Kind::AdderSubtractor => "accumulator",
                 Kind::Incrementer | Kind::Decrementer => "counter",
             };
             (!outputs.is_empty()).then(|| Feedback {
@@ -354,16 +363,17 @@ impl<'a> Sources<'a> {
 /// By chain, the first earlier one with the same operands and carry-in, and so
 /// the same function.
 fn duplicates(chains: &[Chain]) -> Vec<Option<usize>> {
-    let mut first: FxHashMap<(Kind, Bit, Vec<[Bit; 2]>), usize> = FxHashMap::default();
+    type Function = (Kind, Option<Signal>, Bit, Vec<[Bit; 2]>);
+    let mut first: FxHashMap<Function, usize> = FxHashMap::default();
     let each = chains.iter().enumerate().map(|(index, chain)| {
         let operands = chain.positions.iter().map(|bits| {
             let mut pair = [bits.a, bits.b];
-            if chain.kind != Kind::Subtractor {
+            if !matches!(chain.kind, Kind::Subtractor | Kind::AdderSubtractor) {
                 pair.sort_unstable();
             }
             pair
         });
-        let key = (chain.kind, chain.carry_in, operands.collect());
+        let key = (chain.kind, chain.mode, chain.carry_in, operands.collect());
         let earlier = *first.entry(key).or_insert(index);
         (earlier != index).then_some(earlier)
     });
@@ -383,7 +393,9 @@ fn operands(netlist: &Netlist, chain: &Chain) -> Vec<Operand> {
     let b = chain.positions.iter().map(|bits| bits.b);
     let mut operands = vec![operand(netlist, &a)];
     match chain.kind {
-        Kind::Adder => operands.push(operand(netlist, &b.collect::<Vec<_>>())),
+        Kind::Adder | Kind::AdderSubtractor => {
+            operands.push(operand(netlist, &b.collect::<Vec<_>>()));
+        }
         // As it is subtracted: what is added is its complement.
         Kind::Subtractor => operands.push(operand(netlist, &b.map(complement).collect::<Vec<_>>())),
         Kind::Incrementer | Kind::Decrementer => {}

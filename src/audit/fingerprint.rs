@@ -53,10 +53,14 @@ impl<'a> Prints<'a> {
     pub fn fingerprint(&mut self, chain: &Chain, instance: &[String]) -> String {
         let carry_in = self.source(chain.carry_in);
         let mut points = format!("{}\t{carry_in}\n", chain.kind.word());
+        if let Some(mode) = chain.mode {
+            let mode = self.source(Bit::Signal(mode));
+            let _ = writeln!(points, "{mode}");
+        }
         let mut is_stable = false;
         for bits in &chain.positions {
             let mut sources = [self.source(bits.a), self.source(bits.b)];
-            if chain.kind != Kind::Subtractor {
+            if !matches!(chain.kind, Kind::Subtractor | Kind::AdderSubtractor) {
                 sources.sort_unstable();
             }
             let shown = bits.sums.iter();

@@ -6,12 +6,12 @@
 use super::built_as::built_as;
 use super::carry_cells::in_carry_cells;
 use super::copies::copies;
-use super::kinds::{order_operands, read};
+use super::kinds::{mode_of, order_operands, read};
 use super::label::Labels;
 use super::model::{BuiltAs, CarryForm, Chain, Construction, Kind, Position};
 use super::verify::Theorem;
 use crate::netlist::{Bit, Driver, NetId, Netlist, Signal};
-use crate::subject::{Literal, NodeId, Subject};
+use crate::subject::{Literal, NodeId, NodeKind, Subject};
 use fixedbitset::FixedBitSet;
 use rustc_hash::FxHashSet;
 
@@ -22,6 +22,15 @@ pub(super) fn bit(labels: &Labels<'_>, literal: Literal) -> Bit {
         return Bit::Constant(literal == Literal::TRUE);
     }
     Bit::Signal(labels.signal(literal).expect("entries are made of nets"))
+}
+
+/// As [`bit`], for a literal that may be an exclusive or on no net: then the
+/// operand in it.
+pub(super) fn nearest_bit(labels: &Labels<'_>, subject: &Subject, literal: Literal) -> Bit {
+    match (labels.net(literal.node()), subject.kind(literal.node())) {
+        (None, NodeKind::Xor(x, y)) => bit(labels, x.max(y).literal()),
+        _ => bit(labels, literal),
+    }
 }
 
 /// The nets of some nodes, sorted by node.
@@ -103,7 +112,7 @@ impl Collector<'_> {
     fn copies(&self, kind: Kind, theorem: &Theorem) -> Vec<Chain> {
         let nets = |node| self.nets.of_node(node).collect();
         let Some((count, copy)) = copies(self.netlist, self.subject, theorem, nets) else {
-            return vec![self.chain(kind, theorem, &|_| true)];
+            return self.chain(kind, theorem, &|_| true).into_iter().collect();
         };
         let one = |at: usize| {
             let own = |net: NetId| copy.get(&net).is_none_or(|&copy| copy == at);
@@ -117,11 +126,12 @@ impl Collector<'_> {
             }
             self.chain(kind, &theorem, &own)
         };
-        (0..count).map(one).collect()
+        (0..count).filter_map(one).collect()
     }
 
-    /// `own` says which nets are the chain's.
-    fn chain(&self, kind: Kind, theorem: &Theorem, own: &dyn Fn(NetId) -> bool) -> Chain {
+    /// `None` for a theorem about operands that no net carries and no mode
+    /// explains. `own` says which nets are the chain's.
+    fn chain(&self, kind: Kind, theorem: &Theorem, own: &dyn Fn(NetId) -> bool) -> Option<Chain> {
         let operands: FxHashSet<NodeId> = theorem
             .bits
             .iter()
@@ -143,11 +153,28 @@ impl Collector<'_> {
             signals.shrink_to_fit();
             signals
         };
+        let mode = match kind {
+            Kind::Adder | Kind::Subtractor => mode_of(self.subject, self.labels, theorem),
+            _ => None,
+        };
+        let (kind, carry_in, addends): (_, _, Vec<_>) = match &mode {
+            Some(moded) => (Kind::AdderSubtractor, moded.carry_in, moded.addends.clone()),
+            None => {
+                let addends = theorem.bits.iter().map(|bits| (bits.a, bits.b));
+                (kind, theorem.carry_in, addends.collect())
+            }
+        };
+        let mode = mode.map(|moded| moded.mode);
+        let named = |l: Literal| l.node() == NodeId::FALSE || self.labels.net(l.node()).is_some();
+        if !addends.iter().all(|&(a, b)| named(a) && named(b)) {
+            return None;
+        }
         let positions: Vec<Position> = theorem
             .bits
             .iter()
+            .zip(addends)
             .zip(theorem.sums.iter().zip(&theorem.carries))
-            .map(|(bits, (sums, carries))| {
+            .map(|((bits, (a, b)), (sums, carries))| {
                 let mut sums = signals(sums);
                 if sums.is_empty() {
                     sums.extend(self.labels.signal(bits.sum));
@@ -158,8 +185,8 @@ impl Collector<'_> {
                     .filter(|literal| !operands.contains(&literal.node()))
                     .collect();
                 Position {
-                    a: bit(self.labels, bits.a),
-                    b: bit(self.labels, bits.b),
+                    a: bit(self.labels, a),
+                    b: bit(self.labels, b),
                     sums,
                     carries: signals(&outside),
                 }
@@ -180,14 +207,15 @@ impl Collector<'_> {
         } else {
             built_as(self.subject, theorem, on_net)
         };
-        Chain {
+        Some(Chain {
             kind,
-            carry_in: bit(self.labels, theorem.carry_in),
+            carry_in: bit(self.labels, carry_in),
             has_carry_out,
             carry_form,
             built_as,
             construction,
+            mode: mode.and_then(|mode| self.labels.signal(mode)),
             positions,
-        }
+        })
     }
 }

@@ -20,6 +20,7 @@ mod kinds;
 mod label;
 mod links;
 mod model;
+mod modes;
 mod trim;
 mod verify;
 

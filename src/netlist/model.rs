@@ -387,6 +387,16 @@ impl Netlist {
             || self.declared().is_some_and(|declared| declared.bars(net))
     }
 
+    /// Whether no path of a way counts through `net`; see [`Asserted`].
+    #[inline]
+    pub fn is_barred_on(&self, way: u8, net: NetId) -> bool {
+        self.is_barred(net)
+            || (way > 0
+                && self
+                    .asserted()
+                    .is_some_and(|asserted| asserted.avoids(way, net)))
+    }
+
     /// Whether `net` is there for what a cell or a box does inside, and shown
     /// outside by another.
     #[inline]
