@@ -36,8 +36,10 @@ pub(super) fn classify(made: &MadeFrom) -> (BuiltAs, Construction) {
         return mixed("its carries read nets that are no part of it");
     }
     let found = stepwise(made, &evidence).or_else(|| {
-        let likest = nearest(made, valency(made));
-        same_spans(made, likest)
+        let valency = valency(made);
+        let likest = nearest(made, valency);
+        // Joined of more, groups of lookahead have the spans of prefix networks.
+        same_spans(made, likest.filter(|_| valency == 2))
             .or_else(|| skip(made, &evidence))
             .or_else(|| chosen(made, &evidence))
             .or_else(|| passed_on(made, &evidence))
