@@ -86,18 +86,32 @@ pub(super) fn collect(
             collector.copies(kind, &theorem)
         })
         .collect();
-    // Each copy of a theorem may have been found as one of its own.
-    let mut known: FxHashSet<Vec<NetId>> = FxHashSet::default();
-    chains.retain(|chain| {
-        let sums = chain.positions.iter().map(|position| position.sums[0].net);
-        known.insert(sums.collect())
-    });
     chains.sort_by_cached_key(|chain| {
         let sums = chain.positions.iter().flat_map(|p| &p.sums);
         let lowest = sums.map(|s| s.net).min();
         (std::cmp::Reverse(chain.positions.len()), lowest)
     });
+    drop_repeated(&mut chains);
     chains
+}
+
+/// Each copy of a theorem, or a stretch of it, may have been found as one of its
+/// own: a chain goes when every sum of it is a wider chain's sum of the same two
+/// operands.
+fn drop_repeated(chains: &mut Vec<Chain>) {
+    let net = |bit: Bit| bit.signal().map(|signal| signal.net);
+    let mut known: FxHashSet<(NetId, [Option<NetId>; 2])> = FxHashSet::default();
+    chains.retain(|chain| {
+        let mut is_new = false;
+        for position in &chain.positions {
+            let mut operands = [net(position.a), net(position.b)];
+            operands.sort_unstable();
+            for sum in &position.sums {
+                is_new |= known.insert((sum.net, operands));
+            }
+        }
+        is_new
+    });
 }
 
 struct Collector<'a> {

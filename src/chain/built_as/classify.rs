@@ -39,9 +39,10 @@ pub(super) fn classify(made: &MadeFrom) -> (BuiltAs, Construction) {
         let valency = valency(made);
         let likest = nearest(made, valency);
         // Joined of more, groups of lookahead have the spans of prefix networks.
-        same_spans(made, likest.filter(|_| valency == 2))
+        let twos = likest.filter(|_| valency == 2);
+        chosen(made, &evidence)
+            .or_else(|| same_spans(made, twos))
             .or_else(|| skip(made, &evidence))
-            .or_else(|| chosen(made, &evidence))
             .or_else(|| passed_on(made, &evidence))
             .or_else(|| written_out(made, &evidence))
             .or_else(|| like(made, likest))
@@ -192,8 +193,8 @@ fn chosen(made: &MadeFrom, evidence: &[Evidence]) -> Option<(BuiltAs, Constructi
         if high - low < 2 {
             continue;
         }
-        let reads = |ends: &Ends| parts.forced.contains(ends) || parts.generates.contains(ends);
-        if reads(&(high - 1, low)) {
+        let reads = |ends: Ends| parts.forced.contains(&ends) || parts.generates.contains(&ends);
+        if (1..=STEP).any(|step| reads((high - step, low))) {
             stepped += 1;
         } else {
             joined += 1;

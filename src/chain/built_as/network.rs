@@ -112,21 +112,25 @@ pub(super) fn network(
 }
 
 /// The spans a net is joined from, highest first; `None` when they do not meet.
+/// They may overlap, as in the networks of S. Knowles (1999): a position that takes
+/// part twice changes nothing.
 pub(super) fn pieces(made: &MadeFrom, (high, low): Ends, parts: &Parts) -> Option<Vec<Ends>> {
     let mut pieces = Vec::new();
     let mut top = high;
     while top >= low {
-        let carry = parts.carries.contains(&top) && top < high && low == made.lowest;
-        let span = parts.generates.iter().filter(|ends| ends.0 == top);
-        let widest = span.map(|ends| ends.1).filter(|&l| l >= low).min();
-        let own = match widest {
-            _ if carry => low,
-            Some(low) => low,
-            None if parts.leaves.contains(&top) => top,
-            None => return None,
-        };
-        pieces.push((top, own));
-        top = own - 1;
+        let carry = parts
+            .carries
+            .iter()
+            .copied()
+            .find(|&c| c >= top && c < high);
+        let carry = carry.filter(|_| low == made.lowest).map(|c| (c, low));
+        let spans = parts.generates.iter().copied();
+        let widest = spans.filter(|&(h, l)| h >= top && l <= top && l >= low);
+        let widest = widest.min_by_key(|&(h, l)| (l, h));
+        let leaf = parts.leaves.contains(&top).then_some((top, top));
+        let own = carry.or(widest).or(leaf)?;
+        pieces.push(own);
+        top = own.1 - 1;
     }
     (pieces.len() > 1).then_some(pieces)
 }

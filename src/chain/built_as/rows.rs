@@ -13,7 +13,7 @@ use super::super::model::Taxonomy;
 use super::made_from::{Ends, MadeFrom};
 use super::network::pieces;
 use std::cmp::Reverse;
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 /// The place, when every node joins two spans that meet.
 pub(super) fn place(made: &MadeFrom) -> Option<Taxonomy> {
@@ -54,7 +54,15 @@ pub(super) fn place(made: &MadeFrom) -> Option<Taxonomy> {
         }
     }
     let items = made.positions as usize + usize::from(made.lowest < 0 && !folded);
-    let mut ways = vec![latest];
+    // What only a sum reads is drawn in the last row.
+    let mut settled = depth.clone();
+    let read: BTreeSet<Ends> = nodes.values().flatten().copied().collect();
+    for (ends, row) in &mut settled {
+        if !read.contains(ends) {
+            *row = levels;
+        }
+    }
+    let mut ways = vec![latest, settled];
     if items <= MOST_SPREAD {
         ways.extend(spread(&nodes, &depth, 2 * levels));
     }
