@@ -5,10 +5,10 @@
 
 use super::built_as::built_as;
 use super::carry_cells::in_carry_cells;
-use super::copies::copies;
 use super::kinds::{mode_of, order_operands, read};
 use super::label::Labels;
 use super::model::{BuiltAs, CarryForm, Chain, Construction, Kind, Position};
+use super::twins::twins;
 use super::verify::Theorem;
 use crate::netlist::{Bit, Driver, NetId, Netlist, Signal};
 use crate::subject::{Literal, NodeId, NodeKind, Subject};
@@ -83,7 +83,7 @@ pub(super) fn collect(
             if kind != Kind::Subtractor {
                 order_operands(labels, &mut theorem);
             }
-            collector.copies(kind, &theorem)
+            collector.twins(kind, &theorem)
         })
         .collect();
     chains.sort_by_cached_key(|chain| {
@@ -123,9 +123,9 @@ struct Collector<'a> {
 
 impl Collector<'_> {
     /// The chain of a theorem, or one for each time it is built.
-    fn copies(&self, kind: Kind, theorem: &Theorem) -> Vec<Chain> {
+    fn twins(&self, kind: Kind, theorem: &Theorem) -> Vec<Chain> {
         let nets = |node| self.nets.of_node(node).collect();
-        let Some((count, copy)) = copies(self.netlist, self.subject, theorem, nets) else {
+        let Some((count, copy)) = twins(self.netlist, self.subject, theorem, nets) else {
             return self.chain(kind, theorem, &|_| true).into_iter().collect();
         };
         let one = |at: usize| {

@@ -1,122 +1,120 @@
-//! One theorem, built more than once.
-//!
-//! A theorem is about functions: when a netlist adds the same two words twice,
-//! both results are proven equal to the same sums. They are chains of their own
-//! when no gate is common to them. The gates between operands and results are put
-//! into groups that share a gate or feed one another; a group with a net for every
-//! sum is one copy. Nets of other groups (a repeated carry, say) stay with the
-//! first copy. With one copy, as nearly always, nothing is walked.
+//! Speculative copies: stretches of a wider chain built a second time for one
+//! value of their carry-in, as in select and conditional-sum adders and behind
+//! group generates. They are true chains, and part of the wider one.
 
+use super::label::Labels;
+use super::trim::live_bits;
 use super::verify::Theorem;
-use crate::netlist::{Driver, NetId, Netlist};
-use crate::subject::{Literal, NodeId, Subject};
+use crate::subject::{Literal, NodeId, NodeKind, Subject};
 use rustc_hash::{FxHashMap, FxHashSet};
 
-/// Gates walked per position of a theorem.
-const GATES_PER_POSITION: usize = 512;
-
-/// Which copy each result net belongs to; `None` when there is only one.
-pub(super) fn copies(
-    netlist: &Netlist,
-    subject: &Subject,
-    theorem: &Theorem,
-    nets: impl Fn(NodeId) -> Vec<NetId>,
-) -> Option<(usize, FxHashMap<NetId, usize>)> {
-    let operands: FxHashSet<NodeId> = theorem
-        .bits
-        .iter()
-        .flat_map(|bits| [bits.a.node(), bits.b.node()])
-        .chain([theorem.carry_in.node()])
-        .collect();
-    let results = |literals: &[Literal]| -> Vec<NetId> {
-        let all = literals.iter().flat_map(|literal| nets(literal.node()));
-        let driven = |net: &NetId| matches!(netlist.driver(*net), Driver::Gate(_));
-        all.filter(driven).collect()
-    };
-    let sums: Vec<Vec<NetId>> = theorem.sums.iter().map(|own| results(own)).collect();
-    if sums.iter().any(|own| own.len() < 2) {
-        return None;
-    }
-    let carries: Vec<NetId> = theorem
-        .carries
-        .iter()
-        .flat_map(|own| results(own))
-        .collect();
-    let mut groups = Groups::default();
-    let mut left = GATES_PER_POSITION * sums.len();
-    let mut stack: Vec<NetId> = sums.iter().flatten().chain(&carries).copied().collect();
-    let mut seen: FxHashSet<NetId> = stack.iter().copied().collect();
-    while let Some(net) = stack.pop() {
-        let Driver::Gate(gate) = netlist.driver(net) else {
-            continue;
-        };
-        left = left.checked_sub(1)?;
-        for &pin in netlist.fan_ins(gate) {
-            let is_end = operands.contains(&subject.of_net(pin).node());
-            if is_end || !matches!(netlist.driver(pin), Driver::Gate(_)) {
-                continue;
-            }
-            groups.join(net, pin);
-            if seen.insert(pin) {
-                stack.push(pin);
-            }
-        }
-    }
-    // A sum from the middle stands for its copy: the lowest may be made from operands
-    // alone, and then belongs to no group.
-    let mut number: FxHashMap<NetId, usize> = FxHashMap::default();
-    for &net in &sums[sums.len() / 2] {
-        let next = number.len();
-        number.entry(groups.of(net)).or_insert(next);
-    }
-    if number.len() < 2 {
-        return None;
-    }
-    let mut copy: FxHashMap<NetId, usize> = FxHashMap::default();
-    for own in &sums {
-        let mut has_sum = vec![false; number.len()];
-        let mut bare = Vec::new();
-        for &net in own {
-            match number.get(&groups.of(net)) {
-                Some(&at) => {
-                    has_sum[at] = true;
-                    copy.insert(net, at);
-                }
-                None => bare.push(net),
-            }
-        }
-        let mut bare = bare.into_iter();
-        for at in (0..number.len()).filter(|&at| !has_sum[at]) {
-            copy.insert(bare.next()?, at);
-        }
-        copy.extend(bare.map(|net| (net, 0)));
-    }
-    for &net in &carries {
-        let at = number.get(&groups.of(net)).copied().unwrap_or(0);
-        copy.entry(net).or_insert(at);
-    }
-    Some((number.len(), copy))
+/// Where a pair of operands stands, and whether inverted against its normal form.
+struct Place {
+    theorem: usize,
+    position: usize,
+    inverted: bool,
 }
 
-/// Disjoint sets of nets (R. E. Tarjan 1975), paths halved.
-#[derive(Default)]
-struct Groups(FxHashMap<NetId, NetId>);
+/// Operands up to their order and up to duality, and whether they were inverted
+/// for that.
+fn normal(a: Literal, b: Literal) -> ((Literal, Literal), bool) {
+    let sorted = |x: Literal, y: Literal| (x.min(y), x.max(y));
+    let (plain, dual) = (sorted(a, b), sorted(!a, !b));
+    (plain.min(dual), dual < plain)
+}
 
-impl Groups {
-    fn of(&mut self, mut net: NetId) -> NetId {
-        while let Some(&up) = self.0.get(&net) {
-            if let Some(&further) = self.0.get(&up) {
-                self.0.insert(net, further);
+/// Drops every theorem that adds, from its low end on, the operands of a stretch
+/// of a wider one to a constant carry, and whose own results serve the wider
+/// one's; what goes on beyond the stretch counts when it is `min_bits` long.
+pub(super) fn fold_copies(
+    subject: &Subject,
+    labels: &Labels<'_>,
+    theorems: &mut Vec<Theorem>,
+    min_bits: usize,
+) {
+    let mut places: FxHashMap<(Literal, Literal), Vec<Place>> = FxHashMap::default();
+    for (index, theorem) in theorems.iter().enumerate() {
+        for (at, bits) in theorem.bits.iter().enumerate() {
+            let (key, inverted) = normal(bits.a, bits.b);
+            let known = places.entry(key).or_default();
+            if known.len() < MOST_PLACES {
+                known.push(Place {
+                    theorem: index,
+                    position: at,
+                    inverted,
+                });
             }
-            net = up;
         }
-        net
     }
+    let widths: Vec<usize> = theorems.iter().map(|t| live_bits(&t.bits)).collect();
+    let mut served: FxHashMap<usize, FxHashSet<NodeId>> = FxHashMap::default();
+    let mut copies = vec![false; theorems.len()];
+    for (index, theorem) in theorems.iter().enumerate() {
+        if theorem.carry_in.node() != NodeId::FALSE {
+            continue;
+        }
+        let keys: Vec<_> = theorem
+            .bits
+            .iter()
+            .map(|bits| normal(bits.a, bits.b))
+            .collect();
+        let starts = places.get(&keys[0].0).map_or(&[][..], Vec::as_slice);
+        copies[index] = starts.iter().any(|place| {
+            let (wider, from, inverted) = (place.theorem, place.position, place.inverted);
+            if wider == index || widths[wider] <= widths[index] {
+                return false;
+            }
+            let same = keys
+                .iter()
+                .zip(&theorems[wider].bits[from..])
+                .take_while(|&(&(key, own), bits)| {
+                    let (other, flipped) = normal(bits.a, bits.b);
+                    key == other && (own != flipped) == (keys[0].1 != inverted)
+                })
+                .count();
+            let beyond = live_bits(&theorem.bits[same..]);
+            if beyond >= min_bits || same == 0 {
+                return false;
+            }
+            let cone = served
+                .entry(wider)
+                .or_insert_with(|| cone(subject, &theorems[wider]));
+            theorem.sums[..same].iter().flatten().all(|literal| {
+                let node = literal.node();
+                cone.contains(&node) && labels.port(node).is_none()
+                    || theorems[wider]
+                        .sums
+                        .iter()
+                        .flatten()
+                        .any(|own| own.node() == node)
+            })
+        });
+    }
+    let mut copy = copies.into_iter();
+    theorems.retain(|_| !copy.next().unwrap_or(false));
+}
 
-    fn join(&mut self, one: NetId, other: NetId) {
-        let (one, other) = (self.of(one), self.of(other));
-        if one != other {
-            self.0.insert(one.max(other), one.min(other));
+/// Places of one operand pair looked at.
+const MOST_PLACES: usize = 16;
+/// Nodes looked at below the results of one chain.
+const MOST_NODES: usize = 100_000;
+
+/// What the results of a chain are made from, down to its operands.
+fn cone(subject: &Subject, theorem: &Theorem) -> FxHashSet<NodeId> {
+    let operands = theorem.bits.iter().flat_map(|bits| [bits.a, bits.b]);
+    let operands: FxHashSet<NodeId> = operands.map(|literal| literal.node()).collect();
+    let results = theorem.sums.iter().chain(&theorem.carries).flatten();
+    let mut stack: Vec<NodeId> = results.map(|literal| literal.node()).collect();
+    let mut seen = FxHashSet::default();
+    while let Some(node) = stack.pop() {
+        if operands.contains(&node) || seen.len() >= MOST_NODES || !seen.insert(node) {
+            continue;
+        }
+        match subject.kind(node) {
+            NodeKind::And(x, y) => stack.extend([x.node(), y.node()]),
+            NodeKind::Xor(x, y) => stack.extend([x, y]),
+            NodeKind::False | NodeKind::Free(_) => {}
         }
     }
+    seen
 }

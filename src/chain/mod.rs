@@ -22,6 +22,7 @@ mod links;
 mod model;
 mod modes;
 mod trim;
+mod twins;
 mod verify;
 
 pub use find::{Found, Options, Unproven, find};

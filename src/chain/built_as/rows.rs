@@ -54,11 +54,11 @@ pub(super) fn place(made: &MadeFrom) -> Option<Taxonomy> {
         }
     }
     let items = made.positions as usize + usize::from(made.lowest < 0 && !folded);
-    // What only a sum reads is drawn in the last row.
+    // What joins a neighbour for a sum alone is drawn in the last row.
     let mut settled = depth.clone();
     let read: BTreeSet<Ends> = nodes.values().flatten().copied().collect();
     for (ends, row) in &mut settled {
-        if !read.contains(ends) {
+        if !read.contains(ends) && ends.0 - nodes[ends][1].0 == 1 {
             *row = levels;
         }
     }
