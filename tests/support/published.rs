@@ -301,10 +301,10 @@ fn select(c: &mut Circuit, size: usize, g: &[Net], p: &[Net], lowest: Net) -> (V
     for low in (first..n).step_by(size) {
         let high = (low + size).min(n);
         let both = for_both(c, &g[low..high], &p[low..high]);
-        for i in low..high {
-            let [zero, one] = match i - low {
-                0 => [p[i], c.not(p[i])],
-                k => both[k - 1].map(|carry| c.xor(p[i], carry)),
+        for (k, &p) in p[low..high].iter().enumerate() {
+            let [zero, one] = match k {
+                0 => [p, c.not(p)],
+                k => both[k - 1].map(|carry| c.xor(p, carry)),
             };
             sums.push(c.mux(carry, one, zero));
         }
