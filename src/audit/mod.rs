@@ -10,6 +10,7 @@ mod carried;
 mod chains;
 mod faults;
 pub mod findings;
+mod fingerprint;
 mod free_carry;
 mod gate_words;
 mod goals;
@@ -231,6 +232,7 @@ pub fn audit_under(
     }
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
+    findings.add_duplicates(&records);
     findings.add_unproven(&unproven);
     let misfit = model_fit::misfit(read, model);
     findings.add_misfit(misfit.as_deref());
