@@ -2,7 +2,7 @@
 //! file that fails does not stop the others.
 
 use super::Status;
-use super::options::{AuditArguments, SharedArguments};
+use super::options::{AuditArguments, Delay, SharedArguments};
 use super::search::SearchFolders;
 use super::targets::{self, Target};
 use super::terminal::{colour_on_stderr, complain, page, say};
@@ -15,6 +15,7 @@ use crate::netlist::Netlist;
 use crate::netlist::cell::{Cells, Unbound};
 use crate::report::{self, Form, MOST_CHARACTERS, Page};
 use crate::source::{self, Diagnostic, Limits, Place, ReadError, Source};
+use crate::timing::DelayModel;
 use std::fs::File;
 use std::io::{self, BufWriter, ErrorKind, Write};
 use std::panic::{AssertUnwindSafe, catch_unwind};
@@ -39,11 +40,16 @@ pub fn run(arguments: &AuditArguments) -> Status {
         .filter(|f| !is_stdin(f))
         .cloned()
         .collect();
+    let delays = match &arguments.shared.delay {
+        Delay::File(path) => Some(path),
+        Delay::Model(_) => None,
+    };
     let besides = arguments
         .shared
         .assume
         .iter()
-        .chain(&arguments.shared.cells);
+        .chain(&arguments.shared.cells)
+        .chain(delays);
     let read_besides = named.iter().chain(besides).cloned();
     let read_besides: Vec<PathBuf> = read_besides.collect();
     let mut targets = match targets::open(&arguments.report, &read_besides) {
@@ -72,7 +78,12 @@ pub fn run(arguments: &AuditArguments) -> Status {
                 &arguments.shared,
                 &inputs,
                 |netlist, origin, asserting| {
-                    audit::audit_under(netlist, origin, &arguments.auditing(), asserting)
+                    audit::audit_under(
+                        netlist,
+                        origin,
+                        &arguments.auditing(inputs.model),
+                        asserting,
+                    )
                 },
             )
         }));
@@ -110,19 +121,31 @@ pub fn run(arguments: &AuditArguments) -> Status {
 
 /// What is read beside the netlists, once for all of them.
 pub(super) struct Inputs {
+    pub(super) model: DelayModel,
     cells: Option<Cells>,
     asserted: Option<AssumptionsFile>,
 }
 
 impl Inputs {
     pub(super) fn of(arguments: &SharedArguments) -> Result<Self, Status> {
+        let (model, gives_cells) = delay_model(&arguments.delay)?;
+        let delays = match &arguments.delay {
+            Delay::File(path) => Some(path),
+            Delay::Model(_) => None,
+        };
+        // A library of delays also says what its cells do.
+        let from = arguments.cells.as_ref().or(delays.filter(|_| gives_cells));
         let library = |file: &PathBuf| cells(file, arguments.quiet);
-        let mut cells = arguments.cells.as_ref().map(library).transpose()?;
+        let mut cells = from.map(library).transpose()?;
         let asserted = arguments.assume.as_deref().map(assume).transpose()?;
         if let Some(file) = &asserted {
             declare_carry(file, cells.as_mut(), arguments)?;
         }
-        Ok(Self { cells, asserted })
+        Ok(Self {
+            model,
+            cells,
+            asserted,
+        })
     }
 }
 
@@ -179,6 +202,26 @@ fn declare_carry(
         say(&told.render(file.source(), colour_on_stderr()));
         Status::Unusable
     })
+}
+
+/// The delay model asked for, and whether its file also gives functions of cells.
+fn delay_model(delay: &Delay) -> Result<(DelayModel, bool), Status> {
+    let file = match delay {
+        Delay::Model(model) => return Ok((*model, false)),
+        Delay::File(file) => file,
+    };
+    let name = file.to_string_lossy();
+    let source = load_or_say(file, &name, Limits::for_gates(0))?;
+    match format::delays::read(&source) {
+        Ok(table) => {
+            let gives_cells = format::delays::is_library(&source);
+            Ok((DelayModel::table(table), gives_cells))
+        }
+        Err(error) => {
+            say(&error.render(&source, colour_on_stderr()));
+            Err(Status::Unusable)
+        }
+    }
 }
 
 /// Reads a file of assumptions.

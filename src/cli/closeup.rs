@@ -22,7 +22,7 @@ pub fn run(arguments: &CloseupArguments) -> Status {
             &arguments.shared,
             &inputs,
             |netlist, origin, asserting| {
-                let options = arguments.shared.auditing();
+                let options = arguments.shared.auditing(inputs.model);
                 match closeup(netlist, origin, &options, asserting, &arguments.chain) {
                     Ok(closeup) => Ok(Ok(closeup)),
                     Err(CloseupError::Audit(error)) => Err(error),

@@ -158,7 +158,7 @@ fn row(record: &BitRecord, latest: Time, caps: Caps) -> Vec<String> {
 fn shown(wire: &Wire) -> String {
     match wire {
         Wire::Net(name) => name.clone(),
-        Wire::Constant(value) => u8::from(*value).to_string(),
+        Wire::Constant(value) => value.to_string(),
     }
 }
 

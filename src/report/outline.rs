@@ -222,7 +222,13 @@ pub(super) fn settings_sentence(
     caps: Caps,
 ) -> String {
     let Settings {
-        delay_model: DelayModelFacts { name, unit, misfit },
+        delay_model:
+            DelayModelFacts {
+                name,
+                unit,
+                note,
+                misfit,
+            },
         new_gates,
         new_gates_reason,
         gate_inputs,
@@ -240,6 +246,9 @@ pub(super) fn settings_sentence(
         sha256,
         ..
     } = netlist;
+    let note = note.as_ref().map_or_else(String::new, |note| {
+        format!(": {}", clipped(note, caps.sentence))
+    });
     let misfit = misfit.as_ref().map_or_else(String::new, |why| {
         format!("; {}", clipped(why, caps.sentence))
     });
@@ -263,7 +272,7 @@ pub(super) fn settings_sentence(
         Some(hash) => format!("; assumptions SHA-256 {hash}"),
     };
     format!(
-        "{} {}; {}. Depths in {unit} (delay model {name}{misfit}). New gates are \
+        "{} {}; {}. Depths in {unit} (delay model {name}{note}{misfit}). New gates are \
          {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up{planned}; {} per \
          proof; pattern seed {patterns_seed}{target}{assumed}.",
         tool.name,
