@@ -6,13 +6,19 @@
 //! the very same gates. [`CountingSink`] is the sink for when there is no
 //! netlist at all.
 
+pub mod and_or_path;
+pub mod arrival_aware;
 mod build;
 mod carry_network;
 mod counting;
 mod cover;
+mod demand;
+pub mod form;
 mod gates;
 pub mod schemes;
+pub mod sum_end;
 mod table;
+pub mod task;
 
 pub use build::{Addends, Built, GateSink, Limits, Propagate, build};
 pub use carry_network::{CarryNetwork, Node, NodeId, Span};
