@@ -10,10 +10,17 @@ mod build;
 mod carry_network;
 mod counting;
 mod cover;
+mod cover_signals;
+mod estimate;
 mod gates;
+pub mod profile;
 pub mod schemes;
+mod signals;
 mod table;
 
 pub use build::{Addends, Built, GateSink, Limits, Propagate, build};
 pub use carry_network::{CarryNetwork, Node, NodeId, Span};
 pub use counting::{CountedSignal, CountingSink, XorForm};
+pub use estimate::Estimate;
+pub use profile::{Costs, Profile, Required};
+pub use signals::{Carry, SignalId, SignalNode};

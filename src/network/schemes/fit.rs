@@ -5,7 +5,9 @@
 //! [`MOST_LOG_LINEAR`] positions only schemes of linear size remain, each at its
 //! default settings, and flat lookahead stops at its own cap, being cubic.
 
-use super::{CarryNetwork, Growth, Scheme, Settings, all, flat_lookahead, group_lookahead};
+use super::{
+    CarryNetwork, Growth, Limits, Profile, Scheme, Settings, all, flat_lookahead, group_lookahead,
+};
 
 /// The widest chain a scheme of n·log n size, or any variation, is proposed for.
 pub const MOST_LOG_LINEAR: usize = 4096;
@@ -28,36 +30,55 @@ pub struct Fitted {
     pub levels: usize,
     /// Most spans one combine node joins.
     pub valency: usize,
+    /// Whether some sum ends in a select.
+    pub select_end: bool,
+    /// The settings it was made with.
+    pub settings: Settings,
     /// The carry network.
     pub network: CarryNetwork,
 }
 
 impl Fitted {
     /// Fits one scheme.
-    pub fn new(scheme: &Scheme, positions: usize, has_carry_in: bool, settings: Settings) -> Self {
-        let network = scheme.network(positions, has_carry_in, settings);
+    pub fn new(scheme: &Scheme, profile: &Profile, settings: Settings) -> Self {
+        let network = scheme.network_for(profile, settings);
         let group = scheme.takes.group.then_some(settings.group);
         let levels = match group {
-            Some(size) => group_lookahead::lookahead_levels(positions, size),
-            None => network.levels(),
+            Some(size) if scheme.name == group_lookahead::SCHEME.name => {
+                group_lookahead::lookahead_levels(profile.positions(), size)
+            }
+            _ => network.levels(),
         };
         Self {
             scheme: scheme.name,
             group,
             levels,
             valency: network.largest_valency(),
+            select_end: (0..network.positions()).any(|i| network.sum(i).is_some()),
+            settings,
             network,
         }
     }
 }
 
-/// The sensible proposals for a chain, where a gate may have `gate_inputs`
-/// inputs. The first is always ripple.
+/// The sensible proposals for a chain of equal arrivals, where a gate may have
+/// `gate_inputs` inputs. The first is always ripple.
 pub fn candidates(positions: usize, has_carry_in: bool, gate_inputs: usize) -> Vec<Fitted> {
+    let limits = Limits {
+        gate_inputs,
+        covers: false,
+    };
+    candidates_for(&Profile::even(positions, has_carry_in, limits))
+}
+
+/// The sensible proposals for a chain. The first is always ripple.
+pub fn candidates_for(profile: &Profile) -> Vec<Fitted> {
+    let positions = profile.positions();
+    let gate_inputs = profile.costs.limits().gate_inputs;
     let mut fitted: Vec<Fitted> = Vec::new();
     for scheme in all().iter().filter(|scheme| fits(scheme, positions)) {
         for settings in variations(scheme, positions, gate_inputs) {
-            let next = Fitted::new(scheme, positions, has_carry_in, settings);
+            let next = Fitted::new(scheme, profile, settings);
             if fitted.iter().all(|earlier| earlier.network != next.network) {
                 fitted.push(next);
             }
@@ -100,13 +121,21 @@ fn variations(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Sett
             ..settings
         });
     }
+    if scheme.takes.select_end {
+        list = vary(&list, [false, true].into_iter(), |settings, select_end| {
+            Settings {
+                select_end,
+                ..settings
+            }
+        });
+    }
     list
 }
 
-fn vary(
+fn vary<T>(
     list: &[Settings],
-    values: impl Iterator<Item = usize> + Clone,
-    set: impl Fn(Settings, usize) -> Settings,
+    values: impl Iterator<Item = T> + Clone,
+    set: impl Fn(Settings, T) -> Settings,
 ) -> Vec<Settings> {
     let varied = list
         .iter()

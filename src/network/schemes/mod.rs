@@ -7,6 +7,9 @@
 //! always needs one more than without (equal only when n is a power of two).
 //! Group lookahead hands it to the top group, as the textbooks do.
 //!
+//! Schemes that shape themselves to their chain read its [`Profile`]; the others
+//! ignore it. A select end is added to what a scheme has shaped, for any of them.
+//!
 //! A new scheme is one file and one line in [`all`].
 
 mod brent_kung;
@@ -18,11 +21,14 @@ mod han_carlson;
 mod kogge_stone;
 mod ladner_fischer;
 mod ripple;
+mod select_end;
 mod sklansky;
 
-pub use fit::{Fitted, candidates};
+pub use fit::{Fitted, candidates, candidates_for};
 
+use super::build::Limits;
 use super::carry_network::{CarryNetwork, NodeId};
+use super::profile::Profile;
 
 /// How the number of gates grows with the number of positions.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -44,6 +50,9 @@ pub struct Settings {
     pub group: usize,
     /// Levels spent beyond the fewest possible to save cells.
     pub extra_levels: usize,
+    /// Whether late sums end in a select between the two sums, which saves a
+    /// level.
+    pub select_end: bool,
 }
 
 impl Default for Settings {
@@ -52,6 +61,7 @@ impl Default for Settings {
             valency: 2,
             group: 4,
             extra_levels: 1,
+            select_end: false,
         }
     }
 }
@@ -65,6 +75,8 @@ pub struct Takes {
     pub group: bool,
     /// The extra levels.
     pub extra_levels: bool,
+    /// The select end.
+    pub select_end: bool,
 }
 
 /// A published way to build the carry network.
@@ -77,22 +89,41 @@ pub struct Scheme {
     pub growth: Growth,
     /// What it may be varied in.
     pub takes: Takes,
-    shape: fn(&mut CarryNetwork, Settings),
+    shape: fn(&mut CarryNetwork, Settings, &Profile),
 }
 
 impl Scheme {
-    /// The scheme's carry network. Panics when there is no position, or a
-    /// valency or group below 2.
+    /// The scheme's carry network for arrivals all alike. Panics when there is
+    /// no position, or a valency or group below 2.
     pub fn network(
         &self,
         positions: usize,
         has_carry_in: bool,
         settings: Settings,
     ) -> CarryNetwork {
+        let limits = Limits {
+            gate_inputs: settings.valency,
+            covers: false,
+        };
+        let profile = Profile::even(positions, has_carry_in, limits);
+        self.network_for(&profile, settings)
+    }
+
+    /// The scheme's carry network for a chain. Panics when there is no position,
+    /// a valency or group below 2, or a fault in the scheme: its signals are
+    /// checked against addition.
+    pub fn network_for(&self, profile: &Profile, settings: Settings) -> CarryNetwork {
         assert!(settings.valency >= 2, "a combine node joins at least two");
         assert!(settings.group >= 2, "a group has at least two members");
-        let mut network = CarryNetwork::new(positions, has_carry_in);
-        (self.shape)(&mut network, settings);
+        let mut network = CarryNetwork::new(profile.positions(), profile.has_carry_in());
+        (self.shape)(&mut network, settings, profile);
+        if settings.select_end && self.takes.select_end {
+            select_end::select_late_sums(&mut network, profile);
+        }
+        if !network.is_prefix() {
+            let wrong = network.first_wrong();
+            assert!(wrong.is_none(), "{} at position {wrong:?}", self.name);
+        }
         network
     }
 }
@@ -122,6 +153,7 @@ const NOTHING: Takes = Takes {
     valency: false,
     group: false,
     extra_levels: false,
+    select_end: true,
 };
 const VALENCY: Takes = Takes {
     valency: true,
