@@ -2,144 +2,106 @@
 //! numbers, their functions against integer addition, their speed and size against
 //! the fixed schemes.
 
-use carrywise::network::and_or_path::{PathTimes, and_or_path};
-use carrywise::network::arrival_aware::{Leaves, Steps, Times, arrival_aware};
-use carrywise::network::form::{Form, Signal};
-use carrywise::network::schemes::{Settings, all};
-use carrywise::network::sum_end::Ends;
-use carrywise::network::task::Task;
-use carrywise::network::{CarryNetwork, Node};
+use carrywise::network::schemes::{Settings, all, by_name};
+use carrywise::network::{
+    Addends, Built, CarryNetwork, Costs, CountedSignal, CountingSink, Leaves, Limits, PathTimes,
+    Profile, Propagate, Required, Steps, Times, XorForm, build,
+};
 
-/// Ends in two-input levels of ANDs, an XOR or a choice being two of them.
-fn ends(select: bool) -> Ends {
-    Ends {
-        xor: 2,
-        xor_gates: 3,
-        select: select.then_some(2),
-        select_gates: 3,
+/// Operands of each position ready as given, the carry-in too, in levels of ANDs
+/// of at most so many inputs; g and p take one, the half sum two.
+fn profile(ready: &[i32], carry_in: Option<i32>, gate_inputs: usize) -> Profile {
+    let limits = Limits {
+        gate_inputs,
+        covers: false,
+    };
+    Profile {
+        generate: ready.iter().map(|time| time + 1).collect(),
+        propagate: ready.iter().map(|time| time + 1).collect(),
+        half_sum: ready.iter().map(|time| time + 2).collect(),
+        carry_in,
+        required: None,
+        costs: Costs::of(limits, true, |function| vec![1; function.inputs()]),
     }
 }
 
-/// A task with g and p of each item ready as given, everything needed at once.
-fn task(ready: &[i32], has_carry_in: bool, inputs: usize, select: bool) -> Task {
-    let positions = ready.len() - usize::from(has_carry_in);
-    Task {
-        leaves: Leaves {
-            generate: ready.to_vec(),
-            propagate: ready.to_vec(),
-            either: ready.to_vec(),
-        },
-        halves: ready.iter().map(|time| time + 1).collect(),
-        has_carry_in,
-        steps: Steps::uniform(inputs, 1),
-        ends: ends(select),
-        carries_by: vec![Some(0); positions],
-        sums_by: vec![Some(0); positions],
-    }
+/// The earliest a scheme makes, or so many levels later.
+fn fitted(name: &str, profile: &Profile, select_end: bool, extra_levels: usize) -> CarryNetwork {
+    let settings = Settings {
+        valency: profile.costs.limits().gate_inputs,
+        select_end,
+        extra_levels,
+        ..Settings::default()
+    };
+    by_name(name).unwrap().network_for(profile, settings)
 }
 
-/// When each signal is ready, and the gates of all, counted in two-input ones.
-fn measured(form: &Form, task: &Task) -> (Vec<i32>, usize) {
-    let mut times: Vec<i32> = Vec::new();
-    let mut gates = 0;
-    for signal in form.signals() {
-        let time = match signal {
-            Signal::Generate(item) => task.leaves.generate[*item],
-            Signal::Propagate(item) => task.leaves.propagate[*item],
-            Signal::Either(item) => task.leaves.either[*item],
-            Signal::Half(item) => task.halves[*item],
-            Signal::And(inputs) | Signal::Or(inputs) => {
-                assert!(inputs.len() >= 2 && inputs.len() < task.steps.and.len());
-                gates += inputs.len() - 1;
-                let latest = inputs.iter().map(|input| times[input.index()]).max();
-                let steps = match signal {
-                    Signal::And(_) => &task.steps.and,
-                    _ => &task.steps.or,
+/// A network built as ANDs.
+struct Adder {
+    sink: CountingSink,
+    built: Built<CountedSignal>,
+}
+
+impl Adder {
+    fn of(network: &CarryNetwork, ready: &[i32], carry_in: Option<i32>, limits: Limits) -> Self {
+        let form = if limits.covers {
+            XorForm::Gate
+        } else {
+            XorForm::Ands
+        };
+        let mut sink = CountingSink::new(form);
+        let a = ready.iter().map(|&time| sink.input(time)).collect();
+        let b = ready.iter().map(|&time| sink.input(time)).collect();
+        let carry_in = carry_in.map(|time| sink.input(time));
+        let addends = Addends { a, b, carry_in };
+        let built = build(network, &addends, limits, Propagate::Or, &mut sink);
+        Self { sink, built }
+    }
+
+    /// All sums and the carry out.
+    fn outputs(&self) -> Vec<CountedSignal> {
+        let last = self.built.carries.last();
+        self.built.sums.iter().chain(last).copied().collect()
+    }
+
+    fn levels(&self) -> i32 {
+        self.sink.depth(&self.outputs())
+    }
+
+    fn gates(&self) -> usize {
+        self.sink.gate_equivalents(&self.outputs())
+    }
+
+    /// Compares sums and carries with addition bit by bit (its definition), on 64
+    /// patterns at once, with long runs of propagates, or a deep carry never shows.
+    fn adds(&self, has_carry_in: bool, random: &mut fastrand::Rng) {
+        let positions = self.built.sums.len();
+        for round in 0..8 {
+            let mut inputs: Vec<u64> = (0..2 * positions).map(|_| random.u64(..)).collect();
+            for i in 0..positions {
+                let runs = if round % 2 == 0 {
+                    0
+                } else {
+                    random.u64(..) | random.u64(..)
                 };
-                latest.unwrap() + steps[inputs.len()]
+                inputs[positions + i] = inputs[positions + i] & !runs | !inputs[i] & runs;
             }
-            Signal::Xor(left, right) => {
-                gates += task.ends.xor_gates as usize;
-                times[left.index()].max(times[right.index()]) + task.ends.xor
+            if has_carry_in {
+                inputs.push(random.u64(..));
             }
-            Signal::Select {
-                by,
-                if_one,
-                if_none,
-            } => {
-                gates += task.ends.select_gates as usize;
-                let latest = [by, if_one, if_none].map(|each| times[each.index()]);
-                latest.into_iter().max().unwrap() + task.ends.select.unwrap()
-            }
-        };
-        times.push(time);
-    }
-    (times, gates)
-}
-
-/// Latest of the carries and sums.
-fn latest(form: &Form, task: &Task) -> i32 {
-    let (times, _) = measured(form, task);
-    let results = form.carries.iter().chain(&form.sums).flatten();
-    results.map(|each| times[each.index()]).max().unwrap()
-}
-
-/// Values of all signals on 64 operand pairs at once.
-fn evaluate(form: &Form, first: usize, a: &[u64], b: &[u64], carry_in: u64) -> Vec<u64> {
-    let mut values: Vec<u64> = Vec::new();
-    let at = |item: usize| item.checked_sub(first);
-    for signal in form.signals() {
-        let value = match signal {
-            Signal::Generate(item) => at(*item).map_or(carry_in, |i| a[i] & b[i]),
-            Signal::Propagate(item) => at(*item).map(|i| a[i] ^ b[i]).unwrap(),
-            Signal::Either(item) => at(*item).map(|i| a[i] | b[i]).unwrap(),
-            Signal::Half(item) => at(*item).map(|i| a[i] ^ b[i]).unwrap(),
-            Signal::And(inputs) => inputs
-                .iter()
-                .fold(!0, |all, each| all & values[each.index()]),
-            Signal::Or(inputs) => inputs
-                .iter()
-                .fold(0, |any, each| any | values[each.index()]),
-            Signal::Xor(left, right) => values[left.index()] ^ values[right.index()],
-            Signal::Select {
-                by,
-                if_one,
-                if_none,
-            } => {
-                let [by, one, none] = [by, if_one, if_none].map(|each| values[each.index()]);
-                by & one | !by & none
-            }
-        };
-        values.push(value);
-    }
-    values
-}
-
-/// Compares a form with addition bit by bit (the definition of binary addition).
-fn adds(form: &Form, has_carry_in: bool, random: &mut fastrand::Rng) {
-    let positions = form.sums.len();
-    for round in 0..8 {
-        // Long runs of propagates, or a deep carry never shows.
-        let mut a: Vec<u64> = (0..positions).map(|_| random.u64(..)).collect();
-        let mut b: Vec<u64> = (0..positions).map(|_| random.u64(..)).collect();
-        for i in 0..positions {
-            let run = if round % 2 == 0 {
-                0
+            let sums = self.sink.evaluate(&inputs, &self.built.sums);
+            let carries = self.sink.evaluate(&inputs, &self.built.carries);
+            let mut carry = if has_carry_in {
+                inputs[2 * positions]
             } else {
-                random.u64(..) | random.u64(..)
+                0
             };
-            b[i] = b[i] & !run | !a[i] & run;
-            a[i] = a[i] & !run | !b[i] & run;
-        }
-        let carry_in = if has_carry_in { random.u64(..) } else { 0 };
-        let first = usize::from(has_carry_in);
-        let values = evaluate(form, first, &a, &b, carry_in);
-        let mut carry = carry_in;
-        for i in 0..positions {
-            let sum = a[i] ^ b[i] ^ carry;
-            carry = a[i] & b[i] | (a[i] | b[i]) & carry;
-            assert_eq!(values[form.sums[i].unwrap().index()], sum, "sum {i}");
-            assert_eq!(values[form.carries[i].unwrap().index()], carry, "carry {i}");
+            for i in 0..positions {
+                let (a, b) = (inputs[i], inputs[positions + i]);
+                assert_eq!(sums[i], a ^ b ^ carry, "sum {i}");
+                carry = a & b | (a | b) & carry;
+                assert_eq!(carries[i], carry, "carry {i}");
+            }
         }
     }
 }
@@ -257,83 +219,90 @@ fn and_or_paths_are_shallower_than_prefix_carries() {
 #[test]
 fn a_128_bit_adder_has_the_expected_levels() {
     let mut random = fastrand::Rng::with_seed(128);
-    for (select, prefix, path) in [(false, 14, 13), (true, 13, 12)] {
-        let task = task(&[1; 128], false, 2, select);
-        for (levels, (form, late)) in [(prefix, arrival_aware(&task)), (path, and_or_path(&task))] {
-            assert_eq!(late, levels);
-            assert_eq!(latest(&form, &task), levels);
-            adds(&form, false, &mut random);
-        }
+    let ready = [0; 128];
+    let profile = profile(&ready, None, 2);
+    for (name, select_end, levels) in [
+        ("arrival-aware", false, 14),
+        ("arrival-aware", true, 13),
+        ("and-or-path", false, 13),
+        ("and-or-path", true, 12),
+    ] {
+        let network = fitted(name, &profile, select_end, 0);
+        let adder = Adder::of(&network, &ready, None, profile.costs.limits());
+        println!("{name}, select end {select_end}: {} ANDs", adder.gates());
+        assert_eq!(adder.levels(), levels, "{name}");
+        adder.adds(false, &mut random);
     }
 }
 
-/// Every width to 20, with and without carry-in, gates of two to four inputs,
-/// arrivals at random: the forms add, and are as early as they say.
+/// As six-input covers 128 bits take five levels (the published record for the
+/// open 128-bit adder: 5 levels, 347 covers).
 #[test]
-fn forms_add_and_keep_their_times() {
+fn a_128_bit_adder_takes_five_levels_of_six_input_covers() {
+    let mut random = fastrand::Rng::with_seed(6);
+    let ready = [0; 128];
+    let limits = Limits {
+        gate_inputs: 6,
+        covers: true,
+    };
+    let mut profile = profile(&ready, None, 2);
+    profile.costs = Costs::even(limits);
+    profile.half_sum = profile.generate.clone();
+    let network = fitted("arrival-aware", &profile, false, 0);
+    let adder = Adder::of(&network, &ready, None, limits);
+    let covers = adder.sink.gates(&adder.outputs());
+    println!("{covers} six-input covers in {} levels", adder.levels());
+    assert_eq!(adder.levels(), 5);
+    assert!(covers <= 560, "{covers}");
+    adder.adds(false, &mut random);
+}
+
+/// Every width to 20, with and without carry-in, gates of two to four inputs,
+/// covers of three to six, arrivals and required times at random: the networks
+/// add, and required times never make the worst of them worse.
+#[test]
+fn networks_add_and_keep_required_times() {
     let mut random = fastrand::Rng::with_seed(20);
     for positions in 1..=20 {
-        for case in 0..12 {
-            let has_carry_in = case % 2 == 1;
-            let inputs = 2 + case / 2 % 3;
+        for case in 0..14 {
             let spread = if case < 6 { 0 } else { 12 };
-            let items = positions + usize::from(has_carry_in);
-            let ready: Vec<i32> = (0..items).map(|_| random.i32(0..=spread)).collect();
-            let mut task = task(&ready, has_carry_in, inputs, random.bool());
-            for by in &mut task.sums_by {
-                *by = Some(random.i32(0..20));
+            let ready: Vec<i32> = (0..positions).map(|_| random.i32(0..=spread)).collect();
+            let carry_in = (case % 2 == 1).then(|| random.i32(0..=spread));
+            let mut profile = profile(&ready, carry_in, 2 + case % 3);
+            if case >= 10 {
+                profile.costs = Costs::even(Limits {
+                    gate_inputs: case - 7,
+                    covers: true,
+                });
             }
-            let mut forms = vec![arrival_aware(&task)];
-            if inputs == 2 {
-                forms.push(and_or_path(&task));
-            }
-            for (form, late) in forms {
-                adds(&form, has_carry_in, &mut random);
-                let (times, _) = measured(&form, &task);
-                let demands = form.carries.iter().zip(&task.carries_by);
-                let demands = demands.chain(form.sums.iter().zip(&task.sums_by));
-                for (result, by) in demands {
-                    assert!(times[result.unwrap().index()] <= by.unwrap() + late || positions == 1);
+            let limits = profile.costs.limits();
+            let by: Vec<i32> = (0..positions).map(|_| random.i32(0..20)).collect();
+            let late = |adder: &Adder| {
+                let times = adder.built.sums.iter().map(|&s| adder.sink.depth(&[s]));
+                times.zip(&by).map(|(time, by)| time - by).max().unwrap()
+            };
+            let select_end = random.bool();
+            for name in ["arrival-aware", "and-or-path"] {
+                let network = fitted(name, &profile, select_end, 0);
+                let soon = Adder::of(&network, &ready, carry_in, limits);
+                soon.adds(carry_in.is_some(), &mut random);
+                let mut with = profile.clone();
+                with.required = Some(Required {
+                    sums: by.iter().map(|&by| Some(by)).collect(),
+                    carries: vec![None; positions],
+                });
+                let network = fitted(name, &with, select_end, 0);
+                let timely = Adder::of(&network, &ready, carry_in, limits);
+                timely.adds(carry_in.is_some(), &mut random);
+                if !limits.covers {
+                    assert!(
+                        late(&timely) <= late(&soon).max(0),
+                        "{name} {positions} {case}"
+                    );
                 }
             }
         }
     }
-}
-
-/// When the carries of a prefix network are ready in two-input levels, and its
-/// gates.
-fn prefix_times(network: &CarryNetwork, ready: &[i32]) -> (i32, usize) {
-    let count = network.nodes().len();
-    let mut needs = vec![(false, false); count];
-    for position in 0..network.positions() {
-        needs[network.carry(position).index()].0 = true;
-    }
-    let mut gates = 0;
-    for node in network.nodes().rev() {
-        if let Node::Combine(parts) = network.node(node) {
-            let (generate, propagate) = needs[node.index()];
-            gates += 2 * usize::from(generate) + usize::from(propagate);
-            for (i, part) in parts.iter().enumerate() {
-                let last = i + 1 == parts.len();
-                needs[part.index()].0 |= generate;
-                needs[part.index()].1 |= propagate || generate && !last;
-            }
-        }
-    }
-    let mut times = vec![(0, 0); count];
-    for node in network.nodes() {
-        times[node.index()] = match network.node(node) {
-            Node::CarryIn => (ready[0], ready[0]),
-            Node::Leaf(i) => (ready[i], ready[i]),
-            Node::Combine(parts) => {
-                let [upper, lower] = [parts[0], parts[1]].map(|part| times[part.index()]);
-                let generate = (upper.0 + 1).max(upper.1 + 2).max(lower.0 + 2);
-                (generate, upper.1.max(lower.1) + 1)
-            }
-        };
-    }
-    let carries = (0..network.positions()).map(|i| times[network.carry(i).index()].0);
-    (carries.max().unwrap(), gates)
 }
 
 /// Ramps, humps and late single bits at 64 bits: never slower than a fixed scheme
@@ -341,17 +310,18 @@ fn prefix_times(network: &CarryNetwork, ready: &[i32]) -> (i32, usize) {
 #[test]
 fn no_fixed_scheme_is_faster_on_uneven_arrivals() {
     let n = 64;
-    let fixed: Vec<CarryNetwork> = all()
-        .iter()
+    let names = ["arrival-aware", "and-or-path"];
+    let fixed = all().iter().filter(|scheme| !names.contains(&scheme.name));
+    let fixed: Vec<CarryNetwork> = fixed
         .map(|scheme| scheme.network(n, false, Settings::default()))
-        .filter(|network| network.largest_valency() == 2)
+        .filter(|network| network.is_prefix() && network.largest_valency() == 2)
         .collect();
     assert!(fixed.len() >= 6);
     let mut random = fastrand::Rng::with_seed(64);
     let (mut shares, mut equal, mut gained) = (Vec::new(), Vec::new(), 0);
     for case in 0..500 {
         let slope = random.i32(0..=6);
-        let middle = random.usize(0..n) as i32;
+        let middle = random.i32(0..n as i32);
         let ready: Vec<i32> = (0..n as i32)
             .map(|i| match case % 4 {
                 0 => i * slope / 4,
@@ -361,21 +331,29 @@ fn no_fixed_scheme_is_faster_on_uneven_arrivals() {
                 _ => 0,
             })
             .collect();
-        let mut task = task(&ready, false, 2, false);
-        task.sums_by = vec![None; n];
-        let (form, late) = arrival_aware(&task);
-        let (_, gates) = measured(&form, &task);
-        let rivals = fixed.iter().map(|network| prefix_times(network, &ready));
-        let (levels, rival_gates) = rivals.min().unwrap();
-        assert!(late <= levels, "case {case}: {late} against {levels}");
-        gained += levels - late;
-        shares.push(gates as f64 / rival_gates as f64);
+        let mut profile = profile(&ready, None, 2);
+        let limits = profile.costs.limits();
+        let mut carries = vec![None; n];
+        carries[n - 1] = Some(0);
+        profile.required = Some(Required {
+            sums: vec![Some(0); n],
+            carries,
+        });
+        let built = |network: &CarryNetwork| Adder::of(network, &ready, None, limits);
+        let ours = built(&fitted("arrival-aware", &profile, false, 0));
+        let rivals = fixed.iter().map(&built);
+        let (levels, gates) = rivals
+            .map(|adder| (adder.levels(), adder.gates()))
+            .min()
+            .unwrap();
+        assert!(ours.levels() <= levels, "case {case}");
+        gained += levels - ours.levels();
+        shares.push(ours.gates() as f64 / gates as f64);
         // No faster than the rival: what is saved off the critical spans.
-        task.carries_by = vec![Some(levels); n];
-        let (form, late) = arrival_aware(&task);
-        assert_eq!(late, 0);
-        let (_, gates) = measured(&form, &task);
-        equal.push(gates as f64 / rival_gates as f64);
+        let later = (levels - ours.levels()) as usize;
+        let ours = built(&fitted("arrival-aware", &profile, false, later));
+        assert!(ours.levels() <= levels, "case {case}");
+        equal.push(ours.gates() as f64 / gates as f64);
     }
     let mean = |list: &[f64]| list.iter().sum::<f64>() / list.len() as f64;
     let worst = |list: &[f64]| list.iter().copied().fold(0.0, f64::max);
@@ -388,6 +366,6 @@ fn no_fixed_scheme_is_faster_on_uneven_arrivals() {
         mean(&equal),
         worst(&equal)
     );
-    assert!(mean(&equal) < 1.0 && worst(&equal) < 1.25);
+    assert!(mean(&equal) < 0.95 && worst(&equal) < 2.1);
     assert!(gained > 0);
 }

@@ -16,6 +16,7 @@ mod measures;
 mod names;
 mod rebuilds;
 pub mod record;
+mod shape;
 mod sight;
 mod verdict;
 pub mod words;

@@ -11,7 +11,8 @@
 //! another is never later, so the best place to choose only moves down.
 
 use super::arrival_aware::times::{cell, crossing};
-use super::demand::{Asked, Recipe, Way};
+use super::demand::{Asked, Recipe, Way, few, in_time};
+use super::profile::Costs;
 
 /// A recipe for carries over spans of items.
 pub(super) trait Carries: Recipe {
@@ -25,15 +26,35 @@ pub(super) trait Carries: Recipe {
 
 /// What the ends of sums cost, in ticks and in two-input gates.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
-pub struct Ends {
-    /// An XOR of two.
-    pub xor: i32,
-    /// Gates of an XOR.
-    pub xor_gates: u32,
-    /// A choice, from either of its pins; `None` where sums end in an XOR only.
-    pub select: Option<i32>,
-    /// Gates of a choice.
-    pub select_gates: u32,
+pub(super) struct Ends {
+    xor: i32,
+    xor_gates: u32,
+    select: Option<Select>,
+}
+
+/// A choice, in ticks from what chooses and from what is chosen.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+struct Select {
+    choose: i32,
+    value: i32,
+}
+
+/// Two-input gates of a choice.
+const SELECT_GATES: u32 = 3;
+
+impl Ends {
+    /// The ends of a chain's sums, with choices or without.
+    pub(super) fn of(costs: &Costs, select: bool) -> Self {
+        Self {
+            xor: costs.xor,
+            // An XOR of two levels is made of three ANDs.
+            xor_gates: if costs.xor > costs.and(2) { 3 } else { 1 },
+            select: select.then_some(Select {
+                choose: costs.select_choose,
+                value: costs.select_value,
+            }),
+        }
+    }
 }
 
 /// A term of [`Sums`].
@@ -85,11 +106,12 @@ impl<'a, C: Carries> Sums<'a, C> {
             for low in (0..=below).rev() {
                 let upper = |split: usize| {
                     let at = cell(below, split);
-                    sums.if_none[at].max(sums.if_one[at]) + select
+                    sums.if_none[at].max(sums.if_one[at]) + select.value
                 };
                 let mut found = [0; 2];
                 for (one, cursor) in cursors.iter_mut().enumerate() {
-                    let lower = |split: usize| sums.carry_into(split - 1, low, one == 1) + select;
+                    let lower =
+                        |split: usize| sums.carry_into(split - 1, low, one == 1) + select.choose;
                     found[one] = sums.by_xor(below, low, one == 1);
                     if low < below {
                         found[one] = found[one].min(crossing(cursor, low, upper, lower));
@@ -186,22 +208,31 @@ impl<C: Carries> Recipe for Sums<'_, C> {
                 let Some(select) = self.ends.select else {
                     return;
                 };
-                for split in lowest + 1..=below {
-                    let at = cell(below, split);
-                    let sums = self.if_none[at].max(self.if_one[at]);
-                    if sums.max(self.carry_into(split - 1, lowest, one)) + select <= by {
-                        let carry = SumTerm::Carry(self.carry(split - 1, lowest, one));
-                        let sum = |one| SumTerm::Sum {
-                            item,
-                            low: split as u32,
-                            one,
-                        };
-                        found.push(Way {
-                            parts: [carry, sum(false), sum(true)].map(|part| Some((part, select))),
-                            gates: self.ends.select_gates,
-                        });
+                let (from, to) = in_time(
+                    lowest,
+                    below,
+                    |split| {
+                        let at = cell(below, split);
+                        self.if_none[at].max(self.if_one[at]) + select.value <= by
+                    },
+                    |split| self.carry_into(split - 1, lowest, one) + select.choose <= by,
+                );
+                found.extend(few(from, to).map(|split| {
+                    let carry = SumTerm::Carry(self.carry(split - 1, lowest, one));
+                    let sum = |one| SumTerm::Sum {
+                        item,
+                        low: split as u32,
+                        one,
+                    };
+                    Way {
+                        parts: [
+                            Some((carry, select.choose)),
+                            Some((sum(false), select.value)),
+                            Some((sum(true), select.value)),
+                        ],
+                        gates: SELECT_GATES,
                     }
-                }
+                }));
             }
         }
     }

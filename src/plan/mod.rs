@@ -15,6 +15,7 @@ mod free_carry;
 mod ground;
 mod materialise;
 mod overlay;
+mod profile;
 mod propose;
 mod settings;
 mod site;

@@ -12,23 +12,28 @@ mod times;
 
 pub use times::PathTimes;
 
-use super::form::Form;
-use super::task::{Task, fulfil};
+use super::arrival_aware::{Leaves, spare};
+use super::carry_network::CarryNetwork;
+use super::fulfil::fulfil;
+use super::profile::Profile;
+use super::schemes::Settings;
+use super::sum_end::Ends;
 use paths::Paths;
 
 /// The widest chain whose paths are all looked at.
-pub const MOST_POSITIONS: usize = 128;
+pub(super) const MOST_POSITIONS: usize = 128;
 
-/// The carries and sums of a task, and how much later than asked they are. Panics
-/// above [`MOST_POSITIONS`].
-pub fn and_or_path(task: &Task) -> (Form, i32) {
-    assert!(task.sums_by.len() <= MOST_POSITIONS, "too many positions");
-    let items = task.leaves.generate.len();
-    let mut inputs = Vec::with_capacity(2 * items);
-    for item in (0..items).rev() {
-        inputs.push(task.leaves.generate[item]);
-        inputs.push(task.leaves.propagate[item]);
+/// Shapes the network of a chain of at most [`MOST_POSITIONS`].
+pub(super) fn shape(network: &mut CarryNetwork, settings: Settings, profile: &Profile) {
+    let leaves = Leaves::of(profile);
+    let mut inputs = Vec::with_capacity(2 * leaves.generate.len());
+    let items = leaves.generate.iter().zip(&leaves.propagate);
+    for (&generate, &propagate) in items.rev() {
+        inputs.extend([generate, propagate]);
     }
-    let times = PathTimes::of(&inputs, task.steps.and[2], task.steps.or[2]);
-    fulfil(task, &Paths { times: &times })
+    let costs = &profile.costs;
+    let times = PathTimes::of(&inputs, costs.and(2), costs.or(2));
+    let ends = Ends::of(costs, settings.select_end);
+    let paths = Paths { times: &times };
+    fulfil(network, profile, &paths, ends, spare(settings, profile));
 }

@@ -1,10 +1,11 @@
 //! Paths with a set in front as a recipe: the ways to make each in time.
 
 use super::times::PathTimes;
+use crate::network::carry_network::CarryNetwork;
 use crate::network::demand::{Asked, Recipe, Way};
-use crate::network::form::{Form, Signal, SignalId};
+use crate::network::fulfil::{Emit, LeafSignal};
+use crate::network::signals::SignalId;
 use crate::network::sum_end::Carries;
-use crate::network::task::Emit;
 
 /// `T(x, a, b)` of [`PathTimes`].
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
@@ -119,24 +120,29 @@ impl Carries for Paths<'_> {
 }
 
 impl Emit for Paths<'_> {
-    fn leaf(&self, path: Path) -> Signal {
+    fn leaf(&self, path: Path) -> LeafSignal {
         let item = self.items() - 1 - path.b as usize / 2;
         if path.b.is_multiple_of(2) {
-            Signal::Generate(item)
+            LeafSignal::Generate(item)
         } else {
-            Signal::Propagate(item)
+            LeafSignal::Propagate(item)
         }
     }
 
-    fn emit(&self, path: Path, parts: &[(Path, &[SignalId])], form: &mut Form) -> Vec<SignalId> {
+    fn emit(
+        &self,
+        path: Path,
+        parts: &[(Path, &[SignalId])],
+        network: &mut CarryNetwork,
+    ) -> Vec<SignalId> {
         let signals = parts.iter().flat_map(|&(_, signals)| signals);
         let signals: Vec<SignalId> = signals.copied().collect();
         // The place whose operator joins the parts, as in the splits.
         let odd = (parts[0].0.b + path.a) % 2;
         if (path.a + odd).is_multiple_of(2) {
-            vec![form.or(signals)]
+            vec![network.or(&signals)]
         } else {
-            vec![form.and(signals)]
+            vec![network.and(&signals)]
         }
     }
 }

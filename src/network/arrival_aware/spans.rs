@@ -1,10 +1,11 @@
 //! Spans as a recipe: the ways to make G and P of each from smaller spans in time.
 
 use super::times::{Made, Times};
-use crate::network::demand::{Asked, Recipe, Way};
-use crate::network::form::{Form, Signal, SignalId};
+use crate::network::carry_network::CarryNetwork;
+use crate::network::demand::{Asked, Recipe, Way, few, in_time};
+use crate::network::fulfil::{Emit, LeafSignal};
+use crate::network::signals::SignalId;
 use crate::network::sum_end::Carries;
-use crate::network::task::Emit;
 
 /// Something made of a span.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
@@ -72,12 +73,20 @@ impl Recipe for Spans<'_> {
                 }
             }
             Made::IfOne => {
-                let [generate, propagate] =
-                    [Made::GENERATE, Made::PROPAGATE].map(|made| Term { made, ..term });
-                let or = steps.or[2];
-                if self.earliest(generate).max(self.earliest(propagate)) + or <= by {
-                    let parts = [Some((generate, or)), Some((propagate, or)), None];
-                    found.push(Way { parts, gates: 1 });
+                let propagate = Term {
+                    made: Made::PROPAGATE,
+                    ..term
+                };
+                for &terms in self.times.or_arities() {
+                    let above = Term {
+                        made: Made::Terms(terms as u8 - 1),
+                        ..term
+                    };
+                    let or = steps.or[terms];
+                    if self.earliest(above).max(self.earliest(propagate)) + or <= by {
+                        let parts = [Some((above, or)), Some((propagate, or)), None];
+                        found.push(Way { parts, gates: 1 });
+                    }
                 }
                 for &terms in self.times.or_arities() {
                     self.split_generate(term, terms, by, steps.or[terms], found);
@@ -124,23 +133,31 @@ impl Spans<'_> {
         delay: i32,
         found: &mut Vec<Way<Term>>,
     ) {
-        let upper = Made::Parts(parts as u8 - 1);
-        for split in term.low + 1..=term.high {
-            let above = Term {
-                made: upper,
-                low: split,
-                ..term
-            };
-            let below = Term {
-                made: Made::PROPAGATE,
-                high: split - 1,
-                ..term
-            };
-            if self.earliest(above).max(self.earliest(below)) + delay <= by {
-                let parts = [Some((above, delay)), Some((below, delay)), None];
-                found.push(Way { parts, gates: 1 });
-            }
-        }
+        let made = Made::Parts(parts as u8 - 1);
+        let above = |split: usize| Term {
+            made,
+            low: split as u32,
+            ..term
+        };
+        let below = |split: usize| Term {
+            made: Made::PROPAGATE,
+            high: split as u32 - 1,
+            ..term
+        };
+        let (from, to) = in_time(
+            term.low as usize,
+            term.high as usize,
+            |split| self.earliest(above(split)) + delay <= by,
+            |split| self.earliest(below(split)) + delay <= by,
+        );
+        found.extend(few(from, to).map(|split| Way {
+            parts: [
+                Some((above(split), delay)),
+                Some((below(split), delay)),
+                None,
+            ],
+            gates: 1,
+        }));
     }
 
     /// G, or the carry out if a one comes in, with the lowest of its terms split
@@ -160,33 +177,34 @@ impl Spans<'_> {
         };
         for &inputs in self.times.and_arities() {
             let through = Made::Parts(inputs as u8 - 1);
-            let and = self.times.steps().and[inputs];
-            for split in term.low + 1..=term.high {
-                let above = Term {
-                    made: first,
-                    low: split,
-                    ..term
-                };
-                let over = Term {
-                    made: through,
-                    low: split,
-                    ..term
-                };
-                let below = Term {
-                    made: carry,
-                    high: split - 1,
-                    ..term
-                };
-                let late = self.earliest(over).max(self.earliest(below)) + and;
-                if late.max(self.earliest(above)) + or <= by {
-                    let parts = [
-                        Some((above, or)),
-                        Some((over, or + and)),
-                        Some((below, or + and)),
-                    ];
-                    found.push(Way { parts, gates: 2 });
-                }
-            }
+            let both = self.times.steps().and[inputs] + or;
+            let upper = |made: Made, split: usize| Term {
+                made,
+                low: split as u32,
+                ..term
+            };
+            let below = |split: usize| Term {
+                made: carry,
+                high: split as u32 - 1,
+                ..term
+            };
+            let (from, to) = in_time(
+                term.low as usize,
+                term.high as usize,
+                |split| {
+                    let above = self.earliest(upper(first, split)) + or;
+                    above.max(self.earliest(upper(through, split)) + both) <= by
+                },
+                |split| self.earliest(below(split)) + both <= by,
+            );
+            found.extend(few(from, to).map(|split| Way {
+                parts: [
+                    Some((upper(first, split), or)),
+                    Some((upper(through, split), both)),
+                    Some((below(split), both)),
+                ],
+                gates: 2,
+            }));
         }
     }
 }
@@ -213,30 +231,35 @@ impl Carries for Spans<'_> {
 }
 
 impl Emit for Spans<'_> {
-    fn leaf(&self, term: Term) -> Signal {
+    fn leaf(&self, term: Term) -> LeafSignal {
         let item = term.high as usize;
         match term.made {
-            Made::Parts(_) => Signal::Propagate(item),
-            Made::Terms(_) => Signal::Generate(item),
-            Made::IfOne => Signal::Either(item),
+            Made::Parts(_) => LeafSignal::Propagate(item),
+            Made::Terms(_) => LeafSignal::Generate(item),
+            Made::IfOne => LeafSignal::Either(item),
         }
     }
 
-    fn emit(&self, term: Term, parts: &[(Term, &[SignalId])], form: &mut Form) -> Vec<SignalId> {
+    fn emit(
+        &self,
+        term: Term,
+        parts: &[(Term, &[SignalId])],
+        network: &mut CarryNetwork,
+    ) -> Vec<SignalId> {
         let signals = match *parts {
             [(_, single)] => return single.to_vec(),
             // Parts of a P, or the two terms of a `G + P`.
             [(_, above), (_, below)] => [above, below].concat(),
             [(_, above), (_, over), (_, below)] => {
                 let mut signals = above.to_vec();
-                signals.push(form.and([over, below].concat()));
+                signals.push(network.and(&[over, below].concat()));
                 signals
             }
             _ => unreachable!("a way has one part to three"),
         };
         match term.made {
-            Made::PROPAGATE => vec![form.and(signals)],
-            Made::GENERATE | Made::IfOne => vec![form.or(signals)],
+            Made::PROPAGATE => vec![network.and(&signals)],
+            Made::GENERATE | Made::IfOne => vec![network.or(&signals)],
             Made::Parts(_) | Made::Terms(_) => signals,
         }
     }

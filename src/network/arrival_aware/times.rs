@@ -13,7 +13,10 @@
 //! sides of a split one only falls and one only rises with the split point, and
 //! the best point only moves down as the span grows: constant work a span.
 
-/// Prices of the steps by number of inputs; the entries 0 and 1 are 0.
+use crate::network::profile::{Costs, LONG_BEFORE, Profile};
+
+/// Prices of the steps by number of inputs; the entries 0 and 1 are 0, and none is
+/// lower than the one before.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub struct Steps {
     /// An AND.
@@ -31,6 +34,23 @@ impl Steps {
         Self {
             or: and.clone(),
             and,
+        }
+    }
+
+    /// The prices of a chain's steps with up to `inputs` inputs, at least two.
+    pub(super) fn of(costs: &Costs, inputs: usize) -> Self {
+        let most = inputs.min(costs.limits().gate_inputs).max(2);
+        // A wider gate that is priced lower is taken as no quicker.
+        let rising = |price: &dyn Fn(usize) -> i32| {
+            let prices = (0..=most).scan(0, |highest, inputs| {
+                *highest = price(inputs).max(*highest);
+                Some(*highest)
+            });
+            prices.collect()
+        };
+        Self {
+            and: rising(&|inputs| costs.and(inputs)),
+            or: rising(&|inputs| costs.or(inputs)),
         }
     }
 
@@ -53,6 +73,25 @@ pub struct Leaves {
     pub propagate: Vec<i32>,
     /// `g + p`, the carry out of the item alone if one comes in.
     pub either: Vec<i32>,
+}
+
+impl Leaves {
+    /// The leaves of a chain.
+    pub(in super::super) fn of(profile: &Profile) -> Self {
+        let with = |below: Option<i32>, times: &[i32]| -> Vec<i32> {
+            below.into_iter().chain(times.iter().copied()).collect()
+        };
+        let never_read = profile.carry_in.map(|_| LONG_BEFORE);
+        let both = profile.generate.iter().zip(&profile.propagate);
+        let either: Vec<i32> = both
+            .map(|(&g, &p)| g.max(p).saturating_add(profile.costs.or(2)))
+            .collect();
+        Self {
+            generate: with(profile.carry_in, &profile.generate),
+            propagate: with(never_read, &profile.propagate),
+            either: with(never_read, &either),
+        }
+    }
 }
 
 /// What is made of a span.
@@ -211,8 +250,14 @@ impl Times {
         self.if_one[cell(high, high)] = leaves.either[high];
         let mut cursors = self.cursors(high);
         for low in (0..high).rev() {
-            let both = self.generate(high, low).max(self.propagate(high, low));
-            let mut least = both + self.steps.or[2];
+            // All of P is a term like the others.
+            let through = self.propagate(high, low);
+            let arities = self.or_arities.iter();
+            let with = arities.map(|&terms| {
+                let above = self.terms[terms - 2][cell(high, low)];
+                above.max(through) + self.steps.or[terms]
+            });
+            let mut least = with.min().unwrap_or(i32::MAX);
             for cursor in &mut cursors {
                 let time = self.crossing(cursor, high, low, &self.if_one);
                 least = least.min(time + self.steps.or[cursor.terms]);

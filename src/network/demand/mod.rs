@@ -83,10 +83,39 @@ fn gates<T: Copy>(chosen: &[Chosen<T>]) -> u64 {
     ways.map(|way| u64::from(way.gates)).sum()
 }
 
+/// Positions above which only the first manner is tried, for time's sake.
+const MANY: usize = 48;
+
+/// None is best on all chains: without toll serial stretches are found, with much
+/// of it shared ones.
+const MANNERS: [Manner; 3] = [
+    Manner {
+        toll: 4.0,
+        guess: 0.7,
+    },
+    Manner {
+        toll: 64.0,
+        guess: 0.3,
+    },
+    Manner {
+        toll: 0.0,
+        guess: 0.7,
+    },
+];
+
+/// The manners to try on a chain of so many positions.
+pub(super) fn manners(positions: usize) -> &'static [Manner] {
+    if positions <= MANY {
+        &MANNERS
+    } else {
+        &MANNERS[..1]
+    }
+}
+
 /// What is varied between attempts.
 #[derive(Clone, Copy, PartialEq, Debug)]
 pub(super) struct Manner {
-    /// What making a shared term a tick earlier counts, in gates.
+    /// What leaving a shared term no time to spare counts, in gates.
     pub(super) toll: f32,
     /// What a gate that is only estimated counts.
     pub(super) guess: f32,
@@ -133,4 +162,48 @@ fn insert(sorted: &mut Vec<u32>, value: u32) {
     if let Err(at) = sorted.binary_search(&value) {
         sorted.insert(at, value);
     }
+}
+
+/// Splits of one span that are all looked at.
+const MOST_SPLITS: usize = 128;
+
+/// Splits of a span that are worth looking at: all of a few, else those next to
+/// either end and a coarse raster between, the same for every span so that spans
+/// are shared.
+pub(super) fn few(from: usize, to: usize) -> impl Iterator<Item = usize> {
+    let count = (to + 1).saturating_sub(from);
+    let raster = (count / 16).next_power_of_two();
+    (from..=to).filter(move |&at| {
+        count <= MOST_SPLITS || at - from < 8 || to - at < 16 || at.is_multiple_of(raster)
+    })
+}
+
+/// The places from `low + 1` to `high` at which both sides are in time, given that
+/// `upper` holds from some place on and `lower` up to some place.
+pub(super) fn in_time(
+    low: usize,
+    high: usize,
+    upper: impl Fn(usize) -> bool,
+    lower: impl Fn(usize) -> bool,
+) -> (usize, usize) {
+    let (mut from, mut end) = (low + 1, high + 1);
+    while from < end {
+        let middle = from.midpoint(end);
+        if upper(middle) {
+            end = middle;
+        } else {
+            from = middle + 1;
+        }
+    }
+    let first = from;
+    let (mut from, mut end) = (low + 1, high + 1);
+    while from < end {
+        let middle = from.midpoint(end);
+        if lower(middle) {
+            from = middle + 1;
+        } else {
+            end = middle;
+        }
+    }
+    (first, from - 1)
 }

@@ -3,7 +3,7 @@
 //! Terms are taken the largest first, so that when a term's way is chosen all its
 //! readers have said when they need it. A way is priced by the gates it adds:
 //! nothing for what is asked for anyway, an estimate for what would be new, a
-//! toll for making a shared term earlier than it has to be. Ties go to the way
+//! toll for leaving a shared term less time to spare. Ties go to the way
 //! named first.
 
 use std::collections::BinaryHeap;
@@ -12,8 +12,11 @@ use rustc_hash::FxHashMap;
 
 use super::{Asked, Chosen, Manner, Recipe, Way};
 
-/// Earliness beyond this many ticks costs no further toll.
-const MOST_TOLLED: i32 = 4;
+/// How much it tells on the gates that a term has only so many ticks to spare:
+/// half as much every four ticks.
+fn scarcity(to_spare: i32) -> f32 {
+    0.5f32.powf(to_spare as f32 / 4.0)
+}
 
 /// Serves demands, each a term and when it is needed; a term that cannot be had by
 /// then is made as early as it can be.
@@ -41,6 +44,10 @@ pub(in super::super) fn serve<R: Recipe>(
         let by = wants.by[&term];
         ways.clear();
         recipe.ways(term, by, &mut ways);
+        if ways.is_empty() {
+            // Prices the recipe's times do not hold for; late is better than none.
+            recipe.ways(term, i32::MAX, &mut ways);
+        }
         let mut best: Option<(f32, Way<R::Term>)> = None;
         for way in &ways {
             let price = wants.price(way, by, manner);
@@ -48,7 +55,7 @@ pub(in super::super) fn serve<R: Recipe>(
                 best = Some((price, *way));
             }
         }
-        let (_, way) = best.expect("a term has a way that is ready at its earliest time");
+        let (_, way) = best.expect("a term has a way when time does not matter");
         for (part, delay) in way.parts() {
             wants.ask(part, by - delay);
         }
@@ -88,8 +95,11 @@ impl<R: Recipe> Wants<'_, R> {
             }
             match self.by.get(&part) {
                 Some(&known) => {
-                    let earlier = known - (by - delay);
-                    price += manner.toll * earlier.clamp(0, MOST_TOLLED) as f32;
+                    let to_spare = by - delay - self.recipe.earliest(part);
+                    let before = known - self.recipe.earliest(part);
+                    if to_spare < before {
+                        price += manner.toll * (scarcity(to_spare) - scarcity(before));
+                    }
                 }
                 None => price += manner.guess * self.recipe.estimate(part, &self.asked),
             }

@@ -14,8 +14,10 @@ use super::{Chosen, Recipe, Way};
 
 /// Terms with more readers than this are kept.
 const MOST_READERS: usize = 8;
-/// Passes over all terms.
-const PASSES: usize = 4;
+/// Passes over all terms, and over many.
+const PASSES: [usize; 2] = [4, 1];
+/// Terms that are many.
+const MANY: usize = 20_000;
 
 /// Thins out what [`super::serve`] chose for the same demands.
 pub(in super::super) fn thin<R: Recipe>(
@@ -23,8 +25,9 @@ pub(in super::super) fn thin<R: Recipe>(
     demands: &[(R::Term, i32)],
     chosen: Vec<Chosen<R::Term>>,
 ) -> Vec<Chosen<R::Term>> {
+    let passes = PASSES[usize::from(chosen.len() >= MANY)];
     let mut stock = Stock::of(recipe, demands, chosen);
-    for _ in 0..PASSES {
+    for _ in 0..passes {
         if !stock.pass() {
             break;
         }
@@ -70,16 +73,11 @@ impl<'a, R: Recipe> Stock<'a, R> {
             stock.demanded[at] = Some(stock.demanded[at].map_or(by, |known| known.min(by)));
         }
         for i in 0..n {
-            stock.arrival[i] = match stock.chosen[i].way {
-                None => recipe.earliest(stock.chosen[i].term),
-                Some(way) => {
-                    for (part, _) in way.parts() {
-                        let at = stock.at(part);
-                        stock.readers[at].push(i as u32);
-                    }
-                    stock.ready(&way)
-                }
-            };
+            for (part, _) in stock.chosen[i].way.iter().flat_map(Way::parts) {
+                let at = stock.at(part);
+                stock.readers[at].push(i as u32);
+            }
+            stock.arrival[i] = stock.ready(i);
         }
         for i in (0..n).rev() {
             stock.required[i] = stock.needed_by(i);
@@ -91,11 +89,12 @@ impl<'a, R: Recipe> Stock<'a, R> {
         self.place[&term] as usize
     }
 
-    fn ready(&self, way: &Way<R::Term>) -> i32 {
-        let times = way
-            .parts()
-            .map(|(part, delay)| self.arrival[self.at(part)] + delay);
-        times.max().unwrap_or(i32::MIN)
+    /// When a term is ready; one without parts, at its earliest.
+    fn ready(&self, i: usize) -> i32 {
+        let parts = self.chosen[i].way.iter().flat_map(Way::parts);
+        let times = parts.map(|(part, delay)| self.arrival[self.at(part)] + delay);
+        let earliest = || self.recipe.earliest(self.chosen[i].term);
+        times.max().unwrap_or_else(earliest)
     }
 
     /// When its demand and its readers need a term.
@@ -264,10 +263,7 @@ impl<'a, R: Recipe> Stock<'a, R> {
     fn update_arrivals(&mut self, from: usize) {
         let mut stack = vec![from];
         while let Some(i) = stack.pop() {
-            let Some(way) = self.chosen[i].way else {
-                continue;
-            };
-            let arrival = self.ready(&way);
+            let arrival = self.ready(i);
             if arrival != self.arrival[i] {
                 self.arrival[i] = arrival;
                 stack.extend(self.readers[i].iter().map(|&reader| reader as usize));
