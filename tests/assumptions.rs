@@ -452,7 +452,11 @@ fn faults_of_the_file_are_told_where_they_are() {
         "arrival: [{ports: a, at: -1, why: x}]",
         "arrival: [{at: 1, why: x}]",
         "required: [{ports: [a], at: 1, why: x}]",
-        "box_delay: [{box: M, from: A, to: Q, delay: 4, why: x}]",
+        "box_delay: [{box: M, from: A, to: Q, delay: -1, why: x}]",
+        "box_delay: [{box: M, from: A, delay: 4, why: x}]",
+        "box_delay: [{model: M, from: A, to: Q, delay: 4, why: x}]",
+        "carry_cells: [{cell: C, why: x}]",
+        "carry_cells:\n- cell: C\n  delays: [{frm: A, to: Q, delay: 1}]\n  why: x\n",
         "tied: {a: {value: 0, why: x}\nb",
     ];
     let mut told = String::new();

@@ -219,6 +219,11 @@ impl<'a> Sources<'a> {
                 Some("ripple".to_owned()),
                 "every carry is made from the carry just below it",
             ),
+            BuiltAs::CarryCell => (
+                "carry-cell",
+                None,
+                "its carries run inside cells declared carry cells, with their declared delays",
+            ),
             BuiltAs::Mixed => (
                 "mixed",
                 None,

@@ -162,9 +162,9 @@ impl<'a> Findings<'a> {
         }
     }
 
-    /// Gates with many inputs and nets with many readers, the worst first.
-    pub fn add_crowds(&mut self) {
-        let netlist = self.netlist;
+    /// Gates with many inputs and nets with many readers of the netlist as read, the
+    /// worst first.
+    pub fn add_crowds(&mut self, netlist: &Netlist) {
         let mut wide: Vec<_> = netlist
             .gates()
             .filter(|&gate| netlist.fan_ins(gate).len() as u64 > WIDE_GATE)

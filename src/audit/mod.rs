@@ -172,6 +172,7 @@ pub fn audit_under(
             timing: &timing,
             undecided: unproven.len(),
             open: open.as_ref(),
+            path: &path,
             unit,
         },
         min_bits: options.chains.min_bits,
@@ -200,7 +201,7 @@ pub fn audit_under(
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
     findings.add_unproven(&unproven);
-    findings.add_crowds();
+    findings.add_crowds(read);
     let (findings, findings_left_out) = findings.sorted();
 
     Ok(Audit {
@@ -209,13 +210,13 @@ pub fn audit_under(
             name: env!("CARGO_PKG_NAME").to_owned(),
             version: env!("CARGO_PKG_VERSION").to_owned(),
         },
-        netlist: netlist_facts(netlist, origin),
+        netlist: netlist_facts(read, origin),
         settings: SettingsRecord {
             assumptions_sha256: asserting.map(|asserting| asserting.sha256.clone()),
             ..settings_record(&settings, options)
         },
         seen: Seen {
-            gates_with_function: netlist.gate_count() as u64,
+            gates_with_function: read.gate_count() as u64,
             gates_without_function: netlist.boxes().len() as u64,
             nets_cut: topology.cut.count_ones(..) as u64,
             chains_proven: records.len() as u64,

@@ -4,9 +4,10 @@
 //! A net that no gate drives, and a copy of an operand, is no result of a chain.
 
 use super::built_as::built_as;
+use super::carry_cells::in_carry_cells;
 use super::kinds::{order_operands, read};
 use super::label::Labels;
-use super::model::{CarryForm, Chain, Kind, Position};
+use super::model::{BuiltAs, CarryForm, Chain, Kind, Position};
 use super::verify::Theorem;
 use crate::netlist::{Bit, Driver, NetId, Netlist, Signal};
 use crate::subject::{Literal, NodeId, Subject};
@@ -146,11 +147,15 @@ impl Collector<'_> {
         };
         Chain {
             kind,
-            positions,
             carry_in: bit(self.labels, theorem.carry_in),
             has_carry_out,
             carry_form,
-            built_as: built_as(self.subject, theorem),
+            built_as: if in_carry_cells(self.netlist, &positions) {
+                BuiltAs::CarryCell
+            } else {
+                built_as(self.subject, theorem)
+            },
+            positions,
         }
     }
 }

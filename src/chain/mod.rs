@@ -11,6 +11,7 @@
 
 mod built_as;
 mod candidate;
+mod carry_cells;
 mod collect;
 mod entries;
 mod find;

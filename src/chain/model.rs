@@ -41,6 +41,8 @@ pub enum CarryForm {
 pub enum BuiltAs {
     /// Every carry is made from the carry just below it.
     Ripple,
+    /// The carries run inside cells declared carry cells.
+    CarryCell,
     /// Anything else.
     Mixed,
 }

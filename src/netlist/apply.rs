@@ -9,6 +9,7 @@ use super::assume::{Assumed, Assumptions, Item, MOST_SETS, Misfit, Paths};
 use super::graph::Topology;
 use super::id::{BoxId, NetId, RegisterId};
 use super::model::{Driver, Netlist};
+use super::passage::open_boxes;
 use super::pattern::Pattern;
 use super::tie::tie;
 use rustc_hash::FxHashMap;
@@ -32,6 +33,7 @@ impl Assumptions {
         };
         let ties = work.ties()?;
         tie(&mut work.netlist, &ties);
+        open_boxes(&mut work.netlist, &self.box_delay, &mut work.matched)?;
         let topology = Topology::of(&work.netlist);
         let mut asserted = Asserted::default();
         work.bar_nets(&mut asserted)?;

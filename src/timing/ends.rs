@@ -139,6 +139,11 @@ impl End {
     /// The group the end belongs to; `None` when no path to it counts.
     pub fn group(self, netlist: &Netlist) -> Option<EndGroup> {
         let class = self.class();
+        if let (Self::BoxInput(id, pin), Some(declared)) = (self, netlist.declared())
+            && declared.passes(id, pin)
+        {
+            return None;
+        }
         let set = match netlist.asserted() {
             None => 0,
             Some(asserted) => asserted.end_set(match self {
@@ -233,7 +238,7 @@ fn all_ends<'a>(netlist: &'a Netlist, topology: &'a Topology) -> impl Iterator<I
 /// The group of starts a net belongs to, if it is a start from which paths count.
 #[inline]
 pub fn start_group(netlist: &Netlist, topology: &Topology, net: NetId) -> Option<StartGroup> {
-    let class = start_class(netlist, topology, net)?;
+    let class = start_class(netlist, topology, net).filter(|_| !netlist.is_barred(net))?;
     let set = match netlist.asserted() {
         None => 0,
         Some(asserted) => asserted.start_set(net)?,
