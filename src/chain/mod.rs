@@ -19,6 +19,7 @@ mod kinds;
 mod label;
 mod links;
 mod model;
+mod modes;
 mod trim;
 mod verify;
 

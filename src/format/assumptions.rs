@@ -307,14 +307,7 @@ impl Reader<'_> {
         let narrow =
             |side: &Option<Pattern>| side.as_ref().is_some_and(|side| !side.is_everything());
         let paths = match through {
-            Some(_) if narrow(&from) || narrow(&to) => {
-                return self.fault(
-                    &fields.path,
-                    "expected `through` alone, or `from` and `to`; found both".to_owned(),
-                    "leave `from` and `to` out, or make them `*`: which nets a path has passed is \
-                     followed for all paths or for none",
-                );
-            }
+            Some(through) if narrow(&from) || narrow(&to) => Paths::Part { from, through, to },
             Some(through) => Paths::Through(through),
             None if !narrow(&from) && !narrow(&to) => {
                 return self.fault(
