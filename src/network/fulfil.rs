@@ -9,7 +9,7 @@
 use super::carry_network::{CarryNetwork, NodeId};
 use super::demand::{Recipe, Way, fewest, manners};
 use super::profile::Profile;
-use super::signals::SignalId;
+use super::signals::{SignalId, SignalNode};
 use super::sum_end::{Carries, Ends, SumTerm, Sums};
 use rustc_hash::FxHashMap;
 
@@ -139,7 +139,9 @@ pub(super) fn fulfil<C: Emit>(
         network.set_carry_signal(position, carry);
         if item > 0
             && let Some(signals) = made.get(&Sums::<C>::sum(item))
+            && matches!(network.signal(signals[0]), SignalNode::Select { .. })
         {
+            // An XOR with the carry is what a sum is anyway.
             network.set_sum(position, signals[0]);
         }
     }
