@@ -8,6 +8,7 @@
 mod assumed;
 mod carried;
 mod chains;
+mod exercised;
 mod faults;
 pub mod findings;
 mod free_carry;
@@ -159,6 +160,14 @@ pub fn audit_under(
     drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
     let timing = Timing::of(netlist, &topology, model);
+    exercised::note(
+        netlist,
+        &topology,
+        &timing,
+        &chains,
+        options.chains.effort,
+        &mut records,
+    );
     let mut recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
     if let Some((asserting, _)) = &applied {
         assumed::hold_under_ties(asserting.assumptions, &mut recommended_set);
