@@ -19,6 +19,7 @@ pub mod bus;
 pub mod carry_cell;
 pub mod cell;
 mod declared;
+mod delay_table;
 pub mod function;
 mod graph;
 pub mod health;
@@ -28,15 +29,18 @@ mod model;
 mod names;
 mod passage;
 mod pattern;
+mod price;
 mod product;
 mod tie;
+mod times;
 mod transparent;
 
 pub use asserted::{Asserted, EndPoint, Pairing};
 pub use assume::Assumptions;
 pub use builder::{NetlistBuilder, TooLarge};
 pub use declared::Declared;
-pub use function::{Cover, Function, Shape, TruthTable};
+pub use delay_table::{CellDelays, DelayTable, Entry};
+pub use function::{CellPins, Cover, Function, Shape, TruthTable};
 pub use graph::{NetGraph, Readers, Topology};
 pub use id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 pub use model::{
@@ -45,3 +49,5 @@ pub use model::{
 };
 pub use names::{NameId, Names};
 pub use pattern::Pattern;
+pub use price::{Curve, PinPrice};
+pub use times::FileTimes;
