@@ -174,10 +174,11 @@ fn every_estimate_on_open_circuits_is_what_is_built() {
 }
 
 /// The 128-bit ripple adder without carry-in has 255 AND levels and comes down
-/// to 17 as Sklansky or Kogge–Stone (computed independently, facts §2.7; the
-/// depth of the public circuit is in `facts.tsv`).
+/// to 17 as Sklansky, to 13 as the best of the prefix class and to 12 with and-or
+/// paths, which take more gates than that level is worth (arithmetic on published
+/// recurrences; the depth of the public circuit is in `facts.tsv`).
 #[test]
-fn a_128_bit_graph_comes_from_255_levels_to_17() {
+fn a_128_bit_graph_comes_from_255_levels_to_13() {
     let word = Word::new(generators::Kind::Adder, 128, Cell::ALL[0]);
     let mut netlists = vec![("generated", aiger(&word.generate().circuit))];
     if let Some(folder) = support::datasets() {
@@ -199,7 +200,14 @@ fn a_128_bit_graph_comes_from_255_levels_to_17() {
         assert!(plan.on_longest_path);
         // Kogge–Stone is a level earlier than published levels say, since its
         // last-but-one position joins a lower span that is ready a level sooner.
-        for (scheme, levels) in [("sklansky", 17), ("kogge-stone", 16)] {
+        // The last two end in a select and are as `optimal.rs` has them.
+        let published = [
+            ("sklansky", 17),
+            ("kogge-stone", 16),
+            ("arrival-aware", 13),
+            ("and-or-path", 12),
+        ];
+        for (scheme, levels) in published {
             let best = plan
                 .best_of_scheme
                 .iter()
@@ -208,7 +216,7 @@ fn a_128_bit_graph_comes_from_255_levels_to_17() {
             assert_eq!(best.estimate.block_after, levels, "{name} {scheme}");
         }
         let recommended = &plan.proposals[plan.recommended.unwrap()];
-        assert_eq!(recommended.estimate.block_after, 17, "{}", plan.reason);
+        assert_eq!(recommended.estimate.block_after, 13, "{}", plan.reason);
         let over = recommended.takes_over.unwrap();
         assert!(over.through_chain);
         let site = Site::of(&ground, &chains[0]).unwrap();

@@ -9,6 +9,7 @@ mod assumed;
 mod carried;
 mod chains;
 pub mod closeup;
+mod exercised;
 mod faults;
 pub mod findings;
 mod fingerprint;
@@ -20,6 +21,7 @@ mod model_fit;
 mod names;
 mod rebuilds;
 pub mod record;
+mod shape;
 mod sight;
 mod verdict;
 pub mod words;
@@ -161,6 +163,14 @@ pub fn audit_under(
     drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &plans, &mut records);
     let timing = Timing::of(netlist, &topology, model);
+    exercised::note(
+        netlist,
+        &topology,
+        &timing,
+        &chains,
+        options.chains.effort,
+        &mut records,
+    );
     let mut recommended_set =
         rebuilds::recommended_set(netlist, &records, &plans, together.as_ref(), &timing, unit);
     if model.depends_on_load() && !recommended_set.proposals.is_empty() {

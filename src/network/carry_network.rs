@@ -1,11 +1,16 @@
-//! The carry network: a DAG of span nodes over the positions of a chain.
+//! The carry network: a DAG of span nodes over the positions of a chain, and of
+//! signals over the spans ([`super::signals`]).
 //!
 //! A node stands for the group generate G and group propagate P of its span;
 //! position -1 is the carry-in, whose G is the carry-in itself. A combine node
 //! joins adjacent spans, most significant first:
 //! `G = G1 + P1·G2 + P1·P2·G3 …`, `P = P1·P2·P3 …` (the group terms of
-//! carry-lookahead; Weinberger and Smith 1958). The carry out of position `i`
-//! is the G of a node that spans from `i` down to the lowest position.
+//! carry-lookahead; Weinberger and Smith 1958). Adjacent spans may overlap: G and
+//! P are idempotent, so what two parts share counts once. The carry out of
+//! position `i` is the G of a node that spans from `i` down to the lowest
+//! position, or a signal.
+
+use super::signals::{Carry, SignalNode, Signals};
 
 /// One node of a [`CarryNetwork`].
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
@@ -47,6 +52,7 @@ pub struct CarryNetwork {
     part_starts: Vec<u32>,
     parts: Vec<NodeId>,
     carries: Vec<NodeId>,
+    pub(super) signals: Signals,
 }
 
 impl CarryNetwork {
@@ -69,6 +75,7 @@ impl CarryNetwork {
             part_starts,
             parts: Vec::new(),
             carries,
+            signals: Signals::default(),
         }
     }
 
@@ -116,13 +123,13 @@ impl CarryNetwork {
     }
 
     /// Joins spans, most significant first. Panics unless there are at least
-    /// two and each ends just above the next.
+    /// two and each meets or overlaps the next, which reaches further down.
     pub fn combine(&mut self, parts: &[NodeId]) -> NodeId {
         assert!(parts.len() >= 2, "a combine node joins at least two spans");
         for pair in parts.windows(2) {
             let (upper, lower) = (self.span(pair[0]), self.span(pair[1]));
             assert!(
-                upper.low == lower.high + 1,
+                upper.low <= lower.high + 1 && lower.high < upper.high && lower.low < upper.low,
                 "spans {upper:?} and {lower:?} do not meet"
             );
         }
@@ -147,27 +154,48 @@ impl CarryNetwork {
             "span {span:?} is not the carry out of {position}"
         );
         self.carries[position] = node;
+        self.forget_carry_signal(position);
     }
 
-    /// The node whose G is the carry out of `position`.
-    pub fn carry(&self, position: usize) -> NodeId {
-        self.carries[position]
+    /// The carry out of `position`.
+    pub fn carry(&self, position: usize) -> Carry {
+        match self.carry_as_signal(position) {
+            Some(signal) => Carry::Signal(signal),
+            None => Carry::Span(self.carries[position]),
+        }
     }
 
-    /// Whether every carry spans down to the lowest position, so that a scheme
-    /// has left none as [`Self::new`] put it.
+    /// The span whose G is the carry out of `position`, unless it is a signal.
+    pub fn carry_span(&self, position: usize) -> Option<NodeId> {
+        match self.carry(position) {
+            Carry::Span(node) => Some(node),
+            Carry::Signal(_) => None,
+        }
+    }
+
+    /// Whether every carry is a signal or spans down to the lowest position, so
+    /// that a scheme has left none as [`Self::new`] put it.
     pub fn is_complete(&self) -> bool {
         (0..self.positions).all(|position| {
+            if self.carry_as_signal(position).is_some() {
+                return true;
+            }
             let span = self.span(self.carries[position]);
             span.high == position as i32 && span.low == self.lowest()
         })
     }
 
-    /// For each node, whether some carry is made from it.
+    /// For each node, whether some carry or sum is made from it.
     pub fn used(&self) -> Vec<bool> {
         let mut used = vec![false; self.spans.len()];
-        for carry in &self.carries {
+        for carry in (0..self.positions).filter_map(|i| self.carry_span(i)) {
             used[carry.index()] = true;
+        }
+        let used_signals = self.used_signals();
+        for signal in self.signal_ids().filter(|id| used_signals[id.index()]) {
+            if let SignalNode::Generate(node) | SignalNode::Propagate(node) = self.signal(signal) {
+                used[node.index()] = true;
+            }
         }
         for i in (self.leaf_count()..used.len()).rev() {
             if used[i] {
@@ -179,7 +207,8 @@ impl CarryNetwork {
         used
     }
 
-    /// Combine nodes some carry is made from: the cells of a prefix network.
+    /// Combine nodes some carry or sum is made from: the cells of a prefix
+    /// network.
     pub fn cells(&self) -> usize {
         let used = self.used();
         used[self.leaf_count()..].iter().filter(|&&u| u).count()
@@ -195,28 +224,60 @@ impl CarryNetwork {
         levels
     }
 
-    /// Combine nodes on the longest path to any carry.
+    /// Combine nodes on the longest path to any carry. Of signals an AND or OR
+    /// counts half, rounded up at the end, since a combine node is both, and a
+    /// two-way choice counts whole.
     pub fn levels(&self) -> usize {
-        let levels = self.node_levels();
-        let deepest = self.carries.iter().map(|carry| levels[carry.index()]);
+        let spans = self.node_levels();
+        let mut halves: Vec<u32> = Vec::with_capacity(self.signal_ids().len());
+        for signal in self.signal_ids() {
+            let deepest = self.arguments(signal).iter().map(|id| halves[id.index()]);
+            let below = deepest.max().unwrap_or(0);
+            halves.push(match self.signal(signal) {
+                SignalNode::Generate(node) | SignalNode::Propagate(node) => 2 * spans[node.index()],
+                SignalNode::HalfSum(_) => 0,
+                SignalNode::And(_) | SignalNode::Or(_) => below + 1,
+                SignalNode::Xor(..) => below,
+                SignalNode::Select { .. } => below + 2,
+            });
+        }
+        let deepest = (0..self.positions).map(|position| match self.carry(position) {
+            Carry::Span(node) => spans[node.index()],
+            Carry::Signal(signal) => halves[signal.index()].div_ceil(2),
+        });
         deepest.max().unwrap_or(0) as usize
     }
 
-    /// Most readers of one node: combine nodes that some carry needs, and one
-    /// more where the node is itself a carry (its sum reads it). Drawn networks
-    /// put buffers between rows; here there are none.
+    /// Most readers of one node or signal: what some carry or sum needs, and one
+    /// more where it is itself a carry whose sum reads it. Drawn networks put
+    /// buffers between rows; here there are none.
     pub fn largest_fan_out(&self) -> usize {
         let used = self.used();
+        let used_signals = self.used_signals();
         let mut readers = vec![0usize; self.spans.len()];
-        for carry in &self.carries {
-            readers[carry.index()] += 1;
+        let mut of_signal = vec![0usize; used_signals.len()];
+        for position in 0..self.positions {
+            match self.carry(position) {
+                Carry::Span(node) => readers[node.index()] += 1,
+                Carry::Signal(signal) => of_signal[signal.index()] += 1,
+            }
+        }
+        for signal in self.signal_ids().filter(|id| used_signals[id.index()]) {
+            for argument in self.arguments(signal) {
+                of_signal[argument.index()] += 1;
+            }
+        }
+        for signal in self.signal_ids() {
+            if let SignalNode::Generate(node) | SignalNode::Propagate(node) = self.signal(signal) {
+                readers[node.index()] += std::mem::take(&mut of_signal[signal.index()]);
+            }
         }
         for i in (self.leaf_count()..used.len()).filter(|&i| used[i]) {
             for part in self.parts_at(i) {
                 readers[part.index()] += 1;
             }
         }
-        readers.into_iter().max().unwrap_or(0)
+        readers.into_iter().chain(of_signal).max().unwrap_or(0)
     }
 
     /// Most parts of one combine node some carry needs; 1 when there is none.

@@ -18,6 +18,7 @@ mod made;
 mod materialise;
 mod new_gates;
 mod overlay;
+mod profile;
 mod propose;
 mod retime;
 mod reuse;

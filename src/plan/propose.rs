@@ -12,7 +12,7 @@ use super::site::Site;
 use crate::chain::Chain;
 use crate::netlist::Signal;
 use crate::network::Propagate;
-use crate::network::schemes::{Fitted, candidates};
+use crate::network::schemes::{Fitted, candidates_for};
 use crate::timing::{DelayModel, NEVER, PathKind, Slack};
 
 /// A scheme fitted to a chain and dry-run on its netlist.
@@ -187,9 +187,7 @@ pub fn as_it_is(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
 
 /// Every candidate with the better of the two propagates, in order.
 pub(super) fn try_all(site: &Site<'_>, kind: PathKind) -> Vec<Proposal> {
-    let limits = site.ground.settings.limits();
-    let has_carry_in = site.addends.carry_in.is_some();
-    let fitted = candidates(site.addends.a.len(), has_carry_in, limits.gate_inputs);
+    let fitted = candidates_for(&site.profile());
     let bound = lower_bound(site);
     let mut proposals = Vec::with_capacity(fitted.len());
     for (i, fitted) in fitted.into_iter().enumerate() {

@@ -22,8 +22,9 @@ pub(super) const SCHEME: Scheme = Scheme {
         valency: false,
         group: true,
         extra_levels: false,
+        select_end: true,
     },
-    shape: |network, settings| shape(network, settings.group),
+    shape: |network, settings, _| shape(network, settings.group),
 };
 
 /// Levels of lookahead over `positions` in groups of `size`.

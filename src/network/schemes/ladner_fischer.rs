@@ -20,8 +20,9 @@ pub(super) const SCHEME: Scheme = Scheme {
         valency: true,
         group: false,
         extra_levels: true,
+        select_end: true,
     },
-    shape: |network, settings| {
+    shape: |network, settings, _| {
         let items = items(network);
         let (valency, folds) = (settings.valency, settings.extra_levels);
         let prefixes = folded(network, &items, valency, folds, sklansky::prefixes);

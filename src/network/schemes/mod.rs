@@ -7,8 +7,13 @@
 //! always needs one more than without (equal only when n is a power of two).
 //! Group lookahead hands it to the top group, as the textbooks do.
 //!
+//! Schemes that shape themselves to their chain read its [`Profile`]; the others
+//! ignore it. A select end is added to what a scheme has shaped, for any of them.
+//!
 //! A new scheme is one file and one line in [`all`].
 
+mod and_or_path;
+mod arrival_aware;
 mod brent_kung;
 mod fit;
 mod flat_lookahead;
@@ -18,11 +23,14 @@ mod han_carlson;
 mod kogge_stone;
 mod ladner_fischer;
 mod ripple;
+mod select_end;
 mod sklansky;
 
-pub use fit::{Fitted, candidates};
+pub use fit::{Fitted, candidates, candidates_for};
 
+use super::build::Limits;
 use super::carry_network::{CarryNetwork, NodeId};
+use super::profile::Profile;
 
 /// How the number of gates grows with the number of positions.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -33,6 +41,10 @@ pub enum Growth {
     LogLinear,
     /// With the third power, counted in gate inputs.
     Cubic,
+    /// Positions times their logarithm, but the work to find them with the square.
+    Quadratic,
+    /// About with the square, and the work to find them with the fourth power.
+    Quartic,
 }
 
 /// What a scheme may be varied in. A scheme ignores what it does not take.
@@ -44,6 +56,9 @@ pub struct Settings {
     pub group: usize,
     /// Levels spent beyond the fewest possible to save cells.
     pub extra_levels: usize,
+    /// Whether late sums end in a select between the two sums, which saves a
+    /// level.
+    pub select_end: bool,
 }
 
 impl Default for Settings {
@@ -52,6 +67,7 @@ impl Default for Settings {
             valency: 2,
             group: 4,
             extra_levels: 1,
+            select_end: false,
         }
     }
 }
@@ -65,6 +81,8 @@ pub struct Takes {
     pub group: bool,
     /// The extra levels.
     pub extra_levels: bool,
+    /// The select end.
+    pub select_end: bool,
 }
 
 /// A published way to build the carry network.
@@ -77,22 +95,41 @@ pub struct Scheme {
     pub growth: Growth,
     /// What it may be varied in.
     pub takes: Takes,
-    shape: fn(&mut CarryNetwork, Settings),
+    shape: fn(&mut CarryNetwork, Settings, &Profile),
 }
 
 impl Scheme {
-    /// The scheme's carry network. Panics when there is no position, or a
-    /// valency or group below 2.
+    /// The scheme's carry network for arrivals all alike. Panics when there is
+    /// no position, or a valency or group below 2.
     pub fn network(
         &self,
         positions: usize,
         has_carry_in: bool,
         settings: Settings,
     ) -> CarryNetwork {
+        let limits = Limits {
+            gate_inputs: settings.valency,
+            covers: false,
+        };
+        let profile = Profile::even(positions, has_carry_in, limits);
+        self.network_for(&profile, settings)
+    }
+
+    /// The scheme's carry network for a chain. Panics when there is no position,
+    /// a valency or group below 2, or a fault in the scheme: its signals are
+    /// checked against addition.
+    pub fn network_for(&self, profile: &Profile, settings: Settings) -> CarryNetwork {
         assert!(settings.valency >= 2, "a combine node joins at least two");
         assert!(settings.group >= 2, "a group has at least two members");
-        let mut network = CarryNetwork::new(positions, has_carry_in);
-        (self.shape)(&mut network, settings);
+        let mut network = CarryNetwork::new(profile.positions(), profile.has_carry_in());
+        (self.shape)(&mut network, settings, profile);
+        if settings.select_end && self.takes.select_end {
+            select_end::select_late_sums(&mut network, profile);
+        }
+        if !network.is_prefix() {
+            let wrong = network.first_wrong();
+            assert!(wrong.is_none(), "{} at position {wrong:?}", self.name);
+        }
         network
     }
 }
@@ -107,7 +144,7 @@ pub fn by_name(name: &str) -> Option<&'static Scheme> {
     ALL.iter().find(|scheme| scheme.name == name)
 }
 
-static ALL: [Scheme; 8] = [
+static ALL: [Scheme; 10] = [
     ripple::SCHEME,
     sklansky::SCHEME,
     kogge_stone::SCHEME,
@@ -116,12 +153,15 @@ static ALL: [Scheme; 8] = [
     han_carlson::SCHEME,
     flat_lookahead::SCHEME,
     group_lookahead::SCHEME,
+    arrival_aware::SCHEME,
+    and_or_path::SCHEME,
 ];
 
 const NOTHING: Takes = Takes {
     valency: false,
     group: false,
     extra_levels: false,
+    select_end: true,
 };
 const VALENCY: Takes = Takes {
     valency: true,

@@ -14,7 +14,7 @@ pub(super) const SCHEME: Scheme = Scheme {
     source: "Sklansky 1960",
     growth: Growth::LogLinear,
     takes: VALENCY,
-    shape: |network, settings| {
+    shape: |network, settings, _| {
         let items = items(network);
         let prefixes = prefixes(network, &items, settings.valency);
         set_carries(network, &prefixes);

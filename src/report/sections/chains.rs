@@ -60,6 +60,7 @@ pub fn chains(
             counted(chains.len() as u64, "chain", "chains"),
         )));
     }
+    blocks.extend(exercised(chains, caps).map(Block::Text));
     blocks.extend(against(chains).map(Block::Text));
     if recurrences_not_listed > 0 {
         blocks.push(Block::Text(format!(
@@ -72,6 +73,28 @@ pub fn chains(
         aside: false,
         blocks,
     })
+}
+
+/// Chains whose longest path no values exercise, or may not.
+fn exercised(chains: &[ChainRecord], caps: Caps) -> Option<String> {
+    let told = chains.iter().filter_map(|chain| {
+        let found = chain.depth.exercised.as_ref()?;
+        let id = clipped(&chain.id, caps.name);
+        match (found.verdict.as_str(), found.depth) {
+            ("impossible", Some(depth)) => Some(format!(
+                "The longest path to the results of {id} ({}) is one that no values exercise: \
+                 they have settled after {depth}.",
+                chain.depth.leaves
+            )),
+            ("undecided", _) => Some(format!(
+                "Whether values exercise the longest path to the results of {id} was not settled \
+                 within the effort."
+            )),
+            _ => None,
+        }
+    });
+    let told: Vec<String> = told.take(caps.rows).collect();
+    (!told.is_empty()).then(|| told.join(" "))
 }
 
 /// What is to spare counts against, unless it is the longest path of the kind.
