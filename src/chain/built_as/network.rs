@@ -83,7 +83,10 @@ pub(super) fn network(
     }
     let width = made.positions.max(2) as usize;
     let few = made.levels <= 2 * width.next_power_of_two().trailing_zeros() as usize;
-    if all == 0 || !mostly(meet, all) || !few {
+    // Without a single generate of a span below the carries there is no network
+    // to speak of.
+    let bare = made.generates.is_empty();
+    if all == 0 || bare || !mostly(meet, all) || !few {
         return None;
     }
     let no_sums = made.sums.iter().all(Vec::is_empty);
@@ -96,6 +99,7 @@ pub(super) fn network(
         };
         return Some((BuiltAs::Tree, construction));
     }
+    let likest = likest.filter(|best| !matches!(best.scheme, "ripple" | "flat-lookahead"));
     let likest = likest.map(|best| {
         let percent = (100.0 * best.index).floor();
         format!(", most like {} ({percent} % of the spans)", best.scheme)
