@@ -207,91 +207,11 @@ impl CarryNetwork {
         used
     }
 
-    /// Combine nodes some carry or sum is made from: the cells of a prefix
-    /// network.
-    pub fn cells(&self) -> usize {
-        let used = self.used();
-        used[self.leaf_count()..].iter().filter(|&&u| u).count()
-    }
-
-    /// Combine nodes on the longest path to each node.
-    pub fn node_levels(&self) -> Vec<u32> {
-        let mut levels = vec![0; self.spans.len()];
-        for i in self.leaf_count()..levels.len() {
-            let deepest = self.parts_at(i).iter().map(|part| levels[part.index()]);
-            levels[i] = 1 + deepest.max().unwrap_or(0);
-        }
-        levels
-    }
-
-    /// Combine nodes on the longest path to any carry. Of signals an AND or OR
-    /// counts half, rounded up at the end, since a combine node is both, and a
-    /// two-way choice counts whole.
-    pub fn levels(&self) -> usize {
-        let spans = self.node_levels();
-        let mut halves: Vec<u32> = Vec::with_capacity(self.signal_ids().len());
-        for signal in self.signal_ids() {
-            let deepest = self.arguments(signal).iter().map(|id| halves[id.index()]);
-            let below = deepest.max().unwrap_or(0);
-            halves.push(match self.signal(signal) {
-                SignalNode::Generate(node) | SignalNode::Propagate(node) => 2 * spans[node.index()],
-                SignalNode::HalfSum(_) => 0,
-                SignalNode::And(_) | SignalNode::Or(_) => below + 1,
-                SignalNode::Xor(..) => below,
-                SignalNode::Select { .. } => below + 2,
-            });
-        }
-        let deepest = (0..self.positions).map(|position| match self.carry(position) {
-            Carry::Span(node) => spans[node.index()],
-            Carry::Signal(signal) => halves[signal.index()].div_ceil(2),
-        });
-        deepest.max().unwrap_or(0) as usize
-    }
-
-    /// Most readers of one node or signal: what some carry or sum needs, and one
-    /// more where it is itself a carry whose sum reads it. Drawn networks put
-    /// buffers between rows; here there are none.
-    pub fn largest_fan_out(&self) -> usize {
-        let used = self.used();
-        let used_signals = self.used_signals();
-        let mut readers = vec![0usize; self.spans.len()];
-        let mut of_signal = vec![0usize; used_signals.len()];
-        for position in 0..self.positions {
-            match self.carry(position) {
-                Carry::Span(node) => readers[node.index()] += 1,
-                Carry::Signal(signal) => of_signal[signal.index()] += 1,
-            }
-        }
-        for signal in self.signal_ids().filter(|id| used_signals[id.index()]) {
-            for argument in self.arguments(signal) {
-                of_signal[argument.index()] += 1;
-            }
-        }
-        for signal in self.signal_ids() {
-            if let SignalNode::Generate(node) | SignalNode::Propagate(node) = self.signal(signal) {
-                readers[node.index()] += std::mem::take(&mut of_signal[signal.index()]);
-            }
-        }
-        for i in (self.leaf_count()..used.len()).filter(|&i| used[i]) {
-            for part in self.parts_at(i) {
-                readers[part.index()] += 1;
-            }
-        }
-        readers.into_iter().chain(of_signal).max().unwrap_or(0)
-    }
-
-    /// Most parts of one combine node some carry needs; 1 when there is none.
-    pub fn largest_valency(&self) -> usize {
-        let used = self.used();
-        let combines = (self.leaf_count()..used.len()).filter(|&i| used[i]);
-        combines.map(|i| self.parts_at(i).len()).max().unwrap_or(1)
-    }
-
-    fn leaf_count(&self) -> usize {
+    pub(super) fn leaf_count(&self) -> usize {
         self.positions + usize::from(self.has_carry_in)
     }
 
-    fn parts_at(&self, node: usize) -> &[NodeId] {
+    pub(super) fn parts_at(&self, node: usize) -> &[NodeId] {
         let (start, end) = (self.part_starts[node], self.part_starts[node + 1]);
         &self.parts[start as usize..end as usize]
     }

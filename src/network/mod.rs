@@ -13,6 +13,7 @@ mod cover;
 mod cover_signals;
 mod estimate;
 mod gates;
+mod measures;
 pub mod profile;
 pub mod schemes;
 mod signals;

@@ -5,7 +5,7 @@
 //! Invariant: no combine node has more than `valency` parts, unless the inner
 //! scheme makes one.
 
-use super::{CarryNetwork, NodeId, Prefixes, join};
+use super::{CarryNetwork, NodeId, join};
 
 /// The prefixes of `items`, lowest first, by at most `folds` folds around
 /// `inner`.
@@ -14,7 +14,7 @@ pub(super) fn folded(
     items: &[NodeId],
     valency: usize,
     folds: usize,
-    inner: Prefixes,
+    inner: impl FnOnce(&mut CarryNetwork, &[NodeId], usize) -> Vec<NodeId>,
 ) -> Vec<NodeId> {
     let mut row = items.to_vec();
     let mut wider_rows = Vec::new();
