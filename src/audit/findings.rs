@@ -172,12 +172,14 @@ pub const RULES: &[Rule] = &[
     Rule {
         slug: "too-deep",
         severity: Severity::Warning,
-        what: "An output is ready later than it was asserted it must be, or paths that may \
-               take several cycles need more of a cycle than any path of one.",
+        what: "An output is ready later than it was asserted it must be, ends of paths are \
+               reached after the target depth that was asked for, or paths that may take \
+               several cycles need more of a cycle than any path of one.",
         why: "Whoever reads the output samples it before it has settled.",
         advice: "Shorten the path to it (the longest path of its kind is a start), or ask \
                  whether the required time is still what is meant.",
-        leaves_alone: "Outputs without a required time in the assumptions.",
+        leaves_alone: "Ends without a required time in the assumptions where no target depth \
+                       was asked for.",
         example: "required: [{ports: \"alarm\", at: 12, why: \"the siren samples early\"}]\n\
                   and `alarm` is ready at 17 gate delays.",
     },

@@ -52,7 +52,11 @@ pub fn arrivals(
         if topology.is_cut(output) {
             continue;
         }
-        let mut at = gate_arrival(netlist, delays, &by_net, gate);
+        let barred = netlist.is_barred_on(group.way, output);
+        let mut at = match barred {
+            true => NEVER,
+            false => gate_arrival(netlist, delays, &by_net, gate),
+        };
         for member in carried.of_net(output) {
             let chain = member.chain as usize;
             let position = member.position as usize;

@@ -11,6 +11,7 @@
 
 mod built_as;
 mod candidate;
+mod carry_cells;
 mod collect;
 mod entries;
 mod find;
@@ -18,6 +19,7 @@ mod kinds;
 mod label;
 mod links;
 mod model;
+mod modes;
 mod trim;
 mod verify;
 

@@ -115,9 +115,14 @@ pub struct AuditArguments {
     pub cells: Option<PathBuf>,
 
     /// A YAML file of what may be assumed about the block: tied nets, paths that do not count,
-    /// paths of several cycles, arrival and required times
+    /// paths of several cycles, arrival and required times, delays of boxes and of carry cells
     #[arg(long, value_name = "PATH")]
     pub assume: Option<PathBuf>,
+
+    /// Hold every path end without a required time of its own against this depth, in whole units
+    /// of the delay model
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(..=1 << 24))]
+    pub target_depth: Option<u64>,
 
     /// Exit with 1 when a finding is at least this bad
     #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
@@ -224,6 +229,7 @@ impl AuditArguments {
                 effort: self.effort,
                 ..chain::Options::default()
             },
+            target_depth: self.target_depth,
         }
     }
 }

@@ -224,6 +224,7 @@ fn settings_sentence(
         min_bits,
         effort,
         patterns_seed,
+        target_depth,
         assumptions_sha256,
     } = settings;
     let NetlistFacts {
@@ -237,6 +238,10 @@ fn settings_sentence(
         source.push(format!("model {}", clipped(model, caps.name)));
     }
     source.push(format!("SHA-256 {sha256}"));
+    let target = match target_depth {
+        None => String::new(),
+        Some(depth) => format!("; target depth {}", grouped(*depth)),
+    };
     let assumed = match assumptions_sha256 {
         None => String::new(),
         Some(hash) => format!("; assumptions SHA-256 {hash}"),
@@ -244,7 +249,7 @@ fn settings_sentence(
     format!(
         "{} {}; {}. Depths in {unit} (delay model {name}). New gates are \
          {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up; {} per \
-         proof; pattern seed {patterns_seed}{assumed}.",
+         proof; pattern seed {patterns_seed}{target}{assumed}.",
         tool.name,
         tool.version,
         source.join(", "),

@@ -11,7 +11,9 @@
 
 mod ends;
 mod factored;
+mod goals;
 mod model;
+mod near;
 mod passes;
 mod path;
 mod report;
@@ -21,7 +23,9 @@ pub use ends::{
     End, EndClass, EndGroup, PathKind, StartClass, StartGroup, end_net, ends, grouped_ends,
     start_group, start_time,
 };
+pub use goals::{Basis, Goals, Spare, Spares};
 pub use model::{DelayModel, PinDelays};
+pub use near::{MANY, Near};
 pub use passes::{Arrivals, NEVER, Tails, end_arrival, gate_arrival, start_times};
 pub use path::{PathStep, longest_path};
 pub use report::{KindTiming, Slack, Timing, depth_histogram, longest_free_buffers};

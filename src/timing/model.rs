@@ -106,7 +106,11 @@ impl PinDelays {
     fn priced(netlist: &Netlist, model: DelayModel, price: impl Fn(&Function) -> Vec<i32>) -> Self {
         let (mut starts, mut ticks) = (vec![0], Vec::new());
         for id in 0..netlist.function_count() {
-            ticks.extend(price(netlist.function_of(FunctionId::new(id))));
+            let id = FunctionId::new(id);
+            match netlist.declared_delays(id) {
+                Some(own) => ticks.extend(own.iter().map(|own| own * model.ticks_per_unit())),
+                None => ticks.extend(price(netlist.function_of(id))),
+            }
             starts.push(ticks.len() as u32);
         }
         Self {
