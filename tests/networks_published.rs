@@ -14,8 +14,7 @@ mod adders;
 use adders::{Adder, PAIRS, network, scheme};
 use carrywise::network::schemes::{FanOuts, Settings};
 use carrywise::network::{
-    Addends, CarryNetwork, Costs, CountingSink, GateSink, Limits, Profile, Propagate, XorForm,
-    build,
+    Addends, CarryNetwork, CountingSink, GateSink, Limits, Propagate, XorForm, build,
 };
 
 /// (scheme, cells at N = 8, 16, 32, 64, 128, levels as a function of L = log2 N).
@@ -339,7 +338,7 @@ fn the_knowles_family_has_the_published_members() {
         let n = 1usize << l;
         let network = with(&|s| s.fan_outs = FanOuts::new(&[2]), "knowles", n);
         assert_eq!(network.cells(), n * l - n + 1, "cells at {n}");
-        assert_eq!(network.largest_fan_out(), 3, "fan-out at {n}");
+        assert_eq!(network.row_fan_out(), 3, "fan-out at {n}");
         assert_eq!(network.wire_tracks(), n / 4, "tracks at {n}");
     }
     for fan_outs in FanOuts::every(5) {
@@ -381,8 +380,7 @@ fn spans(network: &CarryNetwork) -> Vec<(i32, i32)> {
 /// Harris 2003: l + f + t = L - 1 gives L + l levels, a fan-out of at most
 /// 2^f + 1 and at most 2^t tracks, the points inside (l, f, t > 0) included. A
 /// folded network is l folds around a Knowles network of L - l levels. Levels are
-/// those of the taxonomy's drawings; the last row of Brent-Kung's is drawn one
-/// later than its longest path, so where l = L - 1 there is one less.
+/// rows of the taxonomy's drawings, with a buffer where a row has no cell.
 #[test]
 fn every_point_of_the_taxonomy_is_reached() {
     for levels in 3..=7usize {
@@ -398,14 +396,9 @@ fn every_point_of_the_taxonomy_is_reached() {
                 };
                 let network = with(&set, "knowles", n);
                 let point = format!("N = {n}, ({l}, {f}, {t})");
-                let drawn = levels + l - usize::from(l == levels - 1);
-                assert_eq!(network.levels(), drawn, "levels of {point}");
-                let fan_out = network.largest_fan_out();
-                // One more reader where a folded row is widened again.
-                assert!(
-                    fan_out <= (1 << f) + 1 + usize::from(l > 0),
-                    "{point}: {fan_out}"
-                );
+                assert_eq!(network.rows(), levels + l, "levels of {point}");
+                let fan_out = network.row_fan_out();
+                assert!(fan_out <= (1 << f) + 1, "{point}: {fan_out}");
                 assert!(network.wire_tracks() <= 1 << t, "tracks of {point}");
             }
         }
@@ -419,15 +412,15 @@ fn fan_out_and_tracks_are_the_published_ones() {
     for n in [8, 16, 32, 64, 128] {
         let of = |name| {
             let network = network(name, n, false);
-            (network.largest_fan_out(), network.wire_tracks())
+            (network.row_fan_out(), network.wire_tracks())
         };
         assert_eq!(of("ripple").1, 1);
         assert_eq!(of("sklansky"), (n / 2 + 1, 1), "{n}");
-        assert_eq!(of("kogge-stone").1, n / 2, "{n}");
-        assert_eq!(of("han-carlson").1, n / 4, "{n}");
-        assert_eq!(of("brent-kung").1, 1, "{n}");
-        assert_eq!(of("ladner-fischer").1, 1, "{n}");
-        assert_eq!(of("ladner-fischer").0, n / 4 + 1, "{n}");
+        assert_eq!(of("kogge-stone"), (2, n / 2), "{n}");
+        assert_eq!(of("han-carlson"), (2, n / 4), "{n}");
+        assert_eq!(of("brent-kung"), (2, 1), "{n}");
+        assert_eq!(of("ladner-fischer"), (n / 4 + 1, 1), "{n}");
+        assert_eq!(of("knowles"), (3, n / 4), "{n}");
     }
 }
 

@@ -51,6 +51,10 @@ pub struct CarryNetwork {
     spans: Vec<Span>,
     part_starts: Vec<u32>,
     parts: Vec<NodeId>,
+    /// Rows a scheme draws its network in: of each combine node, where rows are
+    /// stated, and whether the next one begins another.
+    rows: Vec<u32>,
+    row_begins: bool,
     carries: Vec<NodeId>,
     pub(super) signals: Signals,
 }
@@ -74,6 +78,8 @@ impl CarryNetwork {
             spans,
             part_starts,
             parts: Vec::new(),
+            rows: Vec::new(),
+            row_begins: false,
             carries,
             signals: Signals::default(),
         }
@@ -122,6 +128,22 @@ impl CarryNetwork {
         (0..self.spans.len() as u32).map(NodeId)
     }
 
+    /// Lets the combine nodes that follow stand in a row of their own, as the
+    /// scheme's publication draws them. Nothing is built differently by it.
+    pub fn begin_row(&mut self) {
+        self.row_begins = true;
+    }
+
+    /// The row of a combine node, from 1; its level where no rows are stated.
+    pub(super) fn row(&self, node: NodeId, levels: &[u32]) -> u32 {
+        let stated = self.rows.last().is_some_and(|&last| last > 0);
+        if stated {
+            self.rows[node.index() - self.leaf_count()]
+        } else {
+            levels[node.index()]
+        }
+    }
+
     /// Joins spans, most significant first. Panics unless there are at least
     /// two and each meets or overlaps the next, which reaches further down.
     pub fn combine(&mut self, parts: &[NodeId]) -> NodeId {
@@ -138,6 +160,9 @@ impl CarryNetwork {
             low: self.span(parts[parts.len() - 1]).low,
         };
         let id = NodeId(u32::try_from(self.spans.len()).expect("fewer than 2^32 nodes"));
+        let row = self.rows.last().copied().unwrap_or(0);
+        self.rows
+            .push(row + u32::from(std::mem::take(&mut self.row_begins)));
         self.spans.push(span);
         self.parts.extend_from_slice(parts);
         let end = u32::try_from(self.parts.len()).expect("fewer than 2^32 parts");

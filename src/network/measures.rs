@@ -89,35 +89,40 @@ impl CarryNetwork {
         combines.map(|i| self.parts_at(i).len()).max().unwrap_or(1)
     }
 
+    /// Rows of the network as its publication draws it; where none are stated,
+    /// its levels. A drawing may have a row more than the longest path has cells.
+    pub fn rows(&self) -> usize {
+        let used = self.used();
+        let levels = self.node_levels();
+        let cells = self.nodes().skip(self.leaf_count());
+        let rows = cells
+            .filter(|node| used[node.index()])
+            .map(|node| self.row(node, &levels));
+        rows.max().unwrap_or(0) as usize
+    }
+
+    /// Most readers of one column in one row, its own continuation among them: the
+    /// fan-out of the taxonomy of prefix networks, whose drawings put a buffer
+    /// where a column has no cell.
+    pub fn row_fan_out(&self) -> usize {
+        let wires = self.wires();
+        let same = |a: &Wire, b: &Wire| (a.row, a.from) == (b.row, b.from);
+        let most = wires.chunk_by(same).map(<[Wire]>::len).max();
+        most.map_or(1, |readers| readers + 1)
+    }
+
     /// Most wires of one row of cells that run between two neighbouring columns:
     /// the tracks of the taxonomy of prefix networks (D. Harris 2003). A wire
     /// runs from the column of what is read, its most significant position, to
-    /// the reader's; one that several read runs once. Rows are levels.
+    /// the reader's; one that several read runs once.
     pub fn wire_tracks(&self) -> usize {
-        let used = self.used();
-        let levels = self.node_levels();
-        // (row, column read, furthest column that reads it).
-        let mut wires: Vec<(u32, i32, i32)> = Vec::new();
-        for node in self.nodes().filter(|node| used[node.index()]) {
-            if node.index() < self.leaf_count() {
-                continue;
-            }
-            let column = self.span(node).high;
-            for part in self.parts_at(node.index()) {
-                let from = self.span(*part).high;
-                if from < column {
-                    wires.push((levels[node.index()], from, column));
-                }
-            }
-        }
-        // One entry a wire, the furthest reader last.
-        wires.sort_unstable();
+        let wires = self.wires();
         let mut edges: Vec<(u32, i32, i32)> = Vec::with_capacity(2 * wires.len());
-        for (i, &(row, from, to)) in wires.iter().enumerate() {
-            let next = wires.get(i + 1);
-            if next.is_none_or(|next| (next.0, next.1) != (row, from)) {
-                edges.extend([(row, from, 1), (row, to, -1)]);
-            }
+        let same = |a: &Wire, b: &Wire| (a.row, a.from) == (b.row, b.from);
+        for wire in wires.chunk_by(same) {
+            // The furthest reader comes last.
+            let Wire { row, from, to } = wire[wire.len() - 1];
+            edges.extend([(row, from, 1), (row, to, -1)]);
         }
         edges.sort_unstable();
         let (mut most, mut crossing) = (0, 0);
@@ -127,4 +132,33 @@ impl CarryNetwork {
         }
         most as usize
     }
+
+    /// The wires from column to column, ascending.
+    fn wires(&self) -> Vec<Wire> {
+        let used = self.used();
+        let levels = self.node_levels();
+        let mut wires = Vec::new();
+        for node in self.nodes().skip(self.leaf_count()) {
+            if !used[node.index()] {
+                continue;
+            }
+            let (row, to) = (self.row(node, &levels), self.span(node).high);
+            for part in self.parts_at(node.index()) {
+                let from = self.span(*part).high;
+                if from < to {
+                    wires.push(Wire { row, from, to });
+                }
+            }
+        }
+        wires.sort_unstable();
+        wires
+    }
+}
+
+/// A wire of a drawn network, from the column read to the reader's.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
+struct Wire {
+    row: u32,
+    from: i32,
+    to: i32,
 }

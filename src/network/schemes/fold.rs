@@ -19,6 +19,7 @@ pub(super) fn folded(
     let mut row = items.to_vec();
     let mut wider_rows = Vec::new();
     while row.len() > 1 && wider_rows.len() < folds {
+        network.begin_row();
         let joined = row.chunks(valency);
         let shorter = joined.map(|chunk| join(network, chunk.iter().copied()));
         let shorter = shorter.collect();
@@ -26,6 +27,7 @@ pub(super) fn folded(
     }
     let mut prefixes = inner(network, &row, valency);
     while let Some(row) = wider_rows.pop() {
+        network.begin_row();
         prefixes = widened(network, &row, valency, &prefixes);
     }
     prefixes

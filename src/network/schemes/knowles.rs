@@ -124,18 +124,44 @@ impl Default for FanOuts {
     }
 }
 
-/// The prefixes of adjacent spans, lowest first.
+/// The prefixes of adjacent spans, lowest first. A cell stands only where some
+/// prefix reads through it, so that the most fan-out is Sklansky's network and
+/// not a larger one.
 fn prefixes(network: &mut CarryNetwork, items: &[NodeId], fan_outs: FanOuts) -> Vec<NodeId> {
+    let levels = items.len().next_power_of_two().trailing_zeros();
+    let exponents = fan_outs.exponents(levels);
+    let lower_of = |item: usize, level: usize| {
+        let lower = item.checked_sub(1 << level)?;
+        Some(lower | ((1 << exponents[level]) - 1))
+    };
+    // How far down each item has to reach after each level, the last first.
+    let mut reach: Vec<usize> = vec![0; items.len()];
+    let mut read: Vec<Vec<Option<usize>>> = Vec::new();
+    for level in (0..exponents.len()).rev() {
+        let mut before: Vec<usize> = (0..items.len()).collect();
+        let mut reads = vec![None; items.len()];
+        for (item, &low) in reach.iter().enumerate() {
+            match lower_of(item, level).filter(|&lower| low <= lower) {
+                Some(lower) => {
+                    before[item] = before[item].min(lower + 1);
+                    before[lower] = before[lower].min(low);
+                    reads[item] = Some(lower);
+                }
+                None => before[item] = before[item].min(low),
+            }
+        }
+        reach = before;
+        read.push(reads);
+    }
     let mut row = items.to_vec();
-    let levels = row.len().next_power_of_two().trailing_zeros();
-    for (level, exponent) in fan_outs.exponents(levels).into_iter().enumerate() {
-        let (length, group) = (1 << level, 1usize << exponent);
+    for reads in read.into_iter().rev() {
         let above = row.clone();
-        for (i, slot) in row.iter_mut().enumerate().skip(length) {
-            // What reaches the lowest already needs no more.
-            if network.span(*slot).low > network.lowest() {
-                let lower = (i - length) | (group - 1);
-                *slot = join(network, [above[lower], above[i]]);
+        network.begin_row();
+        for (item, lower) in reads.into_iter().enumerate() {
+            let meets =
+                |lower: &usize| network.span(above[*lower]).low < network.span(above[item]).low;
+            if let Some(lower) = lower.filter(meets) {
+                row[item] = join(network, [above[lower], above[item]]);
             }
         }
     }
