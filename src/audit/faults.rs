@@ -289,6 +289,13 @@ impl<'a> Findings<'a> {
         }
     }
 
+    /// A delay model that does not fit the netlist.
+    pub fn add_misfit(&mut self, misfit: Option<&str>) {
+        if let Some(misfit) = misfit {
+            self.add("delay-model-does-not-fit", None, 0, misfit.to_owned());
+        }
+    }
+
     /// Ends that miss the target for the block.
     pub fn add_missed_target(&mut self, standing: &Standing, unit: &str) {
         let (Some(target), Some((over, end))) = (standing.target, standing.latest_for_target)

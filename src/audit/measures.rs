@@ -8,6 +8,7 @@ use super::record::{
     Depth, DepthBar, FanIn, FanInBar, FanOut, FanOutBar, PathStep as StepRecord, PortDepth,
 };
 use crate::netlist::{NetId, Netlist, Topology, histogram};
+use crate::timing::effort::FO4;
 use crate::timing::{
     DelayModel, End, EndClass, KindTiming, NEVER, PathKind, PathStep, StartClass, StartGroup, Time,
     Timing, end_arrival, ends, longest_free_buffers, start_group, start_time,
@@ -96,13 +97,19 @@ pub fn depth(
         unit: model.unit_word().to_owned(),
         longest_free_buffers: match model {
             DelayModel::Unit => Some(model.time(longest_free_buffers(netlist, topology))),
-            DelayModel::Pairs => None,
+            DelayModel::Pairs | DelayModel::LogicalEffort => None,
         },
+        longest_in_fo4: in_fo4(model, timing.longest()),
         histogram: bars.into_iter().map(bar).collect(),
         longest_path,
         longest_path_left_out,
         ports: ports(netlist, topology, timing),
     }
+}
+
+/// Ticks of logical effort in inverters that drive four like them, each 5 τ.
+fn in_fo4(model: DelayModel, ticks: i32) -> Option<Time> {
+    (model == DelayModel::LogicalEffort).then(|| model.time(ticks / FO4 as i32))
 }
 
 fn path_record(

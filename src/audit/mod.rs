@@ -14,6 +14,7 @@ mod free_carry;
 mod gate_words;
 mod goals;
 mod measures;
+mod model_fit;
 mod names;
 mod rebuilds;
 pub mod record;
@@ -221,6 +222,8 @@ pub fn audit_under(
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
     findings.add_unproven(&unproven);
+    let misfit = model_fit::misfit(read, model);
+    findings.add_misfit(misfit.as_deref());
     findings.add_crowds(read);
     let (findings, findings_left_out) = findings.sorted();
 
@@ -233,7 +236,7 @@ pub fn audit_under(
         netlist: netlist_facts(read, origin),
         settings: SettingsRecord {
             assumptions_sha256: asserting.map(|asserting| asserting.sha256.clone()),
-            ..settings_record(&settings, options)
+            ..settings_record(&settings, options, misfit)
         },
         seen: Seen {
             gates_with_function: read.gate_count() as u64,
@@ -296,11 +299,16 @@ fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {
     }
 }
 
-fn settings_record(settings: &Settings, options: &Options) -> SettingsRecord {
+fn settings_record(
+    settings: &Settings,
+    options: &Options,
+    misfit: Option<String>,
+) -> SettingsRecord {
     SettingsRecord {
         delay_model: DelayModelFacts {
             name: settings.model.name().to_owned(),
             unit: settings.model.unit_word().to_owned(),
+            misfit,
         },
         new_gates: settings.new_gates.word().to_owned(),
         new_gates_reason: settings.new_gates_reason.clone(),

@@ -28,6 +28,7 @@ mod model;
 mod names;
 mod passage;
 mod pattern;
+mod product;
 mod tie;
 mod transparent;
 

@@ -272,8 +272,19 @@ impl Netlist {
     /// The fan-ins of `gate`, one per pin; a net may occur more than once.
     #[inline]
     pub fn fan_ins(&self, gate: GateId) -> &[NetId] {
+        &self.fan_ins[self.fan_in_range(gate)]
+    }
+
+    /// Number of fan-ins of all gates.
+    pub fn fan_in_count(&self) -> usize {
+        self.fan_ins.len()
+    }
+
+    /// Where the fan-ins of `gate` lie among those of all gates in order.
+    #[inline]
+    pub fn fan_in_range(&self, gate: GateId) -> std::ops::Range<usize> {
         let i = gate.index();
-        &self.fan_ins[self.fan_in_starts[i] as usize..self.fan_in_starts[i + 1] as usize]
+        self.fan_in_starts[i] as usize..self.fan_in_starts[i + 1] as usize
     }
 
     /// The net `gate` drives.

@@ -216,7 +216,7 @@ fn settings_sentence(
     caps: Caps,
 ) -> String {
     let Settings {
-        delay_model: DelayModelFacts { name, unit },
+        delay_model: DelayModelFacts { name, unit, misfit },
         new_gates,
         new_gates_reason,
         gate_inputs,
@@ -233,6 +233,9 @@ fn settings_sentence(
         sha256,
         ..
     } = netlist;
+    let misfit = misfit.as_ref().map_or_else(String::new, |why| {
+        format!("; {}", clipped(why, caps.sentence))
+    });
     let mut source = vec![format!("read as {}", format.replace('-', " "))];
     if let Some(model) = model {
         source.push(format!("model {}", clipped(model, caps.name)));
@@ -247,7 +250,7 @@ fn settings_sentence(
         Some(hash) => format!("; assumptions SHA-256 {hash}"),
     };
     format!(
-        "{} {}; {}. Depths in {unit} (delay model {name}). New gates are \
+        "{} {}; {}. Depths in {unit} (delay model {name}{misfit}). New gates are \
          {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up; {} per \
          proof; pattern seed {patterns_seed}{target}{assumed}.",
         tool.name,

@@ -4,8 +4,9 @@
 //! net is the longest path from it to an end. Both are one loop over the gates
 //! in topological order (the longest-path recurrence on an acyclic graph).
 
+use super::delays::PinDelays;
 use super::ends::{End, EndGroup, StartGroup, end_net, grouped_ends, start_group, start_time};
-use super::model::{DelayModel, PinDelays};
+use super::model::DelayModel;
 use crate::netlist::{GateId, NetId, Netlist, Topology};
 
 /// The time of what no path reaches; below every real time.
@@ -78,7 +79,7 @@ pub fn gate_arrival(netlist: &Netlist, delays: &PinDelays, by_net: &[i32], gate:
     for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
         let at = by_net[net.index()];
         if at != NEVER {
-            latest = latest.max(at + delay);
+            latest = latest.max(at.saturating_add(*delay));
         }
     }
     latest
@@ -143,7 +144,7 @@ impl Tails {
             let ticks = delays.of_gate(netlist, gate);
             for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
                 let slot = &mut by_net[net.index()];
-                *slot = (*slot).max(tail + delay);
+                *slot = (*slot).max(tail.saturating_add(*delay));
             }
         }
         Self { by_net }

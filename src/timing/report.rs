@@ -4,8 +4,9 @@
 //! one class occurs; a purely combinational netlist pays for one of each.
 //! Slack is counted against the longest path of the same kind.
 
+use super::delays::PinDelays;
 use super::ends::{End, EndGroup, PathKind, StartGroup, end_net, grouped_ends, start_group};
-use super::model::{DelayModel, PinDelays};
+use super::model::DelayModel;
 use super::passes::{Arrivals, NEVER, Tails, end_arrival};
 use super::path::{PathStep, longest_path};
 use super::time::Time;
@@ -231,7 +232,7 @@ impl Timing {
                 at.map_or(NEVER, |(_, by_net)| by_net[net.index()]),
                 tail.map_or(NEVER, find),
             );
-            at != NEVER && tail != NEVER && at + tail == longest
+            at != NEVER && tail != NEVER && at.saturating_add(tail) == longest
         })
     }
 
@@ -285,7 +286,7 @@ impl Timing {
                 let (true, Some(timing)) = (tail != NEVER, self.kind(kind)) else {
                     continue;
                 };
-                let ticks = timing.longest - (at + tail);
+                let ticks = timing.longest - at.saturating_add(tail);
                 if least.is_none_or(|slack| ticks < slack.ticks) {
                     least = Some(Slack { ticks, kind });
                 }

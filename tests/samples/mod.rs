@@ -160,6 +160,7 @@ pub fn tide_logger() -> Audit {
             delay_model: DelayModelFacts {
                 name: "unit".into(),
                 unit: "gate delays".into(),
+                misfit: None,
             },
             new_gates: "single-operator".into(),
             new_gates_reason: "the netlist uses no other function of three or more inputs".into(),
@@ -225,6 +226,7 @@ pub fn tide_logger() -> Audit {
             least_to_spare: None,
             unit: "gate delays".into(),
             longest_free_buffers: Some(at(33)),
+            longest_in_fo4: None,
             histogram: (1..=33)
                 .map(|depth| DepthBar {
                     depth: at(depth),

@@ -139,10 +139,12 @@ pub struct Settings {
 /// The delay model.
 #[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct DelayModelFacts {
-    /// `unit` or `pairs`.
+    /// `unit`, `pairs` or `logical-effort`.
     pub name: String,
     /// What one step counts, in the plural: `gate delays`.
     pub unit: String,
+    /// Why the model does not fit the netlist; null where it does.
+    pub misfit: Option<String>,
 }
 
 /// How much could be seen.
@@ -236,6 +238,9 @@ pub struct Depth {
     /// The longest path with buffers and inverters free; null when the model
     /// has them free already.
     pub longest_free_buffers: Option<Time>,
+    /// The longest path in inverters that drive four like them (FO4); null
+    /// unless the model is logical effort.
+    pub longest_in_fo4: Option<Time>,
     /// Path ends by depth, ascending. An end is an output, a register input or
     /// a box input.
     pub histogram: Vec<DepthBar>,

@@ -341,9 +341,10 @@ fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Stri
         signed(proposal.gate_equivalents_added)
     ));
     if let Some(levels) = proposal.above_bound {
-        let levels = match levels {
-            Time::ZERO => "no level".to_owned(),
-            some => depth_in(some, "levels"),
+        let levels = match levels.as_whole() {
+            Some(0) => "nothing".to_owned(),
+            Some(_) => depth_in(levels, "levels"),
+            None => levels.to_string(),
         };
         parts.push(format!("{levels} above the lower bound for such gates"));
     }

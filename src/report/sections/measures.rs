@@ -109,6 +109,7 @@ pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> 
         least_to_spare,
         unit,
         longest_free_buffers,
+        longest_in_fo4,
         histogram: depth_bars,
         longest_path: _,
         longest_path_left_out: _,
@@ -150,6 +151,11 @@ pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> 
                 " With buffers and inverters free the depth is {free}."
             ));
         }
+    }
+    if let Some(fo4) = longest_in_fo4 {
+        lead.push_str(&format!(
+            " The depth is that of {fo4} inverters which drive four like them (FO4)."
+        ));
     }
     let gates = |&FanInBar { fan_in, gates }: &FanInBar| (fan_in as i64, gates);
     let nets = |&FanOutBar { fan_out, nets }: &FanOutBar| (fan_out as i64, nets);
