@@ -255,7 +255,7 @@ fn audit_file(
     })
 }
 
-fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
+pub(super) fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
     load(file, name, limits).map_err(|error| {
         let nothing = Source {
             name: name.to_owned(),

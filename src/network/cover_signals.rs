@@ -69,9 +69,11 @@ impl SignalCovers {
             needed: vec![false; count],
         };
         for signal in network.signal_ids() {
-            let cut = used[signal.index()]
-                .then(|| cutter.cut(signal))
-                .unwrap_or_default();
+            let cut = if used[signal.index()] {
+                cutter.cut(signal)
+            } else {
+                Cut::default()
+            };
             let latest = cut.pins.iter().map(|&pin| cutter.levels.at(pin)).max();
             let level = latest.unwrap_or(0).saturating_add(1);
             cutter.levels.signals.push(level);

@@ -20,6 +20,7 @@ mod propose;
 mod settings;
 mod site;
 mod tables;
+pub mod tradeoff;
 
 pub use bound::{earliest, earliest_at_cost};
 pub use dry_run::{DryRun, Estimate, KindChange, TakesOver};

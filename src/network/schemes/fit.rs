@@ -137,7 +137,7 @@ fn fits(scheme: &Scheme, positions: usize) -> bool {
 
 /// The settings a scheme is tried with. What is known to be no better than its
 /// neighbours is left out; [`every_variation`] has it all.
-fn variations(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Settings> {
+pub fn variations(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Settings> {
     let mut list = vec![Settings::default()];
     if positions > MOST_LOG_LINEAR {
         return list;
@@ -174,7 +174,7 @@ fn variations(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Sett
         list = vary(&list, BLOCKS.into_iter(), set_group);
         list.push(growing);
     } else if takes.select_inside {
-        list.retain(|each| each.valency == 2 || each.valency == gate_inputs.min(MOST_VALENCY));
+        list.retain(|each| each.valency == 2);
         list = vary(&list, SPARSENESS.into_iter(), set_group);
         list = vary(
             &list,
@@ -189,14 +189,18 @@ fn variations(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Sett
         let sizes = GROUPS.into_iter().filter(|&size| size <= most);
         list = vary(&list, sizes, set_group);
     }
-    // Flat lookahead has no combination to save, and is large enough.
-    if takes.select_end && scheme.growth != Growth::Cubic {
-        list = vary(&list, [false, true].into_iter(), |settings, select_end| {
-            Settings {
-                select_end,
+    // A select end is for networks of few levels; groups and fan-outs have their
+    // say without one.
+    let quick = scheme.growth == Growth::LogLinear && !takes.group && !takes.fan_outs;
+    if takes.select_end && quick {
+        let selected = list.iter().filter(|each| each.extra_levels < 2);
+        let selected: Vec<Settings> = selected
+            .map(|&settings| Settings {
+                select_end: true,
                 ..settings
-            }
-        });
+            })
+            .collect();
+        list.extend(selected);
     }
     list
 }

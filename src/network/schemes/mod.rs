@@ -30,7 +30,9 @@ mod select_end;
 mod sklansky;
 mod sparse_prefix;
 
-pub use fit::{Fitted, MOST_LOG_LINEAR, candidates, candidates_for, every_variation, left_out};
+pub use fit::{
+    Fitted, MOST_LOG_LINEAR, candidates, candidates_for, every_variation, left_out, variations,
+};
 pub use knowles::FanOuts;
 
 use super::build::Limits;
