@@ -137,7 +137,11 @@ pub fn audit_under(
         topology = Topology::of(netlist);
     }
     // The search needs the most memory, so it runs before the timing is held.
-    let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
+    let chain::Found {
+        chains,
+        unproven,
+        witnessed,
+    } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
     let plans = plans(netlist, &topology, &timing, &settings, &chains);
@@ -147,7 +151,7 @@ pub fn audit_under(
     let asserted = applied
         .as_ref()
         .map(|(asserting, under)| (asserting.assumptions, under));
-    let asked = goals::asked(asserted, options.target_depth, model);
+    let asked = goals::asked(netlist, asserted, options.target_depth, model);
     let spares = Spares::of(netlist, &topology, &timing, &asked);
     let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains, &spares);
     let mut records = sources.records(&chains, &plans);
@@ -244,6 +248,7 @@ pub fn audit_under(
             gates_without_function: netlist.boxes().len() as u64,
             nets_cut: topology.cut.count_ones(..) as u64,
             chains_proven: records.len() as u64,
+            chains_witnessed: witnessed as u64,
             chains_unproven: unproven.len() as u64,
         },
         verdict,

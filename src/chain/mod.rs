@@ -13,6 +13,7 @@ mod built_as;
 mod candidate;
 mod carry_cells;
 mod collect;
+mod copies;
 mod entries;
 mod find;
 mod kinds;
