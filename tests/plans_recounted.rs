@@ -9,6 +9,8 @@ mod recount;
 mod support;
 
 use carrywise::netlist::Topology;
+use carrywise::network::Propagate;
+use carrywise::network::schemes::{Fitted, candidates_for};
 use carrywise::plan::{DryRun, Ground, NewGates, Request, Settings, Site, materialise, plan};
 use carrywise::timing::{DelayModel, Timing};
 use generators::{Cell, Word};
@@ -95,7 +97,7 @@ fn every_estimate_in_hostile_surroundings_is_what_is_built() {
             &text[ports..end]
         );
         let netlist = parse("surrounded.blif", text.as_bytes());
-        for model in DelayModel::ALL {
+        for model in exact_models() {
             let request = request(model, NewGates::SingleOperator, 3);
             compared += compare_all(&netlist, request, &format!("seed {seed}"));
         }
@@ -108,7 +110,7 @@ fn every_estimate_on_the_fixtures_is_what_is_built() {
     let mut compared = 0;
     for (name, bytes) in generators::gauge::files() {
         let netlist = parse(name, &bytes);
-        for model in DelayModel::ALL {
+        for model in exact_models() {
             compared += compare_all(&netlist, Request::new(model), name);
         }
     }
@@ -166,19 +168,27 @@ fn a_128_bit_graph_comes_from_255_levels_to_17() {
         assert!(plan.on_longest_path);
         // Kogge–Stone is a level earlier than published levels say, since its
         // last-but-one position joins a lower span that is ready a level sooner.
+        // With a select end either is earlier still.
+        let site = Site::of(&ground, &chains[0]).unwrap();
         for (scheme, levels) in [("sklansky", 17), ("kogge-stone", 16)] {
+            let mut fitted = candidates_for(&site.profile()).into_iter();
+            let plain = |f: &Fitted| f.scheme == scheme && f.valency == 2 && !f.select_end;
+            let plain = fitted.find(plain).unwrap();
+            let runs = [Propagate::Or, Propagate::Xor]
+                .map(|propagate| DryRun::of(&site, &plain.network, propagate));
+            let depth = runs.iter().map(|run| run.estimate().block_after).min();
+            assert_eq!(depth, Some(levels), "{name} {scheme}");
             let best = plan
                 .best_of_scheme
                 .iter()
                 .find(|proposal| proposal.fitted.scheme == scheme)
                 .unwrap();
-            assert_eq!(best.estimate.block_after, levels, "{name} {scheme}");
+            assert!(best.estimate.block_after <= 16, "{name} {scheme}");
         }
         let recommended = &plan.proposals[plan.recommended.unwrap()];
-        assert_eq!(recommended.estimate.block_after, 17, "{}", plan.reason);
+        assert!(recommended.estimate.block_after <= 17, "{}", plan.reason);
         let over = recommended.takes_over.unwrap();
         assert!(over.through_chain);
-        let site = Site::of(&ground, &chains[0]).unwrap();
         let run = DryRun::of(&site, &recommended.fitted.network, recommended.propagate);
         assert_eq!(run.estimate(), &recommended.estimate);
         let rebuilt = materialise(&run, "cw_").unwrap().netlist;

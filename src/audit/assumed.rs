@@ -1,12 +1,14 @@
 //! Assumptions into the record: what was asserted, why, and what came of it.
 
-use super::record::AssumedRecord;
+use super::record::{AssumedRecord, RecommendedSet};
 use super::words::{counted, depth_in, listed};
 use crate::netlist::assume::{Assumed, Cycles, Item, Paths, Tied};
 use crate::netlist::carry_cell::{CarryCell, PinPair};
 use crate::netlist::{Assumptions, Netlist, Pattern, Topology, histogram};
 use crate::timing::{DelayModel, End, EndClass, NEVER, PathKind, StartClass, Time, Timing};
 
+/// Ties told of one recommendation.
+const TIES: usize = 4;
 /// Delays told of one carry cell.
 const PAIRS: usize = 4;
 
@@ -147,6 +149,14 @@ pub fn records(
                 format!("nothing through {} is a path", through.text()),
                 places(&[Item::NotThrough(i)]),
             ),
+            Paths::Part { from, through, to } => (
+                format!(
+                    "nothing {} is a path where it passes {}",
+                    between(from.as_ref(), to.as_ref()),
+                    through.text()
+                ),
+                places(&[Item::NotFrom(i), Item::NotThrough(i), Item::NotTo(i)]),
+            ),
             Paths::Between { from, to } => (
                 format!("nothing {} is a path", between(from.as_ref(), to.as_ref())),
                 places(&[Item::NotFrom(i), Item::NotTo(i)]),
@@ -205,6 +215,23 @@ pub fn records(
         add(carry_cell_words(each), &each.why, cells, None);
     }
     records
+}
+
+/// Says of a recommendation that it rests on the ties: with other values of those
+/// nets the rebuilt netlist would do something else.
+pub fn hold_under_ties(assumptions: &Assumptions, set: &mut RecommendedSet) {
+    if assumptions.tied.is_empty() || set.proposals.is_empty() {
+        return;
+    }
+    let mut ties: Vec<String> = assumptions.tied.iter().take(TIES).map(tie_words).collect();
+    if let Some(more @ 1..) = assumptions.tied.len().checked_sub(TIES) {
+        ties.push(counted(more as u64, "more tie", "more ties"));
+    }
+    let ties = listed(&ties);
+    let said = format!(
+        " The chain was proven, and the rebuild does the same, only while {ties}, as assumed."
+    );
+    set.sentence.push_str(&said);
 }
 
 /// A carry cell and its delays, a few of them when they are many.

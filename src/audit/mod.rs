@@ -12,12 +12,15 @@ mod faults;
 pub mod findings;
 mod free_carry;
 mod gate_words;
+mod goals;
 mod measures;
+mod model_fit;
 mod names;
 mod rebuilds;
 pub mod record;
 mod shape;
 mod sight;
+pub mod tradeoff;
 mod verdict;
 pub mod words;
 
@@ -27,11 +30,12 @@ use crate::netlist::assume::Misfit;
 use crate::netlist::health::Health;
 use crate::netlist::{Netlist, Topology};
 use crate::plan::{self, ChainPlan, Ground, Request, Settings, SettingsError};
-use crate::timing::{DelayModel, Timing};
+use crate::timing::{DelayModel, Spares, Timing};
 pub use assumed::Asserting;
 use assumed::Without;
 use carried::{Carried, Cones};
 use faults::Findings;
+use goals::Standing;
 use measures::ChainMap;
 use record::{
     Audit, DelayModelFacts, Depth, NetlistFacts, SCHEMA, Seen, Settings as SettingsRecord, Tool,
@@ -65,6 +69,9 @@ pub struct Options {
     pub request: Request,
     /// What to look for, and how hard.
     pub chains: chain::Options,
+    /// What every path end without a required time of its own is held against, in
+    /// whole units of the delay model.
+    pub target_depth: Option<u64>,
 }
 
 impl Default for Options {
@@ -72,6 +79,7 @@ impl Default for Options {
         Self {
             request: Request::new(DelayModel::Unit),
             chains: chain::Options::default(),
+            target_depth: None,
         }
     }
 }
@@ -129,21 +137,34 @@ pub fn audit_under(
         topology = Topology::of(netlist);
     }
     // The search needs the most memory, so it runs before the timing is held.
-    let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
+    let chain::Found {
+        chains,
+        unproven,
+        witnessed,
+    } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
     let plans = plans(netlist, &topology, &timing, &settings, &chains);
 
     let carried = Carried::of(netlist, &chains);
     let cones = Cones::of(netlist, &topology, &chains);
-    let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains);
+    let asserted = applied
+        .as_ref()
+        .map(|(asserting, under)| (asserting.assumptions, under));
+    let asked = goals::asked(netlist, asserted, options.target_depth, model);
+    let spares = Spares::of(netlist, &topology, &timing, &asked);
+    let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains, &spares);
     let mut records = sources.records(&chains, &plans);
     // Another model's timing is as large as this one's: one at a time.
     drop(sources);
+    drop(spares);
     drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
     let timing = Timing::of(netlist, &topology, model);
-    let recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
+    let mut recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
+    if let Some((asserting, _)) = &applied {
+        assumed::hold_under_ties(asserting.assumptions, &mut recommended_set);
+    }
     let unproven: Vec<UnprovenRecord> = unproven
         .iter()
         .map(|candidate| unproven_record(netlist, candidate))
@@ -159,6 +180,7 @@ pub fn audit_under(
         ids: &ids,
     };
     let open = Open::of(netlist, model);
+    let standing = Standing::of(netlist, &topology, &timing, &asked);
     let verdict = Evidence {
         netlist,
         topology: &topology,
@@ -180,6 +202,7 @@ pub fn audit_under(
         set: &recommended_set,
         unit,
         without: without.as_ref(),
+        goals: standing.as_ref(),
     }
     .verdict();
     let assumed = applied
@@ -193,6 +216,9 @@ pub fn audit_under(
         findings.add_late(asserting.assumptions, under, &timing, unit);
         findings.add_unused(&assumed::unused(asserting.assumptions, read, &timing));
     }
+    if let Some(standing) = &standing {
+        findings.add_missed_target(standing, unit);
+    }
     findings.add_health(&health);
     findings.add_boxes();
     if let Some(open) = &open {
@@ -201,6 +227,8 @@ pub fn audit_under(
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
     findings.add_unproven(&unproven);
+    let misfit = model_fit::misfit(read, model);
+    findings.add_misfit(misfit.as_deref());
     findings.add_crowds(read);
     let (findings, findings_left_out) = findings.sorted();
 
@@ -213,18 +241,23 @@ pub fn audit_under(
         netlist: netlist_facts(read, origin),
         settings: SettingsRecord {
             assumptions_sha256: asserting.map(|asserting| asserting.sha256.clone()),
-            ..settings_record(&settings, options)
+            ..settings_record(&settings, options, misfit)
         },
         seen: Seen {
             gates_with_function: read.gate_count() as u64,
             gates_without_function: netlist.boxes().len() as u64,
             nets_cut: topology.cut.count_ones(..) as u64,
             chains_proven: records.len() as u64,
+            chains_witnessed: witnessed as u64,
             chains_unproven: unproven.len() as u64,
         },
         verdict,
         depth: Depth {
             longest_through_transparent: open.as_ref().map(|open| open.longest),
+            late_ends: standing.as_ref().map(|standing| standing.late),
+            least_to_spare: standing
+                .as_ref()
+                .and_then(|standing| standing.least.map(|(spare, ..)| spare)),
             longest_without_assumptions: without.as_ref().map(|without| without.longest),
             ..measures::depth(netlist, &topology, &timing, model, longest_path, &map())
         },
@@ -272,11 +305,16 @@ fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {
     }
 }
 
-fn settings_record(settings: &Settings, options: &Options) -> SettingsRecord {
+fn settings_record(
+    settings: &Settings,
+    options: &Options,
+    misfit: Option<String>,
+) -> SettingsRecord {
     SettingsRecord {
         delay_model: DelayModelFacts {
             name: settings.model.name().to_owned(),
             unit: settings.model.unit_word().to_owned(),
+            misfit,
         },
         new_gates: settings.new_gates.word().to_owned(),
         new_gates_reason: settings.new_gates_reason.clone(),
@@ -285,6 +323,7 @@ fn settings_record(settings: &Settings, options: &Options) -> SettingsRecord {
         min_bits: options.chains.min_bits as u64,
         effort: options.chains.effort,
         patterns_seed: options.chains.seed,
+        target_depth: options.target_depth,
         assumptions_sha256: None,
     }
 }

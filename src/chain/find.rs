@@ -2,16 +2,20 @@
 //! the ends, and collect the nets.
 
 use super::candidate::{Bits, Context, Lookup};
-use super::collect::{bit, collect};
+use super::collect::{collect, nearest_bit};
+use super::copies::fold_copies;
 use super::entries::{Entries, EntryId};
 use super::label::{BusPreference, Labels};
 use super::links::{Links, paths};
 use super::model::Chain;
+use super::modes::{add as add_moded, moded};
 use super::trim::{Ends, independent_positions, live_bits};
 use super::verify::{Theorem, verify};
 use crate::netlist::{Bit, Netlist, Topology};
-use crate::prove::Effort;
-use crate::subject::{NodeId, Patterns, Signatures, Subject, rare_values};
+use crate::prove::{Claim, Effort, Witness, witness};
+use crate::subject::{
+    FLIP_WORDS, NodeId, Patterns, Signatures, Simulation, Subject, Words, linear_pairs, rare_values,
+};
 use fixedbitset::FixedBitSet;
 use rustc_hash::FxHashSet;
 
@@ -42,6 +46,8 @@ const RANDOM_WORDS: usize = 32;
 const RARE: u32 = 8;
 /// Directed words, where some node needs them.
 const DIRECTED_WORDS: usize = 16;
+/// Positions the second witness is asked about.
+const WITNESS_BITS: usize = 1024;
 /// Subject nodes one proof may encode.
 const PROOF_NODES: usize = 2_000_000;
 
@@ -65,14 +71,22 @@ pub struct Found {
     pub chains: Vec<Chain>,
     /// Candidates left open.
     pub unproven: Vec<Unproven>,
+    /// Chains that decision diagrams confirmed a second time.
+    pub witnessed: usize,
 }
 
 /// Finds and proves the carry chains of a netlist.
 pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
-    let subject = Subject::of(netlist, topology);
-    let (patterns, signatures) = sign(&subject, options.seed);
+    let mut subject = Subject::of(netlist, topology);
+    let (patterns, mut signatures) = sign(&subject, options.seed);
     let on_net = on_net(netlist, &subject);
-    let entries = Entries::of(&subject, &signatures, &patterns, &on_net);
+    let pairs = linear_pairs(&subject, &chosen_words(&subject, &patterns), &on_net);
+    let moded = moded(netlist, &subject, &pairs);
+    let moded = add_moded(&mut subject, &moded);
+    signatures.extend(&subject);
+    let subject = subject;
+    let entries = Entries::of(&subject, &signatures, &patterns, &on_net, &pairs, &moded);
+    drop((pairs, moded));
     let links = Links::of(&entries, &signatures);
     let labels = Labels::of(netlist, &subject);
     let context = Context {
@@ -128,8 +142,75 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
     } = search;
     ends.trim_shared_tops(&mut theorems);
     theorems.retain(|theorem| live_bits(&theorem.bits) >= options.min_bits);
+    fold_copies(&subject, &labels, &mut theorems, options.min_bits);
+    let mut unproven = unproven;
+    let witnessed = witness_all(&subject, &labels, &mut theorems, &mut unproven);
     let chains = collect(netlist, &subject, &labels, theorems);
-    Found { chains, unproven }
+    Found {
+        chains,
+        unproven,
+        witnessed,
+    }
+}
+
+/// Asks the second witness about every chain, widest first, as long as it is
+/// quick. A theorem that it contradicts would be a fault of carrywise: it is
+/// taken back and told. Returns how many it confirmed.
+fn witness_all(
+    subject: &Subject,
+    labels: &Labels<'_>,
+    theorems: &mut Vec<Theorem>,
+    unproven: &mut Vec<Unproven>,
+) -> usize {
+    theorems.sort_by_key(|theorem| std::cmp::Reverse(theorem.bits.len()));
+    let mut confirmed = 0;
+    let mut budget = WITNESS_BITS;
+    theorems.retain(|theorem| {
+        if budget < theorem.bits.len() {
+            return true;
+        }
+        budget -= theorem.bits.len();
+        let claims: Vec<Claim<'_>> = theorem
+            .bits
+            .iter()
+            .zip(theorem.sums.iter().zip(&theorem.carries))
+            .map(|(bits, (sums, carries))| Claim {
+                a: bits.a,
+                b: bits.b,
+                sums,
+                carries,
+            })
+            .collect();
+        let said = witness(subject, theorem.carry_in, &claims);
+        confirmed += usize::from(said == Witness::Agrees);
+        if said == Witness::Contradicts {
+            let bit = |literal| nearest_bit(labels, subject, literal);
+            let operands = theorem.bits.iter().map(|b| (bit(b.a), bit(b.b)));
+            unproven.push(Unproven {
+                bits: theorem.bits.len(),
+                operands: operands.collect(),
+                reason: "the two proofs contradict each other, a fault of carrywise",
+                effort: 0,
+            });
+        }
+        said != Witness::Contradicts
+    });
+    confirmed
+}
+
+/// The values that flips are looked for under: the first word, which is uniform,
+/// and the last, which is directed where some value is rare.
+fn chosen_words(subject: &Subject, patterns: &Patterns) -> Vec<Words> {
+    let mut values = vec![[0; FLIP_WORDS]; subject.node_count()];
+    let last = patterns.words() - 1;
+    for (slot, word) in [0, last].into_iter().enumerate() {
+        let mut simulation = Simulation::at(subject, patterns, word);
+        let words = simulation.advance().unwrap_or_default();
+        for (value, &word) in values.iter_mut().zip(words) {
+            value[slot] = word;
+        }
+    }
+    values
 }
 
 /// The nodes that some net carries. What lies inside one cover is no operand,
@@ -219,7 +300,7 @@ impl Search<'_> {
         }
         open.extend(pending);
         if !open.is_empty() && whole >= self.options.min_bits {
-            let bit = |literal| bit(context.labels, literal);
+            let bit = |literal| nearest_bit(context.labels, subject, literal);
             self.unproven.push(Unproven {
                 bits: open.len(),
                 operands: open.iter().map(|b| (bit(b.a), bit(b.b))).collect(),

@@ -13,12 +13,14 @@ mod built_as;
 mod candidate;
 mod carry_cells;
 mod collect;
+mod copies;
 mod entries;
 mod find;
 mod kinds;
 mod label;
 mod links;
 mod model;
+mod modes;
 mod trim;
 mod verify;
 

@@ -13,6 +13,8 @@ pub enum Kind {
     Incrementer,
     /// `a - 1 + carry-in`.
     Decrementer,
+    /// `a + (b ⊕ mode) + carry-in`: adds or subtracts as the mode says.
+    AdderSubtractor,
 }
 
 impl Kind {
@@ -23,6 +25,7 @@ impl Kind {
             Self::Subtractor => "subtractor",
             Self::Incrementer => "incrementer",
             Self::Decrementer => "decrementer",
+            Self::AdderSubtractor => "adder-subtractor",
         }
     }
 }
@@ -53,7 +56,8 @@ pub enum BuiltAs {
 /// it is proven that every signal of `sums` equals `a ⊕ b ⊕ c` and every signal
 /// of `carries` equals the majority of `a`, `b` and `c`. Both `a` and `b` are
 /// what enters the *addition*: of a subtractor, `b` is the inverted subtrahend;
-/// of an incrementer `b` is constant 0, of a decrementer constant 1.
+/// of an incrementer `b` is constant 0, of a decrementer constant 1. Only of an
+/// adder-subtractor is `b` what stands before the exclusive or with the mode.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub struct Position {
     /// First addend.
@@ -84,4 +88,6 @@ pub struct Chain {
     pub carry_form: CarryForm,
     /// How it is built today.
     pub built_as: BuiltAs,
+    /// What complements every `b` of an adder-subtractor.
+    pub mode: Option<Signal>,
 }

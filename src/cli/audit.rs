@@ -203,8 +203,10 @@ fn audit_file(
         netlist,
         format,
         warnings,
-        ..
+        constraints,
     } = parsed;
+    let times = constraints.times(&netlist);
+    let netlist = netlist.with_times(times);
     if !arguments.quiet {
         warnings.iter().for_each(tell);
     }
@@ -255,7 +257,7 @@ fn audit_file(
     })
 }
 
-fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
+pub(super) fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
     load(file, name, limits).map_err(|error| {
         let nothing = Source {
             name: name.to_owned(),

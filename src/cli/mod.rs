@@ -10,6 +10,7 @@ mod options;
 mod search;
 mod targets;
 mod terminal;
+mod tradeoff;
 
 use clap::Parser;
 use options::{Command, CommandLine};
@@ -45,6 +46,7 @@ pub fn run() -> ExitCode {
     let status = match CommandLine::try_parse() {
         Ok(line) => match line.command {
             Command::Audit(arguments) => audit::run(&arguments),
+            Command::Tradeoff(arguments) => tradeoff::run(&arguments),
             Command::Explain { rule } => explain::run(rule.as_deref()),
         },
         Err(answer) => {

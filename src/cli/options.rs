@@ -8,7 +8,8 @@ use crate::chain;
 use crate::format::ReadOptions;
 use crate::format::files::FileAccess;
 use crate::plan::{NewGates, Request};
-use crate::report::Form;
+use crate::report::{Form, TradeoffForm};
+use crate::source::nearest;
 use crate::timing::DelayModel;
 use clap::{Args, Parser, Subcommand, ValueEnum};
 use std::path::PathBuf;
@@ -44,6 +45,9 @@ pub enum Command {
     /// Audit netlists: depth, proven carry chains, what a rebuild would bring
     #[command(after_help = AUDIT_EXAMPLES)]
     Audit(AuditArguments),
+    /// Compare schemes without a netlist: delay against the largest fan-in
+    #[command(after_help = TRADEOFF_EXAMPLES)]
+    Tradeoff(TradeoffArguments),
     /// Say what a finding means and what to do about it
     #[command(after_help = "Example:\n  carrywise explain net-driven-twice")]
     Explain {
@@ -56,6 +60,72 @@ const AUDIT_EXAMPLES: &str = "Examples:\n  \
     carrywise audit tide_logger.blif\n  \
     carrywise audit tide_logger.aig --delay pairs --as markdown\n  \
     carrywise audit tide_logger.blif.gz --as json --report review.md";
+
+const TRADEOFF_EXAMPLES: &str = "Examples:\n  \
+    carrywise tradeoff --bits 32\n  \
+    carrywise tradeoff --bits 16 --carry-in --delay pairs --gate-inputs 4\n  \
+    carrywise tradeoff --bits 16 --arrivals late_levels.yaml --as yaml";
+
+/// What `tradeoff` takes.
+#[derive(Args, Debug)]
+pub struct TradeoffArguments {
+    /// Positions added
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(1..=4096))]
+    pub bits: u64,
+
+    /// With a carry-in
+    #[arg(long)]
+    pub carry_in: bool,
+
+    /// A YAML file of when the bits of `a`, `b` and `carry_in` are ready, in units of the delay
+    /// model [default: all at 0]
+    #[arg(long, value_name = "FILE")]
+    pub arrivals: Option<PathBuf>,
+
+    /// What a gate costs: `unit`, `pairs` or `logical-effort`, as for `audit`; under the last each
+    /// gate is priced as if it drove two gates
+    #[arg(long, value_name = "MODEL", default_value = "unit", value_parser = delay)]
+    pub delay: Delay,
+
+    /// Most inputs of a gate that are tried [default: as many as some scheme can use]
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(2..))]
+    pub gate_inputs: Option<u64>,
+
+    /// What one gate may be
+    #[arg(
+        long,
+        value_name = "KIND",
+        value_enum,
+        default_value = "single-operator"
+    )]
+    pub new_gates: NewGatesWord,
+
+    /// Form of the answer on standard output
+    #[arg(long = "as", value_name = "FORM", value_enum, default_value = "table")]
+    pub form: TradeoffWord,
+}
+
+/// Words of `--as` of `tradeoff`.
+#[derive(ValueEnum, Clone, Copy, Debug)]
+pub enum TradeoffWord {
+    /// For a terminal
+    Table,
+    /// The whole record, one document
+    Yaml,
+    /// The whole record, one line
+    Json,
+}
+
+impl TradeoffWord {
+    /// The form it means.
+    pub fn form(self) -> TradeoffForm {
+        match self {
+            Self::Table => TradeoffForm::Table,
+            Self::Yaml => TradeoffForm::Yaml,
+            Self::Json => TradeoffForm::Json,
+        }
+    }
+}
 
 /// What `audit` takes.
 #[derive(Args, Debug)]
@@ -73,9 +143,10 @@ pub struct AuditArguments {
     #[arg(long, value_name = "PATH")]
     pub report: Vec<PathBuf>,
 
-    /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates
-    #[arg(long, value_name = "MODEL", value_enum, default_value = "unit")]
-    pub delay: DelayWord,
+    /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates,
+    /// `logical-effort` is about static CMOS gates and what each drives, in units of τ
+    #[arg(long, value_name = "MODEL", default_value = "unit", value_parser = delay)]
+    pub delay: Delay,
 
     /// Most inputs of one new gate [default: the widest gate of the netlist, at most 4 for
     /// single-operator and 6 for cover; 2 for AIGER]
@@ -115,9 +186,14 @@ pub struct AuditArguments {
     pub cells: Option<PathBuf>,
 
     /// A YAML file of what may be assumed about the block: tied nets, paths that do not count,
-    /// paths of several cycles, arrival and required times
+    /// paths of several cycles, arrival and required times, delays of boxes and of carry cells
     #[arg(long, value_name = "PATH")]
     pub assume: Option<PathBuf>,
+
+    /// Hold every path end without a required time of its own against this depth, in whole units
+    /// of the delay model
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(..=1 << 24))]
+    pub target_depth: Option<u64>,
 
     /// Exit with 1 when a finding is at least this bad
     #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
@@ -153,13 +229,22 @@ impl FormWord {
     }
 }
 
-/// Words of `--delay`.
-#[derive(ValueEnum, Clone, Copy, Debug)]
-pub enum DelayWord {
-    /// Every gate 1
-    Unit,
-    /// Levels of two-input gates
-    Pairs,
+/// What `--delay` asks for.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub enum Delay {
+    /// A model that needs no file.
+    Model(DelayModel),
+}
+
+fn delay(text: &str) -> Result<Delay, String> {
+    if let Some(model) = DelayModel::from_name(text) {
+        return Ok(Delay::Model(model));
+    }
+    let words = DelayModel::ALL.map(DelayModel::name);
+    let hint =
+        nearest(text, &words).map_or_else(String::new, |word| format!("; did you mean `{word}`?"));
+    let known = words.map(|word| format!("`{word}`")).join(", ");
+    Err(format!("expected one of {known}{hint}"))
 }
 
 /// Words of `--fail-on`.
@@ -205,10 +290,7 @@ impl AuditArguments {
 
     /// How to audit.
     pub fn auditing(&self) -> audit::Options {
-        let model = match self.delay {
-            DelayWord::Unit => DelayModel::Unit,
-            DelayWord::Pairs => DelayModel::Pairs,
-        };
+        let Delay::Model(model) = self.delay;
         let whole = |n: u64| usize::try_from(n).unwrap_or(usize::MAX);
         audit::Options {
             request: Request {
@@ -224,6 +306,7 @@ impl AuditArguments {
                 effort: self.effort,
                 ..chain::Options::default()
             },
+            target_depth: self.target_depth,
         }
     }
 }

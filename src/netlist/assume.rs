@@ -38,8 +38,7 @@ pub struct NotAPath {
     pub why: String,
 }
 
-/// Some paths. Ends and what lies between are not combined: that would take a
-/// pass for every combination of nets passed so far.
+/// Some paths.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub enum Paths {
     /// Every path that passes a net.
@@ -51,20 +50,29 @@ pub enum Paths {
         /// Where they end; everywhere when not given.
         to: Option<Pattern>,
     },
+    /// Of the paths between two sets those that pass a net.
+    Part {
+        /// Where they start; everywhere when not given.
+        from: Option<Pattern>,
+        /// What they pass.
+        through: Pattern,
+        /// Where they end; everywhere when not given.
+        to: Option<Pattern>,
+    },
 }
 
 impl Paths {
     pub(super) fn from(&self) -> Option<&Pattern> {
         match self {
             Self::Through(_) => None,
-            Self::Between { from, .. } => from.as_ref(),
+            Self::Between { from, .. } | Self::Part { from, .. } => from.as_ref(),
         }
     }
 
     pub(super) fn to(&self) -> Option<&Pattern> {
         match self {
             Self::Through(_) => None,
-            Self::Between { to, .. } => to.as_ref(),
+            Self::Between { to, .. } | Self::Part { to, .. } => to.as_ref(),
         }
     }
 }

@@ -28,7 +28,9 @@ mod model;
 mod names;
 mod passage;
 mod pattern;
+mod product;
 mod tie;
+mod times;
 mod transparent;
 
 pub use asserted::{Asserted, EndPoint, Pairing};
@@ -44,3 +46,4 @@ pub use model::{
 };
 pub use names::{NameId, Names};
 pub use pattern::Pattern;
+pub use times::FileTimes;

@@ -5,6 +5,7 @@ use super::declared::Declared;
 use super::function::{Function, Functions};
 use super::id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 use super::names::{NameId, Names};
+use super::times::FileTimes;
 
 /// What drives a net.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -230,6 +231,7 @@ pub struct Netlist {
     pub(super) inverted_edges: bool,
     pub(super) asserted: Option<Box<Asserted>>,
     pub(super) declared: Option<Box<Declared>>,
+    pub(super) times: Option<Box<FileTimes>>,
 }
 
 impl Netlist {
@@ -272,8 +274,19 @@ impl Netlist {
     /// The fan-ins of `gate`, one per pin; a net may occur more than once.
     #[inline]
     pub fn fan_ins(&self, gate: GateId) -> &[NetId] {
+        &self.fan_ins[self.fan_in_range(gate)]
+    }
+
+    /// Number of fan-ins of all gates.
+    pub fn fan_in_count(&self) -> usize {
+        self.fan_ins.len()
+    }
+
+    /// Where the fan-ins of `gate` lie among those of all gates in order.
+    #[inline]
+    pub fn fan_in_range(&self, gate: GateId) -> std::ops::Range<usize> {
         let i = gate.index();
-        &self.fan_ins[self.fan_in_starts[i] as usize..self.fan_in_starts[i + 1] as usize]
+        self.fan_in_starts[i] as usize..self.fan_in_starts[i + 1] as usize
     }
 
     /// The net `gate` drives.
@@ -385,6 +398,16 @@ impl Netlist {
         let asserted = self.asserted.as_deref();
         asserted.is_some_and(|asserted| asserted.is_barred(net))
             || self.declared().is_some_and(|declared| declared.bars(net))
+    }
+
+    /// Whether no path of a way counts through `net`; see [`Asserted`].
+    #[inline]
+    pub fn is_barred_on(&self, way: u8, net: NetId) -> bool {
+        self.is_barred(net)
+            || (way > 0
+                && self
+                    .asserted()
+                    .is_some_and(|asserted| asserted.avoids(way, net)))
     }
 
     /// Whether `net` is there for what a cell or a box does inside, and shown

@@ -13,6 +13,7 @@ mod cover;
 mod cover_signals;
 mod estimate;
 mod gates;
+mod measures;
 pub mod profile;
 pub mod schemes;
 mod signals;
@@ -20,7 +21,7 @@ mod table;
 
 pub use build::{Addends, Built, GateSink, Limits, Propagate, build};
 pub use carry_network::{CarryNetwork, Node, NodeId, Span};
-pub use counting::{CountedSignal, CountingSink, XorForm};
+pub use counting::{CountedSignal, CountingSink, Price, XorForm};
 pub use estimate::Estimate;
 pub use profile::{Costs, Profile, Required};
 pub use signals::{Carry, SignalId, SignalNode};

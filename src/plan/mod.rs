@@ -20,8 +20,9 @@ mod propose;
 mod settings;
 mod site;
 mod tables;
+pub mod tradeoff;
 
-pub use bound::earliest;
+pub use bound::{earliest, earliest_at_cost};
 pub use dry_run::{DryRun, Estimate, KindChange, TakesOver};
 pub use free_carry::depth_with_free_carry;
 pub use ground::Ground;

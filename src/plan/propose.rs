@@ -4,7 +4,7 @@
 //! of the others it is said why not. Both propagate conventions are tried and
 //! the better kept. Deterministic: candidates in the order of the schemes.
 
-use super::bound::earliest;
+use super::bound::{earliest, earliest_at_cost};
 use super::choose::{choose, rank};
 use super::dry_run::{DryRun, Estimate, KindChange, TakesOver};
 use super::ground::Ground;
@@ -12,7 +12,7 @@ use super::site::Site;
 use crate::chain::Chain;
 use crate::netlist::Signal;
 use crate::network::Propagate;
-use crate::network::schemes::{Fitted, candidates_for};
+use crate::network::schemes::{Fitted, candidates_for, left_out};
 use crate::timing::{DelayModel, NEVER, PathKind, Slack};
 
 /// A scheme fitted to a chain and dry-run on its netlist.
@@ -135,6 +135,9 @@ fn plan_from(ground: &Ground<'_>, chain: &Chain, mut plan: ChainPlan) -> ChainPl
         Ok(site) => {
             let tried = try_all(&site, slack.kind);
             choose(ground, &mut plan, tried, slack.kind);
+            if let Some(left_out) = left_out(site.addends.a.len()) {
+                plan.reason = format!("{}; {left_out}", plan.reason);
+            }
             for proposal in plan.proposals.iter_mut().chain(&mut plan.best_of_scheme) {
                 complete(&site, proposal);
             }
@@ -237,9 +240,10 @@ fn lower_bound(site: &Site<'_>) -> i32 {
         .map(|net| site.arrival(net))
         .filter(|&time| time != NEVER)
         .collect();
-    let gate_inputs = match site.ground.settings.model {
-        DelayModel::Unit => site.ground.settings.gate_inputs,
-        DelayModel::Pairs => 2,
-    };
-    earliest(&arrivals, gate_inputs)
+    let (model, widest) = (site.ground.settings.model, site.ground.settings.gate_inputs);
+    match model {
+        DelayModel::Unit => earliest(&arrivals, widest),
+        DelayModel::Pairs => earliest(&arrivals, 2),
+        _ => earliest_at_cost(&arrivals, widest, |inputs| model.least_delay(inputs)),
+    }
 }

@@ -167,6 +167,7 @@ fn seen_sentence(seen: &Seen, netlist: &NetlistFacts) -> String {
         gates_without_function,
         nets_cut,
         chains_proven,
+        chains_witnessed,
         chains_unproven,
     } = *seen;
     let gates = if netlist.gates == 0 && gates_without_function == 0 {
@@ -199,11 +200,16 @@ fn seen_sentence(seen: &Seen, netlist: &NetlistFacts) -> String {
         n => format!("{} left undecided", grouped(n)),
     };
     let proven = match chains_proven {
-        0 => "no chain".to_owned(),
-        n => counted(n, "chain", "chains"),
+        0 => "no chain proven".to_owned(),
+        n => format!("{} proven", counted(n, "chain", "chains")),
+    };
+    let twice = match chains_witnessed {
+        0 => "",
+        n if n == chains_proven => " (by solver and by decision diagram)",
+        n => &format!(" ({} by decision diagram too)", grouped(n)),
     };
     format!(
-        "What could be seen: {gates}; {cut}; {proven} proven, {open}. Looked for are chains with \
+        "What could be seen: {gates}; {cut}; {proven}{twice}, {open}. Looked for are chains with \
          sums (adders, subtractors, incrementers, decrementers); carries without sums, as in a \
          comparator, are not."
     )
@@ -216,7 +222,7 @@ fn settings_sentence(
     caps: Caps,
 ) -> String {
     let Settings {
-        delay_model: DelayModelFacts { name, unit },
+        delay_model: DelayModelFacts { name, unit, misfit },
         new_gates,
         new_gates_reason,
         gate_inputs,
@@ -224,6 +230,7 @@ fn settings_sentence(
         min_bits,
         effort,
         patterns_seed,
+        target_depth,
         assumptions_sha256,
     } = settings;
     let NetlistFacts {
@@ -232,19 +239,26 @@ fn settings_sentence(
         sha256,
         ..
     } = netlist;
+    let misfit = misfit.as_ref().map_or_else(String::new, |why| {
+        format!("; {}", clipped(why, caps.sentence))
+    });
     let mut source = vec![format!("read as {}", format.replace('-', " "))];
     if let Some(model) = model {
         source.push(format!("model {}", clipped(model, caps.name)));
     }
     source.push(format!("SHA-256 {sha256}"));
+    let target = match target_depth {
+        None => String::new(),
+        Some(depth) => format!("; target depth {}", grouped(*depth)),
+    };
     let assumed = match assumptions_sha256 {
         None => String::new(),
         Some(hash) => format!("; assumptions SHA-256 {hash}"),
     };
     format!(
-        "{} {}; {}. Depths in {unit} (delay model {name}). New gates are \
+        "{} {}; {}. Depths in {unit} (delay model {name}{misfit}). New gates are \
          {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up; {} per \
-         proof; pattern seed {patterns_seed}{assumed}.",
+         proof; pattern seed {patterns_seed}{target}{assumed}.",
         tool.name,
         tool.version,
         source.join(", "),

@@ -11,9 +11,17 @@ use std::io::{self, Write};
 /// # Errors
 /// When `out` cannot be written; the error keeps its kind.
 pub fn write(audit: &Audit, out: &mut dyn Write) -> io::Result<()> {
+    write_value(audit, out)
+}
+
+/// Writes any record as one document.
+///
+/// # Errors
+/// When `out` cannot be written; the error keeps its kind.
+pub fn write_value(record: &impl serde::Serialize, out: &mut dyn Write) -> io::Result<()> {
     out.write_all(b"---\n")?;
     let mut sink = Sink { out, failed: None };
-    match serde_yaml::to_writer(&mut sink, audit) {
+    match serde_yaml::to_writer(&mut sink, record) {
         Ok(()) => Ok(()),
         Err(error) => Err(sink.failed.unwrap_or_else(|| io::Error::other(error))),
     }

@@ -58,9 +58,12 @@ pub struct ChainRecord {
     pub depth: ChainDepth,
     /// Whether a longest path of the block runs through a sum or carry of it.
     pub on_longest_path: bool,
-    /// How much later its results could be without lengthening the longest
-    /// path of their kind; null when no path leads through it.
+    /// How much later its results could be without missing what `slack_against`
+    /// names, negative where they do; null when no path leads through it.
     pub slack: Option<Time>,
+    /// What slack is counted against: `required time`, `cycle`, `target depth`, or
+    /// else the `longest path of the kind`; null when no path leads through it.
+    pub slack_against: Option<String>,
     /// Why no rebuild was tried; null when some were.
     pub not_planned: Option<NotPlanned>,
     /// The rebuilds worth choosing between.
@@ -69,9 +72,17 @@ pub struct ChainRecord {
 
 impl ChainRecord {
     /// What is computed, written as arithmetic on the operands' names:
-    /// `level[15:0] + offset[15:0]`, `count[7:0] + 1`, `a - b - 1 + borrow_in`.
+    /// `level[15:0] + offset[15:0]`, `count[7:0] + 1`, `a - b - 1 + borrow_in`,
+    /// `a +/- b, minus when sub`.
     pub fn formula(&self) -> String {
         let names: Vec<&str> = self.operands.iter().map(|o| o.name.as_str()).collect();
+        if let (Some(mode), [a, b]) = (&self.mode, &names[..]) {
+            return match &self.carry_in {
+                Some(Wire::Net(net)) if net == mode => format!("{a} +/- {b}, minus when {mode}"),
+                Some(carry_in) => format!("{a} + ({b} xor {mode}) + {}", carry_in.text()),
+                None => format!("{a} + ({b} xor {mode})"),
+            };
+        }
         let (first, constant) = match self.kind.as_str() {
             "subtractor" => (names.join(" - "), -1),
             "decrementer" => (names.join(" + "), -1),
