@@ -159,7 +159,7 @@ pub fn audit_under(
     drop(sources);
     drop(spares);
     drop(timing);
-    rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
+    rebuilds::note_models(netlist, &topology, &settings, &chains, &plans, &mut records);
     let timing = Timing::of(netlist, &topology, model);
     let mut recommended_set =
         rebuilds::recommended_set(netlist, &records, &plans, together.as_ref(), &timing, unit);
@@ -317,6 +317,7 @@ fn settings_record(
         delay_model: DelayModelFacts {
             name: settings.model.name().to_owned(),
             unit: settings.model.unit_word().to_owned(),
+            note: settings.model.as_table().map(|table| table.note.clone()),
             misfit,
         },
         new_gates: settings.new_gates.word().to_owned(),

@@ -44,7 +44,7 @@ pub struct CommandLine {
 pub enum Command {
     /// Audit netlists: depth, proven carry chains, what a rebuild would bring
     #[command(after_help = AUDIT_EXAMPLES)]
-    Audit(AuditArguments),
+    Audit(Box<AuditArguments>),
     /// Compare schemes without a netlist: delay against the largest fan-in
     #[command(after_help = TRADEOFF_EXAMPLES)]
     Tradeoff(TradeoffArguments),
@@ -82,8 +82,8 @@ pub struct TradeoffArguments {
     #[arg(long, value_name = "FILE")]
     pub arrivals: Option<PathBuf>,
 
-    /// What a gate costs: `unit`, `pairs` or `logical-effort`, as for `audit`; under the last each
-    /// gate is priced as if it drove two gates
+    /// What a gate costs, as for `audit`; where that depends on load, each gate is priced as if it
+    /// drove two others
     #[arg(long, value_name = "MODEL", default_value = "unit", value_parser = delay)]
     pub delay: Delay,
 
@@ -144,8 +144,9 @@ pub struct AuditArguments {
     pub report: Vec<PathBuf>,
 
     /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates,
-    /// `logical-effort` is about static CMOS gates and what each drives, in units of τ
-    #[arg(long, value_name = "MODEL", default_value = "unit", value_parser = delay)]
+    /// `logical-effort` is about static CMOS gates and what each drives, in units of τ; a file is
+    /// a YAML table of delays, or a Liberty library with delays
+    #[arg(long, value_name = "MODEL|PATH", default_value = "unit", value_parser = delay)]
     pub delay: Delay,
 
     /// Most inputs of one new gate [default: the widest gate of the netlist, at most 4 for
@@ -234,17 +235,24 @@ impl FormWord {
 pub enum Delay {
     /// A model that needs no file.
     Model(DelayModel),
+    /// A delay table, or a library with delays.
+    File(PathBuf),
 }
 
 fn delay(text: &str) -> Result<Delay, String> {
     if let Some(model) = DelayModel::from_name(text) {
         return Ok(Delay::Model(model));
     }
+    if text.contains(['.', '/', '\\']) {
+        return Ok(Delay::File(PathBuf::from(text)));
+    }
     let words = DelayModel::ALL.map(DelayModel::name);
     let hint =
         nearest(text, &words).map_or_else(String::new, |word| format!("; did you mean `{word}`?"));
     let known = words.map(|word| format!("`{word}`")).join(", ");
-    Err(format!("expected one of {known}{hint}"))
+    Err(format!(
+        "expected one of {known}, or a file, as ./delays.yaml or ./cells.lib{hint}"
+    ))
 }
 
 /// Words of `--fail-on`.
@@ -289,8 +297,7 @@ impl AuditArguments {
     }
 
     /// How to audit.
-    pub fn auditing(&self) -> audit::Options {
-        let Delay::Model(model) = self.delay;
+    pub fn auditing(&self, model: DelayModel) -> audit::Options {
         let whole = |n: u64| usize::try_from(n).unwrap_or(usize::MAX);
         audit::Options {
             request: Request {

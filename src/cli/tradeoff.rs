@@ -1,8 +1,8 @@
 //! Runs `tradeoff`: reads the arrivals where a file gives them, measures, prints.
 
 use super::Status;
-use super::audit::load_or_say;
-use super::options::{Delay, NewGatesWord, TradeoffArguments};
+use super::audit::{delay_model, load_or_say};
+use super::options::{NewGatesWord, TradeoffArguments};
 use super::terminal::{colour_on_stderr, complain, page, say};
 use crate::audit::tradeoff::record;
 use crate::format::arrivals::{self, InputTimes};
@@ -16,7 +16,10 @@ use std::rc::Rc;
 
 /// Runs the command.
 pub fn run(arguments: &TradeoffArguments) -> Status {
-    let Delay::Model(model) = arguments.delay;
+    let model = match delay_model(&arguments.delay) {
+        Ok((model, _)) => model,
+        Err(worse) => return worse,
+    };
     let new_gates = match arguments.new_gates {
         NewGatesWord::SingleOperator => NewGates::SingleOperator,
         NewGatesWord::Cover => NewGates::Cover,

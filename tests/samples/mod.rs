@@ -160,6 +160,7 @@ pub fn tide_logger() -> Audit {
             delay_model: DelayModelFacts {
                 name: "unit".into(),
                 unit: "gate delays".into(),
+                note: None,
                 misfit: None,
             },
             new_gates: "single-operator".into(),
@@ -346,6 +347,7 @@ fn proposal(
         } else {
             vec![]
         },
+        flips_under: vec![],
         chain_depth: Change {
             before: at(31),
             after: at(chain),

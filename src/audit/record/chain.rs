@@ -216,6 +216,9 @@ pub struct ProposalRecord {
     pub reason: Option<String>,
     /// Delay models under which the recommendation is the same.
     pub holds_under: Vec<String>,
+    /// Delay models under which another scheme is recommended, or none; models in
+    /// neither list were not tried.
+    pub flips_under: Vec<String>,
     /// Depth at the chain's latest result.
     pub chain_depth: Change,
     /// Depth of the block.

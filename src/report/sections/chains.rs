@@ -345,6 +345,7 @@ fn proposal_row(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> V
         recommended,
         reason: _,
         holds_under: _,
+        flips_under: _,
         chain_depth,
         block_depth,
         takes_over: _,
@@ -419,7 +420,16 @@ fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Stri
             .iter()
             .map(|model| clipped(model, caps.name))
             .collect();
-        parts.push(format!("the choice holds under {}", listed(&models)));
+        let mut text = format!("the choice holds under {}", listed(&models));
+        if !proposal.flips_under.is_empty() {
+            let flips: Vec<String> = proposal
+                .flips_under
+                .iter()
+                .map(|model| clipped(model, caps.name))
+                .collect();
+            text.push_str(&format!(" and not under {}", listed(&flips)));
+        }
+        parts.push(text);
     }
     text.push_str(&parts.join("; "));
     text.push('.');
