@@ -22,7 +22,8 @@ mod links;
 mod model;
 mod modes;
 mod trim;
+mod twins;
 mod verify;
 
 pub use find::{Found, Options, Unproven, find};
-pub use model::{BuiltAs, CarryForm, Chain, Kind, Position};
+pub use model::{BuiltAs, CarryForm, Chain, Construction, Kind, Position, Taxonomy};

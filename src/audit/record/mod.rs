@@ -16,7 +16,7 @@ mod time;
 
 pub use chain::{
     BuiltAsRecord, ChainDepth, ChainRecord, Change, Exercised, Feedback, NotPlanned, Operand,
-    Place, ProposalRecord,
+    Place, ProposalRecord, TaxonomyRecord,
 };
 
 use crate::timing::Time;
