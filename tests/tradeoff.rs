@@ -224,7 +224,7 @@ fn the_arrivals_file_is_read_and_its_faults_are_told() {
         ("a: 99999999999\n", 1, "expected a time from 0"),
         ("- 1\n", 1, "expected keys with values"),
         ("a: 0\na: 1\n", 1, ""),
-        ("a: [\n", 1, "expected YAML"),
+        ("a: [\n", 2, "expected YAML"),
     ] {
         let (code, told, stdout) = run(text, &[]);
         assert_eq!(code, Some(2), "{text}: {told}");
