@@ -166,7 +166,7 @@ fn phrase(point: &Point) -> String {
     if let Some(group) = point.group {
         text.push_str(&format!(" in groups of {group}"));
     }
-    if point.valency > 2 && point.group.is_none() {
+    if point.valency > 2 && point.group.is_none() && point.scheme != "flat-lookahead" {
         text.push_str(&format!(" of valency {}", point.valency));
     }
     if let Some(variant) = &point.variant {
