@@ -45,7 +45,8 @@ impl Site<'_> {
             carries: vec![None; positions],
         };
         let beside = self.beside.iter().filter_map(|each| each.longest);
-        let goal = beside.map(|(time, _)| time).max().unwrap_or(0);
+        // A tick less than that path: on it, carry would still be the limit.
+        let goal = beside.map(|(time, _)| time - 1).max().unwrap_or(0);
         for needed in &self.needed {
             let tails = self.tails.iter();
             let tail = tails.filter_map(|(_, tails)| tails.get(&needed.net)).max();

@@ -10,7 +10,7 @@
 //! the width: its terms double with every position (each carry term of the
 //! position below extends one by `a` and one by `b`, and `a·b` is new).
 
-use crate::network::schemes::{self, Fitted, Scheme, Settings, every_variation};
+use crate::network::schemes::{self, Fitted, Growth, Scheme, Settings, every_variation};
 use crate::network::{
     Addends, Costs, CountingSink, Limits, Price, Profile, Propagate, XorForm, build,
 };
@@ -23,6 +23,9 @@ const STEPS: [usize; 8] = [2, 3, 4, 5, 6, 8, 16, 32];
 
 /// The widest addition that is tried in every variation.
 const MOST_VARIED: usize = 64;
+
+/// The widest addition for which schemes are fitted to arrivals.
+const MOST_FITTED: usize = 64;
 
 /// What is asked.
 pub struct Question {
@@ -117,7 +120,9 @@ pub fn tradeoff(question: &Question) -> Tradeoff {
         let mut settled: FxHashSet<Settings> = FxHashSet::default();
         for &limit in &limits {
             let mut best = row.last().cloned().flatten();
-            for settings in variations(scheme, positions, limit) {
+            let offered = is_offered(question, scheme, limit);
+            let list = offered.then(|| variations(scheme, positions, limit));
+            for settings in list.into_iter().flatten() {
                 if settled.contains(&settings) {
                     continue;
                 }
@@ -150,6 +155,18 @@ fn steps(question: &Question) -> Vec<usize> {
     let mut steps: Vec<usize> = STEPS.into_iter().filter(|&step| step < most).collect();
     steps.push(most);
     steps
+}
+
+/// Whether a scheme is tried: those that fit themselves to arrivals take long at
+/// every limit anew, so they are tried up to [`MOST_FITTED`] positions.
+fn is_offered(question: &Question, scheme: &Scheme, limit: usize) -> bool {
+    let limits = Limits {
+        gate_inputs: limit,
+        covers: question.covers,
+    };
+    let fits_itself = matches!(scheme.growth, Growth::Quadratic | Growth::Quartic);
+    let small = !fits_itself || question.a.len() <= MOST_FITTED;
+    small && schemes::fits(scheme, &profile(question, limits))
 }
 
 fn variations(scheme: &Scheme, positions: usize, limit: usize) -> Vec<Settings> {

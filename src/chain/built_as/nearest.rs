@@ -39,6 +39,8 @@ pub(super) fn nearest(made: &MadeFrom, valency: usize) -> Option<Likeness> {
             Growth::Linear => true,
             Growth::LogLinear => made.positions <= MOST_POSITIONS,
             Growth::Cubic => made.positions <= MOST_CUBIC,
+            // Fitted to arrivals, and mostly no spans: nothing to compare with.
+            Growth::Quadratic | Growth::Quartic => false,
         };
         if !fits {
             continue;

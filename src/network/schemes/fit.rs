@@ -9,9 +9,14 @@ use super::{
     CarryNetwork, FanOuts, Growth, Limits, Profile, Scheme, Settings, all, by_name, flat_lookahead,
     group_lookahead,
 };
+use crate::network::{and_or_path, arrival_aware};
 
 /// The widest chain a scheme of n·log n size, or any variation, is proposed for.
 pub const MOST_LOG_LINEAR: usize = 4096;
+
+/// The widest chain for which schemes that fit arrivals are also tried a level
+/// later than they could be.
+const MOST_RELAXED: usize = 128;
 
 /// The highest valency proposed, whatever the gate inputs.
 const MOST_VALENCY: usize = 6;
@@ -83,6 +88,7 @@ impl Fitted {
         }
         if takes.extra_levels {
             return Some(match settings.extra_levels {
+                0 => return None,
                 1 => "1 extra level".to_owned(),
                 n => format!("{n} extra levels"),
             });
@@ -116,7 +122,7 @@ pub fn candidates_for(profile: &Profile) -> Vec<Fitted> {
     let positions = profile.positions();
     let gate_inputs = profile.costs.limits().gate_inputs;
     let mut fitted: Vec<Fitted> = Vec::new();
-    for scheme in all().iter().filter(|scheme| fits(scheme, positions)) {
+    for scheme in all().iter().filter(|scheme| fits(scheme, profile)) {
         for settings in variations(scheme, positions, gate_inputs) {
             let next = Fitted::new(scheme, profile, settings);
             if fitted.iter().all(|earlier| earlier.network != next.network) {
@@ -127,8 +133,14 @@ pub fn candidates_for(profile: &Profile) -> Vec<Fitted> {
     fitted
 }
 
-fn fits(scheme: &Scheme, positions: usize) -> bool {
+/// Whether a scheme is tried on a chain at all: its size, and what gates may be.
+pub fn fits(scheme: &Scheme, profile: &Profile) -> bool {
+    let positions = profile.positions();
     match scheme.growth {
+        Growth::Quadratic => positions <= arrival_aware::MOST_POSITIONS,
+        Growth::Quartic => {
+            positions <= and_or_path::MOST_POSITIONS && !profile.costs.limits().covers
+        }
         Growth::Linear => true,
         Growth::LogLinear => positions <= MOST_LOG_LINEAR,
         Growth::Cubic => positions <= flat_lookahead::MOST_POSITIONS,
@@ -138,6 +150,9 @@ fn fits(scheme: &Scheme, positions: usize) -> bool {
 /// The settings a scheme is tried with. What is known to be no better than its
 /// neighbours is left out; [`every_variation`] has it all.
 pub fn variations(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Settings> {
+    if matches!(scheme.growth, Growth::Quadratic | Growth::Quartic) {
+        return fitting(scheme, positions, gate_inputs);
+    }
     let mut list = vec![Settings::default()];
     if positions > MOST_LOG_LINEAR {
         return list;
@@ -212,7 +227,7 @@ pub fn every_variation(scheme: &Scheme, positions: usize, gate_inputs: usize) ->
     assert!(positions <= 128, "too many fan-out vectors");
     let mut list = variations(scheme, positions, gate_inputs);
     let levels = (positions + 1).next_power_of_two().trailing_zeros();
-    if scheme.takes.extra_levels {
+    if scheme.takes.extra_levels && scheme.growth == Growth::LogLinear {
         list = vary(&list, 0..levels as usize, |settings, extra_levels| {
             Settings {
                 extra_levels,
@@ -240,6 +255,38 @@ pub fn left_out(positions: usize) -> Option<String> {
             "schemes that grow faster than the width, and variations, are tried up to \
              {MOST_LOG_LINEAR} positions only"
         )
+    })
+}
+
+/// Variations of a scheme that fits itself to arrivals: the earliest and, where
+/// that does not take long, a level later.
+fn fitting(scheme: &Scheme, positions: usize, gate_inputs: usize) -> Vec<Settings> {
+    let most = gate_inputs.clamp(2, MOST_VALENCY);
+    let valencies = if scheme.takes.valency {
+        2..=most
+    } else {
+        2..=2
+    };
+    let valencies = valencies.filter(|&valency| valency == 2 || valency == most);
+    let extra = if positions <= MOST_RELAXED {
+        0..=1
+    } else {
+        0..=0
+    };
+    let mut list = vec![Settings::default()];
+    list = vary(&list, valencies, |settings, valency| Settings {
+        valency,
+        ..settings
+    });
+    list = vary(&list, extra, |settings, extra_levels| Settings {
+        extra_levels,
+        ..settings
+    });
+    vary(&list, [false, true].into_iter(), |settings, select_end| {
+        Settings {
+            select_end,
+            ..settings
+        }
     })
 }
 

@@ -12,6 +12,8 @@
 //!
 //! A new scheme is one file and one line in [`all`].
 
+mod and_or_path;
+mod arrival_aware;
 mod blocks;
 mod brent_kung;
 mod carry_increment;
@@ -31,7 +33,8 @@ mod sklansky;
 mod sparse_prefix;
 
 pub use fit::{
-    Fitted, MOST_LOG_LINEAR, candidates, candidates_for, every_variation, left_out, variations,
+    Fitted, MOST_LOG_LINEAR, candidates, candidates_for, every_variation, fits, left_out,
+    variations,
 };
 pub use knowles::FanOuts;
 
@@ -49,6 +52,10 @@ pub enum Growth {
     LogLinear,
     /// With the third power, counted in gate inputs.
     Cubic,
+    /// Positions times their logarithm, but the work to find them with the square.
+    Quadratic,
+    /// About with the square, and the work to find them with the fourth power.
+    Quartic,
 }
 
 /// What a scheme may be varied in. A scheme ignores what it does not take.
@@ -148,7 +155,9 @@ impl Scheme {
         assert!(settings.group >= 2, "a group has at least two members");
         let mut network = CarryNetwork::new(profile.positions(), profile.has_carry_in());
         (self.shape)(&mut network, settings, profile);
-        if settings.select_end && self.takes.select_end {
+        // Schemes that fit themselves to arrivals choose their own ends.
+        let chosen = matches!(self.growth, Growth::Quadratic | Growth::Quartic);
+        if settings.select_end && self.takes.select_end && !chosen {
             select_end::select_late_sums(&mut network, profile);
         }
         if !network.is_prefix() {
@@ -169,7 +178,7 @@ pub fn by_name(name: &str) -> Option<&'static Scheme> {
     ALL.iter().find(|scheme| scheme.name == name)
 }
 
-static ALL: [Scheme; 13] = [
+static ALL: [Scheme; 15] = [
     ripple::SCHEME,
     sklansky::SCHEME,
     kogge_stone::SCHEME,
@@ -183,6 +192,8 @@ static ALL: [Scheme; 13] = [
     conditional_sum::SCHEME,
     flat_lookahead::SCHEME,
     group_lookahead::SCHEME,
+    arrival_aware::SCHEME,
+    and_or_path::SCHEME,
 ];
 
 const NOTHING: Takes = Takes {
