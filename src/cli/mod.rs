@@ -5,6 +5,7 @@
 //! goes to standard error. One runner per command.
 
 mod audit;
+mod closeup;
 mod explain;
 mod options;
 mod search;
@@ -46,6 +47,7 @@ pub fn run() -> ExitCode {
     let status = match CommandLine::try_parse() {
         Ok(line) => match line.command {
             Command::Audit(arguments) => audit::run(&arguments),
+            Command::Closeup(arguments) => closeup::run(&arguments),
             Command::Tradeoff(arguments) => tradeoff::run(&arguments),
             Command::Explain { rule } => explain::run(rule.as_deref()),
         },

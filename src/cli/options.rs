@@ -29,6 +29,7 @@ use std::sync::Arc;
     after_long_help = "Examples:\n  \
         carrywise audit tide_logger.blif\n  \
         carrywise audit old/*.blif --report review.md --report record.yaml\n  \
+        carrywise closeup tide_logger.blif C1\n  \
         carrywise explain ripple-on-longest-path\n\n\
         Exit status: 0 done; 1 what was asked to hold does not; 2 an input or the command line\n\
         could not be used; 4 a fault of carrywise itself. Several files give the worst of theirs."
@@ -45,6 +46,9 @@ pub enum Command {
     /// Audit netlists: depth, proven carry chains, what a rebuild would bring
     #[command(after_help = AUDIT_EXAMPLES)]
     Audit(Box<AuditArguments>),
+    /// Look at one chain bit by bit: arrivals, carries today, the best of every scheme
+    #[command(after_help = "Example:\n  carrywise closeup tide_logger.blif C1")]
+    Closeup(Box<CloseupArguments>),
     /// Compare schemes without a netlist: delay against the largest fan-in
     #[command(after_help = TRADEOFF_EXAMPLES)]
     Tradeoff(TradeoffArguments),
@@ -135,13 +139,45 @@ pub struct AuditArguments {
     #[arg(required = true, value_name = "FILE")]
     pub files: Vec<PathBuf>,
 
-    /// Form of the report on standard output
-    #[arg(long = "as", value_name = "FORM", value_enum, default_value = "table")]
-    pub form: FormWord,
-
     /// Also write the report to PATH; .md, .yaml and .json say in which form. May be repeated
     #[arg(long, value_name = "PATH")]
     pub report: Vec<PathBuf>,
+
+    /// Exit with 1 when a finding is at least this bad
+    #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
+    pub fail_on: FailWord,
+
+    /// Plan every chain, whatever it has to spare
+    #[arg(long)]
+    pub plan_all: bool,
+
+    /// What other commands take too.
+    #[command(flatten)]
+    pub shared: SharedArguments,
+}
+
+/// What `closeup` takes.
+#[derive(Args, Debug)]
+pub struct CloseupArguments {
+    /// A BLIF or AIGER file, plain or packed; `-` is standard input
+    #[arg(value_name = "FILE")]
+    pub file: PathBuf,
+
+    /// The chain: its id (`C1`), its fingerprint, or any of its nets
+    #[arg(value_name = "CHAIN")]
+    pub chain: String,
+
+    /// What other commands take too.
+    #[command(flatten)]
+    pub shared: SharedArguments,
+}
+
+/// How to read a netlist, what to look for, and in which form to tell it.
+#[derive(Args, Debug)]
+pub struct SharedArguments {
+    /// Form of the report on standard output
+    #[arg(long = "as", value_name = "FORM", value_enum, default_value = "table")]
+    pub form: FormWord,
 
     /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates,
     /// `logical-effort` is about static CMOS gates and what each drives, in units of τ; a file is
@@ -195,10 +231,6 @@ pub struct AuditArguments {
     /// of the delay model
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(..=1 << 24))]
     pub target_depth: Option<u64>,
-
-    /// Exit with 1 when a finding is at least this bad
-    #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
-    pub fail_on: FailWord,
 
     /// No warnings on standard error; errors still
     #[arg(long, short)]
@@ -287,6 +319,17 @@ pub enum NewGatesWord {
 }
 
 impl AuditArguments {
+    /// How to audit.
+    pub fn auditing(&self, model: DelayModel) -> audit::Options {
+        let mut options = self.shared.auditing(model);
+        if self.plan_all {
+            options.request.margin = Some(i32::MAX);
+        }
+        options
+    }
+}
+
+impl SharedArguments {
     /// How to read, with access to further files.
     pub fn reading(&self, files: Arc<dyn FileAccess>) -> ReadOptions {
         ReadOptions {

@@ -77,6 +77,9 @@ pub struct ChainPlan {
     pub recommended: Option<usize>,
     /// Why that one, or why none.
     pub reason: String,
+    /// The one that saves gates while nothing needs the chain to be so fast, as an
+    /// index into `proposals`.
+    pub cheaper: Option<usize>,
 }
 
 /// Most chains that are planned in one netlist, the most critical first: past
@@ -86,16 +89,16 @@ pub const MOST_PLANNED: usize = 256;
 
 /// Plans the chains of a netlist, in their order.
 pub fn plan_all(ground: &Ground<'_>, chains: &[Chain]) -> Vec<ChainPlan> {
-    let mut plans: Vec<ChainPlan> = chains.iter().map(|chain| today(ground, chain)).collect();
+    let mut plans: Vec<ChainPlan> = chains.iter().map(|chain| as_it_is(ground, chain)).collect();
     let mut order: Vec<usize> = (0..plans.len()).collect();
     order.sort_by_key(|&i| (plans[i].slack.map_or(i32::MAX, |slack| slack.ticks), i));
     for (rank, i) in order.into_iter().enumerate() {
-        let today = plans[i].clone();
-        plans[i] = if rank < MOST_PLANNED {
-            plan_from(ground, &chains[i], today)
+        let now = plans[i].clone();
+        plans[i] = if rank < MOST_PLANNED || ground.settings.plans_all() {
+            plan_from(ground, &chains[i], now)
         } else {
             let why = format!("the {MOST_PLANNED} chains nearest to a longest path were planned");
-            refuse(today, why)
+            refuse(now, why)
         };
     }
     plans
@@ -103,7 +106,7 @@ pub fn plan_all(ground: &Ground<'_>, chains: &[Chain]) -> Vec<ChainPlan> {
 
 /// Plans one chain.
 pub fn plan(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
-    plan_from(ground, chain, today(ground, chain))
+    plan_from(ground, chain, as_it_is(ground, chain))
 }
 
 fn refuse(mut plan: ChainPlan, why: String) -> ChainPlan {
@@ -146,8 +149,8 @@ fn plan_from(ground: &Ground<'_>, chain: &Chain, mut plan: ChainPlan) -> ChainPl
     }
 }
 
-/// The chain as it is.
-fn today(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
+/// The chain as it is, with no plan for it.
+pub fn as_it_is(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
     let at = |signal: &Signal| ground.timing.arrivals.at(signal.net);
     let bits = chain.positions.iter().flat_map(|p| [p.a, p.b]);
     let operands = bits.chain([chain.carry_in]).filter_map(|bit| bit.signal());
@@ -181,11 +184,12 @@ fn today(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
         best_of_scheme: Vec::new(),
         recommended: None,
         reason: String::new(),
+        cheaper: None,
     }
 }
 
 /// Every candidate with the better of the two propagates, in order.
-fn try_all(site: &Site<'_>, kind: PathKind) -> Vec<Proposal> {
+pub(super) fn try_all(site: &Site<'_>, kind: PathKind) -> Vec<Proposal> {
     let fitted = candidates_for(&site.profile());
     let bound = lower_bound(site);
     let mut proposals = Vec::with_capacity(fitted.len());
@@ -216,7 +220,7 @@ fn try_all(site: &Site<'_>, kind: PathKind) -> Vec<Proposal> {
 }
 
 /// What only listed proposals need.
-fn complete(site: &Site<'_>, proposal: &mut Proposal) {
+pub(super) fn complete(site: &Site<'_>, proposal: &mut Proposal) {
     let run = DryRun::of(site, &proposal.fitted.network, proposal.propagate);
     proposal.takes_over = run.takes_over(proposal.kind.kind);
     proposal.carries = run.carry_arrivals();

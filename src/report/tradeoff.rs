@@ -34,7 +34,7 @@ pub fn write_tradeoff(
 ) -> io::Result<()> {
     match form {
         TradeoffForm::Table => out.write_all(table(record, page).as_bytes()),
-        TradeoffForm::Yaml => yaml::write_value(record, out),
+        TradeoffForm::Yaml => yaml::write(record, out),
         TradeoffForm::Json => {
             serde_json::to_writer(&mut *out, record).map_err(io::Error::from)?;
             out.write_all(b"\n")
