@@ -23,6 +23,7 @@ mod rebuilds;
 pub mod record;
 mod shape;
 mod sight;
+pub mod tradeoff;
 mod verdict;
 pub mod words;
 

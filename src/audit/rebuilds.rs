@@ -76,7 +76,10 @@ fn proposal_record(
             - estimate.gate_equivalents_removed as i64,
         largest_fan_in: estimate.largest_fan_in as u64,
         largest_fan_out: estimate.largest_fan_out as u64,
-        wire_tracks: None,
+        wire_tracks: fitted
+            .network
+            .is_prefix()
+            .then(|| fitted.network.wire_tracks() as u64),
         above_bound: Some(timing.time(proposal.above_bound)),
         carries: recommended.then(|| arrivals.collect()),
         network: recommended.then(|| shape::lines(&fitted.network)),

@@ -2,7 +2,7 @@
 //!
 //! A combine node is `[7:4] = [7:6] [5:4]`, position -1 being the carry-in. A
 //! signal is one operation, `x3 = x2 + G[7:4]`, `x4 = x1 ? x3 : h5`: `G` and `P`
-//! of spans, `h5` the half sum of a position. Then come the carries and sums
+//! of spans, `t5` the OR and `h5` the half sum of a position. Then come the carries and sums
 //! that are signals. Only what some carry or sum is made from is listed,
 //! and what a line reads comes before it.
 
@@ -50,6 +50,7 @@ fn name(network: &CarryNetwork, signal: SignalId) -> String {
     match network.signal(signal) {
         SignalNode::Generate(node) => format!("G{}", span(network, node)),
         SignalNode::Propagate(node) => format!("P{}", span(network, node)),
+        SignalNode::Either(position) => format!("t{position}"),
         SignalNode::HalfSum(position) => format!("h{position}"),
         _ => format!("x{}", signal.index()),
     }
@@ -62,7 +63,10 @@ fn operation(network: &CarryNetwork, signal: SignalId) -> Option<String> {
         list.join(between)
     };
     match network.signal(signal) {
-        SignalNode::Generate(_) | SignalNode::Propagate(_) | SignalNode::HalfSum(_) => None,
+        SignalNode::Generate(_)
+        | SignalNode::Propagate(_)
+        | SignalNode::Either(_)
+        | SignalNode::HalfSum(_) => None,
         SignalNode::And(list) => Some(names(list, "·")),
         SignalNode::Or(list) => Some(names(list, " + ")),
         SignalNode::Xor(left, right) => Some(names(&[left, right], " ⊕ ")),

@@ -205,7 +205,7 @@ fn declare_carry(
 }
 
 /// The delay model asked for, and whether its file also gives functions of cells.
-fn delay_model(delay: &Delay) -> Result<(DelayModel, bool), Status> {
+pub(super) fn delay_model(delay: &Delay) -> Result<(DelayModel, bool), Status> {
     let file = match delay {
         Delay::Model(model) => return Ok((*model, false)),
         Delay::File(file) => file,
@@ -321,7 +321,7 @@ pub(super) fn with_netlist<T>(
     })
 }
 
-fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
+pub(super) fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
     load(file, name, limits).map_err(|error| {
         let nothing = Source {
             name: name.to_owned(),

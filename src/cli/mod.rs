@@ -11,6 +11,7 @@ mod options;
 mod search;
 mod targets;
 mod terminal;
+mod tradeoff;
 
 use clap::Parser;
 use options::{Command, CommandLine};
@@ -47,6 +48,7 @@ pub fn run() -> ExitCode {
         Ok(line) => match line.command {
             Command::Audit(arguments) => audit::run(&arguments),
             Command::Closeup(arguments) => closeup::run(&arguments),
+            Command::Tradeoff(arguments) => tradeoff::run(&arguments),
             Command::Explain { rule } => explain::run(rule.as_deref()),
         },
         Err(answer) => {

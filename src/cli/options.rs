@@ -8,7 +8,7 @@ use crate::chain;
 use crate::format::ReadOptions;
 use crate::format::files::FileAccess;
 use crate::plan::{NewGates, Request};
-use crate::report::Form;
+use crate::report::{Form, TradeoffForm};
 use crate::source::nearest;
 use crate::timing::DelayModel;
 use clap::{Args, Parser, Subcommand, ValueEnum};
@@ -49,6 +49,9 @@ pub enum Command {
     /// Look at one chain bit by bit: arrivals, carries today, the best of every scheme
     #[command(after_help = "Example:\n  carrywise closeup tide_logger.blif C1")]
     Closeup(Box<CloseupArguments>),
+    /// Compare schemes without a netlist: delay against the largest fan-in
+    #[command(after_help = TRADEOFF_EXAMPLES)]
+    Tradeoff(TradeoffArguments),
     /// Say what a finding means and what to do about it
     #[command(after_help = "Example:\n  carrywise explain net-driven-twice")]
     Explain {
@@ -61,6 +64,72 @@ const AUDIT_EXAMPLES: &str = "Examples:\n  \
     carrywise audit tide_logger.blif\n  \
     carrywise audit tide_logger.aig --delay pairs --as markdown\n  \
     carrywise audit tide_logger.blif.gz --as json --report review.md";
+
+const TRADEOFF_EXAMPLES: &str = "Examples:\n  \
+    carrywise tradeoff --bits 32\n  \
+    carrywise tradeoff --bits 16 --carry-in --delay pairs --gate-inputs 4\n  \
+    carrywise tradeoff --bits 16 --arrivals late_levels.yaml --as yaml";
+
+/// What `tradeoff` takes.
+#[derive(Args, Debug)]
+pub struct TradeoffArguments {
+    /// Positions added
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(1..=4096))]
+    pub bits: u64,
+
+    /// With a carry-in
+    #[arg(long)]
+    pub carry_in: bool,
+
+    /// A YAML file of when the bits of `a`, `b` and `carry_in` are ready, in units of the delay
+    /// model [default: all at 0]
+    #[arg(long, value_name = "FILE")]
+    pub arrivals: Option<PathBuf>,
+
+    /// What a gate costs, as for `audit`; where that depends on load, each gate is priced as if it
+    /// drove two others
+    #[arg(long, value_name = "MODEL", default_value = "unit", value_parser = delay)]
+    pub delay: Delay,
+
+    /// Most inputs of a gate that are tried [default: as many as some scheme can use]
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(2..))]
+    pub gate_inputs: Option<u64>,
+
+    /// What one gate may be
+    #[arg(
+        long,
+        value_name = "KIND",
+        value_enum,
+        default_value = "single-operator"
+    )]
+    pub new_gates: NewGatesWord,
+
+    /// Form of the answer on standard output
+    #[arg(long = "as", value_name = "FORM", value_enum, default_value = "table")]
+    pub form: TradeoffWord,
+}
+
+/// Words of `--as` of `tradeoff`.
+#[derive(ValueEnum, Clone, Copy, Debug)]
+pub enum TradeoffWord {
+    /// For a terminal
+    Table,
+    /// The whole record, one document
+    Yaml,
+    /// The whole record, one line
+    Json,
+}
+
+impl TradeoffWord {
+    /// The form it means.
+    pub fn form(self) -> TradeoffForm {
+        match self {
+            Self::Table => TradeoffForm::Table,
+            Self::Yaml => TradeoffForm::Yaml,
+            Self::Json => TradeoffForm::Json,
+        }
+    }
+}
 
 /// What `audit` takes.
 #[derive(Args, Debug)]

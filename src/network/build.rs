@@ -283,6 +283,7 @@ impl<'a, K: GateSink> Spans<'a, K> {
         match self.network.signal(signal) {
             SignalNode::Generate(node) => self.generate(node),
             SignalNode::Propagate(node) => self.propagate(node),
+            SignalNode::Either(i) => self.gates.or(&[self.addends.a[i], self.addends.b[i]]),
             SignalNode::HalfSum(position) => self.half_sum(position),
             SignalNode::And(list) => {
                 let list: Vec<_> = list.iter().map(|&id| self.made(id)).collect();

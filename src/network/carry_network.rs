@@ -51,6 +51,10 @@ pub struct CarryNetwork {
     spans: Vec<Span>,
     part_starts: Vec<u32>,
     parts: Vec<NodeId>,
+    /// Rows a scheme draws its network in: of each combine node, where rows are
+    /// stated, and whether the next one begins another.
+    rows: Vec<u32>,
+    row_begins: bool,
     carries: Vec<NodeId>,
     pub(super) signals: Signals,
 }
@@ -74,6 +78,8 @@ impl CarryNetwork {
             spans,
             part_starts,
             parts: Vec::new(),
+            rows: Vec::new(),
+            row_begins: false,
             carries,
             signals: Signals::default(),
         }
@@ -122,6 +128,22 @@ impl CarryNetwork {
         (0..self.spans.len() as u32).map(NodeId)
     }
 
+    /// Lets the combine nodes that follow stand in a row of their own, as the
+    /// scheme's publication draws them. Nothing is built differently by it.
+    pub fn begin_row(&mut self) {
+        self.row_begins = true;
+    }
+
+    /// The row of a combine node, from 1; its level where no rows are stated.
+    pub(super) fn row(&self, node: NodeId, levels: &[u32]) -> u32 {
+        let stated = self.rows.last().is_some_and(|&last| last > 0);
+        if stated {
+            self.rows[node.index() - self.leaf_count()]
+        } else {
+            levels[node.index()]
+        }
+    }
+
     /// Joins spans, most significant first. Panics unless there are at least
     /// two and each meets or overlaps the next, which reaches further down.
     pub fn combine(&mut self, parts: &[NodeId]) -> NodeId {
@@ -138,6 +160,9 @@ impl CarryNetwork {
             low: self.span(parts[parts.len() - 1]).low,
         };
         let id = NodeId(u32::try_from(self.spans.len()).expect("fewer than 2^32 nodes"));
+        let row = self.rows.last().copied().unwrap_or(0);
+        self.rows
+            .push(row + u32::from(std::mem::take(&mut self.row_begins)));
         self.spans.push(span);
         self.parts.extend_from_slice(parts);
         let end = u32::try_from(self.parts.len()).expect("fewer than 2^32 parts");
@@ -207,91 +232,11 @@ impl CarryNetwork {
         used
     }
 
-    /// Combine nodes some carry or sum is made from: the cells of a prefix
-    /// network.
-    pub fn cells(&self) -> usize {
-        let used = self.used();
-        used[self.leaf_count()..].iter().filter(|&&u| u).count()
-    }
-
-    /// Combine nodes on the longest path to each node.
-    pub fn node_levels(&self) -> Vec<u32> {
-        let mut levels = vec![0; self.spans.len()];
-        for i in self.leaf_count()..levels.len() {
-            let deepest = self.parts_at(i).iter().map(|part| levels[part.index()]);
-            levels[i] = 1 + deepest.max().unwrap_or(0);
-        }
-        levels
-    }
-
-    /// Combine nodes on the longest path to any carry. Of signals an AND or OR
-    /// counts half, rounded up at the end, since a combine node is both, and a
-    /// two-way choice counts whole.
-    pub fn levels(&self) -> usize {
-        let spans = self.node_levels();
-        let mut halves: Vec<u32> = Vec::with_capacity(self.signal_ids().len());
-        for signal in self.signal_ids() {
-            let deepest = self.arguments(signal).iter().map(|id| halves[id.index()]);
-            let below = deepest.max().unwrap_or(0);
-            halves.push(match self.signal(signal) {
-                SignalNode::Generate(node) | SignalNode::Propagate(node) => 2 * spans[node.index()],
-                SignalNode::HalfSum(_) => 0,
-                SignalNode::And(_) | SignalNode::Or(_) => below + 1,
-                SignalNode::Xor(..) => below,
-                SignalNode::Select { .. } => below + 2,
-            });
-        }
-        let deepest = (0..self.positions).map(|position| match self.carry(position) {
-            Carry::Span(node) => spans[node.index()],
-            Carry::Signal(signal) => halves[signal.index()].div_ceil(2),
-        });
-        deepest.max().unwrap_or(0) as usize
-    }
-
-    /// Most readers of one node or signal: what some carry or sum needs, and one
-    /// more where it is itself a carry whose sum reads it. Drawn networks put
-    /// buffers between rows; here there are none.
-    pub fn largest_fan_out(&self) -> usize {
-        let used = self.used();
-        let used_signals = self.used_signals();
-        let mut readers = vec![0usize; self.spans.len()];
-        let mut of_signal = vec![0usize; used_signals.len()];
-        for position in 0..self.positions {
-            match self.carry(position) {
-                Carry::Span(node) => readers[node.index()] += 1,
-                Carry::Signal(signal) => of_signal[signal.index()] += 1,
-            }
-        }
-        for signal in self.signal_ids().filter(|id| used_signals[id.index()]) {
-            for argument in self.arguments(signal) {
-                of_signal[argument.index()] += 1;
-            }
-        }
-        for signal in self.signal_ids() {
-            if let SignalNode::Generate(node) | SignalNode::Propagate(node) = self.signal(signal) {
-                readers[node.index()] += std::mem::take(&mut of_signal[signal.index()]);
-            }
-        }
-        for i in (self.leaf_count()..used.len()).filter(|&i| used[i]) {
-            for part in self.parts_at(i) {
-                readers[part.index()] += 1;
-            }
-        }
-        readers.into_iter().chain(of_signal).max().unwrap_or(0)
-    }
-
-    /// Most parts of one combine node some carry needs; 1 when there is none.
-    pub fn largest_valency(&self) -> usize {
-        let used = self.used();
-        let combines = (self.leaf_count()..used.len()).filter(|&i| used[i]);
-        combines.map(|i| self.parts_at(i).len()).max().unwrap_or(1)
-    }
-
-    fn leaf_count(&self) -> usize {
+    pub(super) fn leaf_count(&self) -> usize {
         self.positions + usize::from(self.has_carry_in)
     }
 
-    fn parts_at(&self, node: usize) -> &[NodeId] {
+    pub(super) fn parts_at(&self, node: usize) -> &[NodeId] {
         let (start, end) = (self.part_starts[node], self.part_starts[node + 1]);
         &self.parts[start as usize..end as usize]
     }

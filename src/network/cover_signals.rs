@@ -301,7 +301,9 @@ impl Cutter<'_> {
             Pin::Signal(signal) => match self.network.signal(signal) {
                 SignalNode::Generate(node) => list.push(Pin::Generate(node)),
                 SignalNode::Propagate(node) => list.push(Pin::Propagate(node)),
-                SignalNode::HalfSum(i) => list.extend([Pin::A(i), Pin::B(i)]),
+                SignalNode::Either(i) | SignalNode::HalfSum(i) => {
+                    list.extend([Pin::A(i), Pin::B(i)]);
+                }
                 _ => {
                     for &read in self.network.arguments(signal) {
                         // A span's G is read as such, not through its signal.
@@ -435,6 +437,7 @@ impl<K: GateSink> Spans<'_, K> {
             Pin::Signal(signal) => match network.signal(signal) {
                 SignalNode::Generate(node) => at(Pin::Generate(node)),
                 SignalNode::Propagate(node) => at(Pin::Propagate(node)),
+                SignalNode::Either(i) => at(Pin::A(i)) | at(Pin::B(i)),
                 SignalNode::HalfSum(i) => at(Pin::A(i)) ^ at(Pin::B(i)),
                 SignalNode::And(list) => list.iter().fold(!0, |word, &id| word & of_signal(id)),
                 SignalNode::Or(list) => list.iter().fold(0, |word, &id| word | of_signal(id)),

@@ -14,6 +14,9 @@ pub struct Estimate<'a> {
     profile: &'a Profile,
     generates: Vec<i32>,
     propagates: Vec<i32>,
+    /// The carry after a one, made from the lowest position up.
+    eithers: Vec<i32>,
+    leaf: Vec<bool>,
     signals: Vec<i32>,
 }
 
@@ -24,6 +27,8 @@ impl<'a> Estimate<'a> {
             profile,
             generates: Vec::with_capacity(network.nodes().len()),
             propagates: Vec::with_capacity(network.nodes().len()),
+            eithers: Vec::with_capacity(network.nodes().len()),
+            leaf: Vec::with_capacity(network.nodes().len()),
             signals: Vec::with_capacity(network.signal_ids().len()),
         };
         for node in network.nodes() {
@@ -38,31 +43,72 @@ impl<'a> Estimate<'a> {
 
     fn add_node(&mut self, node: Node<'_>) {
         let profile = self.profile;
-        let (generate, propagate) = match node {
-            Node::CarryIn => (profile.carry_in.unwrap_or(LONG_BEFORE), LONG_BEFORE),
-            Node::Leaf(i) => (profile.generate[i], profile.propagate[i]),
-            Node::Combine(parts) => self.joined(parts),
+        let ((generate, propagate), either) = match node {
+            Node::CarryIn => {
+                let carry_in = profile.carry_in.unwrap_or(LONG_BEFORE);
+                ((carry_in, LONG_BEFORE), LONG_BEFORE)
+            }
+            Node::Leaf(i) => {
+                let (g, p) = (profile.generate[i], profile.propagate[i]);
+                ((g, p), p)
+            }
+            Node::Combine(parts) => {
+                let lowest = parts[parts.len() - 1];
+                let both = self.joined(parts);
+                (both, self.with_lowest(parts, self.eithers[lowest.index()]))
+            }
         };
         self.generates.push(generate);
         self.propagates.push(propagate);
+        self.eithers.push(either);
+        self.leaf.push(matches!(node, Node::Leaf(_)));
     }
 
     /// G and P of adjacent spans joined in one node.
-    pub fn joined(&self, parts: &[NodeId]) -> (i32, i32) {
+    fn joined(&self, parts: &[NodeId]) -> (i32, i32) {
+        let lowest = parts[parts.len() - 1];
+        let propagates = parts.iter().map(|&part| self.propagate(part));
+        let propagate = propagates.max().unwrap_or(LONG_BEFORE);
+        let costs = &self.profile.costs;
+        (
+            self.with_lowest(parts, self.generate(lowest)),
+            propagate + costs.and(parts.len()),
+        )
+    }
+
+    /// G of adjacent spans joined, with what stands for the lowest's G.
+    fn with_lowest(&self, parts: &[NodeId], lowest: i32) -> i32 {
         let costs = &self.profile.costs;
         let (upper, lower) = (costs.from_upper(parts.len()), costs.from_lower(parts.len()));
-        let mut generate = self.generate(parts[0]) + upper;
-        let mut propagate = LONG_BEFORE;
-        for (i, &part) in parts.iter().enumerate() {
-            propagate = propagate.max(self.propagate(part));
+        let mut generate = (self.generate(parts[0]) + upper).max(lowest + lower);
+        for (i, &part) in parts[..parts.len() - 1].iter().enumerate() {
+            generate = generate.max(self.propagate(part) + lower);
             if i > 0 {
                 generate = generate.max(self.generate(part) + lower);
             }
-            if i + 1 < parts.len() {
-                generate = generate.max(self.propagate(part) + lower);
-            }
         }
-        (generate, propagate + costs.and(parts.len()))
+        generate
+    }
+
+    /// G and P of adjacent spans, joined where there are several.
+    pub fn span(&self, parts: &[NodeId]) -> (i32, i32) {
+        match *parts {
+            [only] => (self.generate(only), self.propagate(only)),
+            _ => self.joined(parts),
+        }
+    }
+
+    /// The carry out of adjacent spans after a one, as `G + P` or, `early`, made
+    /// from the lowest position up.
+    pub fn either(&self, parts: &[NodeId], early: bool) -> i32 {
+        let (generate, propagate) = self.span(parts);
+        let lowest = parts[parts.len() - 1];
+        let one = |node: NodeId| self.eithers[node.index()];
+        match *parts {
+            [only] if early || self.leaf[only.index()] => one(only),
+            _ if early => self.with_lowest(parts, one(lowest)),
+            _ => generate.max(propagate) + self.profile.costs.or(2),
+        }
     }
 
     /// When G of a span is ready.
@@ -108,6 +154,7 @@ impl<'a> Estimate<'a> {
         match network.signal(signal) {
             SignalNode::Generate(node) => self.generate(node),
             SignalNode::Propagate(node) => self.propagate(node),
+            SignalNode::Either(position) => self.profile.propagate[position],
             SignalNode::HalfSum(position) => self.profile.half_sum[position],
             SignalNode::And(list) => latest(list) + costs.and(list.len()),
             SignalNode::Or(list) => latest(list) + costs.or(list.len()),

@@ -31,6 +31,9 @@ pub enum SignalNode<'a> {
     Generate(NodeId),
     /// P of a span that does not hold the carry-in.
     Propagate(NodeId),
+    /// `a + b` of a position, whichever propagate the leaves use: the carry out
+    /// of it when one comes in.
+    Either(usize),
     /// `a ⊕ b` of a position, whichever propagate the leaves use.
     HalfSum(usize),
     /// AND of at least two signals.
@@ -54,6 +57,7 @@ pub enum SignalNode<'a> {
 enum Kind {
     Generate(NodeId),
     Propagate(NodeId),
+    Either(u32),
     HalfSum(u32),
     And,
     Or,
@@ -80,6 +84,10 @@ pub(super) struct Signals {
     generates: Vec<Option<SignalId>>,
     propagates: Vec<Option<SignalId>>,
     half_sums: Vec<Option<SignalId>>,
+    /// By span: the carry out of it when one comes in, as `G + P` and as made
+    /// from its lowest position up.
+    eithers: Vec<Option<SignalId>>,
+    early_eithers: Vec<Option<SignalId>>,
     /// By position: the carry and the sum where they are signals; empty where
     /// none is.
     carries: Vec<Option<SignalId>>,
@@ -145,6 +153,70 @@ impl CarryNetwork {
         })
     }
 
+    /// The carry out of a span when one comes in, `G + P`; of a leaf `a + b`,
+    /// whichever propagate the leaves use.
+    pub fn either_of(&mut self, node: NodeId) -> SignalId {
+        if let Some(known) = *slot(&mut self.signals.eithers, node.index()) {
+            return known;
+        }
+        let id = match self.node(node) {
+            Node::Leaf(position) => self.signals.push(Kind::Either(position as u32), &[]),
+            _ => {
+                let (generate, propagate) = (self.generate_of(node), self.propagate_of(node));
+                self.or(&[generate, propagate])
+            }
+        };
+        self.signals.eithers[node.index()] = Some(id);
+        id
+    }
+
+    /// As [`Self::either_of`], made anew from the lowest position up: no later
+    /// than G itself, for a chain of its own.
+    pub fn early_either_of(&mut self, node: NodeId) -> SignalId {
+        // Down the lowest parts to what is known, and back up.
+        let mut way = vec![node];
+        let mut known = loop {
+            let lowest = way[way.len() - 1];
+            if let Some(known) = *slot(&mut self.signals.early_eithers, lowest.index()) {
+                break known;
+            }
+            match self.node(lowest) {
+                Node::Combine(parts) => way.push(parts[parts.len() - 1]),
+                _ => break self.either_of(lowest),
+            }
+        };
+        for &node in way.iter().rev() {
+            if let Node::Combine(parts) = self.node(node)
+                && self.signals.early_eithers[node.index()].is_none()
+            {
+                let parts = parts.to_vec();
+                known = self.joined_either(&parts, known);
+            }
+            *slot(&mut self.signals.early_eithers, node.index()) = Some(known);
+        }
+        known
+    }
+
+    /// `G1 + P1·G2 + … + P1·P2·…·below` of parts, most significant first, the
+    /// lowest of which has `below` as its carry.
+    fn joined_either(&mut self, parts: &[NodeId], below: SignalId) -> SignalId {
+        let (mut terms, mut above) = (Vec::new(), Vec::new());
+        for (i, &part) in parts.iter().enumerate() {
+            let carry = if i + 1 < parts.len() {
+                self.generate_of(part)
+            } else {
+                below
+            };
+            above.push(carry);
+            terms.push(self.and(&above));
+            above.pop();
+            if i + 1 < parts.len() {
+                above.push(self.propagate_of(part));
+            }
+        }
+        self.or(&terms)
+    }
+
     /// AND of signals; a single one is itself. Panics when there is none.
     pub fn and(&mut self, arguments: &[SignalId]) -> SignalId {
         self.operation(Kind::And, arguments)
@@ -181,6 +253,7 @@ impl CarryNetwork {
         match self.signals.kinds[signal.index()] {
             Kind::Generate(node) => SignalNode::Generate(node),
             Kind::Propagate(node) => SignalNode::Propagate(node),
+            Kind::Either(position) => SignalNode::Either(position as usize),
             Kind::HalfSum(position) => SignalNode::HalfSum(position as usize),
             Kind::And => SignalNode::And(arguments),
             Kind::Or => SignalNode::Or(arguments),
@@ -362,6 +435,7 @@ impl CarryNetwork {
             let value = match self.signal(signal) {
                 SignalNode::Generate(node) => spans[node.index()].0,
                 SignalNode::Propagate(node) => spans[node.index()].1,
+                SignalNode::Either(i) => a[i] | b[i],
                 SignalNode::HalfSum(i) => a[i] ^ b[i],
                 SignalNode::And(list) => list.iter().fold(!0, |word, &id| word & at(id)),
                 SignalNode::Or(list) => list.iter().fold(0, |word, &id| word | at(id)),

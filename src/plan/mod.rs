@@ -30,6 +30,7 @@ mod site;
 mod tables;
 mod together;
 mod trace;
+pub mod tradeoff;
 
 pub use bound::{earliest, earliest_at_cost};
 pub use dry_run::{DryRun, Estimate, KindChange, TakesOver};

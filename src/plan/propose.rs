@@ -12,7 +12,7 @@ use super::site::Site;
 use crate::chain::Chain;
 use crate::netlist::Signal;
 use crate::network::Propagate;
-use crate::network::schemes::{Fitted, candidates_for};
+use crate::network::schemes::{Fitted, candidates_for, left_out};
 use crate::timing::{DelayModel, NEVER, PathKind, Slack};
 
 /// A scheme fitted to a chain and dry-run on its netlist.
@@ -138,6 +138,9 @@ fn plan_from(ground: &Ground<'_>, chain: &Chain, mut plan: ChainPlan) -> ChainPl
         Ok(site) => {
             let tried = try_all(&site, slack.kind);
             choose(ground, &mut plan, tried, slack.kind);
+            if let Some(left_out) = left_out(site.addends.a.len()) {
+                plan.reason = format!("{}; {left_out}", plan.reason);
+            }
             for proposal in plan.proposals.iter_mut().chain(&mut plan.best_of_scheme) {
                 complete(&site, proposal);
             }

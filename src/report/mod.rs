@@ -13,9 +13,11 @@ mod outline;
 mod sections;
 mod table;
 mod text;
+mod tradeoff;
 mod yaml;
 
 pub use markdown::MOST_CHARACTERS;
+pub use tradeoff::{TradeoffForm, write_tradeoff};
 
 use crate::audit::record::{Audit, Closeup};
 use std::io::{self, Write};

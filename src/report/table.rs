@@ -87,7 +87,7 @@ fn paragraph(text: &mut String, sentence: &str, width: usize) {
 
 /// Lines of at most `width` characters, broken at blanks, and inside a word
 /// only when it is longer than a line.
-fn wrapped(sentence: &str, width: usize) -> Vec<String> {
+pub(super) fn wrapped(sentence: &str, width: usize) -> Vec<String> {
     let mut lines = Vec::new();
     let mut line = String::new();
     let mut used = 0;

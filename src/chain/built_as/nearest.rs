@@ -79,7 +79,7 @@ fn variations(scheme: &Scheme, positions: i32, valency: usize) -> Vec<Settings> 
                     valency,
                     group,
                     extra_levels,
-                    select_end: false,
+                    ..usual
                 });
             }
         }
@@ -197,10 +197,9 @@ impl Way {
 fn made_by(network: &CarryNetwork, carries: usize) -> BTreeSet<Ends> {
     let nodes: Vec<_> = network.nodes().collect();
     let mut used = vec![false; nodes.len()];
-    for position in 0..carries {
-        if let Some(carry) = network.carry_span(position) {
-            used[carry.index()] = true;
-        }
+    // A carry that is no span has none to compare.
+    for carry in (0..carries).filter_map(|position| network.carry_span(position)) {
+        used[carry.index()] = true;
     }
     let mut spans = BTreeSet::new();
     for &id in nodes.iter().rev() {

@@ -8,7 +8,7 @@
 //! Journal of Applied and Industrial Mathematics 3, 2009; with arrivals U. Brenner
 //! and A. Hermann 2019.
 
-use super::{Growth, Scheme, Takes, arrival_aware};
+use super::{Growth, NOTHING, Scheme, Takes, arrival_aware};
 use crate::network::and_or_path::{MOST_POSITIONS, shape};
 
 pub(super) const SCHEME: Scheme = Scheme {
@@ -16,10 +16,8 @@ pub(super) const SCHEME: Scheme = Scheme {
     source: "Grinchuk 2009, Brenner and Hermann 2019",
     growth: Growth::Quartic,
     takes: Takes {
-        valency: false,
-        group: false,
         extra_levels: true,
-        select_end: true,
+        ..NOTHING
     },
     shape: |network, settings, profile| {
         if network.positions() <= MOST_POSITIONS && !profile.costs.limits().covers {

@@ -8,7 +8,7 @@
 //! S. Held and S. T. Spirkl, "Fast Prefix Adders for Non-uniform Input Arrival
 //! Times", Algorithmica 77, 2017.
 
-use super::{Growth, Scheme, Takes, brent_kung};
+use super::{Growth, NOTHING, Scheme, Takes, brent_kung};
 use crate::network::arrival_aware::{MOST_POSITIONS, shape};
 
 pub(super) const SCHEME: Scheme = Scheme {
@@ -17,9 +17,8 @@ pub(super) const SCHEME: Scheme = Scheme {
     growth: Growth::Quadratic,
     takes: Takes {
         valency: true,
-        group: false,
         extra_levels: true,
-        select_end: true,
+        ..NOTHING
     },
     shape: |network, settings, profile| {
         if network.positions() <= MOST_POSITIONS {

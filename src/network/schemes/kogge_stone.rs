@@ -32,6 +32,7 @@ pub(super) fn prefixes(
     let mut length = 1;
     while length < row.len() {
         let above = row.clone();
+        network.begin_row();
         for (i, slot) in row.iter_mut().enumerate().skip(length) {
             let reach = (i / length).min(valency - 1);
             let spans = (0..=reach).rev().map(|k| above[i - k * length]);

@@ -31,6 +31,7 @@ pub(super) fn prefixes(
     let mut size = 1;
     while size < row.len() {
         let above = row.clone();
+        network.begin_row();
         for (i, slot) in row.iter_mut().enumerate() {
             let block = i - i % (size * valency);
             let lower = (i - block) / size;
