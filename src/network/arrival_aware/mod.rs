@@ -29,7 +29,8 @@ pub(super) const MOST_POSITIONS: usize = 2048;
 pub(super) fn shape(network: &mut CarryNetwork, settings: Settings, profile: &Profile) {
     let costs = &profile.costs;
     let spare = spare(settings, profile);
-    if costs.limits().covers {
+    // A cover of two inputs joins no spans; it is a gate like any other.
+    if costs.limits().covers && costs.limits().gate_inputs >= 3 {
         covers::shape(network, profile, settings.valency, spare);
         return;
     }
