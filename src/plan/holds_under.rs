@@ -8,14 +8,19 @@
 //! one by one.
 
 use super::ground::Ground;
-use super::propose::{ChainPlan, plan};
+use super::propose::{ChainPlan, plan, plan_all};
 use super::settings::Settings;
+use super::together::choose_together;
 use crate::chain::Chain;
 use crate::netlist::{Netlist, Topology};
 use crate::timing::{DelayModel, Timing};
 
 /// Most chains whose recommendation is tried under other models.
 pub const MOST_ASKED: usize = 16;
+
+/// Netlists of at most so many chains are planned as a whole once more; in larger
+/// ones each chain is asked about alone.
+const MOST_TOGETHER: usize = 4;
 
 /// Under which models a recommendation stays and under which it does not.
 #[derive(Clone, PartialEq, Eq, Debug, Default)]
@@ -65,8 +70,17 @@ pub fn holds_under(
             ..settings.clone()
         };
         let ground = Ground::of(netlist, topology, &timing, &settings);
+        // Few chains are chosen for together, as in the audit itself.
+        let together = (chains.len() <= MOST_TOGETHER).then(|| {
+            let mut others = plan_all(&ground, chains);
+            choose_together(&ground, chains, &mut others);
+            others
+        });
         for &i in &asked {
-            let other = plan(&ground, &chains[i]);
+            let other = match &together {
+                Some(others) => others[i].clone(),
+                None => plan(&ground, &chains[i]),
+            };
             let same = chosen(&other) == chosen(&plans[i]);
             if let Some(answer) = &mut found[i] {
                 let list = if same {
