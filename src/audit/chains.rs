@@ -166,11 +166,11 @@ impl<'a> Sources<'a> {
             sums: chain
                 .positions
                 .iter()
-                .map(|bits| name(bits.sums[0]))
+                .filter_map(|bits| bits.sums.first().copied().map(name))
                 .collect(),
-            result: None,
-            relation: None,
-            signed: None,
+            result: chain.comparison.map(|compared| name(compared.result)),
+            relation: (chain.comparison).map(|compared| compared.relation.word().to_owned()),
+            signed: chain.comparison.map(|compared| compared.signed),
             mode: None,
             feedback: self.feedback(chain, registers),
             duplicates: None,
@@ -186,6 +186,9 @@ impl<'a> Sources<'a> {
     }
 
     fn carry_out(&self, chain: &Chain) -> Option<String> {
+        if chain.kind == Kind::Comparator {
+            return None;
+        }
         let carry = *chain.positions.last()?.carries.first()?;
         // A borrow is the complement of the carry of a + ~b + 1.
         let shown = match chain.carry_form {
@@ -303,6 +306,7 @@ impl<'a> Sources<'a> {
             let role = match chain.kind {
                 Kind::Adder | Kind::Subtractor => "accumulator",
                 Kind::Incrementer | Kind::Decrementer => "counter",
+                Kind::Comparator => return None,
             };
             (!outputs.is_empty()).then(|| Feedback {
                 role: role.to_owned(),
@@ -346,7 +350,11 @@ impl<'a> Sources<'a> {
                     _ => "-".to_owned(),
                 },
             };
-            let shown = bits.sums.iter().find_map(|sum| self.shown_by.get(&sum.net));
+            let results = match chain.kind {
+                Kind::Comparator => &bits.carries,
+                _ => &bits.sums,
+            };
+            let shown = results.iter().find_map(|net| self.shown_by.get(&net.net));
             let shown = shown.map_or("-", String::as_str);
             let _ = writeln!(points, "{}\t{}\t{shown}", source(bits.a), source(bits.b));
         }
@@ -373,9 +381,24 @@ fn operands(netlist: &Netlist, chain: &Chain) -> Vec<Operand> {
         Kind::Adder => operands.push(operand(netlist, &b.collect::<Vec<_>>())),
         // As it is subtracted: what is added is its complement.
         Kind::Subtractor => operands.push(operand(netlist, &b.map(complement).collect::<Vec<_>>())),
+        Kind::Comparator => return compared(netlist, chain),
         Kind::Incrementer | Kind::Decrementer => {}
     }
     operands
+}
+
+/// The operands of a comparator as they are compared: the chain holds the second
+/// complemented, and the sign bits of a signed one exchanged.
+fn compared(netlist: &Netlist, chain: &Chain) -> Vec<Operand> {
+    let signed = chain.comparison.is_some_and(|compared| compared.signed);
+    let top = chain.positions.len() - 1;
+    let bits = chain.positions.iter().enumerate();
+    let pairs = bits.map(|(i, bits)| match signed && i == top {
+        true => (complement(bits.a), bits.b),
+        false => (bits.a, complement(bits.b)),
+    });
+    let (a, b): (Vec<Bit>, Vec<Bit>) = pairs.unzip();
+    vec![operand(netlist, &a), operand(netlist, &b)]
 }
 
 fn complement(bit: Bit) -> Bit {
@@ -388,6 +411,8 @@ fn complement(bit: Bit) -> Bit {
 fn carry_in(netlist: &Netlist, chain: &Chain) -> Option<Wire> {
     match (chain.kind, chain.carry_in) {
         (Kind::Adder, Bit::Constant(false)) => None,
+        // Of a comparator the relation says it.
+        (Kind::Comparator, Bit::Constant(_)) => None,
         (_, bit) => Some(wire(netlist, bit)),
     }
 }

@@ -128,7 +128,11 @@ pub fn audit_under(
         topology = Topology::of(netlist);
     }
     // The search needs the most memory, so it runs before the timing is held.
-    let chain::Found { chains, unproven } = chain::find(netlist, &topology, options.chains);
+    let chain::Found {
+        chains,
+        unproven,
+        recurrences_not_listed,
+    } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
     let plans = plans(netlist, &topology, &timing, &settings, &chains);
@@ -231,7 +235,7 @@ pub fn audit_under(
         chains: records,
         recommended_set,
         arrays: Vec::new(),
-        recurrences_not_listed: 0,
+        recurrences_not_listed,
         unproven,
         findings,
         findings_left_out,

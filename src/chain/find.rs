@@ -2,7 +2,8 @@
 //! the ends, and collect the nets.
 
 use super::candidate::{Bits, Context, Lookup};
-use super::collect::{bit, collect};
+use super::carry_only::{self, Ground};
+use super::collect::{bit, collect, sort};
 use super::entries::{Entries, EntryId};
 use super::label::{BusPreference, Labels};
 use super::links::{Links, paths};
@@ -65,6 +66,8 @@ pub struct Found {
     pub chains: Vec<Chain>,
     /// Candidates left open.
     pub unproven: Vec<Unproven>,
+    /// Recurrences that are there and not listed as chains.
+    pub recurrences_not_listed: u64,
 }
 
 /// Finds and proves the carry chains of a netlist.
@@ -123,13 +126,37 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
     let Search {
         ends,
         mut theorems,
-        unproven,
+        mut unproven,
         ..
     } = search;
     ends.trim_shared_tops(&mut theorems);
     theorems.retain(|theorem| live_bits(&theorem.bits) >= options.min_bits);
-    let chains = collect(netlist, &subject, &labels, theorems);
-    Found { chains, unproven }
+    let ground = Ground {
+        netlist,
+        subject: &subject,
+        signatures: &signatures,
+        patterns: &patterns,
+        on_net: &on_net,
+        labels: &labels,
+        options,
+        proof_nodes: PROOF_NODES,
+    };
+    let carry_only = carry_only::find(&ground, &theorems);
+    let mut chains = collect(netlist, &subject, &labels, theorems);
+    chains.extend(carry_only.chains);
+    sort(&mut chains);
+    let bit = |literal| bit(&labels, literal);
+    unproven.extend(carry_only.open.into_iter().map(|open| Unproven {
+        bits: open.bits.len(),
+        operands: open.bits.iter().map(|&(a, b)| (bit(a), bit(b))).collect(),
+        reason: "not settled within the effort",
+        effort: open.conflicts,
+    }));
+    Found {
+        chains,
+        unproven,
+        recurrences_not_listed: carry_only.not_listed,
+    }
 }
 
 /// The nodes that some net carries. What lies inside one cover is no operand,

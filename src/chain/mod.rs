@@ -7,10 +7,11 @@
 //! looks like an adder.
 //!
 //! `entries` → `links` → `candidate` → `verify` → `trim` → `kinds` and `built_as` →
-//! `collect`; `find` runs them.
+//! `collect`; then `carry_only` for carries without sums; `find` runs them.
 
 mod built_as;
 mod candidate;
+mod carry_only;
 mod collect;
 mod entries;
 mod find;
@@ -22,4 +23,4 @@ mod trim;
 mod verify;
 
 pub use find::{Found, Options, Unproven, find};
-pub use model::{BuiltAs, CarryForm, Chain, Kind, Position};
+pub use model::{BuiltAs, CarryForm, Chain, Comparison, Kind, Position, Relation};
