@@ -180,6 +180,18 @@ fn registers_of_cells_are_registers() {
             (Trigger::ActiveHigh, Some("g".to_owned()), 5),
         ]
     );
+    // Clearing happens inside the register: from d and rn it is no gate away.
+    let origin = audited(&netlist);
+    let kind = |word: &str| {
+        let mut kinds = origin.verdict.by_path_kind.iter();
+        kinds
+            .find(|kind| kind.path_kind == word)
+            .map(|kind| kind.longest)
+    };
+    assert_eq!(
+        kind("input→register"),
+        Some(carrywise::timing::Time::whole(0))
+    );
     // What is stored: d unless cleared.
     let input = netlist.registers()[0].input.net.index();
     let (d, rn) = (VARIABLE[0], VARIABLE[1]);

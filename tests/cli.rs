@@ -646,3 +646,82 @@ fn cells_give_functions_to_instances() {
         .code(2)
         .stderr(contains("expected cells with functions"));
 }
+
+#[test]
+fn what_is_odd_in_a_library_is_told() {
+    let run = |extra: &[&str]| {
+        carrywise()
+            .args(["audit", &fixture("tide_delta.blif"), "--cells"])
+            .arg(fixture("cells/harbour.lib"))
+            .args(extra)
+            .assert()
+            .code(0)
+    };
+    let odd = contains("the function of the cell `TBUF` is not given").and(contains("`RAM16`"));
+    run(&[]).stderr(odd);
+    run(&["--quiet"]).stderr(is_empty());
+    // Forty cells without a function: twenty are told, and the rest counted.
+    let folder = folder();
+    let path = folder.path().join("odd.lib");
+    let mut text = String::from("library (odd) {\n");
+    for i in 0..40 {
+        text += &format!("cell (C{i}) {{ pin (A) {{ direction : inout; }} }}\n");
+    }
+    text += "cell (B) { pin (A) { direction : input; } pin (Z) { direction : output; \
+             function : \"A\"; } }\n}\n";
+    fs::write(&path, text).expect("written");
+    carrywise()
+        .args(["audit", &fixture("tide_delta.blif"), "--cells"])
+        .arg(&path)
+        .assert()
+        .code(0)
+        .stderr(
+            contains("`C19`")
+                .and(contains("20 more warnings"))
+                .and(contains("`C20`").not()),
+        );
+}
+
+#[test]
+fn carry_cells_need_a_library_and_are_told() {
+    let folder = folder();
+    let (netlist, assume) = (
+        folder.path().join("adder.blif"),
+        folder.path().join("carry.yaml"),
+    );
+    let mut blif = String::from(".model adder\n.inputs c0");
+    for bus in ["a", "b"] {
+        blif.extend((0..8).map(|i| format!(" {bus}[{i}]")));
+    }
+    blif.push_str("\n.outputs c8");
+    blif.extend((0..8).map(|i| format!(" s[{i}]")));
+    blif.push('\n');
+    for i in 0..8 {
+        blif += &format!(
+            ".gate sum_cell A=a[{i}] B=b[{i}] CI=c{i} S=s[{i}] CO=c{}\n",
+            i + 1
+        );
+    }
+    fs::write(&netlist, blif + ".end\n").expect("written");
+    fs::write(
+        &assume,
+        "carry_cells:\n- cell: sum_cell\n  delays:\n  - {from: \"*\", to: \"*\", delay: 3}\n  \
+         - {from: CI, to: CO, delay: 1}\n  why: data sheet\n",
+    )
+    .expect("written");
+    let run = |extra: &[&str]| {
+        carrywise()
+            .arg("audit")
+            .arg(&netlist)
+            .arg("--assume")
+            .arg(&assume)
+            .args(extra)
+            .assert()
+    };
+    run(&[]).code(2).stderr(contains("name one with --cells"));
+    run(&["--quiet", "--cells", &fixture("cells/harbour.lib")])
+        .code(0)
+        .stdout(
+            contains("carry-cell").and(contains("12").and(contains("sum_cell is a carry cell"))),
+        );
+}

@@ -7,9 +7,10 @@
 mod generators;
 
 use generators::{
-    Addend, Aig, Architecture, Carry, Cell, Circuit, Extension, Generated, Kind, Random, Word,
-    accumulator, adder_hierarchy, adder_subtractor, counter, disguise, gated_operands, negatives,
-    replicated, selected_sums, series, series_adders, with_overflow, witness,
+    Addend, Aig, Architecture, Carry, Cell, Cells, Circuit, Comparator, Extension, Generated, Kind,
+    Random, Reduction, Word, accumulator, adder_hierarchy, adder_subtractor, counter, disguise,
+    gated_operands, mapped, multiplier, negatives, replicated, selected_sums, series,
+    series_adders, squarer, with_overflow, witness,
 };
 
 fn must_hold(generated: &Generated) {
@@ -218,4 +219,129 @@ fn generation_is_repeatable() {
     let text = || replicated(5_000, 9).blif();
     assert_eq!(text(), text());
     assert_ne!(text(), replicated(5_000, 10).blif());
+}
+
+fn fast_word(architecture: Architecture, bits: usize, carry_in: bool) -> Word {
+    Word {
+        architecture,
+        carry_in,
+        ..Word::new(Kind::Adder, bits, Cell::PropagateXor)
+    }
+}
+
+#[test]
+fn every_architecture_adds_at_every_width() {
+    for architecture in Architecture::every_fast() {
+        for bits in (1..=20).chain([31, 32, 48, 64, 100]) {
+            for carry_in in [false, true] {
+                must_hold(&fast_word(architecture, bits, carry_in).generate());
+            }
+        }
+    }
+    for spare in 0..5 {
+        must_hold(&fast_word(Architecture::LadnerFischer(spare), 37, true).generate());
+        must_hold(&fast_word(Architecture::Knowles(1 << spare), 37, true).generate());
+        must_hold(&fast_word(Architecture::SparsePrefix(2 + spare), 37, true).generate());
+    }
+}
+
+#[test]
+fn prefix_networks_cost_what_the_papers_say() {
+    // Nodes of networks over n = 2^m positions: Sklansky n/2·m; Brent and Kung
+    // 2n - 2 - m; Kogge and Stone n·m - n + 1 (the papers' formulas; from
+    // memory). A node whose span reaches position 0 is an AND and an OR, any
+    // other one AND more; n-1 nodes reach position 0. Plus g, p and sums.
+    let gates = |architecture, bits| {
+        let word = fast_word(architecture, bits, false).generate();
+        word.circuit.gate_count()
+    };
+    for m in 2..7 {
+        let n = 1usize << m;
+        let ends = 2 * n + n - 1;
+        let cost = |nodes: usize| ends + 3 * nodes - (n - 1);
+        assert_eq!(gates(Architecture::Sklansky, n), cost(n / 2 * m));
+        assert_eq!(gates(Architecture::BrentKung, n), cost(2 * n - 2 - m));
+        assert_eq!(gates(Architecture::KoggeStone, n), cost(n * m - n + 1));
+    }
+}
+
+#[test]
+fn comparators_tell_the_order_of_integers() {
+    for bits in [1, 2, 3, 4, 5, 12, 33, 64, 128] {
+        for comparator in Comparator::every(bits) {
+            must_hold(&comparator.generate());
+        }
+    }
+}
+
+#[test]
+fn products_are_products() {
+    for way in Reduction::ALL {
+        for (rows, columns) in [
+            (1, 1),
+            (2, 2),
+            (2, 5),
+            (5, 3),
+            (4, 4),
+            (5, 5),
+            (8, 8),
+            (16, 16),
+        ] {
+            must_hold(&multiplier(rows, columns, way, Cell::PropagateXor));
+        }
+        for bits in [1, 2, 5, 9, 10, 20] {
+            must_hold(&squarer(bits, way, Cell::AndInverter));
+        }
+    }
+    // An n × n array has n·(n-2) full and n half adders (textbook, from memory).
+    for n in [4, 8, 16] {
+        let array = multiplier(n, n, Reduction::Array, Cell::PropagateXor);
+        let told = &array.products[0];
+        assert_eq!((told.full, told.half), (n * (n - 2), n));
+    }
+}
+
+#[test]
+fn mapped_circuits_compute_the_same_in_the_cells_allowed() {
+    let mut circuits: Vec<Circuit> = Architecture::every_fast()
+        .into_iter()
+        .map(|architecture| fast_word(architecture, 13, true).generate().circuit)
+        .collect();
+    circuits.extend(Cell::ALL.map(|cell| Word::new(Kind::Subtractor, 9, cell).generate().circuit));
+    circuits.push(accumulator(10, 6, Extension::Sign, Cell::Nand).circuit);
+    circuits.push(multiplier(6, 6, Reduction::Dadda, Cell::Mirror).circuit);
+    circuits.push(negatives::random_logic(12, 200, 3));
+    let ways = [2, 3, 4, 5, 6].map(Cells::Covers);
+    for circuit in &circuits {
+        let mut random = Random::new(3);
+        let inputs: Vec<u64> = circuit.inputs.iter().map(|_| random.word()).collect();
+        let state: Vec<u64> = circuit.registers.iter().map(|_| random.word()).collect();
+        for way in ways.into_iter().chain([Cells::AndOrInvert]) {
+            let other = mapped(circuit, way);
+            assert_eq!(
+                outcome(&other, &inputs, &state),
+                outcome(circuit, &inputs, &state),
+                "{} as {way:?}",
+                circuit.name
+            );
+            texts_agree(&other);
+            let widest = (0..other.gate_count()).map(|gate| other.gate_at(gate).1.len());
+            let limit = match way {
+                Cells::Covers(limit) => limit,
+                Cells::AndOrInvert => 4,
+            };
+            assert!(widest.max().unwrap_or(0) <= limit);
+        }
+    }
+}
+
+#[test]
+fn wide_covers_swallow_positions() {
+    // Two bits to a five- or six-input cover is what look-up tables do to a
+    // ripple adder (common practice, no source): half as many levels as bits.
+    let ripple = Word::new(Kind::Adder, 32, Cell::PropagateXor).generate();
+    let levels = [3, 4, 5, 6].map(|k| mapped(&ripple.circuit, Cells::Covers(k)).depth());
+    assert_eq!(levels[0], 32, "one position a cover of three");
+    assert!(levels[2] <= 17, "{levels:?}");
+    assert!(levels[3] <= levels[2] && levels[2] <= levels[1] && levels[1] <= levels[0]);
 }

@@ -95,7 +95,7 @@ fn every_estimate_in_hostile_surroundings_is_what_is_built() {
             &text[ports..end]
         );
         let netlist = parse("surrounded.blif", text.as_bytes());
-        for model in DelayModel::ALL {
+        for model in exact_models() {
             let request = request(model, NewGates::SingleOperator, 3);
             compared += compare_all(&netlist, request, &format!("seed {seed}"));
         }
@@ -108,7 +108,7 @@ fn every_estimate_on_the_fixtures_is_what_is_built() {
     let mut compared = 0;
     for (name, bytes) in generators::gauge::files() {
         let netlist = parse(name, &bytes);
-        for model in DelayModel::ALL {
+        for model in exact_models() {
             compared += compare_all(&netlist, Request::new(model), name);
         }
     }

@@ -1,10 +1,16 @@
 //! Assumptions into the record: what was asserted, why, and what came of it.
 
-use super::record::AssumedRecord;
-use super::words::depth_in;
+use super::record::{AssumedRecord, RecommendedSet};
+use super::words::{counted, depth_in, listed};
 use crate::netlist::assume::{Assumed, Cycles, Item, Paths, Tied};
+use crate::netlist::carry_cell::{CarryCell, PinPair};
 use crate::netlist::{Assumptions, Netlist, Pattern, Topology, histogram};
 use crate::timing::{DelayModel, End, EndClass, NEVER, PathKind, StartClass, Time, Timing};
+
+/// Ties told of one recommendation.
+const TIES: usize = 4;
+/// Delays told of one carry cell.
+const PAIRS: usize = 4;
 
 /// Assumptions to audit under.
 #[derive(Clone, PartialEq, Eq, Debug)]
@@ -89,6 +95,11 @@ pub fn unused(assumptions: &Assumptions, read: &Netlist, timing: &Timing) -> Vec
         let ties = assumptions.tied.iter().zip(used).filter(|(_, used)| !used);
         unused.extend(ties.map(|(each, _)| tie_words(each)));
     }
+    for (i, each) in assumptions.carry_cells.iter().enumerate() {
+        if read.declared().is_none_or(|own| own.carry_cells_of(i) == 0) {
+            unused.push(format!("{} is a carry cell", each.cell.text()));
+        }
+    }
     for (i, each) in assumptions.cycles.iter().enumerate() {
         if !timing.relaxed.iter().any(|r| r.entry as usize == i) {
             unused.push(cycles_words(each));
@@ -138,6 +149,14 @@ pub fn records(
                 format!("nothing through {} is a path", through.text()),
                 places(&[Item::NotThrough(i)]),
             ),
+            Paths::Part { from, through, to } => (
+                format!(
+                    "nothing {} is a path where it passes {}",
+                    between(from.as_ref(), to.as_ref()),
+                    through.text()
+                ),
+                places(&[Item::NotFrom(i), Item::NotThrough(i), Item::NotTo(i)]),
+            ),
             Paths::Between { from, to } => (
                 format!("nothing {} is a path", between(from.as_ref(), to.as_ref())),
                 places(&[Item::NotFrom(i), Item::NotTo(i)]),
@@ -180,7 +199,53 @@ pub fn records(
         });
         add(text, &each.why, places(&[Item::Required(i)]), effect);
     }
+    for (i, each) in assumptions.box_delay.iter().enumerate() {
+        let text = format!(
+            "{} takes {} from {} to {}",
+            each.name.text(),
+            depth_in(Time::whole(each.delay.into()), unit),
+            each.from.text(),
+            each.to.text()
+        );
+        add(text, &each.why, places(&[Item::BoxName(i)]), None);
+    }
+    for (i, each) in assumptions.carry_cells.iter().enumerate() {
+        let declared = under.netlist.declared();
+        let cells = declared.map_or(0, |declared| declared.carry_cells_of(i)) as u64;
+        add(carry_cell_words(each), &each.why, cells, None);
+    }
     records
+}
+
+/// Says of a recommendation that it rests on the ties: with other values of those
+/// nets the rebuilt netlist would do something else.
+pub fn hold_under_ties(assumptions: &Assumptions, set: &mut RecommendedSet) {
+    if assumptions.tied.is_empty() || set.proposals.is_empty() {
+        return;
+    }
+    let mut ties: Vec<String> = assumptions.tied.iter().take(TIES).map(tie_words).collect();
+    if let Some(more @ 1..) = assumptions.tied.len().checked_sub(TIES) {
+        ties.push(counted(more as u64, "more tie", "more ties"));
+    }
+    let ties = listed(&ties);
+    let said = format!(
+        " The chain was proven, and the rebuild does the same, only while {ties}, as assumed."
+    );
+    set.sentence.push_str(&said);
+}
+
+/// A carry cell and its delays, a few of them when they are many.
+fn carry_cell_words(each: &CarryCell) -> String {
+    let pair = |pair: &PinPair| {
+        let (from, to) = (pair.from.text(), pair.to.text());
+        format!("{from} to {to} in {}", pair.delay)
+    };
+    let shown = each.delays.iter().take(PAIRS).map(pair);
+    let mut words: Vec<String> = shown.collect();
+    if let Some(more @ 1..) = each.delays.len().checked_sub(PAIRS) {
+        words.push(counted(more as u64, "more pair", "more pairs"));
+    }
+    format!("{} is a carry cell: {}", each.cell.text(), listed(&words))
 }
 
 /// The share of one cycle, in ticks, rounded up.

@@ -11,7 +11,7 @@ use super::record::{BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, P
 use crate::chain::{BuiltAs, CarryForm, Chain, Kind};
 use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
 use crate::plan::ChainPlan;
-use crate::timing::{Time, Timing};
+use crate::timing::{Spares, Time, Timing};
 use rustc_hash::{FxHashMap, FxHashSet};
 use sha2::{Digest, Sha256};
 use std::cmp::Reverse;
@@ -46,6 +46,7 @@ pub struct Sources<'a> {
     netlist: &'a Netlist,
     topology: &'a Topology,
     timing: &'a Timing,
+    spares: &'a Spares<'a>,
     cones: &'a Cones,
     readers: Vec<u32>,
     /// Output ports and register inputs that show a net, by net.
@@ -62,6 +63,7 @@ impl<'a> Sources<'a> {
         timing: &'a Timing,
         cones: &'a Cones,
         chains: &[Chain],
+        spares: &'a Spares<'a>,
     ) -> Self {
         let all = || chains.iter().flat_map(|chain| &chain.positions);
         let results: FxHashSet<NetId> = all()
@@ -105,6 +107,7 @@ impl<'a> Sources<'a> {
             netlist,
             topology,
             timing,
+            spares,
             cones,
             readers,
             shown_by,
@@ -147,6 +150,11 @@ impl<'a> Sources<'a> {
                 .collect(),
             exercised: None,
         };
+        let results = chain.positions.iter();
+        let spare = results
+            .flat_map(|bits| bits.sums.iter().chain(&bits.carries))
+            .filter_map(|signal| self.spares.at(signal.net))
+            .min_by_key(|spare| (spare.ticks, spare.basis));
         let own: FxHashSet<_> = self.cones.gates[index].iter().copied().collect();
         ChainRecord {
             id: id(index),
@@ -171,7 +179,7 @@ impl<'a> Sources<'a> {
             result: chain.comparison.map(|compared| name(compared.result)),
             relation: (chain.comparison).map(|compared| compared.relation.word().to_owned()),
             signed: chain.comparison.map(|compared| compared.signed),
-            mode: None,
+            mode: chain.mode.map(name),
             feedback: self.feedback(chain, registers),
             duplicates: None,
             built_as: self.built_as(index, chain, &depth),
@@ -179,7 +187,8 @@ impl<'a> Sources<'a> {
             place: self.place(chain),
             depth,
             on_longest_path: self.on_longest_path(chain),
-            slack: plan.slack.map(|slack| self.timing.time(slack.ticks)),
+            slack: spare.map(|spare| self.timing.time(spare.ticks)),
+            slack_against: spare.map(|spare| spare.basis.words().to_owned()),
             not_planned: rebuilds::not_planned(self.timing, plan),
             proposals: rebuilds::proposals(netlist, self.timing, plan),
         }
@@ -221,6 +230,11 @@ impl<'a> Sources<'a> {
                 "ripple",
                 Some("ripple".to_owned()),
                 "every carry is made from the carry just below it",
+            ),
+            BuiltAs::CarryCell => (
+                "carry-cell",
+                None,
+                "its carries run inside cells declared carry cells, with their declared delays",
             ),
             BuiltAs::Mixed => (
                 "mixed",
@@ -304,7 +318,7 @@ impl<'a> Sources<'a> {
                 outputs.push(self.netlist.net_name(register.output));
             }
             let role = match chain.kind {
-                Kind::Adder | Kind::Subtractor => "accumulator",
+                Kind::Adder | Kind::Subtractor | Kind::AdderSubtractor => "accumulator",
                 Kind::Incrementer | Kind::Decrementer => "counter",
                 Kind::Comparator => return None,
             };
@@ -378,7 +392,9 @@ fn operands(netlist: &Netlist, chain: &Chain) -> Vec<Operand> {
     let b = chain.positions.iter().map(|bits| bits.b);
     let mut operands = vec![operand(netlist, &a)];
     match chain.kind {
-        Kind::Adder => operands.push(operand(netlist, &b.collect::<Vec<_>>())),
+        Kind::Adder | Kind::AdderSubtractor => {
+            operands.push(operand(netlist, &b.collect::<Vec<_>>()));
+        }
         // As it is subtracted: what is added is its complement.
         Kind::Subtractor => operands.push(operand(netlist, &b.map(complement).collect::<Vec<_>>())),
         Kind::Comparator => return compared(netlist, chain),

@@ -6,6 +6,7 @@
 
 use super::assumed::{late_ports, per_cycle};
 use super::findings::{self, MANY_READERS, RULES, Rule, WIDE_GATE};
+use super::goals::Standing;
 use super::record::{ChainRecord, Finding, UnprovenRecord};
 use super::verdict::cut_on;
 use super::words::{counted, depth_in, grouped, listed};
@@ -14,7 +15,7 @@ use crate::netlist::Assumptions;
 use crate::netlist::assume::Assumed;
 use crate::netlist::health::{Fault, FaultKind, Health};
 use crate::netlist::{Driver, NetId, Netlist, RegisterId, Topology, Trigger, histogram};
-use crate::timing::{KindTiming, PathStep, Timing};
+use crate::timing::{KindTiming, PathStep, Timing, end_net};
 use std::cmp::Reverse;
 
 /// Places listed of one rule.
@@ -162,9 +163,9 @@ impl<'a> Findings<'a> {
         }
     }
 
-    /// Gates with many inputs and nets with many readers, the worst first.
-    pub fn add_crowds(&mut self) {
-        let netlist = self.netlist;
+    /// Gates with many inputs and nets with many readers of the netlist as read, the
+    /// worst first.
+    pub fn add_crowds(&mut self, netlist: &Netlist) {
         let mut wide: Vec<_> = netlist
             .gates()
             .filter(|&gate| netlist.fan_ins(gate).len() as u64 > WIDE_GATE)
@@ -286,6 +287,32 @@ impl<'a> Findings<'a> {
                 self.add("too-deep", None, 0, message);
             }
         }
+    }
+
+    /// A delay model that does not fit the netlist.
+    pub fn add_misfit(&mut self, misfit: Option<&str>) {
+        if let Some(misfit) = misfit {
+            self.add("delay-model-does-not-fit", None, 0, misfit.to_owned());
+        }
+    }
+
+    /// Ends that miss the target for the block.
+    pub fn add_missed_target(&mut self, standing: &Standing, unit: &str) {
+        let (Some(target), Some((over, end))) = (standing.target, standing.latest_for_target)
+        else {
+            return;
+        };
+        let target = depth_in(target, unit);
+        let (name, over) = (end.describe(self.netlist), depth_in(over.abs(), unit));
+        let message = match standing.late_for_target {
+            1 => format!("{name} is reached {over} after the target of {target}"),
+            n => format!(
+                "{} are reached after the target of {target}, the latest, {name}, {over} after it",
+                counted(n, "end", "ends")
+            ),
+        };
+        let net = end_net(self.netlist, end);
+        self.add("too-deep", net, 0, message);
     }
 
     /// Assumptions that change nothing.

@@ -87,6 +87,19 @@ pub const RULES: &[Rule] = &[
         example: "A 24-bit total whose operands pass a multiplier first.",
     },
     Rule {
+        slug: "delay-model-does-not-fit",
+        severity: Severity::Warning,
+        what: "Depths are told by logical effort, and many gates have functions that no common \
+               cell has.",
+        why: "Logical effort is about static CMOS gates. A look-up table takes the same time \
+              whatever function is in it, so for look-up tables the figures mean nothing.",
+        advice: "Audit look-up tables with --delay unit, or give their delays as a table; map \
+                 covers to cells before asking what they cost in CMOS.",
+        leaves_alone: "Netlists in which fewer than one gate in ten is such a function (no source \
+                       for the share), and every other delay model.",
+        example: ".names a b c d e f y\nwith a dozen rows, in a netlist mapped to six-input tables.",
+    },
+    Rule {
         slug: "gate-too-wide",
         severity: Severity::Note,
         what: "A gate has more than four inputs.",
@@ -172,12 +185,14 @@ pub const RULES: &[Rule] = &[
     Rule {
         slug: "too-deep",
         severity: Severity::Warning,
-        what: "An output is ready later than it was asserted it must be, or paths that may \
-               take several cycles need more of a cycle than any path of one.",
+        what: "An output is ready later than it was asserted it must be, ends of paths are \
+               reached after the target depth that was asked for, or paths that may take \
+               several cycles need more of a cycle than any path of one.",
         why: "Whoever reads the output samples it before it has settled.",
         advice: "Shorten the path to it (the longest path of its kind is a start), or ask \
                  whether the required time is still what is meant.",
-        leaves_alone: "Outputs without a required time in the assumptions.",
+        leaves_alone: "Ends without a required time in the assumptions where no target depth \
+                       was asked for.",
         example: "required: [{ports: \"alarm\", at: 12, why: \"the siren samples early\"}]\n\
                   and `alarm` is ready at 17 gate delays.",
     },

@@ -11,7 +11,7 @@
 use super::carried::{Carried, Role};
 use crate::chain::Chain;
 use crate::netlist::{Bit, Driver, NetId, Netlist, Topology};
-use crate::timing::{NEVER, PinDelays, StartGroup, gate_arrival, start_times};
+use crate::timing::{DelayModel, NEVER, PinDelays, StartGroup, gate_arrival, start_times};
 use fixedbitset::FixedBitSet;
 
 /// The latest operand of each position of one chain, as far as known.
@@ -31,7 +31,7 @@ pub fn arrivals(
     chains: &[Chain],
     carried: &Carried,
 ) -> Vec<i32> {
-    let exclusive_or = if netlist.has_inverted_edges() { 2 } else { 1 };
+    let exclusive_or = exclusive_or(netlist, delays.model());
     let mut by_net = start_times(netlist, topology, delays.model(), Some(group));
     let mut known = FixedBitSet::with_capacity(netlist.net_count());
     for net in netlist.nets() {
@@ -52,7 +52,11 @@ pub fn arrivals(
         if topology.is_cut(output) {
             continue;
         }
-        let mut at = gate_arrival(netlist, delays, &by_net, gate);
+        let barred = netlist.is_barred_on(group.way, output);
+        let mut at = match barred {
+            true => NEVER,
+            false => gate_arrival(netlist, delays, &by_net, gate),
+        };
         for member in carried.of_net(output) {
             let chain = member.chain as usize;
             let position = member.position as usize;
@@ -69,6 +73,15 @@ pub fn arrivals(
         known.insert(output.index());
     }
     by_net
+}
+
+/// The least an exclusive-or costs, one gate or two in series.
+fn exclusive_or(netlist: &Netlist, model: DelayModel) -> i32 {
+    match (model, netlist.has_inverted_edges()) {
+        (_, true) => 2 * model.least_delay(2),
+        (DelayModel::Unit | DelayModel::Pairs, false) => 1,
+        (_, false) => model.least_parity_delay(),
+    }
 }
 
 impl Latest {

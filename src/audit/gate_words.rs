@@ -20,6 +20,14 @@ pub fn driver(netlist: &Netlist, topology: &Topology, net: NetId) -> String {
 /// The word for a gate.
 pub fn gate(netlist: &Netlist, gate: GateId) -> String {
     let function = netlist.function(gate);
+    if let Some(declared) = netlist.declared() {
+        if declared.passage(gate).is_some() {
+            return "through a box".to_owned();
+        }
+        if declared.is_in_carry_cell(gate) {
+            return "carry cell".to_owned();
+        }
+    }
     let word = match function.shape() {
         // On inverted edges every gate is an AND, whatever its table says.
         Shape::Product if netlist.has_inverted_edges() => "AND",

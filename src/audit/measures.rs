@@ -8,9 +8,10 @@ use super::record::{
     Depth, DepthBar, FanIn, FanInBar, FanOut, FanOutBar, PathStep as StepRecord, PortDepth,
 };
 use crate::netlist::{NetId, Netlist, Topology, histogram};
+use crate::timing::effort::FO4;
 use crate::timing::{
-    DelayModel, End, EndClass, KindTiming, NEVER, PathKind, PathStep, StartClass, Time, Timing,
-    end_arrival, ends, longest_free_buffers, start_group, start_time,
+    DelayModel, End, EndClass, KindTiming, NEVER, PathKind, PathStep, StartClass, StartGroup, Time,
+    Timing, end_arrival, ends, longest_free_buffers, start_group, start_time,
 };
 use std::collections::BTreeMap;
 
@@ -91,16 +92,24 @@ pub fn depth(
         longest: timing.time(timing.longest()),
         longest_without_assumptions: None,
         longest_through_transparent: None,
+        late_ends: None,
+        least_to_spare: None,
         unit: model.unit_word().to_owned(),
         longest_free_buffers: match model {
             DelayModel::Unit => Some(model.time(longest_free_buffers(netlist, topology))),
-            DelayModel::Pairs => None,
+            DelayModel::Pairs | DelayModel::LogicalEffort => None,
         },
+        longest_in_fo4: in_fo4(model, timing.longest()),
         histogram: bars.into_iter().map(bar).collect(),
         longest_path,
         longest_path_left_out,
         ports: ports(netlist, topology, timing),
     }
+}
+
+/// Ticks of logical effort in inverters that drive four like them, each 5 τ.
+fn in_fo4(model: DelayModel, ticks: i32) -> Option<Time> {
+    (model == DelayModel::LogicalEffort).then(|| model.time(ticks / FO4 as i32))
 }
 
 fn path_record(
@@ -188,7 +197,14 @@ fn ports(netlist: &Netlist, topology: &Topology, timing: &Timing) -> Vec<PortDep
     let from = |net: NetId, class: EndClass| {
         let start = start_group(netlist, topology, net)?;
         let tails = timing.by_end().filter(|&(end, _)| {
-            end.class == class && timing.kind(PathKind { start, end }).is_some()
+            let kind = PathKind {
+                start: StartGroup {
+                    way: end.way,
+                    ..start
+                },
+                end,
+            };
+            end.class == class && timing.kind(kind).is_some()
         });
         let tail = tails.map(|(_, by_net)| by_net[net.index()]).max();
         let tail = tail.filter(|&tail| tail != NEVER)?;
@@ -200,7 +216,7 @@ fn ports(netlist: &Netlist, topology: &Topology, timing: &Timing) -> Vec<PortDep
         let end = End::Output(output as u32);
         let group = end.group(netlist)?;
         let starts = timing.by_start().filter(|&(start, _)| {
-            start.class == class && timing.kind(PathKind { start, end: group }).is_some()
+            start.class == class && timing.kind(PathKind::from_to(start, group)).is_some()
         });
         let at = starts
             .map(|(_, by_net)| end_arrival(netlist, &timing.delays, by_net, end))

@@ -12,7 +12,9 @@ mod faults;
 pub mod findings;
 mod free_carry;
 mod gate_words;
+mod goals;
 mod measures;
+mod model_fit;
 mod names;
 mod rebuilds;
 pub mod record;
@@ -26,11 +28,12 @@ use crate::netlist::assume::Misfit;
 use crate::netlist::health::Health;
 use crate::netlist::{Netlist, Topology};
 use crate::plan::{self, ChainPlan, Ground, Request, Settings, SettingsError};
-use crate::timing::{DelayModel, Timing};
+use crate::timing::{DelayModel, Spares, Timing};
 pub use assumed::Asserting;
 use assumed::Without;
 use carried::{Carried, Cones};
 use faults::Findings;
+use goals::Standing;
 use measures::ChainMap;
 use record::{
     Audit, DelayModelFacts, Depth, NetlistFacts, SCHEMA, Seen, Settings as SettingsRecord, Tool,
@@ -64,6 +67,9 @@ pub struct Options {
     pub request: Request,
     /// What to look for, and how hard.
     pub chains: chain::Options,
+    /// What every path end without a required time of its own is held against, in
+    /// whole units of the delay model.
+    pub target_depth: Option<u64>,
 }
 
 impl Default for Options {
@@ -71,6 +77,7 @@ impl Default for Options {
         Self {
             request: Request::new(DelayModel::Unit),
             chains: chain::Options::default(),
+            target_depth: None,
         }
     }
 }
@@ -139,14 +146,23 @@ pub fn audit_under(
 
     let carried = Carried::of(netlist, &chains);
     let cones = Cones::of(netlist, &topology, &chains);
-    let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains);
+    let asserted = applied
+        .as_ref()
+        .map(|(asserting, under)| (asserting.assumptions, under));
+    let asked = goals::asked(asserted, options.target_depth, model);
+    let spares = Spares::of(netlist, &topology, &timing, &asked);
+    let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains, &spares);
     let mut records = sources.records(&chains, &plans);
     // Another model's timing is as large as this one's: one at a time.
     drop(sources);
+    drop(spares);
     drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
     let timing = Timing::of(netlist, &topology, model);
-    let recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
+    let mut recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
+    if let Some((asserting, _)) = &applied {
+        assumed::hold_under_ties(asserting.assumptions, &mut recommended_set);
+    }
     let unproven: Vec<UnprovenRecord> = unproven
         .iter()
         .map(|candidate| unproven_record(netlist, candidate))
@@ -162,6 +178,7 @@ pub fn audit_under(
         ids: &ids,
     };
     let open = Open::of(netlist, model);
+    let standing = Standing::of(netlist, &topology, &timing, &asked);
     let verdict = Evidence {
         netlist,
         topology: &topology,
@@ -175,6 +192,7 @@ pub fn audit_under(
             timing: &timing,
             undecided: unproven.len(),
             open: open.as_ref(),
+            path: &path,
             unit,
         },
         min_bits: options.chains.min_bits,
@@ -182,6 +200,7 @@ pub fn audit_under(
         set: &recommended_set,
         unit,
         without: without.as_ref(),
+        goals: standing.as_ref(),
     }
     .verdict();
     let assumed = applied
@@ -195,6 +214,9 @@ pub fn audit_under(
         findings.add_late(asserting.assumptions, under, &timing, unit);
         findings.add_unused(&assumed::unused(asserting.assumptions, read, &timing));
     }
+    if let Some(standing) = &standing {
+        findings.add_missed_target(standing, unit);
+    }
     findings.add_health(&health);
     findings.add_boxes();
     if let Some(open) = &open {
@@ -203,7 +225,9 @@ pub fn audit_under(
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
     findings.add_unproven(&unproven);
-    findings.add_crowds();
+    let misfit = model_fit::misfit(read, model);
+    findings.add_misfit(misfit.as_deref());
+    findings.add_crowds(read);
     let (findings, findings_left_out) = findings.sorted();
 
     Ok(Audit {
@@ -212,13 +236,13 @@ pub fn audit_under(
             name: env!("CARGO_PKG_NAME").to_owned(),
             version: env!("CARGO_PKG_VERSION").to_owned(),
         },
-        netlist: netlist_facts(netlist, origin),
+        netlist: netlist_facts(read, origin),
         settings: SettingsRecord {
             assumptions_sha256: asserting.map(|asserting| asserting.sha256.clone()),
-            ..settings_record(&settings, options)
+            ..settings_record(&settings, options, misfit)
         },
         seen: Seen {
-            gates_with_function: netlist.gate_count() as u64,
+            gates_with_function: read.gate_count() as u64,
             gates_without_function: netlist.boxes().len() as u64,
             nets_cut: topology.cut.count_ones(..) as u64,
             chains_proven: records.len() as u64,
@@ -227,6 +251,10 @@ pub fn audit_under(
         verdict,
         depth: Depth {
             longest_through_transparent: open.as_ref().map(|open| open.longest),
+            late_ends: standing.as_ref().map(|standing| standing.late),
+            least_to_spare: standing
+                .as_ref()
+                .and_then(|standing| standing.least.map(|(spare, ..)| spare)),
             longest_without_assumptions: without.as_ref().map(|without| without.longest),
             ..measures::depth(netlist, &topology, &timing, model, longest_path, &map())
         },
@@ -274,11 +302,16 @@ fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {
     }
 }
 
-fn settings_record(settings: &Settings, options: &Options) -> SettingsRecord {
+fn settings_record(
+    settings: &Settings,
+    options: &Options,
+    misfit: Option<String>,
+) -> SettingsRecord {
     SettingsRecord {
         delay_model: DelayModelFacts {
             name: settings.model.name().to_owned(),
             unit: settings.model.unit_word().to_owned(),
+            misfit,
         },
         new_gates: settings.new_gates.word().to_owned(),
         new_gates_reason: settings.new_gates_reason.clone(),
@@ -287,6 +320,7 @@ fn settings_record(settings: &Settings, options: &Options) -> SettingsRecord {
         min_bits: options.chains.min_bits as u64,
         effort: options.chains.effort,
         patterns_seed: options.chains.seed,
+        target_depth: options.target_depth,
         assumptions_sha256: None,
     }
 }

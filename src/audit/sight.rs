@@ -8,8 +8,8 @@
 //! pins are certain.
 
 use super::words::{counted, depth_in, grouped, listed};
-use crate::netlist::{Driver, NetId, Netlist, RegisterId, Topology};
-use crate::timing::{DelayModel, NEVER, Time, Timing};
+use crate::netlist::{BlackBox, BoxId, Driver, NetId, Netlist, RegisterId, Topology};
+use crate::timing::{DelayModel, NEVER, PathStep, Time, Timing};
 use std::cmp::Reverse;
 use std::collections::BTreeMap;
 
@@ -48,6 +48,8 @@ pub struct Sight<'a> {
     pub undecided: usize,
     /// The block with its transparent registers open.
     pub open: Option<&'a Open>,
+    /// The longest path.
+    pub path: &'a [PathStep],
     /// Unit of depths.
     pub unit: &'a str,
 }
@@ -58,6 +60,7 @@ impl Sight<'_> {
         let mut parts = Vec::new();
         parts.extend(self.cut());
         parts.extend(self.boxes());
+        parts.extend(self.through_a_box());
         parts.extend(self.transparent());
         if !carry && self.undecided > 0 {
             parts.push(match self.undecided {
@@ -73,7 +76,7 @@ impl Sight<'_> {
 
     /// Said when there is nothing but instances without a function.
     pub fn blind(&self) -> Option<String> {
-        let boxes = self.netlist.boxes();
+        let boxes = self.unsettled();
         if self.netlist.gate_count() > 0 || boxes.is_empty() {
             return None;
         }
@@ -85,7 +88,7 @@ impl Sight<'_> {
         Some(format!(
             "Unknown, because {which} {has} known function ({}): no path could be followed and \
              no chain looked for.",
-            self.models()
+            self.models(&boxes)
         ))
     }
 
@@ -132,16 +135,44 @@ impl Sight<'_> {
         parts
     }
 
+    /// Instances of which the user has not said how long every path through takes.
+    fn unsettled(&self) -> Vec<&BlackBox> {
+        let settled = |id| {
+            let declared = self.netlist.declared();
+            declared.is_some_and(|declared| declared.settles(id))
+        };
+        let boxes = self.netlist.boxes().iter().enumerate();
+        boxes
+            .filter(|&(i, _)| !settled(BoxId::new(i)))
+            .map(|(_, each)| each)
+            .collect()
+    }
+
     fn boxes(&self) -> Option<String> {
-        let count = self.netlist.boxes().len() as u64;
-        let instances = match count {
+        let boxes = self.unsettled();
+        let instances = match boxes.len() as u64 {
             0 => return None,
             1 => "an instance".to_owned(),
             n => format!("{} instances", grouped(n)),
         };
         Some(format!(
             "paths and chains may run through {instances} without a known function ({})",
-            self.models()
+            self.models(&boxes)
+        ))
+    }
+
+    /// A longest path inside a box whose delay is asserted: what takes the time in
+    /// there is not known.
+    fn through_a_box(&self) -> Option<String> {
+        let declared = self.netlist.declared()?;
+        let id = self
+            .path
+            .iter()
+            .find_map(|step| declared.passage(step.gate?))?;
+        let model = self.netlist.boxes()[id.index()].model;
+        Some(format!(
+            "the longest path runs through {}, of which only the delay is known",
+            self.netlist.names().text(model)
         ))
     }
 
@@ -177,9 +208,9 @@ impl Sight<'_> {
     }
 
     /// The models without a function, the most frequent first.
-    fn models(&self) -> String {
+    fn models(&self, boxes: &[&BlackBox]) -> String {
         let mut counts: BTreeMap<_, u64> = BTreeMap::new();
-        for each in self.netlist.boxes() {
+        for each in boxes {
             *counts.entry(each.model).or_insert(0) += 1;
         }
         let mut models: Vec<_> = counts.into_iter().collect();

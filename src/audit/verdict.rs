@@ -8,6 +8,7 @@
 
 use super::assumed::Without;
 use super::free_carry;
+use super::goals::Standing;
 use super::measures::ChainMap;
 use super::rebuilds::scheme_phrase;
 use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
@@ -47,6 +48,8 @@ pub struct Evidence<'a> {
     pub unit: &'a str,
     /// The figures without assumptions, when there are some.
     pub without: Option<&'a Without>,
+    /// How the ends stand against what is asked of them, when something is.
+    pub goals: Option<&'a Standing>,
 }
 
 impl Evidence<'_> {
@@ -78,6 +81,9 @@ impl Evidence<'_> {
         };
         if let Some(blind) = self.sight.blind() {
             sentence = blind;
+        }
+        if let Some(goals) = self.goals {
+            sentence.push_str(&goals.sentence(self.unit));
         }
         if let Some(without) = self.without {
             sentence.push_str(&self.without_sentence(without, longest));
@@ -115,7 +121,7 @@ impl Evidence<'_> {
                 self.map.carried,
             );
             for (end, group) in grouped_ends(netlist, topology) {
-                let kind = PathKind { start, end: group };
+                let kind = PathKind::from_to(start, group);
                 if timing.kind(kind).is_some() {
                     let at = end_arrival(netlist, &timing.delays, &by_net, end);
                     let deepest = free.entry(kind.classes()).or_insert(NEVER);
@@ -125,9 +131,11 @@ impl Evidence<'_> {
         }
         let mut kinds = timing.kinds_by_class(netlist, topology);
         kinds.sort_by_key(|kind| Reverse(kind.longest));
+        let near = timing.near(netlist, topology, &kinds);
         kinds
             .iter()
-            .map(|of_class| {
+            .zip(near)
+            .map(|(of_class, near)| {
                 let path = timing.path_of(netlist, topology, of_class);
                 let levels = self.levels_by_chain(&path);
                 let longest = timing.time(of_class.longest);
@@ -155,6 +163,9 @@ impl Evidence<'_> {
                     depth_if_carry_were_free: free,
                     ends_at_longest: of_class.ends_at_longest as u64,
                     next_below: of_class.next_below.map(|at| timing.time(at)),
+                    paths_at_longest: near.paths_at_longest,
+                    ends_within_one: near.ends_within_one as u64,
+                    paths_within_one: near.paths_within_one,
                 }
             })
             .collect()

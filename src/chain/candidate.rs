@@ -99,7 +99,7 @@ impl Context<'_> {
         second: EntryId,
         third: Option<EntryId>,
         all_single: bool,
-    ) -> (u32, bool, u32) {
+    ) -> (bool, u32, bool, u32) {
         let operands = |entry: EntryId| {
             let i = entry as usize;
             [self.entries.a[i], self.entries.b[i]]
@@ -126,7 +126,10 @@ impl Context<'_> {
         } else {
             constant
         };
-        (bus, natural, spaced)
+        // Operands combined with a mode inside covers are on no net: all or none.
+        let unnamed = |entry| operands(entry).any(|node| self.labels.net(node).is_none());
+        let alike = unnamed(entry) == unnamed(second);
+        (alike, bus, natural, spaced)
     }
 
     /// Whether the entry's sum is stored in the register that holds its operand

@@ -4,12 +4,13 @@
 //! A net that no gate drives, and a copy of an operand, is no result of a chain.
 
 use super::built_as::built_as;
-use super::kinds::{order_operands, read};
+use super::carry_cells::in_carry_cells;
+use super::kinds::{mode_of, order_operands, read};
 use super::label::Labels;
-use super::model::{CarryForm, Chain, Kind, Position};
+use super::model::{BuiltAs, CarryForm, Chain, Kind, Position};
 use super::verify::Theorem;
 use crate::netlist::{Bit, Driver, NetId, Netlist, Signal};
-use crate::subject::{Literal, NodeId, Subject};
+use crate::subject::{Literal, NodeId, NodeKind, Subject};
 use fixedbitset::FixedBitSet;
 use rustc_hash::FxHashSet;
 
@@ -20,6 +21,15 @@ pub(super) fn bit(labels: &Labels<'_>, literal: Literal) -> Bit {
         return Bit::Constant(literal == Literal::TRUE);
     }
     Bit::Signal(labels.signal(literal).expect("entries are made of nets"))
+}
+
+/// As [`bit`], for a literal that may be an exclusive or on no net: then the
+/// operand in it.
+pub(super) fn nearest_bit(labels: &Labels<'_>, subject: &Subject, literal: Literal) -> Bit {
+    match (labels.net(literal.node()), subject.kind(literal.node())) {
+        (None, NodeKind::Xor(x, y)) => bit(labels, x.max(y).literal()),
+        _ => bit(labels, literal),
+    }
 }
 
 /// The nets of some nodes, sorted by node.
@@ -67,7 +77,7 @@ pub(super) fn collect(
     // Each theorem is given up as its chain is made: both at once are large.
     let mut chains: Vec<Chain> = theorems
         .into_iter()
-        .map(|theorem| {
+        .filter_map(|theorem| {
             let (kind, mut theorem) = read(subject, labels, theorem);
             if kind != Kind::Subtractor {
                 order_operands(labels, &mut theorem);
@@ -98,7 +108,9 @@ struct Collector<'a> {
 }
 
 impl Collector<'_> {
-    fn chain(&self, kind: Kind, theorem: &Theorem) -> Chain {
+    /// `None` for a theorem about operands that no net carries and no mode
+    /// explains.
+    fn chain(&self, kind: Kind, theorem: &Theorem) -> Option<Chain> {
         let operands: FxHashSet<NodeId> = theorem
             .bits
             .iter()
@@ -120,11 +132,28 @@ impl Collector<'_> {
             signals.shrink_to_fit();
             signals
         };
+        let mode = match kind {
+            Kind::Adder | Kind::Subtractor => mode_of(self.subject, self.labels, theorem),
+            _ => None,
+        };
+        let (kind, carry_in, addends): (_, _, Vec<_>) = match &mode {
+            Some(moded) => (Kind::AdderSubtractor, moded.carry_in, moded.addends.clone()),
+            None => {
+                let addends = theorem.bits.iter().map(|bits| (bits.a, bits.b));
+                (kind, theorem.carry_in, addends.collect())
+            }
+        };
+        let mode = mode.map(|moded| moded.mode);
+        let named = |l: Literal| l.node() == NodeId::FALSE || self.labels.net(l.node()).is_some();
+        if !addends.iter().all(|&(a, b)| named(a) && named(b)) {
+            return None;
+        }
         let positions: Vec<Position> = theorem
             .bits
             .iter()
+            .zip(addends)
             .zip(theorem.sums.iter().zip(&theorem.carries))
-            .map(|(bits, (sums, carries))| {
+            .map(|((bits, (a, b)), (sums, carries))| {
                 let mut sums = signals(sums);
                 if sums.is_empty() {
                     sums.extend(self.labels.signal(bits.sum));
@@ -135,8 +164,8 @@ impl Collector<'_> {
                     .filter(|literal| !operands.contains(&literal.node()))
                     .collect();
                 Position {
-                    a: bit(self.labels, bits.a),
-                    b: bit(self.labels, bits.b),
+                    a: bit(self.labels, a),
+                    b: bit(self.labels, b),
                     sums,
                     carries: signals(&outside),
                 }
@@ -151,14 +180,19 @@ impl Collector<'_> {
             }
             _ => CarryForm::Carry,
         };
-        Chain {
+        Some(Chain {
             kind,
-            positions,
-            carry_in: bit(self.labels, theorem.carry_in),
+            carry_in: bit(self.labels, carry_in),
             has_carry_out,
             carry_form,
-            built_as: built_as(self.subject, theorem),
+            built_as: if in_carry_cells(self.netlist, &positions) {
+                BuiltAs::CarryCell
+            } else {
+                built_as(self.subject, theorem)
+            },
+            mode: mode.and_then(|mode| self.labels.signal(mode)),
+            positions,
             comparison: None,
-        }
+        })
     }
 }

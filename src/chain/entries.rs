@@ -8,7 +8,8 @@
 //! `majority(¬a, b, c) = majority(a, b, c) ⊕ b ⊕ c`, and so on.
 
 use crate::subject::{
-    Hash, LinearSet, NodeId, Patterns, Running, Signatures, Simulation, Subject, linear_sets,
+    Hash, Linear, LinearSet, NodeId, NodeKind, Patterns, Running, Signatures, Simulation, Subject,
+    linear_sets,
 };
 use fixedbitset::FixedBitSet;
 
@@ -33,6 +34,18 @@ impl Variant {
     }
 }
 
+/// Leaves of one sum that are paired with each other, and free ones of them
+/// that are always among them.
+const LEAVES: usize = 6;
+const FREE_LEAVES: usize = 4;
+
+/// The pairs of the first sum.
+fn own_pairs(pairs: &[Linear]) -> Option<&[Linear]> {
+    let first = pairs.first()?;
+    let end = pairs.iter().position(|pair| pair.sum != first.sum);
+    Some(&pairs[..end.unwrap_or(pairs.len())])
+}
+
 /// All entries; those of one sum are neighbours.
 pub(super) struct Entries {
     pub(super) sum: Vec<NodeId>,
@@ -49,6 +62,8 @@ impl Entries {
         signatures: &Signatures,
         patterns: &Patterns,
         on_net: &FixedBitSet,
+        pairs: &[Linear],
+        moded: &[(NodeId, NodeId, NodeId)],
     ) -> Self {
         let mut entries = Self {
             sum: Vec::new(),
@@ -56,11 +71,22 @@ impl Entries {
             b: Vec::new(),
             majority: Vec::new(),
         };
+        let mut rest = pairs;
         linear_sets(subject, |set| {
             if on_net.contains(set.sum.index()) {
+                while let Some(own) = own_pairs(rest)
+                    && own[0].sum < set.sum
+                {
+                    entries.nominate_flips(subject, signatures, own, pairs, moded);
+                    rest = &rest[own.len()..];
+                }
                 entries.nominate(set, on_net);
             }
         });
+        while let Some(own) = own_pairs(rest) {
+            entries.nominate_flips(subject, signatures, own, pairs, moded);
+            rest = &rest[own.len()..];
+        }
         entries.sum.shrink_to_fit();
         entries.a.shrink_to_fit();
         entries.b.shrink_to_fit();
@@ -68,26 +94,73 @@ impl Entries {
         entries
     }
 
-    fn nominate(&mut self, set: LinearSet, on_net: &FixedBitSet) {
-        let mut offer = |a: NodeId, b: NodeId| {
-            if a == NodeId::FALSE && b == NodeId::FALSE {
-                return;
-            }
-            if !on_net.contains(a.index()) || !on_net.contains(b.index()) {
-                return;
-            }
-            let (a, b) = if a == NodeId::FALSE { (b, a) } else { (a, b) };
-            for i in (0..self.sum.len())
-                .rev()
-                .take_while(|&i| self.sum[i] == set.sum)
-            {
-                if self.a[i] == a && self.b[i] == b {
-                    return;
+    /// Adds an entry, unless it is there among those of the same sum, which are
+    /// the last ones.
+    fn offer(&mut self, sum: NodeId, a: NodeId, b: NodeId) {
+        let (a, b) = if a == NodeId::FALSE { (b, a) } else { (a, b) };
+        let own = (0..self.sum.len()).rev();
+        let mut own = own.take_while(|&i| self.sum[i] == sum);
+        if a == NodeId::FALSE || own.any(|i| self.a[i] == a && self.b[i] == b) {
+            return;
+        }
+        self.sum.push(sum);
+        self.a.push(a);
+        self.b.push(b);
+    }
+
+    /// Nominates from the leaves in which one sum was found to be linear.
+    fn nominate_flips(
+        &mut self,
+        subject: &Subject,
+        signatures: &Signatures,
+        own: &[Linear],
+        all: &[Linear],
+        moded: &[(NodeId, NodeId, NodeId)],
+    ) {
+        let sum = own[0].sum;
+        let is_free = |leaf: NodeId| matches!(subject.kind(leaf), NodeKind::Free(_));
+        let free = own.iter().filter(|pair| is_free(pair.leaf)).count();
+        // A node linear in many inputs is a parity; its near leaves may matter.
+        let mut leaves: Vec<NodeId> = own
+            .iter()
+            .rev()
+            .map(|pair| pair.leaf)
+            .filter(|&leaf| free <= FREE_LEAVES || !is_free(leaf))
+            .take(LEAVES)
+            .collect();
+        if free <= FREE_LEAVES {
+            leaves.extend(own.iter().map(|pair| pair.leaf).filter(|&l| is_free(l)));
+            leaves.sort_unstable();
+            leaves.dedup();
+        }
+        let depends = |sum, leaf| all.binary_search(&Linear { sum, leaf }).is_ok();
+        let hash = |node| signatures.hash(node);
+        for (i, &x) in leaves.iter().enumerate() {
+            for &y in &leaves[i + 1..] {
+                // Both are to enter the sum, not one through the other.
+                let carry = hash(sum) ^ hash(x) ^ hash(y);
+                if carry != 0 && !depends(x, y) && !depends(y, x) {
+                    self.offer(sum, x, y);
                 }
             }
-            self.sum.push(set.sum);
-            self.a.push(a);
-            self.b.push(b);
+        }
+        let start = moded.partition_point(|&(other, _, _)| other < sum);
+        let moded = moded[start..].iter().take_while(|each| each.0 == sum);
+        for &(_, plain, other) in moded {
+            self.offer(sum, plain, other);
+        }
+        if leaves.len() <= 2 {
+            for &x in leaves.iter().filter(|&&x| is_free(x)) {
+                self.offer(sum, x, NodeId::FALSE);
+            }
+        }
+    }
+
+    fn nominate(&mut self, set: LinearSet, on_net: &FixedBitSet) {
+        let mut offer = |a: NodeId, b: NodeId| {
+            if on_net.contains(a.index()) && on_net.contains(b.index()) {
+                self.offer(set.sum, a, b);
+            }
         };
         match *set.leaves() {
             [x] => offer(x, NodeId::FALSE),

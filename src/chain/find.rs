@@ -3,16 +3,19 @@
 
 use super::candidate::{Bits, Context, Lookup};
 use super::carry_only::{self, Ground};
-use super::collect::{bit, collect, sort};
+use super::collect::{bit, collect, nearest_bit, sort};
 use super::entries::{Entries, EntryId};
 use super::label::{BusPreference, Labels};
 use super::links::{Links, paths};
 use super::model::Chain;
+use super::modes::{add as add_moded, moded};
 use super::trim::{Ends, independent_positions, live_bits};
 use super::verify::{Theorem, verify};
 use crate::netlist::{Bit, Netlist, Topology};
 use crate::prove::Effort;
-use crate::subject::{NodeId, Patterns, Signatures, Subject, rare_values};
+use crate::subject::{
+    FLIP_WORDS, NodeId, Patterns, Signatures, Simulation, Subject, Words, linear_pairs, rare_values,
+};
 use fixedbitset::FixedBitSet;
 use rustc_hash::FxHashSet;
 
@@ -72,10 +75,16 @@ pub struct Found {
 
 /// Finds and proves the carry chains of a netlist.
 pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
-    let subject = Subject::of(netlist, topology);
-    let (patterns, signatures) = sign(&subject, options.seed);
+    let mut subject = Subject::of(netlist, topology);
+    let (patterns, mut signatures) = sign(&subject, options.seed);
     let on_net = on_net(netlist, &subject);
-    let entries = Entries::of(&subject, &signatures, &patterns, &on_net);
+    let pairs = linear_pairs(&subject, &chosen_words(&subject, &patterns), &on_net);
+    let moded = moded(netlist, &subject, &pairs);
+    let moded = add_moded(&mut subject, &moded);
+    signatures.extend(&subject);
+    let subject = subject;
+    let entries = Entries::of(&subject, &signatures, &patterns, &on_net, &pairs, &moded);
+    drop((pairs, moded));
     let links = Links::of(&entries, &signatures);
     let labels = Labels::of(netlist, &subject);
     let context = Context {
@@ -157,6 +166,21 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
         unproven,
         recurrences_not_listed: carry_only.not_listed,
     }
+}
+
+/// The values that flips are looked for under: the first word, which is uniform,
+/// and the last, which is directed where some value is rare.
+fn chosen_words(subject: &Subject, patterns: &Patterns) -> Vec<Words> {
+    let mut values = vec![[0; FLIP_WORDS]; subject.node_count()];
+    let last = patterns.words() - 1;
+    for (slot, word) in [0, last].into_iter().enumerate() {
+        let mut simulation = Simulation::at(subject, patterns, word);
+        let words = simulation.advance().unwrap_or_default();
+        for (value, &word) in values.iter_mut().zip(words) {
+            value[slot] = word;
+        }
+    }
+    values
 }
 
 /// The nodes that some net carries. What lies inside one cover is no operand,
@@ -246,7 +270,7 @@ impl Search<'_> {
         }
         open.extend(pending);
         if !open.is_empty() && whole >= self.options.min_bits {
-            let bit = |literal| bit(context.labels, literal);
+            let bit = |literal| nearest_bit(context.labels, subject, literal);
             self.unproven.push(Unproven {
                 bits: open.len(),
                 operands: open.iter().map(|b| (bit(b.a), bit(b.b))).collect(),

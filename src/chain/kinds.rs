@@ -195,3 +195,87 @@ pub(super) fn order_operands(labels: &Labels<'_>, theorem: &mut Theorem) {
         }
     }
 }
+
+/// Positions whose second operand must be combined with one signal before that
+/// signal counts as the mode of an adder-subtractor.
+const MODE_POSITIONS: usize = 2;
+
+/// An adder-subtractor's operands: `b` stands before its exclusive or with the
+/// mode.
+pub(super) struct Moded {
+    pub(super) mode: Literal,
+    pub(super) carry_in: Literal,
+    /// `a` and the bare `b` of each position.
+    pub(super) addends: Vec<(Literal, Literal)>,
+}
+
+/// The mode of a chain whose second operand is `b ⊕ mode` at every position. A
+/// position without `b` reads the mode itself.
+pub(super) fn mode_of(subject: &Subject, labels: &Labels<'_>, theorem: &Theorem) -> Option<Moded> {
+    let parts = |literal: Literal| match subject.kind(literal.node()) {
+        NodeKind::Xor(x, y) => Some([x, y]),
+        _ => None,
+    };
+    let mut counts: Vec<(NodeId, usize)> = Vec::new();
+    for bits in &theorem.bits {
+        for node in [bits.a, bits.b].into_iter().filter_map(parts).flatten() {
+            match counts.iter().position(|&(known, _)| known == node) {
+                Some(at) => counts[at].1 += 1,
+                None if counts.len() < MOST_MODES => counts.push((node, 1)),
+                None => {}
+            }
+        }
+    }
+    let (mode, count) = counts.into_iter().max_by_key(|&(_, count)| count)?;
+    if count < MODE_POSITIONS || labels.net(mode).is_none() {
+        return None;
+    }
+    let bare = |literal: Literal| {
+        if literal.node() == mode {
+            return Some(Literal::constant(literal.is_inverted()));
+        }
+        let [x, y] = parts(literal)?;
+        let other = match mode {
+            _ if x == mode => y,
+            _ if y == mode => x,
+            _ => return None,
+        };
+        labels.net(other)?;
+        Some(other.literal().xor(literal.is_inverted()))
+    };
+    // At the low end the mode, which is the carry-in too, may have been taken for
+    // the operand and the operand for the carry-in: the three are alike there.
+    let mut bits = theorem.bits.clone();
+    let mut carry_in = theorem.carry_in;
+    let is_combined = |l: Literal| parts(l).is_some_and(|parts| parts.contains(&mode));
+    if is_combined(carry_in) {
+        let first = &mut bits[0];
+        for operand in [&mut first.a, &mut first.b] {
+            if operand.node() == mode && is_combined(carry_in) {
+                std::mem::swap(operand, &mut carry_in);
+            }
+        }
+    }
+    let operands = bits
+        .iter()
+        .map(|bits| match (bare(bits.a), bare(bits.b)) {
+            (_, Some(b)) => Some((bits.a, b)),
+            (Some(a), None) => Some((bits.b, a)),
+            (None, None) => None,
+        })
+        .collect::<Option<Vec<_>>>()?;
+    // The polarity in which the mode is read: that in which most `b` are plain.
+    let inverted = operands
+        .iter()
+        .filter(|(_, b)| b.node() != NodeId::FALSE && is_fixed(subject, *b) && b.is_inverted());
+    let flip = 2 * inverted.count() > operands.len();
+    let addends = operands.into_iter().map(|(a, b)| (a, b.xor(flip)));
+    Some(Moded {
+        mode: mode.literal().xor(flip),
+        carry_in,
+        addends: addends.collect(),
+    })
+}
+
+/// Signals counted as possible modes of one chain.
+const MOST_MODES: usize = 64;

@@ -58,10 +58,12 @@ impl<'a> Labels<'a> {
 
     fn rank(&self, net: NetId) -> u8 {
         match self.netlist.driver(net) {
-            Driver::Gate(_) if self.shown.contains(&net) => 2,
-            Driver::Gate(_) if self.netlist.local_name(net).is_some() => 1,
-            Driver::Gate(_) => 0,
-            _ => 3,
+            // Another net shows it outside its cell or box.
+            _ if self.netlist.is_inner(net) => 0,
+            Driver::Gate(_) if self.shown.contains(&net) => 3,
+            Driver::Gate(_) if self.netlist.local_name(net).is_some() => 2,
+            Driver::Gate(_) => 1,
+            _ => 4,
         }
     }
 

@@ -11,6 +11,7 @@
 
 mod built_as;
 mod candidate;
+mod carry_cells;
 mod carry_only;
 mod collect;
 mod entries;
@@ -19,6 +20,7 @@ mod kinds;
 mod label;
 mod links;
 mod model;
+mod modes;
 mod trim;
 mod verify;
 

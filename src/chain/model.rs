@@ -13,6 +13,8 @@ pub enum Kind {
     Incrementer,
     /// `a - 1 + carry-in`.
     Decrementer,
+    /// `a + (b ⊕ mode) + carry-in`: adds or subtracts as the mode says.
+    AdderSubtractor,
     /// Compares `a` with `b`; only carries, no sums.
     Comparator,
 }
@@ -25,6 +27,7 @@ impl Kind {
             Self::Subtractor => "subtractor",
             Self::Incrementer => "incrementer",
             Self::Decrementer => "decrementer",
+            Self::AdderSubtractor => "adder-subtractor",
             Self::Comparator => "comparator",
         }
     }
@@ -44,6 +47,8 @@ pub enum CarryForm {
 pub enum BuiltAs {
     /// Every carry is made from the carry just below it.
     Ripple,
+    /// The carries run inside cells declared carry cells.
+    CarryCell,
     /// Anything else.
     Mixed,
 }
@@ -56,7 +61,8 @@ pub enum BuiltAs {
 /// what enters the *addition*: of a subtractor, `b` is the inverted subtrahend;
 /// of an incrementer `b` is constant 0, of a decrementer constant 1; of a
 /// comparator `b` is the complement of the second operand, and in the top
-/// position of a signed one both are complemented once more.
+/// position of a signed one both are complemented once more. Only of an
+/// adder-subtractor is `b` what stands before the exclusive or with the mode.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub struct Position {
     /// First addend.
@@ -126,6 +132,8 @@ pub struct Chain {
     pub carry_form: CarryForm,
     /// How it is built today.
     pub built_as: BuiltAs,
+    /// What complements every `b` of an adder-subtractor.
+    pub mode: Option<Signal>,
     /// What a comparator tells; of the others nothing.
     pub comparison: Option<Comparison>,
 }

@@ -20,6 +20,8 @@ use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
+/// Warnings told of a cell library.
+const LIBRARY_WARNINGS: usize = 20;
 /// Fewest characters for one netlist when several share a Markdown document.
 const FEWEST_CHARACTERS: usize = 4_000;
 
@@ -46,7 +48,9 @@ pub fn run(arguments: &AuditArguments) -> Status {
             return Status::Unusable;
         }
     };
-    let cells = match arguments.cells.as_deref().map(cells).transpose() {
+    let quiet = arguments.quiet;
+    let library = |file: &PathBuf| cells(file, quiet);
+    let mut cells = match arguments.cells.as_ref().map(library).transpose() {
         Ok(cells) => cells,
         Err(worse) => return worse,
     };
@@ -54,6 +58,11 @@ pub fn run(arguments: &AuditArguments) -> Status {
         Ok(asserted) => asserted,
         Err(worse) => return worse,
     };
+    if let Some(file) = &asserted
+        && let Err(worse) = declare_carry(file, cells.as_mut(), arguments)
+    {
+        return worse;
+    }
     let share = (MOST_CHARACTERS / arguments.files.len()).max(FEWEST_CHARACTERS);
     let page = Page {
         characters: share.min(MOST_CHARACTERS),
@@ -107,13 +116,22 @@ fn shown(file: &Path) -> String {
     source::escape(file.to_string_lossy().as_bytes())
 }
 
-/// Reads a cell library. Cells without a function are not told: the instances
-/// that name one are findings.
-fn cells(file: &Path) -> Result<Cells, Status> {
+/// Reads a cell library. What is odd in it is told like the warnings of a netlist,
+/// the first few and a count.
+fn cells(file: &Path, quiet: bool) -> Result<Cells, Status> {
     let name = file.to_string_lossy();
     let source = load_or_say(file, &name, Limits::for_gates(0))?;
     match format::cells::read(&source) {
-        Ok(library) => Ok(library.cells),
+        Ok(library) => {
+            let warnings = library.warnings.iter().filter(|_| !quiet);
+            for warning in warnings.clone().take(LIBRARY_WARNINGS) {
+                say(&warning.render(&source, colour_on_stderr()));
+            }
+            if let Some(more @ 1..) = warnings.count().checked_sub(LIBRARY_WARNINGS) {
+                complain(&format!("{}: {more} more warnings like these", shown(file)));
+            }
+            Ok(library.cells)
+        }
         Err(errors) => {
             for error in &errors {
                 say(&error.render(&source, colour_on_stderr()));
@@ -121,6 +139,27 @@ fn cells(file: &Path) -> Result<Cells, Status> {
             Err(Status::Unusable)
         }
     }
+}
+
+/// Puts the carry cells that the assumptions declare into the library.
+fn declare_carry(
+    file: &AssumptionsFile,
+    cells: Option<&mut Cells>,
+    arguments: &AuditArguments,
+) -> Result<(), Status> {
+    let declared = &file.assumptions.carry_cells;
+    if declared.is_empty() {
+        return Ok(());
+    }
+    let (Some(cells), Some(library)) = (cells, &arguments.cells) else {
+        complain("`carry_cells` is given without a library; name one with --cells");
+        return Err(Status::Unusable);
+    };
+    cells.declare_carry(declared).map_err(|misfit| {
+        let told = file.misfit(&misfit, &library.to_string_lossy());
+        say(&told.render(file.source(), colour_on_stderr()));
+        Status::Unusable
+    })
 }
 
 /// Reads a file of assumptions.

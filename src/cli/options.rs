@@ -9,6 +9,7 @@ use crate::format::ReadOptions;
 use crate::format::files::FileAccess;
 use crate::plan::{NewGates, Request};
 use crate::report::Form;
+use crate::source::nearest;
 use crate::timing::DelayModel;
 use clap::{Args, Parser, Subcommand, ValueEnum};
 use std::path::PathBuf;
@@ -73,9 +74,10 @@ pub struct AuditArguments {
     #[arg(long, value_name = "PATH")]
     pub report: Vec<PathBuf>,
 
-    /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates
-    #[arg(long, value_name = "MODEL", value_enum, default_value = "unit")]
-    pub delay: DelayWord,
+    /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates,
+    /// `logical-effort` is about static CMOS gates and what each drives, in units of τ
+    #[arg(long, value_name = "MODEL", default_value = "unit", value_parser = delay)]
+    pub delay: Delay,
 
     /// Most inputs of one new gate [default: the widest gate of the netlist, at most 4 for
     /// single-operator and 6 for cover; 2 for AIGER]
@@ -115,9 +117,14 @@ pub struct AuditArguments {
     pub cells: Option<PathBuf>,
 
     /// A YAML file of what may be assumed about the block: tied nets, paths that do not count,
-    /// paths of several cycles, arrival and required times
+    /// paths of several cycles, arrival and required times, delays of boxes and of carry cells
     #[arg(long, value_name = "PATH")]
     pub assume: Option<PathBuf>,
+
+    /// Hold every path end without a required time of its own against this depth, in whole units
+    /// of the delay model
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(..=1 << 24))]
+    pub target_depth: Option<u64>,
 
     /// Exit with 1 when a finding is at least this bad
     #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
@@ -153,13 +160,22 @@ impl FormWord {
     }
 }
 
-/// Words of `--delay`.
-#[derive(ValueEnum, Clone, Copy, Debug)]
-pub enum DelayWord {
-    /// Every gate 1
-    Unit,
-    /// Levels of two-input gates
-    Pairs,
+/// What `--delay` asks for.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub enum Delay {
+    /// A model that needs no file.
+    Model(DelayModel),
+}
+
+fn delay(text: &str) -> Result<Delay, String> {
+    if let Some(model) = DelayModel::from_name(text) {
+        return Ok(Delay::Model(model));
+    }
+    let words = DelayModel::ALL.map(DelayModel::name);
+    let hint =
+        nearest(text, &words).map_or_else(String::new, |word| format!("; did you mean `{word}`?"));
+    let known = words.map(|word| format!("`{word}`")).join(", ");
+    Err(format!("expected one of {known}{hint}"))
 }
 
 /// Words of `--fail-on`.
@@ -205,10 +221,7 @@ impl AuditArguments {
 
     /// How to audit.
     pub fn auditing(&self) -> audit::Options {
-        let model = match self.delay {
-            DelayWord::Unit => DelayModel::Unit,
-            DelayWord::Pairs => DelayModel::Pairs,
-        };
+        let Delay::Model(model) = self.delay;
         let whole = |n: u64| usize::try_from(n).unwrap_or(usize::MAX);
         audit::Options {
             request: Request {
@@ -224,6 +237,7 @@ impl AuditArguments {
                 effort: self.effort,
                 ..chain::Options::default()
             },
+            target_depth: self.target_depth,
         }
     }
 }

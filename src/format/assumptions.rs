@@ -7,12 +7,21 @@
 //! the pattern concerned.
 
 use super::yaml::{self, Step, Yaml};
-use crate::netlist::assume::{Cycles, Item, Misfit, NotAPath, Paths, PortTime, Tied};
+use crate::netlist::assume::{BoxDelay, Cycles, Item, Misfit, NotAPath, Paths, PortTime, Tied};
+use crate::netlist::carry_cell::{CarryCell, PinPair};
 use crate::netlist::{Assumptions, Pattern};
 use crate::source::{Diagnostic, Source, nearest, quote};
 use rustc_hash::FxHashMap;
 
-const SECTIONS: &[&str] = &["tied", "not_a_path", "cycles", "arrival", "required"];
+const SECTIONS: &[&str] = &[
+    "tied",
+    "not_a_path",
+    "cycles",
+    "arrival",
+    "required",
+    "box_delay",
+    "carry_cells",
+];
 /// The latest time that may be asserted, in units of the delay model.
 const LATEST: i64 = 1 << 24;
 /// Most cycles that may be asserted.
@@ -47,6 +56,11 @@ impl AssumptionsFile {
             Misfit::BothValues { .. } => "take one of the two ties out, or narrow its pattern",
             Misfit::Contended { .. } => "mend the netlist first: what the net carries is undefined",
             Misfit::TooManySets { .. } => "use fewer or wider patterns",
+            Misfit::NoDelay { .. } => {
+                "the output depends on that pin; give every such pair a delay, by patterns where \
+                 they are alike"
+            }
+            Misfit::NotPlain { .. } => "declare cells of combinational logic only",
         };
         Diagnostic::error(
             &self.source.name,
@@ -141,6 +155,8 @@ impl Reader<'_> {
             ("cycles", Self::cycles),
             ("arrival", Self::arrival),
             ("required", Self::required),
+            ("box_delay", Self::box_delay),
+            ("carry_cells", Self::carry_cell),
         ] {
             if let Some((value, path)) = fields.get(section) {
                 for fields in self.list(section, value, path)? {
@@ -192,6 +208,9 @@ impl Reader<'_> {
         let known: &[&'static str] = match section {
             "not_a_path" => &["from", "through", "to", "why"],
             "cycles" => &["from", "to", "n", "why"],
+            "box_delay" => &["box", "from", "to", "delay", "why"],
+            "carry_cells" => &["cell", "delays", "why"],
+            "delays" => &["from", "to", "delay"],
             _ => &["ports", "at", "why"],
         };
         let form = format!("entries with {}", words(known));
@@ -288,14 +307,7 @@ impl Reader<'_> {
         let narrow =
             |side: &Option<Pattern>| side.as_ref().is_some_and(|side| !side.is_everything());
         let paths = match through {
-            Some(_) if narrow(&from) || narrow(&to) => {
-                return self.fault(
-                    &fields.path,
-                    "expected `through` alone, or `from` and `to`; found both".to_owned(),
-                    "leave `from` and `to` out, or make them `*`: which nets a path has passed is \
-                     followed for all paths or for none",
-                );
-            }
+            Some(through) if narrow(&from) || narrow(&to) => Paths::Part { from, through, to },
             Some(through) => Paths::Through(through),
             None if !narrow(&from) && !narrow(&to) => {
                 return self.fault(
@@ -337,6 +349,58 @@ impl Reader<'_> {
             at: i32::try_from(at).unwrap_or(i32::MAX),
             why: self.why(fields)?,
         })
+    }
+
+    /// A pattern that has to be there.
+    fn named(&mut self, fields: &Fields<'_>, key: &str, item: Item) -> Found<Pattern> {
+        match self.pattern(fields, key, item)? {
+            Some(pattern) => Ok(pattern),
+            None => {
+                let message = format!("expected `{key}`, a name or a pattern, found none");
+                self.fault(&fields.path, message, "`*` stands for every one")
+            }
+        }
+    }
+
+    fn delay(&self, fields: &Fields<'_>) -> Found<i32> {
+        let delay = self.whole(fields, "delay", 0, LATEST)?;
+        Ok(i32::try_from(delay).unwrap_or(i32::MAX))
+    }
+
+    fn box_delay(&mut self, fields: Fields<'_>) -> Found<()> {
+        let index = self.assumptions.box_delay.len();
+        let entry = BoxDelay {
+            name: self.named(&fields, "box", Item::BoxName(index))?,
+            from: self.named(&fields, "from", Item::BoxFrom(index))?,
+            to: self.named(&fields, "to", Item::BoxTo(index))?,
+            delay: self.delay(&fields)?,
+            why: self.why(&fields)?,
+        };
+        self.assumptions.box_delay.push(entry);
+        Ok(())
+    }
+
+    fn carry_cell(&mut self, fields: Fields<'_>) -> Found<()> {
+        let index = self.assumptions.carry_cells.len();
+        let cell = self.named(&fields, "cell", Item::CarryCell(index))?;
+        let why = self.why(&fields)?;
+        let Some((value, path)) = fields.get("delays") else {
+            let message = "expected `delays`, a list, found none".to_owned();
+            let help = "write `delays: [{from: CI, to: CO, delay: 1}]`";
+            return self.fault(&fields.path, message, help);
+        };
+        let mut delays = Vec::new();
+        for (pair, fields) in self.list("delays", value, path)?.iter().enumerate() {
+            delays.push(PinPair {
+                from: self.named(fields, "from", Item::CarryFrom(index, pair))?,
+                to: self.named(fields, "to", Item::CarryTo(index, pair))?,
+                delay: self.delay(fields)?,
+            });
+        }
+        self.assumptions
+            .carry_cells
+            .push(CarryCell { cell, delays, why });
+        Ok(())
     }
 
     fn arrival(&mut self, fields: Fields<'_>) -> Found<()> {

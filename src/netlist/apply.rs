@@ -9,9 +9,10 @@ use super::assume::{Assumed, Assumptions, Item, MOST_SETS, Misfit, Paths};
 use super::graph::Topology;
 use super::id::{BoxId, NetId, RegisterId};
 use super::model::{Driver, Netlist};
+use super::passage::open_boxes;
 use super::pattern::Pattern;
 use super::tie::tie;
-use rustc_hash::FxHashMap;
+use rustc_hash::{FxHashMap, FxHashSet};
 use std::collections::BTreeMap;
 
 impl Assumptions {
@@ -29,9 +30,11 @@ impl Assumptions {
             assumptions: self,
             netlist: netlist.clone(),
             matched: BTreeMap::new(),
+            passed: BTreeMap::new(),
         };
         let ties = work.ties()?;
         tie(&mut work.netlist, &ties);
+        open_boxes(&mut work.netlist, &self.box_delay, &mut work.matched)?;
         let topology = Topology::of(&work.netlist);
         let mut asserted = Asserted::default();
         work.bar_nets(&mut asserted)?;
@@ -75,6 +78,9 @@ struct Work<'a> {
     assumptions: &'a Assumptions,
     netlist: Netlist,
     matched: BTreeMap<Item, usize>,
+    /// By entry that excludes a part of the paths between two sets, the nets that
+    /// part passes.
+    passed: BTreeMap<usize, FxHashSet<NetId>>,
 }
 
 impl Work<'_> {
@@ -133,19 +139,26 @@ impl Work<'_> {
     /// Nets that no path may pass.
     fn bar_nets(&mut self, asserted: &mut Asserted) -> Result<(), Misfit> {
         for (i, each) in self.assumptions.not_a_path.iter().enumerate() {
-            let Paths::Through(through) = &each.paths else {
-                continue;
+            let (through, always) = match &each.paths {
+                Paths::Through(through) => (through, true),
+                Paths::Part { through, .. } => (through, false),
+                Paths::Between { .. } => continue,
             };
-            let mut count = 0;
+            let mut named = FxHashSet::default();
             for net in self.netlist.nets() {
                 if through.matches(&self.netlist.net_name(net)) {
-                    count += 1;
-                    asserted.barred.insert(net);
-                    // Where the net is itself a start.
-                    asserted.starts.insert(net, BARRED);
+                    named.insert(net);
                 }
             }
-            self.note(Item::NotThrough(i), through, "a net", count)?;
+            self.note(Item::NotThrough(i), through, "a net", named.len())?;
+            if always {
+                // Where the net is itself a start.
+                let starts = named.iter().map(|&net| (net, BARRED));
+                asserted.starts.extend(starts);
+                asserted.barred.extend(named);
+            } else {
+                self.passed.insert(i, named);
+            }
         }
         Ok(())
     }
@@ -195,12 +208,13 @@ impl Work<'_> {
             let not = assumptions.not_a_path.get(entry);
             not.is_some_and(|each| matches!(each.paths, Paths::Through(_)))
         };
-        let not = assumptions.not_a_path.len();
         // An entry with one open side bars what the other side names.
-        let bars_start =
-            |entry: usize| entry < not && !through(entry) && is_everything(tos[entry].1);
-        let bars_end =
-            |entry: usize| entry < not && !through(entry) && is_everything(froms[entry].1);
+        let whole = |entry: usize| {
+            let not = assumptions.not_a_path.get(entry);
+            not.is_some_and(|each| matches!(each.paths, Paths::Between { .. }))
+        };
+        let bars_start = |entry: usize| whole(entry) && is_everything(tos[entry].1);
+        let bars_end = |entry: usize| whole(entry) && is_everything(froms[entry].1);
         let starts = self.starts(topology);
         let ends = self.ends(topology);
         let start_sets = self.sets(
@@ -230,6 +244,42 @@ impl Work<'_> {
                     .collect()
             })
             .collect();
+        self.find_ways(&start_sets, &end_sets, asserted)
+    }
+
+    /// The way of every pair of sets, where entries exclude a part of its paths.
+    fn find_ways(
+        &self,
+        start_sets: &[Vec<usize>],
+        end_sets: &[Vec<usize>],
+        asserted: &mut Asserted,
+    ) -> Result<(), Misfit> {
+        let mut known: Vec<Vec<usize>> = vec![Vec::new()];
+        for start in start_sets {
+            let mut row = Vec::new();
+            for end in end_sets {
+                let entries: Vec<usize> = self
+                    .passed
+                    .keys()
+                    .copied()
+                    .filter(|entry| start.contains(entry) && end.contains(entry))
+                    .collect();
+                let number = known.iter().position(|each| *each == entries);
+                let number = number.unwrap_or_else(|| {
+                    let nets = entries.iter().flat_map(|entry| &self.passed[entry]);
+                    asserted.avoided.push(nets.copied().collect());
+                    known.push(entries.clone());
+                    known.len() - 1
+                });
+                if number == MOST_SETS {
+                    let item = Item::NotThrough(entries[0]);
+                    let what = "nets to avoid";
+                    return Err(Misfit::TooManySets { item, what });
+                }
+                row.push(number as u8);
+            }
+            asserted.ways.push(row);
+        }
         Ok(())
     }
 
@@ -336,6 +386,9 @@ fn pairing(assumptions: &Assumptions, start: &[usize], end: &[usize]) -> Pairing
     let mut found = Pairing::Counts;
     for entry in start.iter().filter(|entry| end.contains(entry)) {
         let Some(several) = entry.checked_sub(not) else {
+            if matches!(assumptions.not_a_path[*entry].paths, Paths::Part { .. }) {
+                continue;
+            }
             return Pairing::Never;
         };
         let own = assumptions.cycles[several].cycles;

@@ -5,9 +5,14 @@
 //! several cycles. So an exact account of excluded paths costs one pass per set
 //! and nothing per path. Set 0 holds what no assumption names. A start, an end or
 //! a net that no path may use at all is *barred* and belongs to no set.
+//!
+//! Where paths between two sets count unless they pass certain nets, what counts
+//! are exactly those that avoid the nets. So such a pair of sets has a numbered
+//! *way*, a set of nets to avoid, and costs a pass of its own; way 0 avoids nothing.
 
 use super::id::{BoxId, NetId, RegisterId};
 use rustc_hash::{FxHashMap, FxHashSet};
+use std::collections::BTreeSet;
 
 /// Whether the paths between two sets count.
 #[derive(Clone, Copy, PartialEq, Eq, Debug, Default)]
@@ -51,6 +56,10 @@ pub struct Asserted {
     pub(super) arrivals: FxHashMap<NetId, i32>,
     /// By start set, by end set; sets past the table count.
     pub(super) pairings: Vec<Vec<Pairing>>,
+    /// By start set, by end set, the way their paths have to take.
+    pub(super) ways: Vec<Vec<u8>>,
+    /// By way, from 1 on, the nets that it avoids.
+    pub(super) avoided: Vec<FxHashSet<NetId>>,
 }
 
 impl Asserted {
@@ -74,6 +83,39 @@ impl Asserted {
         row.and_then(|row| row.get(usize::from(end)))
             .copied()
             .unwrap_or_default()
+    }
+
+    /// The way that paths from a start set to an end set have to take to count.
+    pub fn way(&self, start: u8, end: u8) -> u8 {
+        let row = self.ways.get(usize::from(start));
+        row.and_then(|row| row.get(usize::from(end)))
+            .copied()
+            .unwrap_or_default()
+    }
+
+    /// The ways that paths from a start set may have to take.
+    pub fn ways_from(&self, start: u8) -> BTreeSet<u8> {
+        match self.ways.get(usize::from(start)) {
+            Some(row) => row.iter().copied().collect(),
+            None => BTreeSet::from([0]),
+        }
+    }
+
+    /// The ways that paths to an end set may have to take.
+    pub fn ways_to(&self, end: u8) -> BTreeSet<u8> {
+        let column = self.ways.iter().map(|row| row.get(usize::from(end)));
+        let column: BTreeSet<u8> = column.map(|way| way.copied().unwrap_or_default()).collect();
+        if column.is_empty() {
+            BTreeSet::from([0])
+        } else {
+            column
+        }
+    }
+
+    /// Whether a way avoids `net`.
+    #[inline]
+    pub fn avoids(&self, way: u8, net: NetId) -> bool {
+        way > 0 && self.avoided[usize::from(way) - 1].contains(&net)
     }
 
     /// Whether no path through `net` counts.

@@ -10,6 +10,7 @@
 //! a box's model, or by a cut net. A pattern that matches nothing is refused, since
 //! the assertion then holds for a block other than the one meant.
 
+use super::carry_cell::CarryCell;
 use super::model::Netlist;
 use super::pattern::Pattern;
 use std::collections::BTreeMap;
@@ -37,8 +38,7 @@ pub struct NotAPath {
     pub why: String,
 }
 
-/// Some paths. Ends and what lies between are not combined: that would take a
-/// pass for every combination of nets passed so far.
+/// Some paths.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub enum Paths {
     /// Every path that passes a net.
@@ -50,20 +50,29 @@ pub enum Paths {
         /// Where they end; everywhere when not given.
         to: Option<Pattern>,
     },
+    /// Of the paths between two sets those that pass a net.
+    Part {
+        /// Where they start; everywhere when not given.
+        from: Option<Pattern>,
+        /// What they pass.
+        through: Pattern,
+        /// Where they end; everywhere when not given.
+        to: Option<Pattern>,
+    },
 }
 
 impl Paths {
     pub(super) fn from(&self) -> Option<&Pattern> {
         match self {
             Self::Through(_) => None,
-            Self::Between { from, .. } => from.as_ref(),
+            Self::Between { from, .. } | Self::Part { from, .. } => from.as_ref(),
         }
     }
 
     pub(super) fn to(&self) -> Option<&Pattern> {
         match self {
             Self::Through(_) => None,
-            Self::Between { to, .. } => to.as_ref(),
+            Self::Between { to, .. } | Self::Part { to, .. } => to.as_ref(),
         }
     }
 }
@@ -92,6 +101,21 @@ pub struct PortTime {
     pub why: String,
 }
 
+/// How long a path takes through a box.
+#[derive(Clone, PartialEq, Eq, Debug)]
+pub struct BoxDelay {
+    /// Which boxes, by the name of their model.
+    pub name: Pattern,
+    /// From these input pins.
+    pub from: Pattern,
+    /// To these output pins.
+    pub to: Pattern,
+    /// How long, in whole units of the delay model.
+    pub delay: i32,
+    /// Why.
+    pub why: String,
+}
+
 /// Everything asserted.
 #[derive(Clone, PartialEq, Eq, Debug, Default)]
 pub struct Assumptions {
@@ -105,6 +129,13 @@ pub struct Assumptions {
     pub arrival: Vec<PortTime>,
     /// When outputs must be.
     pub required: Vec<PortTime>,
+    /// How long paths take through boxes.
+    pub box_delay: Vec<BoxDelay>,
+    /// Cells whose delays are declared; see [`Cells::declare_carry`], which must
+    /// have put them in place.
+    ///
+    /// [`Cells::declare_carry`]: super::cell::Cells::declare_carry
+    pub carry_cells: Vec<CarryCell>,
 }
 
 /// A pattern of an assumption.
@@ -126,6 +157,18 @@ pub enum Item {
     Arrival(usize),
     /// Outputs with a required time.
     Required(usize),
+    /// Boxes with a delay.
+    BoxName(usize),
+    /// The inputs it counts from.
+    BoxFrom(usize),
+    /// The outputs it counts to.
+    BoxTo(usize),
+    /// Carry cells.
+    CarryCell(usize),
+    /// The inputs that one of their delays counts from.
+    CarryFrom(usize, usize),
+    /// The outputs it counts to.
+    CarryTo(usize, usize),
 }
 
 /// Why assumptions do not fit a netlist.
@@ -157,6 +200,26 @@ pub enum Misfit {
         /// The net.
         net: String,
     },
+    /// A pair of pins of a carry cell has no delay.
+    #[error("expected a delay from {from} to {to} of the carry cell {cell}, found none")]
+    NoDelay {
+        /// The declaration.
+        item: Item,
+        /// The cell.
+        cell: String,
+        /// The input.
+        from: String,
+        /// The output.
+        to: String,
+    },
+    /// A carry cell holds what a delay from pin to pin does not fit.
+    #[error("expected a carry cell of gates alone, found {cell}, which stores something or is cut")]
+    NotPlain {
+        /// The declaration.
+        item: Item,
+        /// The cell.
+        cell: String,
+    },
     /// The patterns tell too many sets apart.
     #[error("expected patterns that tell at most {MOST_SETS} sets of {what} apart, found more")]
     TooManySets {
@@ -174,6 +237,8 @@ impl Misfit {
             Self::NoMatch { item, .. }
             | Self::BothValues { item, .. }
             | Self::Contended { item, .. }
+            | Self::NoDelay { item, .. }
+            | Self::NotPlain { item, .. }
             | Self::TooManySets { item, .. } => *item,
         }
     }

@@ -1,5 +1,6 @@
 //! Builds a [`Netlist`] piece by piece, in the order of the source.
 
+use super::declared::Declared;
 use super::function::{Function, Functions};
 use super::id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 use super::model::{
@@ -61,6 +62,7 @@ impl NetlistBuilder {
                 contended: Vec::new(),
                 inverted_edges: false,
                 asserted: None,
+                declared: None,
             },
             constants: [None; 2],
         }
@@ -242,6 +244,34 @@ impl NetlistBuilder {
     /// Interns a function, so that many gates can share it.
     pub fn function(&mut self, function: Function) -> FunctionId {
         FunctionId(self.netlist.functions.intern(function))
+    }
+
+    /// Interns a function whose pins take the times given, in whole units of the
+    /// delay model, whatever the model says.
+    pub fn function_with_delays(&mut self, function: Function, delays: &[i32]) -> FunctionId {
+        debug_assert_eq!(function.inputs(), delays.len());
+        let functions = &mut self.netlist.functions;
+        FunctionId(functions.intern_with_delays(function, delays))
+    }
+
+    /// Interns a function of another netlist, with its delays where it has some of
+    /// its own.
+    pub fn function_from(&mut self, other: &Netlist, id: FunctionId) -> FunctionId {
+        let function = other.function_of(id).clone();
+        match other.declared_delays(id) {
+            Some(delays) => self.function_with_delays(function, delays),
+            None => self.function(function),
+        }
+    }
+
+    /// The gate that the next one will be.
+    pub(super) fn next_gate(&self) -> GateId {
+        GateId::new(self.netlist.gate_outputs.len())
+    }
+
+    /// What is declared about delays so far.
+    pub(super) fn declared(&mut self) -> &mut Declared {
+        self.netlist.declared.get_or_insert_default()
     }
 
     /// Adds a gate. Panics when `fan_ins` does not match the function.

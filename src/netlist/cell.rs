@@ -83,6 +83,21 @@ impl Cells {
         }
     }
 
+    /// The names of all cells, in no order.
+    pub(super) fn names(&self) -> impl Iterator<Item = &[u8]> {
+        self.by_name.keys().map(Vec::as_slice)
+    }
+
+    /// The body of a cell.
+    pub(super) fn get(&self, name: &[u8]) -> Option<&Netlist> {
+        self.by_name.get(name)
+    }
+
+    /// Puts another body in the place of a cell's.
+    pub(super) fn replace(&mut self, name: &[u8], body: Netlist) {
+        self.by_name.insert(name.to_owned(), body);
+    }
+
     /// Number of cells.
     pub fn len(&self) -> usize {
         self.by_name.len()
@@ -217,8 +232,9 @@ fn place(builder: &mut NetlistBuilder, each: &BlackBox, cell: &Netlist) -> Resul
             None => builder.add_net(None, each.scope)?,
         });
     }
+    let first = builder.next_gate();
     for gate in cell.gates() {
-        let function = builder.function(cell.function(gate).clone());
+        let function = builder.function_from(cell, cell.function_id(gate));
         let fan_ins: Vec<NetId> = cell
             .fan_ins(gate)
             .iter()
@@ -226,6 +242,15 @@ fn place(builder: &mut NetlistBuilder, each: &BlackBox, cell: &Netlist) -> Resul
             .collect();
         let output = placed[cell.gate_output(gate).index()];
         builder.add_gate(function, &fan_ins, output, each.scope, each.line)?;
+    }
+    if let Some(declared) = cell.declared() {
+        let end = builder.next_gate();
+        let own = builder.declared();
+        let barred = declared.barred.iter();
+        own.barred.extend(barred.map(|net| placed[net.index()]));
+        let cells = declared.carry_cells.iter();
+        own.carry_cells
+            .extend(cells.map(|&(.., entry)| (first, end, entry)));
     }
     for register in cell.registers() {
         let initial = match each.kind {

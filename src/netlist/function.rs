@@ -357,11 +357,14 @@ fn evaluate_table(bits: u64, pins: &[u64]) -> u64 {
     (select & when_high) | (!select & when_low)
 }
 
-/// The interned functions of a netlist.
+/// The interned functions of a netlist. A function whose delays were declared is
+/// kept apart from the same function without.
 #[derive(Clone, Default)]
 pub(super) struct Functions {
     list: Vec<Function>,
     index: FxHashMap<Function, u32>,
+    declared: FxHashMap<u32, Box<[i32]>>,
+    declared_index: FxHashMap<(Function, Box<[i32]>), u32>,
 }
 
 impl Functions {
@@ -375,8 +378,25 @@ impl Functions {
         id
     }
 
+    /// As [`Self::intern`], with the delay of every pin given.
+    pub(super) fn intern_with_delays(&mut self, function: Function, delays: &[i32]) -> u32 {
+        let key = (function, delays.into());
+        if let Some(&id) = self.declared_index.get(&key) {
+            return id;
+        }
+        let id = self.list.len() as u32;
+        self.list.push(key.0.clone());
+        self.declared.insert(id, key.1.clone());
+        self.declared_index.insert(key, id);
+        id
+    }
+
     pub(super) fn get(&self, id: u32) -> &Function {
         &self.list[id as usize]
+    }
+
+    pub(super) fn declared_delays(&self, id: u32) -> Option<&[i32]> {
+        self.declared.get(&id).map(AsRef::as_ref)
     }
 
     pub(super) fn len(&self) -> usize {

@@ -1,6 +1,7 @@
 //! The netlist value and its read-only views.
 
 use super::asserted::Asserted;
+use super::declared::Declared;
 use super::function::{Function, Functions};
 use super::id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 use super::names::{NameId, Names};
@@ -228,6 +229,7 @@ pub struct Netlist {
     pub(super) contended: Vec<Contention>,
     pub(super) inverted_edges: bool,
     pub(super) asserted: Option<Box<Asserted>>,
+    pub(super) declared: Option<Box<Declared>>,
 }
 
 impl Netlist {
@@ -270,8 +272,19 @@ impl Netlist {
     /// The fan-ins of `gate`, one per pin; a net may occur more than once.
     #[inline]
     pub fn fan_ins(&self, gate: GateId) -> &[NetId] {
+        &self.fan_ins[self.fan_in_range(gate)]
+    }
+
+    /// Number of fan-ins of all gates.
+    pub fn fan_in_count(&self) -> usize {
+        self.fan_ins.len()
+    }
+
+    /// Where the fan-ins of `gate` lie among those of all gates in order.
+    #[inline]
+    pub fn fan_in_range(&self, gate: GateId) -> std::ops::Range<usize> {
         let i = gate.index();
-        &self.fan_ins[self.fan_in_starts[i] as usize..self.fan_in_starts[i + 1] as usize]
+        self.fan_in_starts[i] as usize..self.fan_in_starts[i + 1] as usize
     }
 
     /// The net `gate` drives.
@@ -295,6 +308,12 @@ impl Netlist {
     /// An interned function.
     pub fn function_of(&self, id: FunctionId) -> &Function {
         self.functions.get(id.0)
+    }
+
+    /// The delay of every pin of a function, where they were declared and not left
+    /// to the delay model, in whole units of it.
+    pub fn declared_delays(&self, id: FunctionId) -> Option<&[i32]> {
+        self.functions.declared_delays(id.0)
     }
 
     /// Number of distinct functions; ids run from 0.
@@ -364,12 +383,37 @@ impl Netlist {
         self.asserted.as_deref()
     }
 
-    /// Whether no path through `net` counts, because a user asserted it.
+    /// What was declared about delays inside cells and boxes, when anything was.
+    #[inline]
+    pub fn declared(&self) -> Option<&Declared> {
+        self.declared.as_deref()
+    }
+
+    /// Whether no path through `net` counts, because a user asserted it or because
+    /// it lies inside a cell whose delays are declared from pin to pin.
     #[inline]
     pub fn is_barred(&self, net: NetId) -> bool {
-        self.asserted
-            .as_deref()
-            .is_some_and(|asserted| asserted.is_barred(net))
+        let asserted = self.asserted.as_deref();
+        asserted.is_some_and(|asserted| asserted.is_barred(net))
+            || self.declared().is_some_and(|declared| declared.bars(net))
+    }
+
+    /// Whether no path of a way counts through `net`; see [`Asserted`].
+    #[inline]
+    pub fn is_barred_on(&self, way: u8, net: NetId) -> bool {
+        self.is_barred(net)
+            || (way > 0
+                && self
+                    .asserted()
+                    .is_some_and(|asserted| asserted.avoids(way, net)))
+    }
+
+    /// Whether `net` is there for what a cell or a box does inside, and shown
+    /// outside by another.
+    #[inline]
+    pub fn is_inner(&self, net: NetId) -> bool {
+        self.declared()
+            .is_some_and(|declared| declared.is_inner(net))
     }
 
     /// Whether an inversion on an edge is free (AIGER) or needs a gate (BLIF).

@@ -98,6 +98,8 @@ fn follow(
     if met {
         let gone = match value {
             Some(_) => (0..netlist.fan_ins(gate).len()).collect(),
+            // Delays declared from pin to pin hold whatever the other pins are.
+            None if netlist.declared_delays(netlist.function_id(gate)).is_some() => Vec::new(),
             None => unneeded(netlist, gate, known),
         };
         for pin in gone {

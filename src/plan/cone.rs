@@ -10,7 +10,7 @@ use super::overlay::{Literal, Overlay};
 use super::site::Role;
 use crate::chain::Chain;
 use crate::netlist::{Bit, GateId, NetId, Shape, Signal};
-use crate::network::Addends;
+use crate::network::{Addends, GateSink};
 use rustc_hash::{FxHashMap, FxHashSet};
 
 /// Buffers and inverters before an operand are looked through up to this many.
@@ -32,6 +32,7 @@ impl Operands {
         let given: Vec<(usize, Bit)> = bits
             .flat_map(|(i, position)| [(i, position.a), (i, position.b)])
             .chain([(0, chain.carry_in)])
+            .chain(chain.mode.map(|mode| (0, Bit::Signal(mode))))
             .collect();
         let mut on_the_way = FxHashSet::default();
         let mut roots = Vec::new();
@@ -77,10 +78,14 @@ impl Operands {
             .positions
             .iter()
             .map(|p| literal(p.b).invert_if(negated));
-        let b = b.collect();
+        let b: Vec<Literal> = b.collect();
         let carry_in = match chain.carry_in {
             Bit::Constant(_) => None,
             bit @ Bit::Signal(_) => Some(literal(bit)),
+        };
+        let b = match chain.mode.map(|mode| literal(Bit::Signal(mode))) {
+            Some(mode) => b.into_iter().map(|b| overlay.xor(b, mode)).collect(),
+            None => b,
         };
         (Addends { a, b, carry_in }, negated)
     }

@@ -27,13 +27,14 @@ pub fn depth_with_free_carry(ground: &Ground<'_>, chains: &[Chain]) -> BTreeMap<
         let mut times = start_times(netlist, topology, delays.model(), Some(start));
         for &gate in &topology.order {
             let output = netlist.gate_output(gate);
-            if !topology.is_cut(output) && !free.contains(output.index()) {
+            let barred = netlist.is_barred_on(start.way, output);
+            if !topology.is_cut(output) && !free.contains(output.index()) && !barred {
                 times[output.index()] = gate_arrival(netlist, delays, &times, gate);
             }
         }
         for (end, group) in grouped_ends(netlist, topology) {
             let time = end_arrival(netlist, delays, &times, end);
-            let kind = PathKind { start, end: group };
+            let kind = PathKind::from_to(start, group);
             if time != NEVER && ground.timing.kind(kind).is_some() {
                 let slot = longest.entry(kind).or_insert(time);
                 *slot = time.max(*slot);

@@ -110,7 +110,7 @@ impl<'a> Ground<'a> {
             .iter()
             .find(|&&(start, _)| start == kind.start)?;
         list.iter()
-            .find(|&&(_, end)| end.group(self.netlist) == Some(kind.end) && wanted(end))
+            .find(|&&(_, end)| end.is_in(self.netlist, kind.end) && wanted(end))
             .copied()
     }
 

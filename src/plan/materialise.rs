@@ -188,7 +188,11 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
         }
         let output = self.net_now(self.old.gate_output(gate));
         let scope = self.scope(self.old.gate_scope(gate));
-        let id = self.builder.function(function);
+        let own = self.old.declared_delays(self.old.function_id(gate));
+        let id = match own {
+            Some(delays) => self.builder.function_with_delays(function, delays),
+            None => self.builder.function(function),
+        };
         let line = self.old.gate_line(gate);
         self.builder.add_gate(id, &pins, output, scope, line)?;
         Ok(())

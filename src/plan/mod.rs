@@ -20,7 +20,7 @@ mod settings;
 mod site;
 mod tables;
 
-pub use bound::earliest;
+pub use bound::{earliest, earliest_at_cost};
 pub use dry_run::{DryRun, Estimate, KindChange, TakesOver};
 pub use free_carry::depth_with_free_carry;
 pub use ground::Ground;

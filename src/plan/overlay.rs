@@ -11,7 +11,7 @@
 //! nodes in ascending order, none of them constant; an XOR and a cover read
 //! plain nodes only, and a cover is 0 where all its inputs are.
 
-use super::tables::{ascending, drop_unread, product_polarities};
+use super::tables::{ascending, drop_unread};
 use crate::netlist::{Function, NetId, Shape, TruthTable};
 use crate::network::GateSink;
 use crate::timing::{DelayModel, NEVER};
@@ -116,6 +116,8 @@ pub struct Overlay {
     index: FxHashMap<(Operator, Vec<Literal>), Node>,
     nets: FxHashMap<NetId, Node>,
     product_delays: Vec<Option<i32>>,
+    /// Of every pin alike: the latest of them.
+    parity_delays: Vec<Option<i32>>,
     cover_delays: FxHashMap<TruthTable, Vec<i32>>,
 }
 
@@ -136,6 +138,7 @@ impl Overlay {
             index: FxHashMap::default(),
             nets: FxHashMap::default(),
             product_delays: Vec::new(),
+            parity_delays: Vec::new(),
             cover_delays: FxHashMap::default(),
         }
     }
@@ -198,7 +201,7 @@ impl Overlay {
         let before = self.entries.len();
         let result = match function.shape() {
             Shape::Product => {
-                let (inverted, complemented) = product_polarities(function)?;
+                let (inverted, complemented) = function.product_polarities()?;
                 let pins: Vec<Literal> = inputs
                     .iter()
                     .zip(inverted)
@@ -279,13 +282,22 @@ impl Overlay {
         match operator {
             Operator::Constant | Operator::Net(_) => {}
             Operator::And | Operator::Xor => {
-                if self.product_delays.len() <= inputs {
-                    self.product_delays.resize(inputs + 1, None);
+                let (model, parity) = (self.model, operator == Operator::Xor);
+                let known = if parity {
+                    &mut self.parity_delays
+                } else {
+                    &mut self.product_delays
+                };
+                if known.len() <= inputs {
+                    known.resize(inputs + 1, None);
                 }
-                let model = self.model;
-                // An XOR of k costs what a product of k does, in every model here.
-                self.product_delays[inputs].get_or_insert_with(|| {
-                    model.pin_delay(&Function::product(&vec![false; inputs], false), 0)
+                known[inputs].get_or_insert_with(|| {
+                    let function = if parity {
+                        Function::parity(inputs, false)
+                    } else {
+                        Function::product(&vec![false; inputs], false)
+                    };
+                    model.pin_delays(&function).into_iter().max().unwrap_or(0)
                 });
             }
             Operator::Cover(table) => {
@@ -318,7 +330,11 @@ impl Overlay {
                 pairs.map(|(at, &delay)| delayed(at, delay)).max()
             }
             _ => {
-                let delay = self.product_delays[inputs.len()].unwrap_or(0);
+                let known = match operator {
+                    Operator::Xor => &self.parity_delays,
+                    _ => &self.product_delays,
+                };
+                let delay = known[inputs.len()].unwrap_or(0);
                 arrivals.max().map(|at| delayed(at, delay))
             }
         }
@@ -379,8 +395,9 @@ impl Overlay {
             Shape::Buffer => pins[0],
             Shape::Inverter => !pins[0],
             Shape::Product => {
-                let (inverted, complemented) =
-                    product_polarities(&function).expect("a table that is a product");
+                let (inverted, complemented) = function
+                    .product_polarities()
+                    .expect("a table that is a product");
                 let pins: Vec<Literal> = pins
                     .iter()
                     .zip(inverted)

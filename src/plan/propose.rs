@@ -4,7 +4,7 @@
 //! of the others it is said why not. Both propagate conventions are tried and
 //! the better kept. Deterministic: candidates in the order of the schemes.
 
-use super::bound::earliest;
+use super::bound::{earliest, earliest_at_cost};
 use super::choose::{choose, rank};
 use super::dry_run::{DryRun, Estimate, KindChange, TakesOver};
 use super::ground::Ground;
@@ -239,9 +239,10 @@ fn lower_bound(site: &Site<'_>) -> i32 {
         .map(|net| site.arrival(net))
         .filter(|&time| time != NEVER)
         .collect();
-    let gate_inputs = match site.ground.settings.model {
-        DelayModel::Unit => site.ground.settings.gate_inputs,
-        DelayModel::Pairs => 2,
-    };
-    earliest(&arrivals, gate_inputs)
+    let (model, widest) = (site.ground.settings.model, site.ground.settings.gate_inputs);
+    match model {
+        DelayModel::Unit => earliest(&arrivals, widest),
+        DelayModel::Pairs => earliest(&arrivals, 2),
+        _ => earliest_at_cost(&arrivals, widest, |inputs| model.least_delay(inputs)),
+    }
 }

@@ -212,7 +212,7 @@ impl<'a> Site<'a> {
         let ground = self.ground;
         let groups = ground.end_groups();
         for (start, by_net) in ground.timing.by_start() {
-            let (times, cut_ends) = self.arrivals_beside(by_net);
+            let (times, cut_ends) = self.arrivals_beside(start.way, by_net);
             for &group in &groups {
                 let kind = PathKind { start, end: group };
                 let mut longest = ground.latest_end(kind, |end| !self.is_behind(end));
@@ -225,14 +225,14 @@ impl<'a> Site<'a> {
                     let output = ground.netlist.gate_output(gate);
                     if let Some(&time) = times.get(&output) {
                         for end in ground.ends_at(output) {
-                            if end.group(ground.netlist) == Some(group) {
+                            if end.is_in(ground.netlist, group) {
                                 offer(time, end);
                             }
                         }
                     }
                 }
                 for &(time, end) in &cut_ends {
-                    if end.group(ground.netlist) == Some(group) {
+                    if end.is_in(ground.netlist, group) {
                         offer(time, end);
                     }
                 }
@@ -243,7 +243,7 @@ impl<'a> Site<'a> {
 
     /// Arrivals in the region with the replaced nets taken away, and at the gates
     /// in it that drive cut nets.
-    fn arrivals_beside(&self, by_net: &[i32]) -> (FxHashMap<NetId, i32>, Vec<(i32, End)>) {
+    fn arrivals_beside(&self, way: u8, by_net: &[i32]) -> (FxHashMap<NetId, i32>, Vec<(i32, End)>) {
         let ground = self.ground;
         let mut times: FxHashMap<NetId, i32> = FxHashMap::default();
         let mut cut_ends = Vec::new();
@@ -261,7 +261,7 @@ impl<'a> Site<'a> {
                 }
             }
             let output = ground.netlist.gate_output(gate);
-            if ground.netlist.is_barred(output) {
+            if ground.netlist.is_barred_on(way, output) {
                 latest = NEVER;
             }
             if ground.gate_of(output) == Some(gate) {
@@ -293,9 +293,9 @@ impl<'a> Site<'a> {
         let ground = self.ground;
         for group in ground.end_groups() {
             let mut tails: FxHashMap<NetId, i32> = FxHashMap::default();
-            let wanted = |end: End| end.group(ground.netlist) == Some(group);
+            let wanted = |end: End| end.is_in(ground.netlist, group);
             let ends_here = |net: NetId| ground.ends_at(net).any(wanted);
-            let barred = |net: NetId| ground.netlist.is_barred(net);
+            let barred = |net: NetId| ground.netlist.is_barred_on(group.way, net);
             for needed in &self.needed {
                 if ends_here(needed.net) && !barred(needed.net) {
                     tails.insert(needed.net, 0);
@@ -332,7 +332,7 @@ impl<'a> Site<'a> {
     /// The end that the longest tail behind a replaced net leads to.
     pub(super) fn end_behind(&self, mut net: NetId, group: EndGroup) -> Option<End> {
         let ground = self.ground;
-        let wanted = |end: End| end.group(ground.netlist) == Some(group);
+        let wanted = |end: End| end.is_in(ground.netlist, group);
         let (_, tails) = self.tails.iter().find(|(each, _)| *each == group)?;
         loop {
             let tail = *tails.get(&net)?;

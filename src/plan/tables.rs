@@ -1,45 +1,7 @@
 //! Small questions about functions that the overlay asks when it normalises them.
 
 use super::overlay::Literal;
-use crate::netlist::{Function, TruthTable};
-
-/// Input polarities of a product, and whether its result is complemented.
-pub(super) fn product_polarities(function: &Function) -> Option<(Vec<bool>, bool)> {
-    match function {
-        Function::Table(table) => {
-            let n = table.inputs();
-            let ones = table.bits().count_ones();
-            let complemented = ones != 1;
-            let column = if complemented {
-                table.complement()
-            } else {
-                *table
-            };
-            let minterm = column.bits().trailing_zeros();
-            (column.bits().count_ones() == 1).then(|| {
-                (
-                    (0..n).map(|pin| minterm >> pin & 1 == 0).collect(),
-                    complemented,
-                )
-            })
-        }
-        Function::Cover(cover) => {
-            let mut inverted = vec![false; cover.inputs()];
-            for (pin, literal) in cover.cubes().flatten() {
-                inverted[pin] = literal;
-            }
-            if cover.cube_count() == 1 {
-                return Some((inverted, cover.is_complemented()));
-            }
-            // An OR of single literals: the complement of the product of
-            // their complements.
-            for flag in &mut inverted {
-                *flag = !*flag;
-            }
-            Some((inverted, !cover.is_complemented()))
-        }
-    }
-}
+use crate::netlist::TruthTable;
 
 /// The table over the plain nodes of `inputs` in ascending order. The inputs
 /// are distinct nodes.

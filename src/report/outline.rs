@@ -216,7 +216,7 @@ fn settings_sentence(
     caps: Caps,
 ) -> String {
     let Settings {
-        delay_model: DelayModelFacts { name, unit },
+        delay_model: DelayModelFacts { name, unit, misfit },
         new_gates,
         new_gates_reason,
         gate_inputs,
@@ -224,6 +224,7 @@ fn settings_sentence(
         min_bits,
         effort,
         patterns_seed,
+        target_depth,
         assumptions_sha256,
     } = settings;
     let NetlistFacts {
@@ -232,19 +233,26 @@ fn settings_sentence(
         sha256,
         ..
     } = netlist;
+    let misfit = misfit.as_ref().map_or_else(String::new, |why| {
+        format!("; {}", clipped(why, caps.sentence))
+    });
     let mut source = vec![format!("read as {}", format.replace('-', " "))];
     if let Some(model) = model {
         source.push(format!("model {}", clipped(model, caps.name)));
     }
     source.push(format!("SHA-256 {sha256}"));
+    let target = match target_depth {
+        None => String::new(),
+        Some(depth) => format!("; target depth {}", grouped(*depth)),
+    };
     let assumed = match assumptions_sha256 {
         None => String::new(),
         Some(hash) => format!("; assumptions SHA-256 {hash}"),
     };
     format!(
-        "{} {}; {}. Depths in {unit} (delay model {name}). New gates are \
+        "{} {}; {}. Depths in {unit} (delay model {name}{misfit}). New gates are \
          {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up; {} per \
-         proof; pattern seed {patterns_seed}{assumed}.",
+         proof; pattern seed {patterns_seed}{target}{assumed}.",
         tool.name,
         tool.version,
         source.join(", "),

@@ -8,7 +8,7 @@
 //! a meaning to.
 
 /// Signs of our own wording beyond ASCII.
-const OWN_SIGNS: &[char] = &['→', '–', '×', '⊕', '…'];
+const OWN_SIGNS: &[char] = &['→', '–', '×', '⊕', '…', 'τ'];
 
 /// The text with every character that could mislead the eye written out.
 pub fn visible(text: &str) -> String {

@@ -7,11 +7,13 @@
 
 mod cuts;
 mod decompose;
+mod flips;
 mod graph;
 mod patterns;
 mod signature;
 
 pub use cuts::{LinearSet, linear_sets};
+pub use flips::{FLIP_WORDS, Linear, Words, linear_pairs};
 pub use graph::{Literal, NodeId, NodeKind, Subject};
 pub use patterns::Patterns;
 pub(crate) use signature::Running;

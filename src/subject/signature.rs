@@ -51,10 +51,15 @@ pub struct Simulation<'a> {
 impl<'a> Simulation<'a> {
     /// Starts before the first word.
     pub fn new(subject: &'a Subject, patterns: &'a Patterns) -> Self {
+        Self::at(subject, patterns, 0)
+    }
+
+    /// Starts before word `next`.
+    pub fn at(subject: &'a Subject, patterns: &'a Patterns, next: usize) -> Self {
         Self {
             subject,
             patterns,
-            next: 0,
+            next,
             words: vec![0; subject.node_count()],
         }
     }
@@ -151,6 +156,19 @@ impl Signatures {
             hashes,
             first,
             ones,
+        }
+    }
+
+    /// Signs nodes that were added to the graph since: exclusive ors, whose
+    /// signatures follow from those of their fan-ins.
+    pub fn extend(&mut self, subject: &Subject) {
+        for node in subject.nodes().skip(self.hashes.len()) {
+            let NodeKind::Xor(x, y) = subject.kind(node) else {
+                unreachable!("only exclusive ors are added");
+            };
+            self.hashes.push(self.hash(x) ^ self.hash(y));
+            self.first.grow(subject.node_count());
+            self.first.set(node.index(), self.first(x) ^ self.first(y));
         }
     }
 

@@ -9,6 +9,7 @@
 
 use super::model::DelayModel;
 use crate::netlist::{BoxId, Driver, EndPoint, GateId, NetId, Netlist, RegisterId, Topology};
+use std::collections::BTreeSet;
 
 /// What a path starts from.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
@@ -67,6 +68,8 @@ pub struct StartGroup {
     pub class: StartClass,
     /// Their set among the assumptions, 0 without any.
     pub set: u8,
+    /// The way their paths take (see [`crate::netlist::Asserted`]), 0 for any.
+    pub way: u8,
 }
 
 /// Ends that assumptions do not tell apart.
@@ -76,6 +79,40 @@ pub struct EndGroup {
     pub class: EndClass,
     /// Their set among the assumptions, 0 without any.
     pub set: u8,
+    /// The way paths to them take, 0 for any.
+    pub way: u8,
+}
+
+impl StartGroup {
+    /// Whether starts of the group `own`, which a net belongs to, are among these.
+    #[inline]
+    pub fn holds(self, own: Self) -> bool {
+        (self.class, self.set) == (own.class, own.set)
+    }
+
+    /// The group once for each way its paths may have to take.
+    pub fn by_way(self, netlist: &Netlist) -> Vec<Self> {
+        let ways = netlist
+            .asserted()
+            .map_or_else(|| BTreeSet::from([0]), |own| own.ways_from(self.set));
+        ways.into_iter().map(|way| Self { way, ..self }).collect()
+    }
+}
+
+impl EndGroup {
+    /// Whether ends of the group `own`, which an end belongs to, are among these.
+    #[inline]
+    pub fn holds(self, own: Self) -> bool {
+        (self.class, self.set) == (own.class, own.set)
+    }
+
+    /// The group once for each way paths to it may have to take.
+    pub fn by_way(self, netlist: &Netlist) -> Vec<Self> {
+        let ways = netlist
+            .asserted()
+            .map_or_else(|| BTreeSet::from([0]), |own| own.ways_to(self.set));
+        ways.into_iter().map(|way| Self { way, ..self }).collect()
+    }
 }
 
 /// A kind of path.
@@ -94,8 +131,25 @@ impl PathKind {
             start: StartGroup {
                 class: start,
                 set: 0,
+                way: 0,
             },
-            end: EndGroup { class: end, set: 0 },
+            end: EndGroup {
+                class: end,
+                set: 0,
+                way: 0,
+            },
+        }
+    }
+
+    /// The kind of the paths from `start` to ends of the group `end`, on the way of
+    /// the start.
+    pub fn from_to(start: StartGroup, end: EndGroup) -> Self {
+        Self {
+            start,
+            end: EndGroup {
+                way: start.way,
+                ..end
+            },
         }
     }
 
@@ -139,6 +193,11 @@ impl End {
     /// The group the end belongs to; `None` when no path to it counts.
     pub fn group(self, netlist: &Netlist) -> Option<EndGroup> {
         let class = self.class();
+        if let (Self::BoxInput(id, pin), Some(declared)) = (self, netlist.declared())
+            && declared.passes(id, pin)
+        {
+            return None;
+        }
         let set = match netlist.asserted() {
             None => 0,
             Some(asserted) => asserted.end_set(match self {
@@ -148,7 +207,13 @@ impl End {
                 Self::Cut(gate) => EndPoint::Net(netlist.gate_output(gate)),
             })?,
         };
-        Some(EndGroup { class, set })
+        let way = 0;
+        Some(EndGroup { class, set, way })
+    }
+
+    /// Whether the end is among those of a group.
+    pub fn is_in(self, netlist: &Netlist, group: EndGroup) -> bool {
+        self.group(netlist).is_some_and(|own| group.holds(own))
     }
 
     /// Its place in a record: the port or net, in plain words.
@@ -233,12 +298,13 @@ fn all_ends<'a>(netlist: &'a Netlist, topology: &'a Topology) -> impl Iterator<I
 /// The group of starts a net belongs to, if it is a start from which paths count.
 #[inline]
 pub fn start_group(netlist: &Netlist, topology: &Topology, net: NetId) -> Option<StartGroup> {
-    let class = start_class(netlist, topology, net)?;
+    let class = start_class(netlist, topology, net).filter(|_| !netlist.is_barred(net))?;
     let set = match netlist.asserted() {
         None => 0,
         Some(asserted) => asserted.start_set(net)?,
     };
-    Some(StartGroup { class, set })
+    let way = 0;
+    Some(StartGroup { class, set, way })
 }
 
 /// When a start is ready, in ticks of the delay model.

@@ -24,8 +24,8 @@ use std::collections::BinaryHeap;
 const MAX_LITERALS: usize = 1024;
 
 /// A literal as `pin << 1 | inverted`.
-type Literal = u32;
-type Cubes = Vec<Vec<Literal>>;
+pub(super) type Literal = u32;
+pub(super) type Cubes = Vec<Vec<Literal>>;
 
 /// Depth of each pin of `function` in its two-input form.
 pub(super) fn pin_depths(function: &Function) -> Vec<i32> {
@@ -35,7 +35,8 @@ pub(super) fn pin_depths(function: &Function) -> Vec<i32> {
     }
 }
 
-fn rows_of(cover: &Cover) -> Cubes {
+/// The rows of a cover as written.
+pub(super) fn rows_of(cover: &Cover) -> Cubes {
     cover
         .cubes()
         .map(|cube| {
@@ -76,11 +77,15 @@ fn table_depths(table: TruthTable) -> Vec<i32> {
         depths[pin] = 1;
         return depths;
     }
-    let on = cube_depths(n, &irredundant(table.bits(), table.bits(), n));
-    let off_bits = table.complement().bits();
-    let off = cube_depths(n, &irredundant(off_bits, off_bits, n));
+    let on = cube_depths(n, &sum_of_products(table));
+    let off = cube_depths(n, &sum_of_products(table.complement()));
     let key = |depths: &Vec<i32>| (depths.iter().copied().max(), depths.iter().sum::<i32>());
     if key(&off) < key(&on) { off } else { on }
+}
+
+/// An irredundant sum of products of a table.
+pub(super) fn sum_of_products(table: TruthTable) -> Cubes {
+    irredundant(table.bits(), table.bits(), table.inputs())
 }
 
 /// An irredundant sum of products between `lower` and `upper` over the first

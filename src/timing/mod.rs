@@ -9,20 +9,29 @@
 //! Invariant: times are ticks of the delay model in `i32`; [`NEVER`] marks what
 //! no path reaches.
 
+mod delays;
+pub mod effort;
 mod ends;
 mod factored;
+mod goals;
 mod model;
+mod near;
 mod passes;
 mod path;
+mod price;
 mod report;
 mod time;
 
+pub use delays::{Loaded, PinDelays};
 pub use ends::{
     End, EndClass, EndGroup, PathKind, StartClass, StartGroup, end_net, ends, grouped_ends,
     start_group, start_time,
 };
-pub use model::{DelayModel, PinDelays};
+pub use goals::{Basis, Goals, Spare, Spares};
+pub use model::DelayModel;
+pub use near::{MANY, Near};
 pub use passes::{Arrivals, NEVER, Tails, end_arrival, gate_arrival, start_times};
 pub use path::{PathStep, longest_path};
+pub use price::{Curve, PinPrice};
 pub use report::{KindTiming, Slack, Timing, depth_histogram, longest_free_buffers};
 pub use time::Time;

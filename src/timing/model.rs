@@ -1,17 +1,19 @@
-//! Delay models and the delay of every pin under one of them.
+//! Delay models: what a gate costs.
 //!
-//! A model prices a *function*, pin by pin, in whole ticks. Functions of a
-//! netlist are interned, so [`PinDelays`] prices each once and a pass over the
-//! gates only looks up. Invariant: a function, its complement and the same
-//! function with pins read inverted cost the same, because a planned gate may
-//! be written in any of these polarities.
+//! A model prices a *function*, pin by pin, in whole ticks. `unit` and `pairs`
+//! look at nothing else; their prices do not depend on polarity either. Under the
+//! others delay grows with the load on a gate's output: the price of a pin is then
+//! a curve over that load and the pin is a load itself (see [`PinPrice`]).
 //!
 //! Method: `unit` is common practice; `pairs` counts the levels of a two-input
-//! form, the published way to compare wide with narrow gates.
+//! form, the published way to compare wide with narrow gates; `logical-effort` is
+//! that of Sutherland, Sproull and Harris (1999), see [`super::effort`].
 
+use super::effort;
 use super::factored;
+use super::price::PinPrice;
 use super::time::Time;
-use crate::netlist::{Function, FunctionId, GateId, Netlist, Shape};
+use crate::netlist::{Function, Shape, TruthTable};
 
 /// How gates are priced.
 #[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
@@ -21,17 +23,20 @@ pub enum DelayModel {
     /// Two-input levels: a product or parity of k inputs ⌈log2 k⌉, a one-input
     /// gate 0, any other function the depth of its factored two-input form.
     Pairs,
+    /// d = g·h + p in τ, every gate at unit drive and h from what reads it.
+    LogicalEffort,
 }
 
 impl DelayModel {
-    /// Every model, in the order they are offered.
-    pub const ALL: [Self; 2] = [Self::Unit, Self::Pairs];
+    /// Every model that needs no file, in the order they are offered.
+    pub const ALL: [Self; 3] = [Self::Unit, Self::Pairs, Self::LogicalEffort];
 
     /// The word used on the command line and in records.
     pub fn name(self) -> &'static str {
         match self {
             Self::Unit => "unit",
             Self::Pairs => "pairs",
+            Self::LogicalEffort => "logical-effort",
         }
     }
 
@@ -45,12 +50,67 @@ impl DelayModel {
         match self {
             Self::Unit => "gate delays",
             Self::Pairs => "two-input levels",
+            Self::LogicalEffort => "τ",
         }
     }
 
-    /// Ticks in one unit: both models here count whole units.
+    /// Ticks in one unit: 1 where whole units are counted, else 1000.
     pub fn ticks_per_unit(self) -> i32 {
-        1
+        match self {
+            Self::Unit | Self::Pairs => 1,
+            Self::LogicalEffort => 1000,
+        }
+    }
+
+    /// Whether delay depends on what reads a gate.
+    pub fn depends_on_load(self) -> bool {
+        match self {
+            Self::Unit | Self::Pairs => false,
+            Self::LogicalEffort => true,
+        }
+    }
+
+    /// What an output port, a register or a box loads its net with.
+    pub(super) fn end_load(self) -> i32 {
+        match self {
+            Self::Unit | Self::Pairs => 0,
+            // One inverter; common practice, no source.
+            Self::LogicalEffort => 1000,
+        }
+    }
+
+    /// The load assumed of a gate whose readers are not known yet: two pins of
+    /// two-input NANDs.
+    fn assumed_load(self) -> i32 {
+        match self {
+            Self::Unit | Self::Pairs => 0,
+            Self::LogicalEffort => 2667,
+        }
+    }
+
+    /// The least that a new gate of `inputs` inputs can delay any of them.
+    pub fn least_delay(self, inputs: usize) -> i32 {
+        let product = Function::product(&vec![false; inputs], true);
+        let parity = (2..=TruthTable::MAX_INPUTS)
+            .contains(&inputs)
+            .then(|| Function::parity(inputs, false));
+        let least = [Some(product), parity]
+            .into_iter()
+            .flatten()
+            .flat_map(|function| {
+                let prices = self.prices(&function, true);
+                prices
+                    .into_iter()
+                    .map(|price| price.delay.at(self.end_load()))
+            });
+        least.min().unwrap_or(0)
+    }
+
+    /// The least that a two-input exclusive-or can delay.
+    pub fn least_parity_delay(self) -> i32 {
+        let prices = self.prices(&Function::parity(2, false), true);
+        let delays = prices.iter().map(|price| price.delay.at(self.end_load()));
+        delays.min().unwrap_or(0)
     }
 
     /// Ticks as a time in the unit of the model.
@@ -58,7 +118,31 @@ impl DelayModel {
         Time::of_ticks(ticks, self.ticks_per_unit())
     }
 
-    /// The delay from each pin of `function` to its output, in ticks.
+    /// The price of every pin of `function`, pin 0 first, where delay depends on
+    /// load. `free_inversions` is that of the netlist, see
+    /// [`Netlist::has_inverted_edges`](crate::netlist::Netlist::has_inverted_edges).
+    pub fn prices(self, function: &Function, free_inversions: bool) -> Vec<PinPrice> {
+        match self {
+            Self::Unit | Self::Pairs => self
+                .pin_delays(function)
+                .into_iter()
+                .map(PinPrice::without_load)
+                .collect(),
+            Self::LogicalEffort => effort::prices(function, free_inversions),
+        }
+    }
+
+    /// The price of a pin whose delay was declared, in whole units: it loads what an
+    /// end of a path does.
+    pub(super) fn declared_price(self, delay: i32) -> PinPrice {
+        PinPrice {
+            load: self.end_load(),
+            ..PinPrice::without_load(delay.saturating_mul(self.ticks_per_unit()))
+        }
+    }
+
+    /// The delay from each pin of `function` to its output, in ticks; where delay
+    /// depends on load, under an assumed one, for what is not placed yet.
     pub fn pin_delays(self, function: &Function) -> Vec<i32> {
         let pins = function.inputs();
         match self {
@@ -68,10 +152,17 @@ impl DelayModel {
                 Shape::Product | Shape::Parity => vec![levels(pins); pins],
                 Shape::Other => factored::pin_depths(function),
             },
+            // Polarities are not settled either, so inversions count as free.
+            Self::LogicalEffort => self
+                .prices(function, true)
+                .iter()
+                .map(|price| price.delay.at(self.assumed_load()))
+                .collect(),
         }
     }
 
-    /// The delay from one pin; [`PinDelays`] is for many.
+    /// The delay from one pin, see [`Self::pin_delays`];
+    /// [`PinDelays`](super::PinDelays) is for many.
     pub fn pin_delay(self, function: &Function, pin: usize) -> i32 {
         self.pin_delays(function)[pin]
     }
@@ -80,51 +171,4 @@ impl DelayModel {
 /// ⌈log2 k⌉ for k ≥ 1.
 fn levels(inputs: usize) -> i32 {
     (usize::BITS - (inputs.max(1) - 1).leading_zeros()) as i32
-}
-
-/// The delay of every pin of every function of one netlist.
-pub struct PinDelays {
-    model: DelayModel,
-    starts: Vec<u32>,
-    ticks: Vec<i32>,
-}
-
-impl PinDelays {
-    /// Prices the functions of `netlist`.
-    pub fn of(netlist: &Netlist, model: DelayModel) -> Self {
-        Self::priced(netlist, model, |function| model.pin_delays(function))
-    }
-
-    /// As `unit`, but buffers and inverters cost nothing.
-    pub fn free_buffers(netlist: &Netlist) -> Self {
-        Self::priced(netlist, DelayModel::Unit, |function| {
-            let free = matches!(function.shape(), Shape::Buffer | Shape::Inverter);
-            vec![i32::from(!free); function.inputs()]
-        })
-    }
-
-    fn priced(netlist: &Netlist, model: DelayModel, price: impl Fn(&Function) -> Vec<i32>) -> Self {
-        let (mut starts, mut ticks) = (vec![0], Vec::new());
-        for id in 0..netlist.function_count() {
-            ticks.extend(price(netlist.function_of(FunctionId::new(id))));
-            starts.push(ticks.len() as u32);
-        }
-        Self {
-            model,
-            starts,
-            ticks,
-        }
-    }
-
-    /// The model the delays come from.
-    pub fn model(&self) -> DelayModel {
-        self.model
-    }
-
-    /// The delays of one gate, pin 0 first.
-    #[inline]
-    pub fn of_gate(&self, netlist: &Netlist, gate: GateId) -> &[i32] {
-        let i = netlist.function_id(gate).index();
-        &self.ticks[self.starts[i] as usize..self.starts[i + 1] as usize]
-    }
 }

@@ -4,8 +4,9 @@
 //! net is the longest path from it to an end. Both are one loop over the gates
 //! in topological order (the longest-path recurrence on an acyclic graph).
 
+use super::delays::PinDelays;
 use super::ends::{End, EndGroup, StartGroup, end_net, grouped_ends, start_group, start_time};
-use super::model::{DelayModel, PinDelays};
+use super::model::DelayModel;
 use crate::netlist::{GateId, NetId, Netlist, Topology};
 
 /// The time of what no path reaches; below every real time.
@@ -31,9 +32,10 @@ impl Arrivals {
         group: Option<StartGroup>,
     ) -> Self {
         let mut by_net = start_times(netlist, topology, delays.model(), group);
+        let way = group.map_or(0, |group| group.way);
         for &gate in &topology.order {
             let output = netlist.gate_output(gate);
-            if !topology.is_cut(output) {
+            if !topology.is_cut(output) && !netlist.is_barred_on(way, output) {
                 by_net[output.index()] = gate_arrival(netlist, delays, &by_net, gate);
             }
         }
@@ -58,7 +60,8 @@ pub fn start_times(
     let mut by_net = vec![NEVER; netlist.net_count()];
     for net in netlist.nets() {
         let own = start_group(netlist, topology, net);
-        if own.is_some_and(|own| group.is_none_or(|only| only == own)) {
+        let wanted = own.is_some_and(|own| group.is_none_or(|only| only.holds(own)));
+        if wanted && group.is_none_or(|only| !netlist.is_barred_on(only.way, net)) {
             by_net[net.index()] = start_time(netlist, model, net);
         }
     }
@@ -76,7 +79,7 @@ pub fn gate_arrival(netlist: &Netlist, delays: &PinDelays, by_net: &[i32], gate:
     for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
         let at = by_net[net.index()];
         if at != NEVER {
-            latest = latest.max(at + delay);
+            latest = latest.max(at.saturating_add(*delay));
         }
     }
     latest
@@ -105,28 +108,43 @@ impl Tails {
         delays: &PinDelays,
         group: Option<EndGroup>,
     ) -> Self {
-        let wanted = |own: EndGroup| group.is_none_or(|only| only == own);
+        let seed = |_: End, own: EndGroup| group.is_none_or(|only| only.holds(own)).then_some(0);
+        let way = group.map_or(0, |group| group.way);
+        Self::from_seeds(netlist, topology, delays, way, seed)
+    }
+
+    /// For every net the most of a path to an end and what `seed` gives for that
+    /// end, over the ends for which it gives something and the paths of one way.
+    pub fn from_seeds(
+        netlist: &Netlist,
+        topology: &Topology,
+        delays: &PinDelays,
+        way: u8,
+        seed: impl Fn(End, EndGroup) -> Option<i32>,
+    ) -> Self {
         let mut by_net = vec![NEVER; netlist.net_count()];
         for (end, own) in grouped_ends(netlist, topology) {
-            if let (true, Some(net)) = (wanted(own), end_net(netlist, end)) {
-                by_net[net.index()] = 0;
+            if let (Some(own), Some(net)) = (seed(end, own), end_net(netlist, end)) {
+                let slot = &mut by_net[net.index()];
+                *slot = own.max(*slot);
             }
         }
         for &gate in topology.order.iter().rev() {
             let output = netlist.gate_output(gate);
             let tail = if topology.is_cut(output) {
-                let own = End::Cut(gate).group(netlist);
-                if own.is_some_and(wanted) { 0 } else { NEVER }
+                let end = End::Cut(gate);
+                let own = end.group(netlist).and_then(|own| seed(end, own));
+                own.unwrap_or(NEVER)
             } else {
                 by_net[output.index()]
             };
-            if tail == NEVER || netlist.is_barred(output) {
+            if tail == NEVER || netlist.is_barred_on(way, output) {
                 continue;
             }
             let ticks = delays.of_gate(netlist, gate);
             for (net, delay) in netlist.fan_ins(gate).iter().zip(ticks) {
                 let slot = &mut by_net[net.index()];
-                *slot = (*slot).max(tail + delay);
+                *slot = (*slot).max(tail.saturating_add(*delay));
             }
         }
         Self { by_net }

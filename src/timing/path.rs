@@ -4,8 +4,8 @@
 //! the gate's arrival; of several the first pin is taken, so equal netlists
 //! give equal paths.
 
+use super::delays::PinDelays;
 use super::ends::{End, end_net};
-use super::model::PinDelays;
 use super::passes::{NEVER, gate_arrival};
 use crate::netlist::{Driver, GateId, NetId, Netlist, Topology};
 
@@ -90,7 +90,7 @@ fn latest_pin(
     pins.into_iter()
         .find(|(net, delay)| {
             let at = by_net[net.index()];
-            at != NEVER && at + *delay == arrival
+            at != NEVER && at.saturating_add(**delay) == arrival
         })
         .map(|(&net, _)| net)
 }

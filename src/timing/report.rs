@@ -4,8 +4,9 @@
 //! one class occurs; a purely combinational netlist pays for one of each.
 //! Slack is counted against the longest path of the same kind.
 
+use super::delays::PinDelays;
 use super::ends::{End, EndGroup, PathKind, StartGroup, end_net, grouped_ends, start_group};
-use super::model::{DelayModel, PinDelays};
+use super::model::DelayModel;
 use super::passes::{Arrivals, NEVER, Tails, end_arrival};
 use super::path::{PathStep, longest_path};
 use super::time::Time;
@@ -70,27 +71,28 @@ impl Timing {
         let delays = PinDelays::of(netlist, model);
         let arrivals = Arrivals::of(netlist, topology, &delays);
         let tails = Tails::of(netlist, topology, &delays, None);
-        let starts: BTreeSet<StartGroup> = netlist
-            .nets()
-            .filter_map(|net| start_group(netlist, topology, net))
-            .collect();
+        let starts = start_groups(netlist, topology);
         let several = starts.len() > 1;
         let starts = starts
             .into_iter()
             .map(|group| {
                 let own = || Arrivals::from(netlist, topology, &delays, Some(group));
-                (group, several.then(own))
+                (group, (several || group.way > 0).then(own))
             })
             .collect();
         let present: BTreeSet<EndGroup> = grouped_ends(netlist, topology)
             .map(|(_, group)| group)
+            .collect();
+        let present: Vec<EndGroup> = present
+            .into_iter()
+            .flat_map(|group| group.by_way(netlist))
             .collect();
         let several = present.len() > 1;
         let end_tails = present
             .into_iter()
             .map(|group| {
                 let own = || Tails::of(netlist, topology, &delays, Some(group));
-                (group, several.then(own))
+                (group, (several || group.way > 0).then(own))
             })
             .collect();
         let mut timing = Self {
@@ -134,7 +136,7 @@ impl Timing {
                 if arrival == NEVER {
                     continue;
                 }
-                let kind = PathKind { start, end: group };
+                let kind = PathKind::from_to(start, group);
                 let counted = match pairing(netlist, kind) {
                     Pairing::Counts => &mut kinds,
                     Pairing::Cycles { .. } => &mut relaxed,
@@ -189,7 +191,7 @@ impl Timing {
                 }
                 let starts = self.by_start().filter(|&(start, _)| {
                     start.class == start_class
-                        && self.kind(PathKind { start, end: group }).is_some()
+                        && self.kind(PathKind::from_to(start, group)).is_some()
                 });
                 let latest = starts
                     .map(|(_, by_net)| end_arrival(netlist, &self.delays, by_net, end))
@@ -210,7 +212,7 @@ impl Timing {
         };
         let starts = self
             .by_start()
-            .filter(|&(start, _)| self.kind(PathKind { start, end: group }).is_some());
+            .filter(|&(start, _)| self.kind(PathKind::from_to(start, group)).is_some());
         starts
             .map(|(_, by_net)| end_arrival(netlist, &self.delays, by_net, end))
             .max()
@@ -230,7 +232,7 @@ impl Timing {
                 at.map_or(NEVER, |(_, by_net)| by_net[net.index()]),
                 tail.map_or(NEVER, find),
             );
-            at != NEVER && tail != NEVER && at + tail == longest
+            at != NEVER && tail != NEVER && at.saturating_add(tail) == longest
         })
     }
 
@@ -284,7 +286,7 @@ impl Timing {
                 let (true, Some(timing)) = (tail != NEVER, self.kind(kind)) else {
                     continue;
                 };
-                let ticks = timing.longest - (at + tail);
+                let ticks = timing.longest - at.saturating_add(tail);
                 if least.is_none_or(|slack| ticks < slack.ticks) {
                     least = Some(Slack { ticks, kind });
                 }
@@ -315,17 +317,28 @@ impl KindTiming {
 
 fn pairing(netlist: &Netlist, kind: PathKind) -> Pairing {
     netlist.asserted().map_or(Pairing::Counts, |asserted| {
-        asserted.pairing(kind.start.set, kind.end.set)
+        let (start, end) = (kind.start, kind.end);
+        if start.way != end.way || asserted.way(start.set, end.set) != start.way {
+            return Pairing::Never;
+        }
+        asserted.pairing(start.set, end.set)
     })
+}
+
+/// The groups of starts that occur, once for each way.
+fn start_groups(netlist: &Netlist, topology: &Topology) -> Vec<StartGroup> {
+    let present: BTreeSet<StartGroup> = netlist
+        .nets()
+        .filter_map(|net| start_group(netlist, topology, net))
+        .collect();
+    let by_way = present.into_iter().flat_map(|own| own.by_way(netlist));
+    by_way.collect()
 }
 
 /// The longest path under `unit` when buffers and inverters cost nothing.
 pub fn longest_free_buffers(netlist: &Netlist, topology: &Topology) -> i32 {
     let delays = PinDelays::free_buffers(netlist);
-    let starts: BTreeSet<StartGroup> = netlist
-        .nets()
-        .filter_map(|net| start_group(netlist, topology, net))
-        .collect();
+    let starts = start_groups(netlist, topology);
     // One pass is enough while every pair of a start and an end counts.
     let together = netlist.asserted().is_none();
     let groups: Vec<Option<StartGroup>> = if together {
@@ -338,7 +351,7 @@ pub fn longest_free_buffers(netlist: &Netlist, topology: &Topology) -> i32 {
         let arrivals = Arrivals::from(netlist, topology, &delays, group);
         for (end, own) in grouped_ends(netlist, topology) {
             let counts = group.is_none_or(|start| {
-                pairing(netlist, PathKind { start, end: own }) == Pairing::Counts
+                pairing(netlist, PathKind::from_to(start, own)) == Pairing::Counts
             });
             if counts {
                 longest = longest.max(end_arrival(netlist, &delays, &arrivals.by_net, end));

@@ -7,6 +7,7 @@
 //! order gates are reached, so shuffled gates give another numbering.
 
 use super::circuit::{Circuit, Function};
+use super::table::cubes;
 use std::collections::HashMap;
 use std::fmt::Write;
 
@@ -90,6 +91,19 @@ impl Maker {
             Function::Nor => self.any(literals) ^ 1,
             Function::Xor => self.tree(literals, Self::xor),
             Function::Xnor => self.tree(literals, Self::xor) ^ 1,
+            Function::Table(ones) => {
+                let products: Vec<u32> = cubes(ones, literals.len())
+                    .iter()
+                    .map(|cube| {
+                        let pins = cube.iter().zip(literals);
+                        let product: Vec<u32> = pins
+                            .filter_map(|(literal, pin)| literal.map(|one| pin ^ u32::from(!one)))
+                            .collect();
+                        self.all(&product)
+                    })
+                    .collect();
+                self.any(&products)
+            }
             Function::Cover(rows) => {
                 let mut products = Vec::with_capacity(rows.len());
                 for row in rows {
@@ -159,7 +173,8 @@ impl Aig {
         levels.into_iter().max().unwrap_or(0)
     }
 
-    fn first_and(&self) -> usize {
+    /// The variable of AND number 0.
+    pub(super) fn first_and(&self) -> usize {
         self.inputs.len() + self.registers.len() + 1
     }
 

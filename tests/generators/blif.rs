@@ -2,6 +2,7 @@
 //! gates stand; every register one `.latch` without clock.
 
 use super::circuit::{Circuit, Function};
+use super::table::cubes;
 use std::fmt::Write;
 
 /// Writes a dot-word and its list, continued over lines of about 78 characters.
@@ -43,6 +44,16 @@ pub(super) fn rows(text: &mut String, function: Function, inputs: usize) {
             for minterm in (0..1u32 << inputs).filter(|m| m.count_ones() % 2 == odd) {
                 text.extend((0..inputs).map(|i| if minterm >> i & 1 == 1 { '1' } else { '0' }));
                 text.push_str(" 1\n");
+            }
+        }
+        Function::Table(ones) => {
+            for cube in cubes(ones, inputs) {
+                text.extend(cube.iter().map(|literal| match literal {
+                    Some(true) => '1',
+                    Some(false) => '0',
+                    None => '-',
+                }));
+                text.push_str(if inputs == 0 { "1\n" } else { " 1\n" });
             }
         }
         Function::Cover(rows) => {

@@ -42,6 +42,9 @@ pub enum Function {
     Xnor,
     /// The OR of the rows, written as BLIF writes them: `1`, `0` or `-` per input.
     Cover(&'static [&'static str]),
+    /// A truth table of up to six inputs: bit `m` is the value where input `i`
+    /// is bit `i` of `m`.
+    Table(u64),
 }
 
 impl Function {
@@ -61,6 +64,14 @@ impl Function {
             Self::Nor => !or(),
             Self::Xor => xor(),
             Self::Xnor => !xor(),
+            Self::Table(ones) => (0..1u32 << inputs.len())
+                .filter(|m| ones >> m & 1 == 1)
+                .fold(0, |any, m| {
+                    let pins = inputs.iter().enumerate();
+                    any | pins.fold(!0, |all, (i, w)| {
+                        all & if m >> i & 1 == 1 { *w } else { !w }
+                    })
+                }),
             Self::Cover(rows) => rows.iter().fold(0, |any, row| {
                 let literals = row.bytes().zip(inputs);
                 any | literals.fold(!0, |all, (literal, word)| match literal {

@@ -53,7 +53,8 @@ pub fn adder_subtractor(bits: usize, cell: Cell) -> Generated {
         carry_in: true,
         ..Word::new(Kind::Adder, bits, cell)
     };
-    let truth = word.place(&mut c, &a, &b, Some(mode));
+    let mut truth = word.place(&mut c, &a, &b, Some(mode));
+    truth.mode = Some(mode);
     c.output_bus(&truth.sums, "s");
     c.output(truth.carry_out.expect("asked for"), "cout");
     Generated::new(

@@ -1,10 +1,12 @@
-//! Adders whose carries do not ripple: lookahead in groups (Weinberger and
-//! Smith 1958), Kogge and Stone 1973, select (Bedrij 1962), skip (Lehman and
-//! Burla 1961). Built from g = a·b and p = a ⊕ b with AND, OR, XOR and
+//! Adders whose carries do not ripple: lookahead, flat and in groups (Weinberger
+//! and Smith 1958), select (Bedrij 1962), skip (Lehman and Burla 1961),
+//! increment (Tyagi 1993), conditional sum (Sklansky 1960); the prefix networks
+//! are in `prefix`. Built from g = a·b and p = a ⊕ b with AND, OR, XOR and
 //! multiplexer gates.
 
 use super::cells::{Addend, Carry, Cell};
 use super::circuit::{Circuit, Function, Net};
+use super::prefix;
 use super::words::Architecture;
 
 /// Adds two words; the carry-in may be constant.
@@ -17,9 +19,23 @@ pub fn add(
 ) -> (Vec<Net>, Carry) {
     match architecture {
         Architecture::Ripple(cell) => ripple(c, cell, a, b, start),
-        Architecture::CarrySelect(block) => select(c, block, a, b, start),
+        Architecture::CarrySelect(block) => {
+            let lows: Vec<usize> = (0..a.len()).step_by(block).collect();
+            select(c, &lows, a, b, start)
+        }
+        Architecture::CarrySelectGrowing => {
+            let sizes = (2..).scan(0, |low, size| {
+                let this = *low;
+                *low += size;
+                Some(this)
+            });
+            let lows: Vec<usize> = sizes.take_while(|&low| low < a.len()).collect();
+            select(c, &lows, a, b, start)
+        }
+        Architecture::Increment(block) => increment(c, block, a, b, start),
+        Architecture::ConditionalSum => conditional_sum(c, a, b, start),
         Architecture::CarrySkip(block) => skip(c, block, a, b, start),
-        Architecture::GroupLookahead(_) | Architecture::KoggeStone => {
+        _ => {
             // Position 0 takes the carry-in into its generate, so that the
             // carry network proper starts without one.
             let (sum, first) = Cell::PropagateXor.step(c, a[0], Addend::Net(b[0]), start);
@@ -32,9 +48,9 @@ pub fn add(
                 p.push(Some(c.xor(a[i], b[i])));
             }
             let carries = match architecture {
-                Architecture::KoggeStone => kogge_stone(c, &g, &p),
                 Architecture::GroupLookahead(size) => lookahead(c, size, &g, &p),
-                _ => unreachable!("matched above"),
+                Architecture::FlatLookahead => lookahead(c, g.len(), &g, &p),
+                network => prefix::carries(c, network, &g, &p),
             };
             let mut sums = vec![sum];
             for i in 1..a.len() {
@@ -55,24 +71,6 @@ fn ripple(c: &mut Circuit, cell: Cell, a: &[Net], b: &[Net], start: Carry) -> (V
         carry = next;
     }
     (sums, carry)
-}
-
-/// Generates of the spans [i:0]; a propagate of `None` is 0.
-fn kogge_stone(c: &mut Circuit, g: &[Net], p: &[Option<Net>]) -> Vec<Net> {
-    let (mut g, mut p) = (g.to_vec(), p.to_vec());
-    let mut distance = 1;
-    while distance < g.len() {
-        let (lower_g, lower_p) = (g.clone(), p.clone());
-        for i in distance..g.len() {
-            if let Some(high) = p[i] {
-                let passed = c.and(high, lower_g[i - distance]);
-                g[i] = c.or(g[i], passed);
-                p[i] = lower_p[i - distance].map(|low| c.and(high, low));
-            }
-        }
-        distance *= 2;
-    }
-    g
 }
 
 /// Carries by two-level terms inside groups, group terms handled alike above.
@@ -120,23 +118,111 @@ fn lookahead(c: &mut Circuit, size: usize, g: &[Net], p: &[Option<Net>]) -> Vec<
     carries
 }
 
-fn select(c: &mut Circuit, block: usize, a: &[Net], b: &[Net], start: Carry) -> (Vec<Net>, Carry) {
+fn net(carry: Carry) -> Net {
+    let Carry::Net(net) = carry else {
+        unreachable!("carries behind the first position are nets")
+    };
+    net
+}
+
+/// Blocks from each of `lows` to the next.
+fn select(
+    c: &mut Circuit,
+    lows: &[usize],
+    a: &[Net],
+    b: &[Net],
+    start: Carry,
+) -> (Vec<Net>, Carry) {
+    let cell = Cell::PropagateXor;
+    let (mut sums, mut carry) = (Vec::new(), start);
+    for (block, &low) in lows.iter().enumerate() {
+        let high = lows.get(block + 1).copied().unwrap_or(a.len());
+        let (a, b) = (&a[low..high], &b[low..high]);
+        if block == 0 {
+            (sums, carry) = ripple(c, cell, a, b, start);
+            continue;
+        }
+        let (s0, c0) = ripple(c, cell, a, b, Carry::Zero);
+        let (s1, c1) = ripple(c, cell, a, b, Carry::One);
+        let choice = net(carry);
+        for (s0, s1) in s0.into_iter().zip(s1) {
+            sums.push(c.mux(choice, s1, s0));
+        }
+        carry = Carry::Net(c.mux(choice, net(c1), net(c0)));
+    }
+    (sums, carry)
+}
+
+/// Blocks are added with carry 0; behind the first the real carry is then added
+/// to the block's sum, which passes it on while the sum bits are 1.
+fn increment(
+    c: &mut Circuit,
+    block: usize,
+    a: &[Net],
+    b: &[Net],
+    start: Carry,
+) -> (Vec<Net>, Carry) {
     let first = block.min(a.len());
     let cell = Cell::PropagateXor;
     let (mut sums, mut carry) = ripple(c, cell, &a[..first], &b[..first], start);
     for low in (first..a.len()).step_by(block) {
         let high = (low + block).min(a.len());
-        let (s0, c0) = ripple(c, cell, &a[low..high], &b[low..high], Carry::Zero);
-        let (s1, c1) = ripple(c, cell, &a[low..high], &b[low..high], Carry::One);
-        let (Carry::Net(choice), Carry::Net(c0), Carry::Net(c1)) = (carry, c0, c1) else {
-            unreachable!("carries behind the first position are nets")
-        };
-        for (s0, s1) in s0.into_iter().zip(s1) {
-            sums.push(c.mux(choice, s1, s0));
+        let (local, out) = ripple(c, cell, &a[low..high], &b[low..high], Carry::Zero);
+        let mut passing = net(carry);
+        for sum in local {
+            sums.push(c.xor(sum, passing));
+            passing = c.and(sum, passing);
         }
-        carry = Carry::Net(c.mux(choice, c1, c0));
+        carry = Carry::Net(c.or(net(out), passing));
     }
     (sums, carry)
+}
+
+/// Both results of each half; the upper ones chosen by the carries of the lower.
+fn conditional_sum(c: &mut Circuit, a: &[Net], b: &[Net], start: Carry) -> (Vec<Net>, Carry) {
+    let cell = Cell::PropagateXor;
+    // One block per position: sums for carry 0 and 1, carries for 0 and 1.
+    let mut blocks: Vec<[Vec<Net>; 2]> = Vec::new();
+    let mut outs: Vec<[Net; 2]> = Vec::new();
+    for (&a, &b) in a.iter().zip(b) {
+        let (s0, c0) = cell.step(c, a, Addend::Net(b), Carry::Zero);
+        let (s1, c1) = cell.step(c, a, Addend::Net(b), Carry::One);
+        blocks.push([vec![s0], vec![s1]]);
+        outs.push([net(c0), net(c1)]);
+    }
+    while blocks.len() > 1 {
+        let (mut joined, mut joined_outs) = (Vec::new(), Vec::new());
+        for (pair, out) in blocks.chunks(2).zip(outs.chunks(2)) {
+            let [low, high] = pair else {
+                joined.push(pair[0].clone());
+                joined_outs.push(out[0]);
+                continue;
+            };
+            let both = [0, 1].map(|start| {
+                let choice = out[0][start];
+                let upper = high[0].iter().zip(&high[1]);
+                let chosen: Vec<Net> = upper.map(|(&s0, &s1)| c.mux(choice, s1, s0)).collect();
+                let sums: Vec<Net> = low[start].iter().copied().chain(chosen).collect();
+                (sums, c.mux(choice, out[1][1], out[1][0]))
+            });
+            let [(sums0, out0), (sums1, out1)] = both;
+            joined.push([sums0, sums1]);
+            joined_outs.push([out0, out1]);
+        }
+        (blocks, outs) = (joined, joined_outs);
+    }
+    let [sums0, sums1] = blocks.remove(0);
+    let [out0, out1] = outs[0];
+    match start {
+        Carry::Zero => (sums0, Carry::Net(out0)),
+        Carry::One => (sums1, Carry::Net(out1)),
+        Carry::Net(choice) => {
+            let pairs = sums0.into_iter().zip(sums1);
+            let sums = pairs.map(|(s0, s1)| c.mux(choice, s1, s0)).collect();
+            (sums, Carry::Net(c.mux(choice, out1, out0)))
+        }
+        Carry::Inverted(_) => unreachable!("words start with a carry"),
+    }
 }
 
 fn skip(c: &mut Circuit, block: usize, a: &[Net], b: &[Net], start: Carry) -> (Vec<Net>, Carry) {

@@ -14,24 +14,31 @@
 #![allow(dead_code, unused_imports)]
 
 mod aig;
+mod arrays;
 mod blif;
 mod cells;
 mod circuit;
+mod comparators;
 mod disguise;
 mod embedding;
 mod fast;
 pub mod gauge;
 mod hierarchy;
 mod large;
+mod mapper;
 pub mod negatives;
+mod prefix;
 mod random;
+mod table;
 mod truth;
 pub mod witness;
 mod words;
 
 pub use aig::Aig;
+pub use arrays::{Product, Reduction, multiplier, squarer};
 pub use cells::{Addend, Carry, Cell};
 pub use circuit::{Circuit, Function, Net, Register};
+pub use comparators::{Comparator, Comparison, Relation, Shape};
 pub use disguise::{disguise, rename, shuffle_gates, shuffle_ports};
 pub use embedding::{
     Extension, accumulator, adder_subtractor, counter, gated_operands, selected_sums,
@@ -39,6 +46,7 @@ pub use embedding::{
 };
 pub use hierarchy::{Hierarchy, Item, Model, adder_hierarchy};
 pub use large::{replicated, series};
+pub use mapper::{Cells, mapped};
 pub use random::Random;
 pub use truth::{Generated, Kind, Truth};
 pub use words::{Architecture, Word};

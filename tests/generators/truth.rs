@@ -1,7 +1,9 @@
 //! What a generated circuit is known to compute, in nets of the circuit, and
 //! the check of that knowledge against plain integer arithmetic.
 
+use super::arrays::Product;
 use super::circuit::{Circuit, Net};
+use super::comparators::Comparison;
 use super::random::Random;
 use super::words::Architecture;
 
@@ -37,6 +39,11 @@ pub struct Truth {
     pub carry_out: Option<Net>,
     /// Whether carry-in and carry-out are borrows.
     pub borrow: bool,
+    /// Of an adder without carry-in net: whether the carry-in is 1.
+    pub plus_one: bool,
+    /// What complements every `b` of an adder-subtractor; `b` lists the nets
+    /// behind the XORs.
+    pub mode: Option<Net>,
     /// How it is built.
     pub architecture: Architecture,
 }
@@ -50,6 +57,10 @@ pub struct Generated {
     pub circuit: Circuit,
     /// Every arithmetic word in it.
     pub truths: Vec<Truth>,
+    /// Every comparison in it that is no word.
+    pub comparisons: Vec<Comparison>,
+    /// Every product in it.
+    pub products: Vec<Product>,
 }
 
 impl Truth {
@@ -61,10 +72,11 @@ impl Truth {
     /// The result and the carry-out that arithmetic gives for one pattern.
     fn expected(&self, a: u128, b: u128, c: Option<bool>) -> (u128, bool) {
         let n = self.bits();
+        assert!(n <= 126, "integers of 128 bits hold no more");
         let mask = (1u128 << n) - 1;
         let carry = |default: bool| u128::from(c.unwrap_or(default));
         let total = match (self.kind, self.borrow) {
-            (Kind::Adder, _) => a + b + carry(false),
+            (Kind::Adder, _) => a + b + carry(self.plus_one),
             (Kind::Subtractor, false) => a + (!b & mask) + carry(true),
             (Kind::Incrementer, _) => a + carry(true),
             (Kind::Decrementer, false) => a + mask + carry(false),
@@ -76,11 +88,7 @@ impl Truth {
 
     /// Compares the values of 64 patterns with integer arithmetic; up to 126 bits.
     pub fn check(&self, values: &[u64]) -> Result<(), String> {
-        let read = |nets: &[Net], lane: usize| {
-            nets.iter().enumerate().fold(0u128, |word, (i, net)| {
-                word | u128::from(values[net.index()] >> lane & 1) << i
-            })
-        };
+        let read = |nets: &[Net], lane: usize| read(values, nets, lane);
         for lane in 0..64 {
             let (a, b) = (read(&self.a, lane), read(&self.b, lane));
             let bit = |net: Net| values[net.index()] >> lane & 1 == 1;
@@ -97,6 +105,13 @@ impl Truth {
     }
 }
 
+/// The number on a bus in one of 64 patterns.
+pub(super) fn read(values: &[u64], nets: &[Net], lane: usize) -> u128 {
+    nets.iter().enumerate().fold(0u128, |word, (i, net)| {
+        word | u128::from(values[net.index()] >> lane & 1) << i
+    })
+}
+
 fn borrowed(a: u128, taken: u128, mask: u128) -> (u128, bool) {
     (a.wrapping_sub(taken) & mask, a < taken)
 }
@@ -109,7 +124,16 @@ impl Generated {
             label,
             circuit,
             truths,
+            comparisons: Vec::new(),
+            products: Vec::new(),
         }
+    }
+
+    /// The same with comparisons known of it.
+    #[must_use]
+    pub fn with_comparisons(mut self, comparisons: Vec<Comparison>) -> Self {
+        self.comparisons = comparisons;
+        self
     }
 
     /// The names of nets.
@@ -141,6 +165,11 @@ impl Generated {
                     .check(&values)
                     .map_err(|fault| format!("{}: {fault}", self.label))?;
             }
+            let comparisons = self.comparisons.iter().map(|c| c.check(&values));
+            let products = self.products.iter().map(|p| p.check(&values));
+            for outcome in comparisons.chain(products) {
+                outcome.map_err(|fault| format!("{}: {fault}", self.label))?;
+            }
         }
         Ok(())
     }
@@ -156,7 +185,7 @@ fn counting(i: usize, block: u64) -> u64 {
 
 /// Random words; every other round neighbouring inputs are mostly opposite or
 /// mostly equal in alternation, which makes carries run far in either case.
-fn patterns(count: usize, round: usize, random: &mut Random) -> Vec<u64> {
+pub fn patterns(count: usize, round: usize, random: &mut Random) -> Vec<u64> {
     let rare = |random: &mut Random| random.word() & random.word() & random.word();
     let (base, other) = (random.word(), random.word());
     (0..count)

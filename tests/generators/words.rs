@@ -20,6 +20,70 @@ pub enum Architecture {
     CarrySelect(usize),
     /// Ripple blocks with a bypass.
     CarrySkip(usize),
+    /// Every carry as one sum of products over all lower positions.
+    FlatLookahead,
+    /// Select blocks that grow by one from block to block, from two.
+    CarrySelectGrowing,
+    /// Blocks added without a carry, then incremented (Tyagi 1993).
+    Increment(usize),
+    /// Halves chosen by halves (Sklansky 1960, conditional sum).
+    ConditionalSum,
+    /// The divide-and-conquer prefix tree (Sklansky 1960).
+    Sklansky,
+    /// Brent and Kung 1982.
+    BrentKung,
+    /// Han and Carlson 1987: pairs, Kogge and Stone between, one row behind.
+    HanCarlson,
+    /// Ladner and Fischer 1980 with so many levels to spare.
+    LadnerFischer(usize),
+    /// Knowles 1999; the fan-out doubles from row to row up to this.
+    Knowles(usize),
+    /// Kogge and Stone over groups of so many bits, ripple inside.
+    SparsePrefix(usize),
+}
+
+impl Architecture {
+    /// Every architecture but ripple, at the sizes the corpus uses.
+    pub fn every_fast() -> Vec<Self> {
+        vec![
+            Self::FlatLookahead,
+            Self::GroupLookahead(4),
+            Self::GroupLookahead(3),
+            Self::CarrySkip(4),
+            Self::CarrySelect(4),
+            Self::CarrySelectGrowing,
+            Self::Increment(4),
+            Self::ConditionalSum,
+            Self::Sklansky,
+            Self::KoggeStone,
+            Self::BrentKung,
+            Self::HanCarlson,
+            Self::LadnerFischer(1),
+            Self::Knowles(2),
+            Self::SparsePrefix(4),
+        ]
+    }
+
+    /// A word for tables.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Ripple(_) => "ripple",
+            Self::FlatLookahead => "flat-lookahead",
+            Self::GroupLookahead(_) => "group-lookahead",
+            Self::CarrySkip(_) => "skip",
+            Self::CarrySelect(_) => "carry-select",
+            Self::CarrySelectGrowing => "carry-select-growing",
+            Self::Increment(_) => "carry-increment",
+            Self::ConditionalSum => "conditional-sum",
+            Self::Sklansky => "sklansky",
+            Self::KoggeStone => "kogge-stone",
+            Self::BrentKung => "brent-kung",
+            Self::HanCarlson => "han-carlson",
+            Self::LadnerFischer(_) => "ladner-fischer",
+            Self::Knowles(_) => "knowles",
+            Self::SparsePrefix(_) => "sparse-prefix",
+        }
+    }
 }
 
 /// A word to be made.
@@ -176,6 +240,8 @@ impl Word {
             sums,
             carry_out,
             borrow: self.borrow,
+            plus_one: false,
+            mode: None,
             architecture: self.architecture,
         }
     }

@@ -68,6 +68,7 @@ pub fn tide_logger() -> Audit {
         },
         on_longest_path: true,
         slack: Some(at(0)),
+        slack_against: Some("longest path of the kind".into()),
         not_planned: None,
         proposals: vec![
             proposal("P1", "brent-kung", 12, 14, 92, false),
@@ -103,6 +104,7 @@ pub fn tide_logger() -> Audit {
         },
         on_longest_path: false,
         slack: Some(at(25)),
+        slack_against: Some("longest path of the kind".into()),
         not_planned: Some(NotPlanned {
             why: "25 gate delays to spare".into(),
             slack: Some(at(25)),
@@ -158,6 +160,7 @@ pub fn tide_logger() -> Audit {
             delay_model: DelayModelFacts {
                 name: "unit".into(),
                 unit: "gate delays".into(),
+                misfit: None,
             },
             new_gates: "single-operator".into(),
             new_gates_reason: "the netlist uses no other function of three or more inputs".into(),
@@ -166,6 +169,7 @@ pub fn tide_logger() -> Audit {
             min_bits: 4,
             effort: 100_000,
             patterns_seed: 1,
+            target_depth: None,
             assumptions_sha256: None,
         },
         seen: Seen {
@@ -194,6 +198,9 @@ pub fn tide_logger() -> Audit {
                     depth_if_carry_were_free: at(4),
                     ends_at_longest: 1,
                     next_below: Some(at(31)),
+                    paths_at_longest: 2,
+                    ends_within_one: 1,
+                    paths_within_one: Some(6),
                 },
                 PathKindFacts {
                     path_kind: "register→output".into(),
@@ -205,6 +212,9 @@ pub fn tide_logger() -> Audit {
                     depth_if_carry_were_free: at(6),
                     ends_at_longest: 18,
                     next_below: None,
+                    paths_at_longest: 18,
+                    ends_within_one: 18,
+                    paths_within_one: Some(18),
                 },
             ],
         },
@@ -212,8 +222,11 @@ pub fn tide_logger() -> Audit {
             longest: at(33),
             longest_without_assumptions: None,
             longest_through_transparent: None,
+            late_ends: None,
+            least_to_spare: None,
             unit: "gate delays".into(),
             longest_free_buffers: Some(at(33)),
+            longest_in_fo4: None,
             histogram: (1..=33)
                 .map(|depth| DepthBar {
                     depth: at(depth),

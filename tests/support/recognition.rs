@@ -58,7 +58,8 @@ pub fn check_theorems(label: &str, netlist: &Netlist, chains: &[Chain]) {
         for chain in chains {
             let mut carry = bit(chain.carry_in);
             for (i, position) in chain.positions.iter().enumerate() {
-                let (a, b) = (bit(position.a), bit(position.b));
+                let mode = chain.mode.map_or(0, signal);
+                let (a, b) = (bit(position.a), bit(position.b) ^ mode);
                 assert!(
                     chain.comparison.is_some() || !position.sums.is_empty(),
                     "{label}: position {i} has no sum"

@@ -58,9 +58,12 @@ pub struct ChainRecord {
     pub depth: ChainDepth,
     /// Whether a longest path of the block runs through a sum or carry of it.
     pub on_longest_path: bool,
-    /// How much later its results could be without lengthening the longest
-    /// path of their kind; null when no path leads through it.
+    /// How much later its results could be without missing what `slack_against`
+    /// names, negative where they do; null when no path leads through it.
     pub slack: Option<Time>,
+    /// What slack is counted against: `required time`, `cycle`, `target depth`, or
+    /// else the `longest path of the kind`; null when no path leads through it.
+    pub slack_against: Option<String>,
     /// Why no rebuild was tried; null when some were.
     pub not_planned: Option<NotPlanned>,
     /// The rebuilds worth choosing between.
@@ -70,7 +73,7 @@ pub struct ChainRecord {
 impl ChainRecord {
     /// What is computed, written as arithmetic on the operands' names:
     /// `level[15:0] + offset[15:0]`, `count[7:0] + 1`, `a - b - 1 + borrow_in`,
-    /// `level[15:0] > limit[15:0]`.
+    /// `a +/- b, minus when sub`, `level[15:0] > limit[15:0]`.
     pub fn formula(&self) -> String {
         let names: Vec<&str> = self.operands.iter().map(|o| o.name.as_str()).collect();
         if let ([a, b], Some(relation)) = (names.as_slice(), &self.relation) {
@@ -84,6 +87,13 @@ impl ChainRecord {
             return match &self.carry_in {
                 Some(Wire::Net(net)) => format!("{a} + {net} {sign} {b}"),
                 _ => format!("{a} {sign} {b}"),
+            };
+        }
+        if let (Some(mode), [a, b]) = (&self.mode, &names[..]) {
+            return match &self.carry_in {
+                Some(Wire::Net(net)) if net == mode => format!("{a} +/- {b}, minus when {mode}"),
+                Some(carry_in) => format!("{a} + ({b} xor {mode}) + {}", carry_in.text()),
+                None => format!("{a} + ({b} xor {mode})"),
             };
         }
         let (first, constant) = match self.kind.as_str() {

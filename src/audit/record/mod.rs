@@ -130,6 +130,8 @@ pub struct Settings {
     pub effort: u64,
     /// Seed of the simulation patterns.
     pub patterns_seed: u64,
+    /// What every path end was held against; null when nothing was asked for.
+    pub target_depth: Option<u64>,
     /// SHA-256 of the assumptions file; null without one.
     pub assumptions_sha256: Option<String>,
 }
@@ -137,10 +139,12 @@ pub struct Settings {
 /// The delay model.
 #[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct DelayModelFacts {
-    /// `unit` or `pairs`.
+    /// `unit`, `pairs` or `logical-effort`.
     pub name: String,
     /// What one step counts, in the plural: `gate delays`.
     pub unit: String,
+    /// Why the model does not fit the netlist; null where it does.
+    pub misfit: Option<String>,
 }
 
 /// How much could be seen.
@@ -204,6 +208,13 @@ pub struct PathKindFacts {
     pub ends_at_longest: u64,
     /// Depth of the deepest end below those; null when there is none.
     pub next_below: Option<Time>,
+    /// Paths of this length, counted pin by pin, up to a thousand million million.
+    pub paths_at_longest: u64,
+    /// Ends at which a path arrives at most one unit earlier.
+    pub ends_within_one: u64,
+    /// Paths at most one unit shorter; null where the delay model counts finer than
+    /// whole units.
+    pub paths_within_one: Option<u64>,
 }
 
 /// Depth of the block.
@@ -216,11 +227,20 @@ pub struct Depth {
     /// The longest path with every transparent register open; null when the
     /// netlist has none.
     pub longest_through_transparent: Option<Time>,
+    /// Ends that are reached later than they have to be; null where nothing says
+    /// when that is.
+    pub late_ends: Option<u64>,
+    /// What the end with the least to spare has, negative when it is late; null
+    /// where nothing says when an end has to be reached.
+    pub least_to_spare: Option<Time>,
     /// The unit of every depth in this record.
     pub unit: String,
     /// The longest path with buffers and inverters free; null when the model
     /// has them free already.
     pub longest_free_buffers: Option<Time>,
+    /// The longest path in inverters that drive four like them (FO4); null
+    /// unless the model is logical effort.
+    pub longest_in_fo4: Option<Time>,
     /// Path ends by depth, ascending. An end is an output, a register input or
     /// a box input.
     pub histogram: Vec<DepthBar>,

@@ -136,6 +136,7 @@ impl Reader<'_> {
             has_carry_out: true,
             carry_form: CarryForm::Carry,
             built_as: built_as(self.subject, &theorem),
+            mode: None,
             comparison: Some(Comparison {
                 result,
                 relation,

@@ -19,8 +19,21 @@ const KEPT: usize = 4;
 /// Words of patterns a triple has to fit before its signature is computed.
 const WORDS: usize = 2;
 
-/// Four pairs of values of each two of three leaves.
-const ALL_PAIRS: u16 = 0xFFF;
+/// Triples of values, of eight, that three leaves take at least. Where one is
+/// the exclusive or of the others there are four.
+const TRIPLES: u32 = 6;
+
+/// Whether leaves that take these triples of values are free of each other: no
+/// one implies or makes up another.
+fn are_free(triples: u8) -> bool {
+    let takes = |mask: u8| triples & mask != 0;
+    let leaf = [0xAA_u8, 0xCC, 0xF0];
+    let pairs = [(0, 1), (0, 2), (1, 2)].into_iter().all(|(i, j)| {
+        let (x, y): (u8, u8) = (leaf[i], leaf[j]);
+        takes(x & y) && takes(x & !y) && takes(!x & y) && takes(!x & !y)
+    });
+    pairs && triples.count_ones() >= TRIPLES
+}
 
 /// A node and three literals of which it is the majority, as signatures say.
 #[derive(Clone, Copy, Debug)]
@@ -214,7 +227,7 @@ fn confirm(
     }
     let mut running = vec![Running::default(); nominated.len()];
     let mut first = FixedBitSet::with_capacity(nominated.len());
-    let mut pairs_seen = vec![0u16; nominated.len()];
+    let mut triples_seen = vec![0u8; nominated.len()];
     let mut simulation = Simulation::new(subject, patterns);
     let mut is_first = true;
     while let Some(words) = simulation.advance() {
@@ -226,10 +239,10 @@ fn confirm(
             let [x, y, v] = each.leaves.map(value);
             let majority = (x & y) | (v & (x | y));
             hash.feed(majority);
-            for (at, (x, y)) in [(x, y), (x, v), (y, v)].into_iter().enumerate() {
-                for (pair, lanes) in [x & y, x & !y, !x & y, !(x | y)].into_iter().enumerate() {
-                    pairs_seen[i] |= u16::from(lanes != 0) << (4 * at + pair);
-                }
+            for triple in 0..8u8 {
+                let side = |word: u64, bit: u8| word ^ if triple >> bit & 1 == 1 { 0 } else { !0 };
+                let lanes = side(x, 0) & side(y, 1) & side(v, 2);
+                triples_seen[i] |= u8::from(lanes != 0) << triple;
             }
             if is_first {
                 first.set(i, majority & 1 == 1);
@@ -241,7 +254,7 @@ fn confirm(
     let mut at = 0;
     nominated.retain(|each| {
         let hash: Hash = running[at].normalised(first.contains(at), ones);
-        let are_free = pairs_seen[at] == ALL_PAIRS;
+        let are_free = are_free(triples_seen[at]);
         at += 1;
         are_free && hash == signatures.hash(each.node)
     });

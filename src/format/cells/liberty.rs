@@ -408,6 +408,45 @@ fn gate(
     Ok(())
 }
 
+/// A gate without delay from what would be stored to what is, when an expression
+/// makes it `value` instead.
+fn override_gate(
+    builder: &mut NetlistBuilder,
+    (when, line): (&str, u32),
+    value: bool,
+    nets: &BTreeMap<&str, NetId>,
+    (input, output): (NetId, NetId),
+) -> Result<(), Wrong> {
+    let (top, too_many) = (ScopeId::new(0), |_| (line, "a smaller cell".to_owned()));
+    let Expressed { function, pins } = expression::read(when).map_err(|what| (line, what))?;
+    let mut fan_ins = Vec::new();
+    for pin in &pins {
+        let Some(&net) = nets.get(pin.as_str()) else {
+            let found = quote(pin.as_bytes());
+            return Err((line, format!("a pin of the cell, found {found}")));
+        };
+        fan_ins.push(net);
+    }
+    let inverted = function == Function::buffer(true);
+    let when = if inverted || function == Function::buffer(false) {
+        fan_ins[0]
+    } else {
+        let net = builder.add_net(None, top).map_err(too_many)?;
+        let function = builder.function_with_delays(function, &vec![0; pins.len()]);
+        builder
+            .add_gate(function, &fan_ins, net, top, line)
+            .map_err(too_many)?;
+        net
+    };
+    // OR is the complement of a product of complements.
+    let function = Function::product(&[value, !inverted], value);
+    let function = builder.function_with_delays(function, &[0, 0]);
+    builder
+        .add_gate(function, &[input, when], output, top, line)
+        .map_err(too_many)?;
+    Ok(())
+}
+
 /// Adds the register of a cell; false when what it stores is not given.
 fn store(
     builder: &mut NetlistBuilder,
@@ -426,22 +465,23 @@ fn store(
     let (Some((data, data_line)), Some((control, control_line))) = (data, control) else {
         return Ok(false);
     };
-    // What clears or sets is folded into what is stored.
-    let mut what = format!("({data})");
-    if let Some((clear, _)) = said("clear") {
-        what = format!("({what} & !({clear}))");
-    }
-    if let Some((preset, _)) = said("preset") {
-        what = format!("({what} | ({preset}))");
-    }
-    let input = match nets.get(data.trim()) {
-        Some(&net) if said("clear").is_none() && said("preset").is_none() => net,
-        _ => {
+    let mut input = match nets.get(data.trim()) {
+        Some(&net) => net,
+        None => {
             let net = builder.add_net(None, top).map_err(too_many)?;
-            gate(builder, &what, *data_line, nets, net)?;
+            gate(builder, data, *data_line, nets, net)?;
             net
         }
     };
+    // What clears or sets is folded into what is stored. It happens inside the
+    // register, so it takes no time of its own.
+    for (key, value) in [("clear", false), ("preset", true)] {
+        if let Some((when, line)) = said(key) {
+            let stored = builder.add_net(None, top).map_err(too_many)?;
+            override_gate(builder, (when, *line), value, nets, (input, stored))?;
+            input = stored;
+        }
+    }
     let Expressed { function, pins } =
         expression::read(control).map_err(|what| (*control_line, what))?;
     let single = match pins.as_slice() {

@@ -10,7 +10,7 @@ use crate::report::number::{
 };
 use crate::report::outline::{Caps, Grid, Section};
 use crate::report::text::clipped;
-use crate::timing::Time;
+use crate::timing::{Basis, Time};
 
 /// One row per chain, those on a longest path first.
 pub fn chains(
@@ -59,6 +59,7 @@ pub fn chains(
             counted(chains.len() as u64, "chain", "chains"),
         )));
     }
+    blocks.extend(against(chains).map(Block::Text));
     if recurrences_not_listed > 0 {
         blocks.push(Block::Text(format!(
             "{} that compute no sum and compare nothing are counted and not listed.",
@@ -70,6 +71,30 @@ pub fn chains(
         aside: false,
         blocks,
     })
+}
+
+/// What is to spare counts against, unless it is the longest path of the kind.
+fn against(chains: &[ChainRecord]) -> Option<String> {
+    let mut words: Vec<&str> = chains
+        .iter()
+        .filter_map(|chain| chain.slack_against.as_deref())
+        .collect();
+    words.sort_unstable();
+    words.dedup();
+    let longest = Basis::Longest.words();
+    if words.iter().all(|&word| word == longest) {
+        return None;
+    }
+    let words: Vec<String> = words.iter().map(|word| format!("the {word}")).collect();
+    Some(format!(
+        "What is to spare is counted against {}{}.",
+        listed(&words),
+        if words.len() > 1 {
+            ", whichever an end has"
+        } else {
+            ""
+        }
+    ))
 }
 
 fn urgent_first(chains: &[ChainRecord]) -> Vec<&ChainRecord> {
@@ -107,6 +132,7 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
         },
         on_longest_path,
         slack,
+        slack_against: _,
         not_planned: _,
         proposals: _,
     } = chain;
@@ -138,6 +164,7 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
     };
     let spare = match slack {
         Some(Time::ZERO) if *on_longest_path => "none".to_owned(),
+        Some(late) if *late < Time::ZERO => format!("{} over", late.abs()),
         _ => or_dash(slack.map(|slack| slack.to_string())),
     };
     vec![
@@ -318,9 +345,10 @@ fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Stri
         signed(proposal.gate_equivalents_added)
     ));
     if let Some(levels) = proposal.above_bound {
-        let levels = match levels {
-            Time::ZERO => "no level".to_owned(),
-            some => depth_in(some, "levels"),
+        let levels = match levels.as_whole() {
+            Some(0) => "nothing".to_owned(),
+            Some(_) => depth_in(levels, "levels"),
+            None => levels.to_string(),
         };
         parts.push(format!("{levels} above the lower bound for such gates"));
     }

@@ -7,6 +7,7 @@ use crate::audit::record::{
 use crate::report::number::{counted, depth_in, doubling_bars, grouped, mean, or_dash, time_bars};
 use crate::report::outline::{Block, Caps, Grid, Section};
 use crate::report::text::clipped;
+use crate::timing::{MANY, Time};
 
 /// Bars per histogram.
 const BARS: usize = 12;
@@ -37,6 +38,10 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
             depth_if_carry_were_free,
             ends_at_longest,
             next_below,
+            // Told below, of the first kind.
+            paths_at_longest: _,
+            ends_within_one: _,
+            paths_within_one: _,
         } = kind;
         vec![
             clipped(path_kind, caps.name),
@@ -55,11 +60,43 @@ pub fn paths(kinds: &[PathKindFacts], caps: Caps) -> Option<Section> {
         ]
     };
     let rows = kinds.iter().take(caps.rows).map(row).collect();
+    let mut blocks = cut(columns, rows, kinds.len(), caps.rows, "kinds of path");
+    blocks.extend(near(&kinds[0]).map(Block::Text));
     Some(Section {
         heading: "Paths",
         aside: false,
-        blocks: cut(columns, rows, kinds.len(), caps.rows, "kinds of path"),
+        blocks,
     })
+}
+
+/// How much is as long as the longest path, or nearly: what has to be shortened
+/// before the block gets one shallower.
+fn near(kind: &PathKindFacts) -> Option<String> {
+    if kind.longest == Time::ZERO {
+        return None;
+    }
+    let many = |count: u64| match count {
+        1 => "1 path".to_owned(),
+        MANY.. => format!("{} paths or more", grouped(MANY)),
+        n => format!("{} paths", grouped(n)),
+    };
+    let are = |count: u64| if count == 1 { "is" } else { "are" };
+    let there = kind.paths_at_longest;
+    let ends = counted(kind.ends_within_one, "end", "ends");
+    let within = match kind.paths_within_one {
+        Some(paths) => format!("{}, to {ends},", many(paths)),
+        None => format!("paths to {ends}"),
+    };
+    let come = match kind.paths_within_one {
+        Some(1) => "comes",
+        _ => "come",
+    };
+    Some(format!(
+        "{} {} as long as the longest ({}); {within} {come} within one of it.",
+        many(there),
+        are(there),
+        kind.path_kind
+    ))
 }
 
 /// Fan-in, fan-out and depth, side by side.
@@ -68,8 +105,11 @@ pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> 
         longest,
         longest_without_assumptions: _,
         longest_through_transparent,
+        late_ends,
+        least_to_spare,
         unit,
         longest_free_buffers,
+        longest_in_fo4,
         histogram: depth_bars,
         longest_path: _,
         longest_path_left_out: _,
@@ -88,6 +128,20 @@ pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> 
             " With its transparent registers open the block is {open} deep."
         ));
     }
+    if let (Some(late), Some(spare)) = (late_ends, least_to_spare) {
+        let least = match *spare < Time::ZERO {
+            true => format!("the latest by {}", depth_in(spare.abs(), unit)),
+            false => format!("the nearest has {} to spare", depth_in(*spare, unit)),
+        };
+        lead.push_str(&match late {
+            0 => format!(" Every end with a time to hold is in time; {least}."),
+            n => format!(
+                " Late {} {}, {least}.",
+                if *n == 1 { "is" } else { "are" },
+                counted(*n, "end", "ends")
+            ),
+        });
+    }
     if let Some(free) = longest_free_buffers {
         if free == longest {
             lead.push_str(" The depth is the same with buffers and inverters free.");
@@ -97,6 +151,11 @@ pub fn measures(depth: &Depth, fan_in: &FanIn, fan_out: &FanOut, caps: Caps) -> 
                 " With buffers and inverters free the depth is {free}."
             ));
         }
+    }
+    if let Some(fo4) = longest_in_fo4 {
+        lead.push_str(&format!(
+            " The depth is that of {fo4} inverters which drive four like them (FO4)."
+        ));
     }
     let gates = |&FanInBar { fan_in, gates }: &FanInBar| (fan_in as i64, gates);
     let nets = |&FanOutBar { fan_out, nets }: &FanOutBar| (fan_out as i64, nets);
