@@ -83,6 +83,27 @@ fn may_depend(subject: &Subject, levels: &[u32], node: NodeId, on: NodeId) -> bo
     false
 }
 
+/// The two literals of which a node is the product. Where a sum of two bits was
+/// made as `p·q + (p ⊕ q)` its complement is `~p·~q` all the same.
+fn two_bits(subject: &Subject, node: NodeId) -> Option<(Literal, Literal)> {
+    let NodeKind::And(p, q) = subject.kind(node) else {
+        return None;
+    };
+    for (product, other) in [(p, q), (q, p)] {
+        if let (NodeKind::And(x, y), NodeKind::Xor(u, v)) =
+            (subject.kind(product.node()), subject.kind(other.node()))
+            && product.is_inverted()
+        {
+            let same = (x.node(), y.node()) == (u, v) || (x.node(), y.node()) == (v, u);
+            let differ = !other.is_inverted() ^ x.is_inverted() ^ y.is_inverted();
+            if same && !differ {
+                return Some((!x, !y));
+            }
+        }
+    }
+    Some((p, q))
+}
+
 /// What paths are made from.
 pub(super) struct Linker<'a> {
     pub(super) subject: &'a Subject,
@@ -229,7 +250,7 @@ impl Linker<'_> {
                 path.carry_in = carry;
             }
         }
-        let NodeKind::And(p, q) = self.subject.kind(path.carry_in.node()) else {
+        let Some((p, q)) = two_bits(self.subject, path.carry_in.node()) else {
             return;
         };
         let is_or = path.carry_in.is_inverted();
