@@ -305,3 +305,46 @@ fn directed_patterns_reach_what_random_ones_do_not() {
     patterns.direct(&subject, &targets, 8);
     assert!(reached(&patterns) > 0);
 }
+
+/// A ripple adder's claims, by hand: `a + b` of four bits.
+const FOUR_BITS: &str = ".model four\n.inputs a0 b0 a1 b1 a2 b2 a3 b3\n.outputs s0 s1 s2 s3 c4\n\
+    .names a0 b0 s0\n10 1\n01 1\n.names a0 b0 c1\n11 1\n\
+    .names a1 b1 c1 s1\n100 1\n010 1\n001 1\n111 1\n.names a1 b1 c1 c2\n11- 1\n1-1 1\n-11 1\n\
+    .names a2 b2 c2 s2\n100 1\n010 1\n001 1\n111 1\n.names a2 b2 c2 c3\n11- 1\n1-1 1\n-11 1\n\
+    .names a3 b3 c3 s3\n100 1\n010 1\n001 1\n111 1\n.names a3 b3 c3 c4\n11- 1\n1-1 1\n-11 1\n.end\n";
+
+#[test]
+fn decision_diagrams_confirm_true_claims_and_contradict_false_ones() {
+    use carrywise::prove::{Claim, Witness, witness};
+    let netlist = parse(FOUR_BITS);
+    let topology = Topology::of(&netlist);
+    let subject = Subject::of(&netlist, &topology);
+    let literal = |name: &str| {
+        let net = netlist.nets().find(|&net| netlist.net_name(net) == name);
+        subject.of_net(net.expect("it is in the text"))
+    };
+    let told = |third_sum: &str, third_carry: &str| {
+        let results: Vec<_> = (0..4)
+            .map(|i| {
+                let (sum, carry) = (format!("s{i}"), format!("c{}", i + 1));
+                let sum = if i == 2 { third_sum } else { &sum };
+                let carry = if i == 2 { third_carry } else { &carry };
+                ([literal(sum)], [literal(carry)])
+            })
+            .collect();
+        let claims: Vec<Claim<'_>> = results
+            .iter()
+            .enumerate()
+            .map(|(i, (sum, carry))| Claim {
+                a: literal(&format!("a{i}")),
+                b: literal(&format!("b{i}")),
+                sums: sum,
+                carries: carry,
+            })
+            .collect();
+        witness(&subject, Literal::FALSE, &claims)
+    };
+    assert_eq!(told("s2", "c3"), Witness::Agrees);
+    assert_eq!(told("s3", "c3"), Witness::Contradicts);
+    assert_eq!(told("s2", "c4"), Witness::Contradicts);
+}

@@ -210,6 +210,7 @@ fn fields_keep_the_names_and_the_order_of_the_schema() {
         "gates_without_function",
         "nets_cut",
         "chains_proven",
+        "chains_witnessed",
         "chains_unproven",
         "verdict",
         "limit",

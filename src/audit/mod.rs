@@ -138,6 +138,7 @@ pub fn audit_under(
     let chain::Found {
         chains,
         unproven,
+        witnessed,
         recurrences_not_listed,
     } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
@@ -246,6 +247,7 @@ pub fn audit_under(
             gates_without_function: netlist.boxes().len() as u64,
             nets_cut: topology.cut.count_ones(..) as u64,
             chains_proven: records.len() as u64,
+            chains_witnessed: witnessed as u64,
             chains_unproven: unproven.len() as u64,
         },
         verdict,

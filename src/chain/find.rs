@@ -4,6 +4,7 @@
 use super::candidate::{Bits, Context, Lookup};
 use super::carry_only::{self, Ground};
 use super::collect::{bit, collect, nearest_bit, sort};
+use super::copies::fold_copies;
 use super::entries::{Entries, EntryId};
 use super::label::{BusPreference, Labels};
 use super::links::{Links, paths};
@@ -12,7 +13,7 @@ use super::modes::{add as add_moded, moded};
 use super::trim::{Ends, independent_positions, live_bits};
 use super::verify::{Theorem, verify};
 use crate::netlist::{Bit, Netlist, Topology};
-use crate::prove::Effort;
+use crate::prove::{Claim, Effort, Witness, witness};
 use crate::subject::{
     FLIP_WORDS, NodeId, Patterns, Signatures, Simulation, Subject, Words, linear_pairs, rare_values,
 };
@@ -46,6 +47,8 @@ const RANDOM_WORDS: usize = 32;
 const RARE: u32 = 8;
 /// Directed words, where some node needs them.
 const DIRECTED_WORDS: usize = 16;
+/// Positions the second witness is asked about.
+const WITNESS_BITS: usize = 1024;
 /// Subject nodes one proof may encode.
 const PROOF_NODES: usize = 2_000_000;
 
@@ -69,6 +72,8 @@ pub struct Found {
     pub chains: Vec<Chain>,
     /// Candidates left open.
     pub unproven: Vec<Unproven>,
+    /// Chains that decision diagrams confirmed a second time.
+    pub witnessed: usize,
     /// Recurrences that are there and not listed as chains.
     pub recurrences_not_listed: u64,
 }
@@ -150,7 +155,10 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
         options,
         proof_nodes: PROOF_NODES,
     };
+    // Before copies are folded: what they own is no comparator either.
     let carry_only = carry_only::find(&ground, &theorems);
+    fold_copies(&subject, &labels, &mut theorems, options.min_bits);
+    let witnessed = witness_all(&subject, &labels, &mut theorems, &mut unproven);
     let mut chains = collect(netlist, &subject, &labels, theorems);
     chains.extend(carry_only.chains);
     sort(&mut chains);
@@ -164,8 +172,54 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
     Found {
         chains,
         unproven,
+        witnessed,
         recurrences_not_listed: carry_only.not_listed,
     }
+}
+
+/// Asks the second witness about every chain, widest first, as long as it is
+/// quick. A theorem that it contradicts would be a fault of carrywise: it is
+/// taken back and told. Returns how many it confirmed.
+fn witness_all(
+    subject: &Subject,
+    labels: &Labels<'_>,
+    theorems: &mut Vec<Theorem>,
+    unproven: &mut Vec<Unproven>,
+) -> usize {
+    theorems.sort_by_key(|theorem| std::cmp::Reverse(theorem.bits.len()));
+    let mut confirmed = 0;
+    let mut budget = WITNESS_BITS;
+    theorems.retain(|theorem| {
+        if budget < theorem.bits.len() {
+            return true;
+        }
+        budget -= theorem.bits.len();
+        let claims: Vec<Claim<'_>> = theorem
+            .bits
+            .iter()
+            .zip(theorem.sums.iter().zip(&theorem.carries))
+            .map(|(bits, (sums, carries))| Claim {
+                a: bits.a,
+                b: bits.b,
+                sums,
+                carries,
+            })
+            .collect();
+        let said = witness(subject, theorem.carry_in, &claims);
+        confirmed += usize::from(said == Witness::Agrees);
+        if said == Witness::Contradicts {
+            let bit = |literal| nearest_bit(labels, subject, literal);
+            let operands = theorem.bits.iter().map(|b| (bit(b.a), bit(b.b)));
+            unproven.push(Unproven {
+                bits: theorem.bits.len(),
+                operands: operands.collect(),
+                reason: "the two proofs contradict each other, a fault of carrywise",
+                effort: 0,
+            });
+        }
+        said != Witness::Contradicts
+    });
+    confirmed
 }
 
 /// The values that flips are looked for under: the first word, which is uniform,

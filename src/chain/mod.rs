@@ -14,6 +14,7 @@ mod candidate;
 mod carry_cells;
 mod carry_only;
 mod collect;
+mod copies;
 mod entries;
 mod find;
 mod kinds;

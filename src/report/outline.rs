@@ -167,6 +167,7 @@ fn seen_sentence(seen: &Seen, netlist: &NetlistFacts) -> String {
         gates_without_function,
         nets_cut,
         chains_proven,
+        chains_witnessed,
         chains_unproven,
     } = *seen;
     let gates = if netlist.gates == 0 && gates_without_function == 0 {
@@ -199,11 +200,16 @@ fn seen_sentence(seen: &Seen, netlist: &NetlistFacts) -> String {
         n => format!("{} left undecided", grouped(n)),
     };
     let proven = match chains_proven {
-        0 => "no chain".to_owned(),
-        n => counted(n, "chain", "chains"),
+        0 => "no chain proven".to_owned(),
+        n => format!("{} proven", counted(n, "chain", "chains")),
+    };
+    let twice = match chains_witnessed {
+        0 => "",
+        n if n == chains_proven => " (by solver and by decision diagram)",
+        n => &format!(" ({} by decision diagram too)", grouped(n)),
     };
     format!(
-        "What could be seen: {gates}; {cut}; {proven} proven, {open}. Looked for are chains with \
+        "What could be seen: {gates}; {cut}; {proven}{twice}, {open}. Looked for are chains with \
          sums (adders, subtractors, incrementers, decrementers) and ripple comparators; \
          comparators built as trees are not."
     )

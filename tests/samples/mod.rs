@@ -177,6 +177,7 @@ pub fn tide_logger() -> Audit {
             gates_without_function: 0,
             nets_cut: 0,
             chains_proven: 2,
+            chains_witnessed: 1,
             chains_unproven: 0,
         },
         verdict: Verdict {

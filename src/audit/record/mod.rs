@@ -158,6 +158,8 @@ pub struct Seen {
     pub nets_cut: u64,
     /// Chains proven.
     pub chains_proven: u64,
+    /// Of these, chains that decision diagrams confirmed as a second witness.
+    pub chains_witnessed: u64,
     /// Candidates left undecided.
     pub chains_unproven: u64,
 }
