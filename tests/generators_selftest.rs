@@ -8,9 +8,9 @@ mod generators;
 
 use generators::{
     Addend, Aig, Architecture, Carry, Cell, Cells, Circuit, Comparator, Extension, Generated, Kind,
-    Random, Reduction, Word, accumulator, adder_hierarchy, adder_subtractor, counter, disguise,
-    gated_operands, mapped, multiplier, negatives, replicated, selected_sums, series,
-    series_adders, squarer, with_overflow, witness,
+    Random, Reduction, Word, accumulator, adder_hierarchy, adder_subtractor, corpus, counter,
+    disguise, divider, gated_operands, mapped, multiplier, negatives, replicated, selected_sums,
+    series, series_adders, square_root, squarer, with_overflow, witness,
 };
 
 fn must_hold(generated: &Generated) {
@@ -54,7 +54,7 @@ fn ripple_words_compute_what_they_say_for_every_operand() {
 
 #[test]
 fn wide_ripple_words_compute_what_they_say() {
-    for bits in [7, 32, 65, 120] {
+    for bits in [7, 32, 65, 120, 128] {
         for word in Word::every_ripple(bits) {
             must_hold(&word.generate());
         }
@@ -232,7 +232,7 @@ fn fast_word(architecture: Architecture, bits: usize, carry_in: bool) -> Word {
 #[test]
 fn every_architecture_adds_at_every_width() {
     for architecture in Architecture::every_fast() {
-        for bits in (1..=20).chain([31, 32, 48, 64, 100]) {
+        for bits in (1..=20).chain([31, 32, 48, 64, 100, 128]) {
             for carry_in in [false, true] {
                 must_hold(&fast_word(architecture, bits, carry_in).generate());
             }
@@ -344,4 +344,68 @@ fn wide_covers_swallow_positions() {
     assert_eq!(levels[0], 32, "one position a cover of three");
     assert!(levels[2] <= 17, "{levels:?}");
     assert!(levels[3] <= levels[2] && levels[2] <= levels[1] && levels[1] <= levels[0]);
+}
+
+/// The number an output bus shows in one lane.
+fn shown(circuit: &Circuit, values: &[u64], bus: &str, lane: usize) -> u64 {
+    let mut number = 0;
+    for &net in circuit.inputs.iter().chain(&circuit.outputs) {
+        let name = circuit.name_of(net);
+        if let Some(rest) = name.strip_prefix(bus).and_then(|r| r.strip_prefix('[')) {
+            let bit: u32 = rest.trim_end_matches(']').parse().expect("an index");
+            number |= (values[net.index()] >> lane & 1) << bit;
+        }
+    }
+    number
+}
+
+#[test]
+fn dividers_divide_and_square_roots_are_roots() {
+    for gated in [false, true] {
+        for bits in [3, 8, 13] {
+            let mut random = Random::new(bits as u64);
+            let division = divider(bits, gated, Cell::PropagateXor);
+            must_hold(&division);
+            let root = square_root(bits, gated, Cell::MajorityCover);
+            must_hold(&root);
+            for circuit in [&division.circuit, &root.circuit] {
+                let inputs: Vec<u64> = circuit.inputs.iter().map(|_| random.word()).collect();
+                let values = circuit.evaluate(&inputs, &[]);
+                for lane in 0..64 {
+                    let [x, y, q, r] =
+                        ["x", "y", "q", "r"].map(|bus| shown(circuit, &values, bus, lane));
+                    if circuit.name == "root" {
+                        assert_eq!((q, r), (x.isqrt(), x - x.isqrt() * x.isqrt()));
+                    } else if let (Some(quotient), Some(rest)) =
+                        (x.checked_div(y), x.checked_rem(y))
+                    {
+                        assert_eq!((q, r), (quotient, rest));
+                    }
+                }
+            }
+        }
+    }
+}
+
+#[test]
+fn every_case_of_the_corpus_means_its_truth_in_every_form() {
+    let mut count = 0;
+    for case in corpus::cases(7, 3, 64) {
+        must_hold(&case.reference);
+        let circuit = &case.reference.circuit;
+        let mut random = Random::new(5);
+        let inputs: Vec<u64> = circuit.inputs.iter().map(|_| random.word()).collect();
+        let state: Vec<u64> = circuit.registers.iter().map(|_| random.word()).collect();
+        let file = match &case.form {
+            corpus::Form::Graph(graph) => witness::aiger(&graph.aig(), &inputs, &state),
+            form => {
+                let text = String::from_utf8(form.bytes()).expect("plain text");
+                witness::blif(&text, &inputs, &state)
+            }
+        };
+        assert_eq!(file, outcome(circuit, &inputs, &state), "{}", case.label());
+        count += 1;
+    }
+    assert!(count > 700, "{count} cases");
+    assert!(corpus::recipes().len() * corpus::Disguise::ALL.len() >= 1_500);
 }

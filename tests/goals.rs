@@ -296,3 +296,64 @@ fn what_nets_have_to_spare_is_what_listing_all_paths_gives() {
         }
     }
 }
+
+/// Times on the ports of `n1 = a·b`, `y = n1 + c`.
+const STATED: &str = ".model m\n.inputs a b c\n.outputs y z\n.input_arrival a 2.5 3.25\n\
+    .input_arrival b 7 7 a r'clk\n.default_input_arrival 1 1\n.output_required y 20 18\n\
+    .cycle 25\n.names a b n1\n11 1\n.names n1 c y\n1- 1\n-1 1\n.names n1 z\n0 1\n.end\n";
+
+#[test]
+fn times_that_a_file_states_count_where_a_model_measures_time() {
+    let parsed = accept("m.blif", STATED);
+    let times = parsed.constraints.times(&parsed.netlist);
+    let netlist = parsed.netlist.with_times(times.clone());
+    // The later of rise and fall at an input; b counts from an edge of a clock that
+    // no path follows, so its time is left out.
+    let at = |name: &str| times.arrival.get(&net(&netlist, name)).copied();
+    assert_eq!((at("a"), at("b"), at("c")), (Some(3250), None, Some(1000)));
+    // The earlier at an output.
+    assert_eq!(times.required, FxHashMap::from_iter([(0, 18_000)]));
+    assert_eq!(times.cycle, Some(25_000));
+    let topology = Topology::of(&netlist);
+    for model in DelayModel::ALL {
+        let timing = Timing::of(&netlist, &topology, model);
+        let seen = |name: &str| {
+            let ticks = timing.arrivals.at(net(&netlist, name)).expect("reached");
+            timing.time(ticks).in_thousandths()
+        };
+        let wanted = match model.counts_time() {
+            true => (3250, 0, 1000),
+            false => (0, 0, 0),
+        };
+        assert_eq!(
+            (seen("a"), seen("b"), seen("c")),
+            wanted,
+            "{}",
+            model.name()
+        );
+        // The record holds y against its time and z against the cycle.
+        let mut options = Options::default();
+        options.request.model = model;
+        let audit = audit::audit(&netlist, &origin(), &options).expect("the defaults fit");
+        assert_eq!(audit.depth.late_ends, model.counts_time().then_some(0));
+        if model.counts_time() {
+            let end = |name: &str| {
+                let ticks = timing.arrivals.at(net(&netlist, name)).expect("reached");
+                timing.time(ticks)
+            };
+            let y = Time::whole(18) - end("y");
+            let z = Time::whole(25) - end("z");
+            assert_eq!(audit.depth.least_to_spare, Some(y.min(z)));
+        }
+        // What a user asserts of a port goes before.
+        let source = Source {
+            name: "assume.yaml".to_owned(),
+            bytes: "arrival: [{ports: a, at: 5, why: late}]".into(),
+        };
+        let file = assumptions::read(source).unwrap_or_else(|error| panic!("{error}"));
+        let under = file.assumptions.apply(&netlist).expect("it fits").netlist;
+        let timing = Timing::of(&under, &topology, model);
+        let ticks = timing.arrivals.at(net(&under, "a")).expect("a start");
+        assert_eq!(timing.time(ticks), Time::whole(5));
+    }
+}

@@ -124,10 +124,39 @@ fn a_net_without_driver_that_reaches_an_end_leaves_it_unknown() {
     assert_eq!(audit.verdict.limit, Limit::Unknown);
     let sentence = &audit.verdict.sentence;
     assert!(
-        sentence.contains("a net with no driver is cut (ghost)"),
+        sentence.contains(
+            "a net with no driver is cut (ghost; it matters if settled after 5 gate delays)"
+        ),
         "{sentence}"
     );
     assert_eq!(audited(&text("b[0]")).verdict.limit, Limit::Carry);
+}
+
+#[test]
+fn an_output_that_nothing_drives_is_a_finding_and_hides_no_path() {
+    // No gate stands behind it, so no path of the file is told too short.
+    let text = format!(
+        ".model m\n.inputs{}{} c0\n.outputs{} lost kept\n{}.latch gone kept 0\n.end\n",
+        bus("a", 6),
+        bus("b", 6),
+        bus("s", 6),
+        adder(6)
+    );
+    let audit = audited(&text);
+    assert_eq!(
+        audit.verdict.limit,
+        Limit::Carry,
+        "{}",
+        audit.verdict.sentence
+    );
+    assert_eq!(audit.seen.nets_cut, 2);
+    assert_eq!(
+        of_rule(&audit, "net-without-driver"),
+        [
+            "lost is read, and nothing drives it",
+            "gone is read, and nothing drives it"
+        ]
+    );
 }
 
 /// An eight-bit Kogge–Stone adder of instances whose outputs are wired back onto

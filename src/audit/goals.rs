@@ -10,6 +10,7 @@ use crate::timing::{Basis, DelayModel, End, Goals, NEVER, Time, Timing, ends};
 
 /// What is asked of the ends, from the assumptions and from the command line.
 pub fn asked(
+    netlist: &Netlist,
     asserted: Option<(&Assumptions, &Assumed)>,
     target: Option<u64>,
     model: DelayModel,
@@ -19,7 +20,17 @@ pub fn asked(
         target: target.map(|units| ticks(i32::try_from(units).unwrap_or(i32::MAX))),
         ..Goals::default()
     };
+    if let Some(times) = netlist.times().filter(|_| model.counts_time()) {
+        let ticks = |thousandths: i32| thousandths / (1000 / model.ticks_per_unit());
+        goals.cycle = times.cycle.map(ticks);
+        let required = times.required.iter();
+        goals.outputs = required.map(|(&port, &at)| (port, ticks(at))).collect();
+    }
     if let Some((assumptions, under)) = asserted {
+        // What a user asserts of a port goes before what the file states.
+        for port in under.required.iter().flatten() {
+            goals.outputs.remove(port);
+        }
         for (time, ports) in assumptions.required.iter().zip(&under.required) {
             for &port in ports {
                 let at = goals.outputs.entry(port).or_insert(i32::MAX);

@@ -27,7 +27,7 @@ use crate::format::Format;
 use crate::netlist::assume::Misfit;
 use crate::netlist::health::Health;
 use crate::netlist::{Netlist, Topology};
-use crate::plan::{self, ChainPlan, Ground, Request, Settings, SettingsError};
+use crate::plan::{self, ChainPlan, Ground, Request, Settings, SettingsError, Together};
 use crate::timing::{DelayModel, Spares, Timing};
 pub use assumed::Asserting;
 use assumed::Without;
@@ -143,14 +143,14 @@ pub fn audit_under(
     } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
-    let plans = plans(netlist, &topology, &timing, &settings, &chains);
+    let (plans, together) = plans(netlist, &topology, &timing, &settings, &chains);
 
     let carried = Carried::of(netlist, &chains);
     let cones = Cones::of(netlist, &topology, &chains);
     let asserted = applied
         .as_ref()
         .map(|(asserting, under)| (asserting.assumptions, under));
-    let asked = goals::asked(asserted, options.target_depth, model);
+    let asked = goals::asked(netlist, asserted, options.target_depth, model);
     let spares = Spares::of(netlist, &topology, &timing, &asked);
     let sources = chains::Sources::of(netlist, &topology, &timing, &cones, &chains, &spares);
     let mut records = sources.records(&chains, &plans);
@@ -160,7 +160,8 @@ pub fn audit_under(
     drop(timing);
     rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
     let timing = Timing::of(netlist, &topology, model);
-    let mut recommended_set = rebuilds::recommended_set(&records, &plans, &timing, unit);
+    let mut recommended_set =
+        rebuilds::recommended_set(netlist, &records, &plans, together.as_ref(), &timing, unit);
     if let Some((asserting, _)) = &applied {
         assumed::hold_under_ties(asserting.assumptions, &mut recommended_set);
     }
@@ -280,12 +281,14 @@ fn plans(
     timing: &Timing,
     settings: &Settings,
     chains: &[chain::Chain],
-) -> Vec<ChainPlan> {
+) -> (Vec<ChainPlan>, Option<Together>) {
     if chains.is_empty() {
-        return Vec::new();
+        return (Vec::new(), None);
     }
     let ground = Ground::of(netlist, topology, timing, settings);
-    plan::plan_all(&ground, chains)
+    let mut plans = plan::plan_all(&ground, chains);
+    let together = plan::choose_together(&ground, chains, &mut plans);
+    (plans, together)
 }
 
 fn netlist_facts(netlist: &Netlist, origin: &Origin) -> NetlistFacts {

@@ -1,17 +1,16 @@
 //! Plans into the record: proposals, and the set to take.
 //!
-//! The set holds one proposal, the one that brings the block lowest (then the
-//! cheapest): each estimate is a dry run of one chain on the netlist as read,
-//! and what two of them do together is not the sum of what each does. Further
-//! chains with a recommendation of their own are named, without a figure.
+//! The figures of the set are those of all its members dry-run together; what two
+//! rebuilds do together is not the sum of what each does. Chains with a
+//! recommendation for a path of another kind are named besides.
 
 use super::chains::id;
 use super::record::{ChainRecord, Change, NotPlanned, ProposalRecord, RecommendedSet};
-use super::words::{counted, depth_in, grouped};
+use super::words::{counted, depth_in, grouped, listed};
 use crate::chain::Chain;
 use crate::netlist::{Netlist, Topology};
 use crate::network::{CarryNetwork, Node};
-use crate::plan::{self, ChainPlan, Ground, KindChange, Proposal, Settings};
+use crate::plan::{self, ChainPlan, Ground, Proposal, Settings, TakesOver, Together};
 use crate::timing::{DelayModel, Timing};
 
 /// Chains whose recommendation is tried under the other delay models.
@@ -52,15 +51,9 @@ fn proposal_record(
         before: timing.time(before),
         after: timing.time(after),
     };
-    let takes_over = proposal.takes_over.map(|path| {
-        let way = if path.through_chain {
-            "through the chain still"
-        } else {
-            "beside the chain"
-        };
-        let end = path.end.describe(netlist);
-        format!("{} to {end}, {way}", path.kind)
-    });
+    let takes_over = proposal
+        .takes_over
+        .map(|path| path_taking_over(netlist, path));
     let arrivals = proposal
         .carries
         .iter()
@@ -113,74 +106,130 @@ fn spans(network: &CarryNetwork) -> Vec<String> {
 
 /// The set to take, from the records of all chains.
 pub fn recommended_set(
+    netlist: &Netlist,
     records: &[ChainRecord],
     plans: &[ChainPlan],
+    together: Option<&Together>,
     timing: &Timing,
     unit: &str,
 ) -> RecommendedSet {
-    let chosen: Vec<(&ChainRecord, &ProposalRecord, Option<KindChange>)> = records
-        .iter()
-        .zip(plans)
-        .filter_map(|(chain, plan)| {
-            let proposal = chain.proposals.iter().find(|p| p.recommended)?;
-            let own = plan.recommended.map(|index| plan.proposals[index].kind);
-            Some((chain, proposal, own))
-        })
-        .collect();
-    let best = chosen.iter().min_by_key(|(_, proposal, own)| {
-        let own = own.map_or(0, |kind| kind.after - kind.before);
-        let cost = proposal.gate_equivalents_added;
-        (proposal.block_depth.after, own, cost)
-    });
-    let Some(&(chain, proposal, own)) = best else {
+    let change = |before: i32, after: i32| Change {
+        before: timing.time(before),
+        after: timing.time(after),
+    };
+    let Some(set) = together else {
         return RecommendedSet {
             proposals: Vec::new(),
-            block_depth: Change {
-                before: timing.time(timing.longest()),
-                after: timing.time(timing.longest()),
-            },
+            block_depth: change(timing.longest(), timing.longest()),
+            path_kind: None,
+            kind_depth: None,
+            gates_added: 0,
+            gates_removed: 0,
+            gate_equivalents_added: 0,
+            largest_fan_in: 0,
+            largest_fan_out: 0,
+            takes_over: None,
+            chains_left: Vec::new(),
             sentence: no_set_sentence(records, plans),
         };
     };
+    let whole = &set.estimate.whole;
+    let mut set_record = RecommendedSet {
+        proposals: Vec::new(),
+        block_depth: change(whole.block_before, whole.block_after),
+        path_kind: Some(set.kind.to_string()),
+        kind_depth: Some(change(set.before, set.after)),
+        gates_added: whole.gates_added as u64,
+        gates_removed: whole.gates_removed as u64,
+        gate_equivalents_added: set.estimate.cost(),
+        largest_fan_in: whole.largest_fan_in as u64,
+        largest_fan_out: whole.largest_fan_out as u64,
+        takes_over: set.takes_over.map(|path| path_taking_over(netlist, path)),
+        chains_left: set.chains_left.iter().map(|&chain| id(chain)).collect(),
+        sentence: String::new(),
+    };
+    let members: Vec<_> = set
+        .members
+        .iter()
+        .map(|&(chain, proposal)| (&records[chain], &records[chain].proposals[proposal]))
+        .collect();
     let name =
         |chain: &ChainRecord, proposal: &ProposalRecord| format!("{}/{}", chain.id, proposal.id);
-    let Change { before, after } = proposal.block_depth;
-    let block = match own {
-        Some(kind) if after >= before && kind.after < kind.before => format!(
+    set_record.proposals = members.iter().map(|(c, p)| name(c, p)).collect();
+    let block = if whole.block_after < whole.block_before {
+        let Change { before, after } = set_record.block_depth;
+        format!("the block goes from {before} to {}", depth_in(after, unit))
+    } else {
+        format!(
             "the longest {} path goes from {} to {}, while the block stays as deep as it is",
-            kind.kind,
-            timing.time(kind.before),
-            depth_in(timing.time(kind.after), unit)
-        ),
-        _ => format!("the block goes from {before} to {}", depth_in(after, unit)),
+            set.kind,
+            timing.time(set.before),
+            depth_in(timing.time(set.after), unit)
+        )
     };
-    let others: Vec<_> = chosen
+    let how: Vec<String> = members
         .iter()
-        .filter(|(other, ..)| other.id != chain.id)
+        .take(MEMBERS_TOLD)
+        .map(|(c, p)| format!("{} as {} ({})", c.id, scheme_phrase(p), name(c, p)))
+        .chain(more_chains(members.len()))
+        .collect();
+    let (as_one, alone) = match members.len() {
+        1 => ("", ""),
+        2 if set.none_alone => (" together", " Neither gains anything alone."),
+        _ if set.none_alone => (" together", " None of them gains anything alone."),
+        _ => (" together", ""),
+    };
+    let others: Vec<String> = records
+        .iter()
+        .enumerate()
+        .filter(|(chain, _)| set.members.iter().all(|(member, _)| member != chain))
+        .filter_map(|(_, chain)| {
+            let own = chain.proposals.iter().find(|p| p.recommended)?;
+            Some(name(chain, own))
+        })
         .collect();
     let others = match others.len() {
         0 => String::new(),
         1 => format!(
-            " {} has a gain of its own; what both bring together is not estimated.",
-            name(others[0].0, others[0].1)
+            " Besides, {} shortens the longest path of another kind.",
+            others[0]
         ),
         n => format!(
-            " {} have a gain of their own; what they bring together is not estimated.",
+            " Besides, {} could be rebuilt to shorten the longest paths of other kinds.",
             counted(n as u64, "more chain", "more chains")
         ),
     };
-    RecommendedSet {
-        proposals: vec![name(chain, proposal)],
-        block_depth: proposal.block_depth,
-        sentence: format!(
-            "Rebuild {} as {} ({}): {block}, for {} built and {} removed.{others}",
-            chain.id,
-            scheme_phrase(proposal),
-            name(chain, proposal),
-            counted(proposal.gates_added, "gate", "gates"),
-            grouped(proposal.gates_removed),
-        ),
-    }
+    let stopped = if set.stopped {
+        " The search for a cheaper or faster set ended at its limit of work."
+    } else {
+        ""
+    };
+    set_record.sentence = format!(
+        "Rebuild {}{as_one}: {block}, for {} built and {} removed.{alone}{others}{stopped}",
+        listed(&how),
+        counted(set_record.gates_added, "gate", "gates"),
+        grouped(set_record.gates_removed),
+    );
+    set_record
+}
+
+/// Members of a set that are told one by one in a sentence.
+pub const MEMBERS_TOLD: usize = 6;
+
+/// The members that are not.
+pub fn more_chains(members: usize) -> Option<String> {
+    let more = members.checked_sub(MEMBERS_TOLD).filter(|&more| more > 0)?;
+    Some(counted(more as u64, "more chain", "more chains"))
+}
+
+fn path_taking_over(netlist: &Netlist, path: TakesOver) -> String {
+    let way = if path.through_chain {
+        "through the chain still"
+    } else {
+        "beside the chain"
+    };
+    let end = path.end.describe(netlist);
+    format!("{} to {end}, {way}", path.kind)
 }
 
 /// The scheme with its group size, for a sentence.

@@ -4,7 +4,10 @@
 //! instance without a function anything may run; a register that is open passes
 //! paths on; a candidate left undecided may be a chain. As long as one of these
 //! touches a path, a verdict about the whole block would claim more than was
-//! seen. Every instance counts: without a function not even the directions of its
+//! seen. A net without driver hides something only where gates stand behind it:
+//! their paths begin in logic that is not in the file and are told too short. One
+//! that merely leaves by a port or is stored makes no path of this file longer; it
+//! is a finding, and the verdict about what is in the file stands. Every instance counts: without a function not even the directions of its
 //! pins are certain.
 
 use super::words::{counted, depth_in, grouped, listed};
@@ -92,6 +95,22 @@ impl Sight<'_> {
         ))
     }
 
+    /// The longest path from a net to an end, or [`NEVER`].
+    fn tail(&self, net: NetId) -> i32 {
+        self.timing.tails.by_net[net.index()]
+    }
+
+    /// When a net without driver would have to settle to make a longest path longer:
+    /// the first of them.
+    fn behind(&self, nets: &[NetId]) -> String {
+        let spare = nets.iter().filter_map(|&net| self.timing.slack(net));
+        let Some(least) = spare.map(|slack| slack.ticks).min() else {
+            return String::new();
+        };
+        let least = depth_in(self.timing.time(least), self.unit);
+        format!("; it matters if settled after {least}")
+    }
+
     fn reaches_an_end(&self, net: NetId) -> bool {
         self.timing.tails.by_net[net.index()] != NEVER
     }
@@ -106,7 +125,7 @@ impl Sight<'_> {
         contended.sort_unstable();
         let cut = self.topology.cut.ones().map(NetId::new);
         let bare: Vec<NetId> = cut
-            .filter(|&net| self.netlist.driver(net) == Driver::None && self.reaches_an_end(net))
+            .filter(|&net| self.netlist.driver(net) == Driver::None && self.tail(net) > 0)
             .collect();
         let mut parts = Vec::new();
         match on_loops.len() {
@@ -122,11 +141,18 @@ impl Sight<'_> {
             )),
         }
         for (nets, which) in [(&contended, "several drivers"), (&bare, "no driver")] {
+            let behind = match which {
+                "no driver" => self.behind(nets),
+                _ => String::new(),
+            };
             match nets.len() {
                 0 => {}
-                1 => parts.push(format!("a net with {which} is cut ({})", self.names(nets))),
+                1 => parts.push(format!(
+                    "a net with {which} is cut ({}{behind})",
+                    self.names(nets)
+                )),
                 n => parts.push(format!(
-                    "{} nets with {which} are cut ({})",
+                    "{} nets with {which} are cut ({}{behind})",
                     grouped(n as u64),
                     self.names(nets)
                 )),

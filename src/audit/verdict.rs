@@ -10,8 +10,8 @@ use super::assumed::Without;
 use super::free_carry;
 use super::goals::Standing;
 use super::measures::ChainMap;
-use super::rebuilds::scheme_phrase;
-use super::record::{ChainRecord, Limit, PathKindFacts, RecommendedSet, Verdict};
+use super::rebuilds::{MEMBERS_TOLD, more_chains, scheme_phrase};
+use super::record::{ChainRecord, Limit, PathKindFacts, ProposalRecord, RecommendedSet, Verdict};
 use super::sight::Sight;
 use super::words::{counted, depth_in, grouped, listed};
 use crate::chain::Chain;
@@ -218,36 +218,34 @@ impl Evidence<'_> {
         let RecommendedSet {
             proposals,
             block_depth,
+            gates_added,
+            gates_removed,
+            largest_fan_in,
             ..
         } = self.set;
         if proposals.is_empty() {
             return if self.records.iter().all(|chain| chain.proposals.is_empty()) {
                 "no rebuild was tried".to_owned()
             } else {
-                "no single rebuild that was tried makes the block shallower".to_owned()
+                "no rebuild that was tried makes the block shallower".to_owned()
             };
         }
-        let (mut added, mut removed, mut widest) = (0, 0, 0);
-        let mut how = Vec::new();
-        for chain in self.records {
-            for proposal in &chain.proposals {
-                if !proposals.contains(&format!("{}/{}", chain.id, proposal.id)) {
-                    continue;
-                }
-                added += proposal.gates_added;
-                removed += proposal.gates_removed;
-                widest = widest.max(proposal.largest_fan_in);
-                how.push(format!(
-                    "{} rebuilt as {}",
-                    chain.id,
-                    scheme_phrase(proposal)
-                ));
-            }
-        }
+        let chosen = self.records.iter().flat_map(|chain| {
+            let chosen = |proposal: &&ProposalRecord| {
+                proposals.contains(&format!("{}/{}", chain.id, proposal.id))
+            };
+            let found = chain.proposals.iter().filter(chosen);
+            found.map(move |proposal| (chain, proposal))
+        });
+        let how: Vec<String> = chosen
+            .take(MEMBERS_TOLD)
+            .map(|(chain, proposal)| format!("{} rebuilt as {}", chain.id, scheme_phrase(proposal)))
+            .chain(more_chains(proposals.len()))
+            .collect();
         if block_depth.after >= longest {
-            return "no single rebuild that was tried makes the block shallower".to_owned();
+            return "no rebuild that was tried makes the block shallower".to_owned();
         }
-        let cost = match added as i64 - removed as i64 {
+        let cost = match *gates_added as i64 - *gates_removed as i64 {
             0 => "as many gates as now".to_owned(),
             n if n > 0 => counted(n as u64, "gate more", "gates more"),
             n => counted(n.unsigned_abs(), "gate fewer", "gates fewer"),
@@ -257,7 +255,7 @@ impl Evidence<'_> {
             listed(&how),
             depth_in(block_depth.after, self.unit),
             longest,
-            counted(widest, "input", "inputs"),
+            counted(*largest_fan_in, "input", "inputs"),
         )
     }
 

@@ -203,8 +203,10 @@ fn audit_file(
         netlist,
         format,
         warnings,
-        ..
+        constraints,
     } = parsed;
+    let times = constraints.times(&netlist);
+    let netlist = netlist.with_times(times);
     if !arguments.quiet {
         warnings.iter().for_each(tell);
     }

@@ -9,7 +9,8 @@
 //! Invariant: every figure is finite. Port times and loads name a net of the
 //! netlist, and each net stands once in a list.
 
-use crate::netlist::{NameId, NetId};
+use crate::netlist::{FileTimes, NameId, NetId, Netlist};
+use rustc_hash::FxHashMap;
 
 /// A figure for a rising and one for a falling signal.
 #[derive(Clone, Copy, PartialEq, Debug, Default)]
@@ -170,6 +171,42 @@ pub struct Constraints {
 }
 
 impl Constraints {
+    /// The times that count in timing: arrival at inputs, required times of outputs,
+    /// the later of rise and fall at an input and the earlier at an output, and the
+    /// cycle. A time that counts from a clock's edge is left out, since where that
+    /// edge lies depends on clocks that no path here follows.
+    pub fn times(&self, netlist: &Netlist) -> FileTimes {
+        let mut times = FileTimes {
+            cycle: self.cycle.map(FileTimes::thousandths),
+            ..FileTimes::default()
+        };
+        let late = |at: RiseFall| FileTimes::thousandths(at.rise.max(at.fall));
+        let early = |at: RiseFall| FileTimes::thousandths(at.rise.min(at.fall));
+        if let Some(at) = self.default_input_arrival {
+            let inputs = netlist.inputs().iter();
+            times.arrival.extend(inputs.map(|&net| (net, late(at))));
+        }
+        for own in &self.input_arrival {
+            match own.reference {
+                None => times.arrival.insert(own.net, late(own.at)),
+                Some(_) => times.arrival.remove(&own.net),
+            };
+        }
+        let by_net: FxHashMap<NetId, &PortTime> = self
+            .output_required
+            .iter()
+            .map(|own| (own.net, own))
+            .collect();
+        for (port, output) in netlist.outputs().iter().enumerate() {
+            let at = match by_net.get(&output.signal.net) {
+                Some(own) => own.reference.is_none().then(|| early(own.at)),
+                None => self.default_output_required.map(early),
+            };
+            times.required.extend(at.map(|at| (port as u32, at)));
+        }
+        times
+    }
+
     /// Whether the netlist says nothing of the kind.
     pub fn is_empty(&self) -> bool {
         *self == Self::default()

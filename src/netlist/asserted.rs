@@ -124,8 +124,9 @@ impl Asserted {
         self.barred.contains(&net)
     }
 
-    /// When a start is ready, in whole units of the delay model.
-    pub fn arrival(&self, net: NetId) -> i32 {
-        self.arrivals.get(&net).copied().unwrap_or(0)
+    /// When a start is ready, in whole units of the delay model, where that was
+    /// asserted.
+    pub fn arrival(&self, net: NetId) -> Option<i32> {
+        self.arrivals.get(&net).copied()
     }
 }

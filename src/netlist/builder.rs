@@ -63,6 +63,7 @@ impl NetlistBuilder {
                 inverted_edges: false,
                 asserted: None,
                 declared: None,
+                times: None,
             },
             constants: [None; 2],
         }

@@ -30,6 +30,7 @@ mod passage;
 mod pattern;
 mod product;
 mod tie;
+mod times;
 mod transparent;
 
 pub use asserted::{Asserted, EndPoint, Pairing};
@@ -45,3 +46,4 @@ pub use model::{
 };
 pub use names::{NameId, Names};
 pub use pattern::Pattern;
+pub use times::FileTimes;

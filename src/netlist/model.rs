@@ -5,6 +5,7 @@ use super::declared::Declared;
 use super::function::{Function, Functions};
 use super::id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 use super::names::{NameId, Names};
+use super::times::FileTimes;
 
 /// What drives a net.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -230,6 +231,7 @@ pub struct Netlist {
     pub(super) inverted_edges: bool,
     pub(super) asserted: Option<Box<Asserted>>,
     pub(super) declared: Option<Box<Declared>>,
+    pub(super) times: Option<Box<FileTimes>>,
 }
 
 impl Netlist {

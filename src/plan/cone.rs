@@ -51,43 +51,80 @@ impl Operands {
         }
     }
 
-    /// The addends as literals. A carry-in of constant 1 is taken away by
-    /// adding the complements: `a + b + 1 = ~(~a + ~b)`; then the second result
-    /// is true and every sum and carry comes out inverted.
+    /// The addends as literals; see [`rooted`].
     pub(super) fn addends(
         &self,
         ground: &Ground<'_>,
         chain: &Chain,
         overlay: &mut Overlay,
     ) -> (Addends<Literal>, bool) {
+        let rooted = Rooted::of(ground, chain);
+        let addends = rooted.literals(overlay, |overlay, net| {
+            overlay.net(net, ground.timing.arrivals.by_net[net.index()])
+        });
+        (addends, rooted.negated)
+    }
+}
+
+/// What a chain adds, buffers and inverters looked through. A carry-in of
+/// constant 1 is taken away by adding the complements: `a + b + 1 = ~(~a + ~b)`;
+/// then the second result is true and every sum and carry comes out inverted.
+pub(super) struct Rooted {
+    addends: Addends<Bit>,
+    /// What the second addend is combined with by XOR.
+    mode: Option<Bit>,
+    pub(super) negated: bool,
+}
+
+impl Rooted {
+    pub(super) fn of(ground: &Ground<'_>, chain: &Chain) -> Self {
         let negated = chain.carry_in == Bit::Constant(true);
-        let mut literal = |bit: Bit| match bit {
-            Bit::Constant(value) => Literal::FALSE.invert_if(value),
+        let behind = |bit: Bit, negated: bool| match bit {
+            Bit::Constant(value) => Bit::Constant(value != negated),
             Bit::Signal(signal) => {
                 let root = root(ground, signal, |_| ());
-                let arrival = ground.timing.arrivals.by_net[root.net.index()];
-                overlay.net(root.net, arrival).invert_if(root.inverted)
+                Bit::Signal(Signal {
+                    inverted: root.inverted != negated,
+                    ..root
+                })
             }
         };
-        let a = chain
-            .positions
-            .iter()
-            .map(|p| literal(p.a).invert_if(negated));
-        let a = a.collect();
-        let b = chain
-            .positions
-            .iter()
-            .map(|p| literal(p.b).invert_if(negated));
-        let b: Vec<Literal> = b.collect();
-        let carry_in = match chain.carry_in {
-            Bit::Constant(_) => None,
-            bit @ Bit::Signal(_) => Some(literal(bit)),
+        let positions = || chain.positions.iter();
+        let addends = Addends {
+            a: positions().map(|each| behind(each.a, negated)).collect(),
+            b: positions().map(|each| behind(each.b, negated)).collect(),
+            carry_in: match chain.carry_in {
+                Bit::Constant(_) => None,
+                bit @ Bit::Signal(_) => Some(behind(bit, false)),
+            },
         };
-        let b = match chain.mode.map(|mode| literal(Bit::Signal(mode))) {
+        let mode = chain.mode.map(|mode| behind(Bit::Signal(mode), false));
+        Self {
+            addends,
+            mode,
+            negated,
+        }
+    }
+
+    /// The addends in an overlay, where `of_net` gives the literal of a net.
+    pub(super) fn literals(
+        &self,
+        overlay: &mut Overlay,
+        mut of_net: impl FnMut(&mut Overlay, NetId) -> Literal,
+    ) -> Addends<Literal> {
+        let mut literal = |bit: Bit| match bit {
+            Bit::Constant(value) => Literal::FALSE.invert_if(value),
+            Bit::Signal(signal) => of_net(overlay, signal.net).invert_if(signal.inverted),
+        };
+        let a = self.addends.a.iter().map(|&bit| literal(bit)).collect();
+        let b: Vec<Literal> = self.addends.b.iter().map(|&bit| literal(bit)).collect();
+        let carry_in = self.addends.carry_in.map(&mut literal);
+        let mode = self.mode.map(&mut literal);
+        let b = match mode {
             Some(mode) => b.into_iter().map(|b| overlay.xor(b, mode)).collect(),
             None => b,
         };
-        (Addends { a, b, carry_in }, negated)
+        Addends { a, b, carry_in }
     }
 }
 
@@ -190,4 +227,37 @@ pub(super) fn sweep(
         }
     }
     (removed, uses)
+}
+
+/// Gates removed beyond those of [`sweep`], because no new gate reads some
+/// operand. No operand given may depend on what is replaced.
+pub(super) fn sweep_unread(
+    ground: &Ground<'_>,
+    operands: &[NetId],
+    uses_left: &FxHashMap<NetId, u32>,
+    is_read: impl Fn(NetId) -> bool,
+) -> Vec<GateId> {
+    let mut uses: FxHashMap<NetId, u32> = FxHashMap::default();
+    let left = |uses: &FxHashMap<NetId, u32>, net: NetId| {
+        let known = uses.get(&net).or_else(|| uses_left.get(&net));
+        known.copied().unwrap_or_else(|| ground.uses(net))
+    };
+    let mut stack: Vec<GateId> = operands
+        .iter()
+        .filter(|&&net| ground.uses(net) > 0 && left(&uses, net) == 0 && !is_read(net))
+        .filter_map(|&net| ground.gate_of(net))
+        .collect();
+    let mut swept = Vec::new();
+    while let Some(gate) = stack.pop() {
+        swept.push(gate);
+        for &net in ground.netlist.fan_ins(gate) {
+            let now = left(&uses, net) - 1;
+            uses.insert(net, now);
+            if now == 0 && !is_read(net) {
+                stack.extend(ground.gate_of(net));
+            }
+        }
+    }
+    swept.sort_unstable();
+    swept
 }

@@ -8,7 +8,8 @@
 //! tails behind them and the longest paths beside the chain, which together are
 //! every path there is, since no operand depends on a replaced net.
 
-use super::overlay::{GateStyle, Literal, Node, Operator, Overlay};
+use super::made::Made;
+use super::overlay::{Literal, Overlay};
 use super::site::Site;
 use crate::netlist::{GateId, NetId};
 use crate::network::{CarryNetwork, Propagate, build};
@@ -78,10 +79,7 @@ pub struct DryRun<'s, 'a> {
     pub(super) overlay: Overlay,
     /// What each needed net of the site becomes.
     pub(super) literals: Vec<Literal>,
-    /// By node: whether its gate is made, once or once per real net.
-    pub(super) is_made: Vec<bool>,
-    /// By node: the real nets that are gates of it (BLIF only).
-    pub(super) real_nets: Vec<u32>,
+    pub(super) made: Made,
     /// Gates removed beyond the site's.
     pub(super) swept: Vec<GateId>,
     carries: Vec<Literal>,
@@ -109,15 +107,14 @@ impl<'s, 'a> DryRun<'s, 'a> {
             .collect();
         let carries = built.carries;
         let carries = carries.iter().map(|c| c.invert_if(site.negated)).collect();
-        let (is_made, real_nets) = mark(&overlay, &literals);
-        let reads = read_nets(&overlay, &literals, &is_made);
+        let made = Made::of(&overlay, &literals);
+        let reads = made.reads(&overlay, &literals);
         let swept = site.sweep_unread(|net| reads.binary_search(&net).is_ok());
         let mut run = Self {
             site,
             overlay,
             literals,
-            is_made,
-            real_nets,
+            made,
             swept,
             carries,
             estimate: Estimate {
@@ -135,7 +132,6 @@ impl<'s, 'a> DryRun<'s, 'a> {
             },
         };
         run.count_gates();
-        run.measure_fan_out();
         run.measure_depth();
         run
     }
@@ -152,42 +148,9 @@ impl<'s, 'a> DryRun<'s, 'a> {
         times.map(|time| (time != NEVER).then_some(time)).collect()
     }
 
-    fn style(&self) -> GateStyle {
-        self.overlay.style()
-    }
-
-    /// How many gates a node is.
-    fn copies(&self, node: Node) -> usize {
-        if !self.is_made[node.index()] {
-            return 0;
-        }
-        let real = self.real_nets[node.index()] as usize;
-        let shared = usize::from(self.overlay.existing(node).is_none());
-        real.max(shared)
-    }
-
     fn count_gates(&mut self) {
-        let mut added = (0, 0, 0);
-        let mut add = |gates: usize, inputs: usize| {
-            added.0 += gates;
-            added.1 += gates * inputs.saturating_sub(1);
-            if gates > 0 {
-                added.2 = added.2.max(inputs);
-            }
-        };
-        for node in self.overlay.nodes() {
-            add(self.copies(node), self.overlay.inputs(node).len());
-        }
-        if self.style() != GateStyle::AndInverter {
-            for literal in &self.literals {
-                match self.overlay.operator(literal.node()) {
-                    Operator::Constant => add(1, 0),
-                    Operator::Net(_) => add(1, 1),
-                    Operator::And | Operator::Xor | Operator::Cover(_) => {}
-                }
-            }
-        }
         let netlist = self.site.ground.netlist;
+        let count = self.made.count(&self.overlay, &self.literals);
         let equivalents = |gate: GateId| netlist.fan_ins(gate).len().saturating_sub(1);
         // A sum does not depend on the order of the set.
         #[allow(clippy::iter_over_hash_type)]
@@ -198,65 +161,18 @@ impl<'s, 'a> DryRun<'s, 'a> {
             self.estimate.gate_equivalents_removed += equivalents(gate);
         }
         self.estimate.gates_removed = self.site.removed.len() + self.swept.len();
-        self.estimate.gates_added = added.0;
-        self.estimate.gate_equivalents_added = added.1;
-        self.estimate.largest_fan_in = added.2;
-    }
-
-    fn measure_fan_out(&mut self) {
-        let mut inner = vec![0usize; self.overlay.len()];
-        for node in self.overlay.nodes() {
-            let copies = self.copies(node);
-            for input in self.overlay.inputs(node) {
-                inner[input.node().index()] += copies;
-            }
-        }
-        let mut largest = 0;
-        if self.style() == GateStyle::AndInverter {
-            for (needed, literal) in self.site.needed.iter().zip(&self.literals) {
-                inner[literal.node().index()] += needed.uses as usize;
-            }
-        } else {
-            // The first real net of a node also serves the new gates.
-            let mut first = vec![true; self.overlay.len()];
-            for (needed, literal) in self.site.needed.iter().zip(&self.literals) {
-                let node = literal.node();
-                let gate = self.overlay.is_gate(node);
-                let serves = gate
-                    && self.overlay.existing(node).is_none()
-                    && std::mem::take(&mut first[node.index()]);
-                let inside = if serves { inner[node.index()] } else { 0 };
-                largest = largest.max(needed.uses as usize + inside);
-            }
-        }
-        for node in self.overlay.nodes() {
-            if self.copies(node) > 0
-                && self.real_nets[node.index()] == 0
-                && self.overlay.existing(node).is_none()
-            {
-                largest = largest.max(inner[node.index()]);
-            }
-        }
-        self.estimate.largest_fan_out = largest;
+        self.estimate.gates_added = count.gates;
+        self.estimate.gate_equivalents_added = count.equivalents;
+        self.estimate.largest_fan_in = count.largest_fan_in;
+        let uses = self.site.needed.iter().map(|needed| needed.uses);
+        let shown: Vec<(Literal, u32)> = self.literals.iter().copied().zip(uses).collect();
+        self.estimate.largest_fan_out = self.made.largest_fan_out(&self.overlay, &shown);
     }
 
     /// When each needed net is ready if the existing nets are as `by_net` says.
     fn needed_arrivals(&self, by_net: &[i32]) -> Vec<i32> {
         let times = self.overlay.arrivals(|net| by_net[net.index()]);
-        let buffer = self.overlay.buffer_delay();
-        let at = |literal: &Literal| {
-            let node = literal.node();
-            let time = times[node.index()];
-            match self.overlay.operator(node) {
-                Operator::Constant => NEVER,
-                Operator::Net(_) if time == NEVER => NEVER,
-                Operator::Net(_) => time + buffer,
-                // A real net in BLIF is a gate of its own even where an
-                // existing net shows the same.
-                _ if self.style() == GateStyle::AndInverter => time,
-                _ => self.overlay.own_arrival(node, &times),
-            }
-        };
+        let at = |&literal: &Literal| self.overlay.shown_arrival(literal, &times);
         self.literals.iter().map(at).collect()
     }
 
@@ -329,47 +245,4 @@ impl<'s, 'a> DryRun<'s, 'a> {
             .find(|(needed, time)| tails.get(&needed.net).is_some_and(|t| *time + t == length))
             .map(|(needed, _)| needed.net)
     }
-}
-
-/// Which nodes are made as gates, and how many real nets are gates of each.
-fn mark(overlay: &Overlay, literals: &[Literal]) -> (Vec<bool>, Vec<u32>) {
-    let mut live = vec![false; overlay.len()];
-    let mut made = vec![false; overlay.len()];
-    let mut real = vec![0; overlay.len()];
-    for literal in literals {
-        let node = literal.node();
-        live[node.index()] = true;
-        if overlay.style() != GateStyle::AndInverter && overlay.is_gate(node) {
-            real[node.index()] += 1;
-        }
-    }
-    for node in overlay.nodes().rev() {
-        let i = node.index();
-        let shared = live[i] && overlay.is_gate(node) && overlay.existing(node).is_none();
-        if shared || real[i] > 0 {
-            made[i] = true;
-            for input in overlay.inputs(node) {
-                live[input.node().index()] = true;
-            }
-        }
-    }
-    (made, real)
-}
-
-/// The existing nets that new gates or replaced nets read, ascending.
-fn read_nets(overlay: &Overlay, literals: &[Literal], made: &[bool]) -> Vec<NetId> {
-    let inputs = overlay
-        .nodes()
-        .filter(|node| made[node.index()])
-        .flat_map(|node| overlay.inputs(node));
-    let mut nets: Vec<NetId> = inputs
-        .chain(literals)
-        .filter_map(|literal| match overlay.operator(literal.node()) {
-            Operator::Net(net) => Some(net),
-            _ => overlay.existing(literal.node()).map(|shown| shown.net),
-        })
-        .collect();
-    nets.sort_unstable();
-    nets.dedup();
-    nets
 }

@@ -114,6 +114,21 @@ impl<'a> Ground<'a> {
             .copied()
     }
 
+    /// The ends of a kind whose latest path arrives at `time`.
+    pub(super) fn ends_at_time(&self, kind: PathKind, time: i32) -> impl Iterator<Item = End> + '_ {
+        let list = self
+            .ends_by_arrival
+            .iter()
+            .find(|&&(start, _)| start == kind.start)
+            .map_or(&[][..], |(_, list)| list);
+        let from = list.partition_point(|&(arrival, _)| arrival > time);
+        list[from..]
+            .iter()
+            .take_while(move |&&(arrival, _)| arrival == time)
+            .map(|&(_, end)| end)
+            .filter(move |end| end.group(self.netlist) == Some(kind.end))
+    }
+
     /// The groups of ends that occur.
     pub(super) fn end_groups(&self) -> Vec<EndGroup> {
         self.timing.by_end().map(|(group, _)| group).collect()

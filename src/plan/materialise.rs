@@ -7,12 +7,16 @@
 //! of the result equal the dry run's estimate.
 
 use super::dry_run::DryRun;
-use super::overlay::{GateStyle, Literal, Node, Operator};
+use super::made::Made;
+use super::overlay::{GateStyle, Literal, Node, Operator, Overlay};
+use super::set_run::SetRun;
 use crate::netlist::{
     BlackBox, Driver, Function, GateId, NameId, NetId, Netlist, NetlistBuilder, Output, Property,
     Register, ScopeId, Signal, TooLarge,
 };
-use rustc_hash::FxHashMap;
+use fixedbitset::FixedBitSet;
+use rustc_hash::{FxHashMap, FxHashSet};
+use std::ops::Range;
 
 /// The netlist with a proposal applied.
 pub struct Rebuilt {
@@ -29,26 +33,90 @@ pub struct Rebuilt {
 /// # Errors
 /// When the result would need more ids than 32 bits hold.
 pub fn materialise(run: &DryRun<'_, '_>, prefix: &str) -> Result<Rebuilt, TooLarge> {
-    let mut writer = Writer::new(run, prefix);
+    let site = run.site;
+    let needed = site.needed.iter().map(|needed| needed.net);
+    let needed: Vec<(NetId, Literal)> = needed.zip(run.literals.iter().copied()).collect();
+    let patch = Patch {
+        netlist: site.ground.netlist,
+        overlay: &run.overlay,
+        made: &run.made,
+        removed: &site.removed,
+        swept: &run.swept,
+        stretches: vec![Stretch {
+            nodes: 0..run.overlay.len(),
+            needed: 0..needed.len(),
+            behind: &site.region,
+        }],
+        needed,
+    };
+    write(&patch, prefix)
+}
+
+/// As [`materialise`], with a whole set of proposals applied.
+///
+/// # Errors
+/// When the result would need more ids than 32 bits hold.
+pub fn materialise_set(run: &SetRun<'_, '_>, prefix: &str) -> Result<Rebuilt, TooLarge> {
+    let site = run.site;
+    let needed = site.needed.iter().map(|needed| needed.net);
+    let patch = Patch {
+        netlist: site.ground.netlist,
+        overlay: &run.overlay,
+        made: &run.made,
+        removed: &site.removed,
+        swept: &run.swept,
+        stretches: run.stretches().collect(),
+        needed: needed.zip(run.literals.iter().copied()).collect(),
+    };
+    write(&patch, prefix)
+}
+
+/// What changes in a netlist.
+struct Patch<'p> {
+    netlist: &'p Netlist,
+    overlay: &'p Overlay,
+    made: &'p Made,
+    removed: &'p FxHashSet<GateId>,
+    swept: &'p [GateId],
+    /// Existing nets to show something new, and what.
+    needed: Vec<(NetId, Literal)>,
+    /// The new gates and the gates behind them, in an order in which nothing is
+    /// read before it is made.
+    stretches: Vec<Stretch<'p>>,
+}
+
+/// New gates, the nets they are made for, and the gates behind those nets.
+pub(super) struct Stretch<'p> {
+    pub(super) nodes: Range<usize>,
+    pub(super) needed: Range<usize>,
+    pub(super) behind: &'p [GateId],
+}
+
+fn write(patch: &Patch<'_>, prefix: &str) -> Result<Rebuilt, TooLarge> {
+    let mut writer = Writer::new(patch, prefix);
     writer.copy_nets()?;
     writer.copy_inputs();
     let old = writer.old;
-    let behind = |gate: GateId| run.site.region_set.contains(&gate);
-    if run.overlay.style() == GateStyle::AndInverter {
-        // Gates before what reads them: those behind the chain come last.
-        for gate in old.gates().filter(|&gate| !behind(gate)) {
+    if patch.overlay.style() == GateStyle::AndInverter {
+        // Gates before what reads them.
+        let mut behind = FixedBitSet::with_capacity(old.gate_count());
+        let late = patch.stretches.iter().flat_map(|each| each.behind);
+        behind.extend(late.map(|gate| gate.index()));
+        for gate in old.gates().filter(|gate| !behind.contains(gate.index())) {
             writer.copy_gate(gate)?;
         }
-        writer.make_gates()?;
-        writer.redirect()?;
-        for &gate in &run.site.region {
-            writer.copy_gate(gate)?;
+        for stretch in &patch.stretches {
+            writer.make_gates(stretch.nodes.clone())?;
+            writer.redirect(stretch.needed.clone())?;
+            for &gate in stretch.behind {
+                writer.copy_gate(gate)?;
+            }
         }
     } else {
         for gate in old.gates() {
             writer.copy_gate(gate)?;
         }
-        writer.make_gates()?;
+        writer.make_gates(0..patch.overlay.len())?;
         writer.drive_real_nets()?;
     }
     writer.copy_rest();
@@ -58,9 +126,9 @@ pub fn materialise(run: &DryRun<'_, '_>, prefix: &str) -> Result<Rebuilt, TooLar
     })
 }
 
-struct Writer<'r, 's, 'a> {
-    run: &'r DryRun<'s, 'a>,
-    old: &'a Netlist,
+struct Writer<'p> {
+    patch: &'p Patch<'p>,
+    old: &'p Netlist,
     builder: NetlistBuilder,
     /// No old name begins with it.
     prefix: String,
@@ -71,9 +139,9 @@ struct Writer<'r, 's, 'a> {
     shown: Vec<Option<Signal>>,
 }
 
-impl<'r, 's, 'a> Writer<'r, 's, 'a> {
-    fn new(run: &'r DryRun<'s, 'a>, prefix: &str) -> Self {
-        let old = run.site.ground.netlist;
+impl<'p> Writer<'p> {
+    fn new(patch: &'p Patch<'p>, prefix: &str) -> Self {
+        let old = patch.netlist;
         let mut prefix = prefix.to_owned();
         while old.names().any_begins_with(prefix.as_bytes()) {
             prefix.push('_');
@@ -87,14 +155,14 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
             builder.set_model(name);
         }
         Self {
-            run,
+            patch,
             old,
             builder,
             prefix,
             made: 0,
             nets: vec![None; old.net_count()],
             scopes: FxHashMap::from_iter([(ScopeId::new(0), ScopeId::new(0))]),
-            shown: vec![None; run.overlay.len()],
+            shown: vec![None; patch.overlay.len()],
         }
     }
 
@@ -119,13 +187,13 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
     }
 
     fn is_removed(&self, gate: GateId) -> bool {
-        self.run.site.removed.contains(&gate) || self.run.swept.binary_search(&gate).is_ok()
+        self.patch.removed.contains(&gate) || self.patch.swept.binary_search(&gate).is_ok()
     }
 
     fn copy_nets(&mut self) -> Result<(), TooLarge> {
-        let mut needed: Vec<NetId> = self.run.site.needed.iter().map(|each| each.net).collect();
+        let mut needed: Vec<NetId> = self.patch.needed.iter().map(|&(net, _)| net).collect();
         needed.sort_unstable();
-        let redirects = self.run.overlay.style() == GateStyle::AndInverter;
+        let redirects = self.patch.overlay.style() == GateStyle::AndInverter;
         for net in self.old.nets() {
             let gone = match self.old.driver(net) {
                 Driver::Gate(gate) => {
@@ -201,7 +269,7 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
     /// The net and polarity that shows a literal.
     fn show(&mut self, literal: Literal) -> Result<Signal, TooLarge> {
         let node = literal.node();
-        let signal = match self.run.overlay.operator(node) {
+        let signal = match self.patch.overlay.operator(node) {
             Operator::Constant => {
                 let value = literal.is_inverted();
                 return Ok(Signal::plain(self.builder.constant(value)?));
@@ -217,28 +285,27 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
 
     /// Makes the gates of the overlay, each driving the first real net that
     /// shows it, else a new net.
-    fn make_gates(&mut self) -> Result<(), TooLarge> {
-        let run = self.run;
+    fn make_gates(&mut self, nodes: Range<usize>) -> Result<(), TooLarge> {
+        let Patch {
+            overlay, needed, ..
+        } = self.patch;
         let mut first: FxHashMap<Node, (NetId, bool)> = FxHashMap::default();
-        if run.overlay.style() != GateStyle::AndInverter {
-            for (needed, literal) in run.site.needed.iter().zip(&run.literals) {
+        if overlay.style() != GateStyle::AndInverter {
+            for &(net, literal) in needed {
                 let entry = first.entry(literal.node());
-                entry.or_insert((needed.net, literal.is_inverted()));
+                entry.or_insert((net, literal.is_inverted()));
             }
         }
-        for node in run
-            .overlay
-            .nodes()
-            .filter(|&node| run.overlay.is_gate(node))
-        {
-            if let Some(existing) = run.overlay.existing(node) {
+        let nodes = overlay.nodes().skip(nodes.start).take(nodes.len());
+        for node in nodes.filter(|&node| overlay.is_gate(node)) {
+            if let Some(existing) = overlay.existing(node) {
                 self.shown[node.index()] = self.nets[existing.net.index()].map(|now| Signal {
                     inverted: now.inverted != existing.inverted,
                     ..now
                 });
                 continue;
             }
-            if !run.is_made[node.index()] {
+            if !self.patch.made.is_made[node.index()] {
                 continue;
             }
             let (output, inverted) = match first.get(&node) {
@@ -256,7 +323,7 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
 
     fn new_net(&mut self) -> Result<NetId, TooLarge> {
         let top = ScopeId::new(0);
-        if self.run.overlay.style() == GateStyle::AndInverter {
+        if self.patch.overlay.style() == GateStyle::AndInverter {
             return self.builder.add_net(None, top);
         }
         self.made += 1;
@@ -267,7 +334,7 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
 
     /// One gate of `node`, its output complemented when `inverted` is set.
     fn add_gate(&mut self, node: Node, output: NetId, inverted: bool) -> Result<(), TooLarge> {
-        let overlay = &self.run.overlay;
+        let overlay = &self.patch.overlay;
         let inputs = overlay.inputs(node).to_vec();
         let mut pins = Vec::with_capacity(inputs.len());
         for &input in &inputs {
@@ -298,18 +365,18 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
 
     /// Drives the real nets that [`Self::make_gates`] has not.
     fn drive_real_nets(&mut self) -> Result<(), TooLarge> {
-        let run = self.run;
-        for (needed, &literal) in run.site.needed.iter().zip(&run.literals) {
-            let output = self.net_now(needed.net);
+        let patch = self.patch;
+        for &(net, literal) in &patch.needed {
+            let output = self.net_now(net);
             if self.builder.driver(output) != Driver::None {
                 continue;
             }
             let node = literal.node();
-            if run.overlay.is_gate(node) {
+            if patch.overlay.is_gate(node) {
                 self.add_gate(node, output, literal.is_inverted())?;
                 continue;
             }
-            let (function, pins) = match run.overlay.operator(node) {
+            let (function, pins) = match patch.overlay.operator(node) {
                 Operator::Constant => (Function::constant(literal.is_inverted()), Vec::new()),
                 _ => {
                     let from = self.show(literal)?;
@@ -324,11 +391,11 @@ impl<'r, 's, 'a> Writer<'r, 's, 'a> {
     }
 
     /// Lets the readers of the replaced nets read the new gates.
-    fn redirect(&mut self) -> Result<(), TooLarge> {
-        let run = self.run;
-        for (needed, &literal) in run.site.needed.iter().zip(&run.literals) {
+    fn redirect(&mut self, needed: Range<usize>) -> Result<(), TooLarge> {
+        let patch = self.patch;
+        for &(net, literal) in &patch.needed[needed] {
             let signal = self.show(literal)?;
-            self.nets[needed.net.index()] = Some(signal);
+            self.nets[net.index()] = Some(signal);
         }
         Ok(())
     }

@@ -344,8 +344,21 @@ impl Overlay {
     /// Arrivals of all nodes when the existing nets are ready at `of_net`.
     pub(super) fn arrivals(&self, of_net: impl Fn(NetId) -> i32) -> Vec<i32> {
         let mut times: Vec<i32> = Vec::with_capacity(self.entries.len());
-        for node in self.nodes() {
-            let entry = &self.entries[node.index()];
+        self.continue_arrivals(&mut times, self.entries.len(), of_net);
+        times
+    }
+
+    /// As [`Self::arrivals`], going on from the nodes `times` holds to the node
+    /// before `end`.
+    pub(super) fn continue_arrivals(
+        &self,
+        times: &mut Vec<i32>,
+        end: usize,
+        of_net: impl Fn(NetId) -> i32,
+    ) {
+        for i in times.len()..end {
+            let node = Node(i as u32);
+            let entry = &self.entries[i];
             let time = match (entry.existing, entry.operator) {
                 (Some(shown), _) => of_net(shown.net),
                 (None, Operator::Constant) => NEVER,
@@ -356,7 +369,37 @@ impl Overlay {
             };
             times.push(time);
         }
-        times
+    }
+
+    /// When a net of its own that shows `literal` is ready.
+    pub(super) fn shown_arrival(&self, literal: Literal, times: &[i32]) -> i32 {
+        let node = literal.node();
+        let time = times[node.index()];
+        match self.operator(node) {
+            Operator::Constant => NEVER,
+            Operator::Net(_) if time == NEVER => NEVER,
+            Operator::Net(_) => time + self.buffer_delay(),
+            // A real net in BLIF is a gate of its own even where an existing net
+            // shows the same.
+            _ if self.style == GateStyle::AndInverter => time,
+            _ => self.own_arrival(node, times),
+        }
+    }
+
+    /// The inputs of a gate node that decide when it is ready.
+    pub(super) fn latest_inputs(&self, node: Node, times: &[i32]) -> Vec<Node> {
+        let inputs = self.inputs(node);
+        let whole = self.own_arrival(node, times);
+        let decides = |input: &Node| {
+            let at = times[input.index()];
+            let only = |each: Node| if each == *input { at } else { NEVER };
+            at != NEVER && self.priced_arrival(self.operator(node), inputs, only) == whole
+        };
+        inputs
+            .iter()
+            .map(|input| input.node())
+            .filter(decides)
+            .collect()
     }
 
     /// When a gate node would be ready as a gate of its own.

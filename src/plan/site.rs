@@ -9,19 +9,15 @@
 //! the netlist. This rests on one invariant, checked here: no operand depends on
 //! a replaced net.
 
-use super::cone::{Operands, fan_out_of, replaced_nets, sweep};
+use super::cone::{Operands, fan_out_of, replaced_nets, sweep, sweep_unread};
 use super::ground::Ground;
 use super::overlay::{GateStyle, Literal, Overlay};
+use super::reuse::find_reusable;
 use crate::chain::Chain;
-use crate::netlist::{GateId, NetId, Shape};
+use crate::netlist::{GateId, NetId};
 use crate::network::Addends;
 use crate::timing::{End, EndGroup, NEVER, PathKind, StartGroup, end_net};
 use rustc_hash::{FxHashMap, FxHashSet};
-
-/// Readers of one operand looked at for gates to reuse.
-const MOST_READERS: usize = 256;
-/// Levels of gates over the operands looked at for gates to reuse.
-const REUSE_LEVELS: usize = 3;
 
 /// Why a chain cannot be planned.
 #[derive(Clone, Copy, PartialEq, Eq, Debug, thiserror::Error)]
@@ -35,6 +31,9 @@ pub enum Refused {
     /// No net of the chain can be driven anew.
     #[error("none of its sums and carries is driven by a gate of its own")]
     NothingToReplace,
+    /// Two chains of a set read each other.
+    #[error("two chains of the set depend on each other")]
+    DependOnEachOther,
 }
 
 /// What a replaced net shows.
@@ -143,7 +142,8 @@ impl<'a> Site<'a> {
             negated,
             operands: operands.roots,
         };
-        site.find_reusable(&fan_out_set);
+        let stays = |gate: GateId| !site.removed.contains(&gate) && !fan_out_set.contains(&gate);
+        find_reusable(ground, &mut site.base, &site.operands, stays);
         site.measure_beside();
         site.measure_tails();
         Ok(site)
@@ -160,51 +160,6 @@ impl<'a> Site<'a> {
     /// Arrival of an existing net the chain does not replace.
     pub(super) fn arrival(&self, net: NetId) -> i32 {
         self.ground.timing.arrivals.by_net[net.index()]
-    }
-
-    /// Puts the surviving gates over the operands into the overlay, so that a
-    /// new gate equal to one of them is that one.
-    fn find_reusable(&mut self, fan_out: &FxHashSet<GateId>) {
-        let netlist = self.ground.netlist;
-        let mut known: FxHashMap<NetId, Literal> = FxHashMap::default();
-        let mut front = self.operands.clone();
-        for &net in &front {
-            known.insert(net, self.base.net(net, self.arrival(net)));
-        }
-        for _ in 0..REUSE_LEVELS {
-            let mut gates: Vec<GateId> = front
-                .iter()
-                .flat_map(|&net| self.ground.readers.of_net(net).iter().take(MOST_READERS))
-                .copied()
-                .filter(|gate| !self.removed.contains(gate) && !fan_out.contains(gate))
-                .collect();
-            gates.sort_unstable_by_key(|&gate| self.ground.rank(gate));
-            gates.dedup();
-            front.clear();
-            for gate in gates {
-                let output = netlist.gate_output(gate);
-                if known.contains_key(&output) || self.ground.gate_of(output) != Some(gate) {
-                    continue;
-                }
-                let pins = netlist.fan_ins(gate).iter();
-                let Some(inputs) = pins.map(|net| known.get(net).copied()).collect() else {
-                    continue;
-                };
-                let inputs: Vec<Literal> = inputs;
-                let function = netlist.function(gate);
-                let literal = match function.shape() {
-                    Shape::Buffer => Some(inputs[0]),
-                    Shape::Inverter => Some(!inputs[0]),
-                    _ => self.base.gate(function, &inputs),
-                };
-                if let Some(literal) = literal {
-                    let arrival = self.arrival(output);
-                    self.base.set_existing(literal, output, arrival);
-                    known.insert(output, literal);
-                    front.push(output);
-                }
-            }
-        }
     }
 
     /// The longest paths that pass no replaced net.
@@ -367,31 +322,7 @@ impl<'a> Site<'a> {
     /// Gates removed beyond those of every proposal, because the new gates of
     /// this one do not read some operand.
     pub(super) fn sweep_unread(&self, is_read: impl Fn(NetId) -> bool) -> Vec<GateId> {
-        let ground = self.ground;
-        let mut uses: FxHashMap<NetId, u32> = FxHashMap::default();
-        let left = |uses: &FxHashMap<NetId, u32>, net: NetId| {
-            let known = uses.get(&net).or_else(|| self.uses_left.get(&net));
-            known.copied().unwrap_or_else(|| ground.uses(net))
-        };
-        let mut stack: Vec<GateId> = self
-            .operands
-            .iter()
-            .filter(|&&net| ground.uses(net) > 0 && left(&uses, net) == 0 && !is_read(net))
-            .filter_map(|&net| ground.gate_of(net))
-            .collect();
-        let mut swept = Vec::new();
-        while let Some(gate) = stack.pop() {
-            swept.push(gate);
-            for &net in ground.netlist.fan_ins(gate) {
-                let now = left(&uses, net) - 1;
-                uses.insert(net, now);
-                if now == 0 && !is_read(net) {
-                    stack.extend(ground.gate_of(net));
-                }
-            }
-        }
-        swept.sort_unstable();
-        swept
+        sweep_unread(self.ground, &self.operands, &self.uses_left, is_read)
     }
 
     /// Arrivals from each group of starts by net, as the timing has them.

@@ -39,7 +39,10 @@ impl PinDelays {
         for id in 0..netlist.function_count() {
             let id = FunctionId::new(id);
             match netlist.declared_delays(id) {
-                Some(own) => ticks.extend(own.iter().map(|own| own * model.ticks_per_unit())),
+                Some(own) => ticks.extend(
+                    own.iter()
+                        .map(|own| own.saturating_mul(model.ticks_per_unit())),
+                ),
                 None => ticks.extend(model.pin_delays(netlist.function_of(id))),
             }
             starts.push(ticks.len() as u32);
@@ -56,9 +59,13 @@ impl PinDelays {
     pub fn free_buffers(netlist: &Netlist) -> Self {
         let (mut starts, mut ticks) = (vec![0], Vec::new());
         for id in 0..netlist.function_count() {
-            let function = netlist.function_of(FunctionId::new(id));
+            let id = FunctionId::new(id);
+            let function = netlist.function_of(id);
             let free = matches!(function.shape(), Shape::Buffer | Shape::Inverter);
-            ticks.resize(ticks.len() + function.inputs(), i32::from(!free));
+            match netlist.declared_delays(id) {
+                Some(own) => ticks.extend(own),
+                None => ticks.resize(ticks.len() + function.inputs(), i32::from(!free)),
+            }
             starts.push(ticks.len() as u32);
         }
         Self {
@@ -88,6 +95,11 @@ impl PinDelays {
         };
         let mut loads = vec![0_i32; netlist.net_count()];
         for gate in netlist.gates() {
+            // What only passes the delay of a box on is the box, counted below.
+            let passage = netlist.declared().and_then(|own| own.passage(gate));
+            if passage.is_some() {
+                continue;
+            }
             let own = &prices[delays.range(netlist, gate)];
             for (net, price) in netlist.fan_ins(gate).iter().zip(own) {
                 let load = &mut loads[net.index()];

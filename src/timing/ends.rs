@@ -310,11 +310,20 @@ pub fn start_group(netlist: &Netlist, topology: &Topology, net: NetId) -> Option
 /// When a start is ready, in ticks of the delay model.
 #[inline]
 pub fn start_time(netlist: &Netlist, model: DelayModel, net: NetId) -> i32 {
-    netlist.asserted().map_or(0, |asserted| {
-        let units = asserted.arrival(net);
-        units.saturating_mul(model.ticks_per_unit())
-    })
+    let per_unit = model.ticks_per_unit();
+    let asserted = netlist
+        .asserted()
+        .and_then(|asserted| asserted.arrival(net));
+    if let Some(units) = asserted {
+        return units.saturating_mul(per_unit).min(LATEST);
+    }
+    let stated = netlist.times().filter(|_| model.counts_time());
+    let stated = stated.and_then(|times| times.arrival.get(&net));
+    stated.map_or(0, |&thousandths| thousandths / (1000 / per_unit))
 }
+
+/// The latest start there is, so that delays can be added.
+const LATEST: i32 = 1_000_000_000;
 
 /// What kind of start a net is, if it is one.
 fn start_class(netlist: &Netlist, topology: &Topology, net: NetId) -> Option<StartClass> {

@@ -113,6 +113,12 @@ impl DelayModel {
         delays.min().unwrap_or(0)
     }
 
+    /// Whether it measures time and does not count levels: then times that a file
+    /// states mean something.
+    pub fn counts_time(self) -> bool {
+        self.ticks_per_unit() > 1
+    }
+
     /// Ticks as a time in the unit of the model.
     pub fn time(self, ticks: i32) -> Time {
         Time::of_ticks(ticks, self.ticks_per_unit())

@@ -173,6 +173,21 @@ impl Aig {
         levels.into_iter().max().unwrap_or(0)
     }
 
+    /// The value of every variable on 64 patterns: one word per input, one per
+    /// register.
+    pub fn evaluate(&self, inputs: &[u64], state: &[u64]) -> Vec<u64> {
+        let mut values = vec![0];
+        values.extend(inputs.iter().chain(state));
+        assert_eq!(values.len(), self.first_and());
+        for &[a, b] in &self.ands {
+            let value = |literal: u32| {
+                values[(literal / 2) as usize] ^ u64::from(literal & 1).wrapping_neg()
+            };
+            values.push(value(a) & value(b));
+        }
+        values
+    }
+
     /// The variable of AND number 0.
     pub(super) fn first_and(&self) -> usize {
         self.inputs.len() + self.registers.len() + 1

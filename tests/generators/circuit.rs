@@ -279,6 +279,11 @@ impl Circuit {
         )
     }
 
+    /// Makes a gate compute something else of its inputs.
+    pub fn set_function(&mut self, gate: usize, function: Function) {
+        self.functions[gate] = function;
+    }
+
     /// Keeps the gates listed, in that order.
     pub fn keep_gates(&mut self, gates: &[u32]) {
         let old = self.clone();

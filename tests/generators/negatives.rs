@@ -205,3 +205,96 @@ pub fn voters(count: usize) -> Circuit {
     }
     c
 }
+
+/// Further negatives, of the corpus.
+pub fn more() -> Vec<Circuit> {
+    vec![
+        crc_next(16, 8),
+        gray_counter(12),
+        voter_tree(27),
+        one_hot_choice(16),
+        random_logic(32, 2_000, 11),
+        random_logic(16, 1_000, 12),
+    ]
+}
+
+/// The next state of a check sequence register that takes a word at once, with
+/// the generator x^16 + x^12 + x^5 + 1 (ITU-T V.41).
+pub fn crc_next(bits: usize, word: usize) -> Circuit {
+    let mut c = Circuit::new("crc");
+    let data = c.input_bus("d", word);
+    let q = c.register_bus("q", bits);
+    let mut state = q.clone();
+    for &bit in &data {
+        let fed = c.xor(state[bits - 1], bit);
+        let mut next = vec![fed];
+        for i in 1..bits {
+            next.push(match i {
+                5 | 12 => c.xor(state[i - 1], fed),
+                _ => state[i - 1],
+            });
+        }
+        state = next;
+    }
+    c.set_next(&q, &state);
+    c.output(q[bits - 1], "out");
+    c
+}
+
+/// A Gray-code counter that flips one bit a step: the parity says whether bit 0
+/// flips, the lowest 1 which other does.
+pub fn gray_counter(bits: usize) -> Circuit {
+    let mut c = Circuit::new("gray_counter");
+    let q = c.register_bus("q", bits);
+    let odd = q[1..].iter().fold(q[0], |odd, &bit| c.xor(odd, bit));
+    let even = c.not(odd);
+    let mut next = vec![c.xor(q[0], even)];
+    // Whether everything below position i - 1 is 0.
+    let mut clear = odd;
+    for i in 1..bits {
+        let flip = match i + 1 < bits {
+            true => c.and(clear, q[i - 1]),
+            false => clear,
+        };
+        next.push(c.xor(q[i], flip));
+        clear = c.gate(Function::Cover(&["01"]), &[q[i - 1], clear]);
+    }
+    c.set_next(&q, &next);
+    c.output(q[bits - 1], "out");
+    c
+}
+
+/// Majorities of three in a tree, and the parity of the same votes.
+pub fn voter_tree(votes: usize) -> Circuit {
+    let mut c = Circuit::new("voter_tree");
+    let mut row = c.input_bus("v", votes);
+    let odd = row[1..].iter().fold(row[0], |odd, &vote| c.xor(odd, vote));
+    c.output(odd, "odd");
+    while row.len() > 1 {
+        row = row
+            .chunks(3)
+            .map(|group| match group.len() {
+                3 => c.gate(Function::Cover(&["11-", "1-1", "-11"]), group),
+                _ => group[0],
+            })
+            .collect();
+    }
+    c.output(row[0], "most");
+    c
+}
+
+/// Words chosen by one-hot lines, one AND-OR plane.
+pub fn one_hot_choice(bits: usize) -> Circuit {
+    let mut c = Circuit::new("one_hot");
+    let on = c.input_bus("on", 4);
+    let words: Vec<Vec<Net>> = (0..4)
+        .map(|k| c.input_bus(&format!("w{k}"), bits))
+        .collect();
+    for i in 0..bits {
+        let lines = on.iter().zip(&words);
+        let taken: Vec<Net> = lines.map(|(&on, word)| c.and(on, word[i])).collect();
+        let chosen = c.gate(Function::Or, &taken);
+        c.output(chosen, &format!("y[{i}]"));
+    }
+    c
+}

@@ -72,21 +72,22 @@ impl Truth {
     /// The result and the carry-out that arithmetic gives for one pattern.
     fn expected(&self, a: u128, b: u128, c: Option<bool>) -> (u128, bool) {
         let n = self.bits();
-        assert!(n <= 126, "integers of 128 bits hold no more");
-        let mask = (1u128 << n) - 1;
-        let carry = |default: bool| u128::from(c.unwrap_or(default));
-        let total = match (self.kind, self.borrow) {
-            (Kind::Adder, _) => a + b + carry(self.plus_one),
-            (Kind::Subtractor, false) => a + (!b & mask) + carry(true),
-            (Kind::Incrementer, _) => a + carry(true),
-            (Kind::Decrementer, false) => a + mask + carry(false),
-            (Kind::Subtractor, true) => return borrowed(a, b + carry(false), mask),
-            (Kind::Decrementer, true) => return borrowed(a, carry(true), mask),
+        let mask = u128::MAX >> (128 - n);
+        let carry = |default: bool| c.unwrap_or(default);
+        let (other, carry) = match (self.kind, self.borrow) {
+            (Kind::Adder, _) => (b, carry(self.plus_one)),
+            (Kind::Subtractor, false) => (!b & mask, carry(true)),
+            (Kind::Incrementer, _) => (0, carry(true)),
+            (Kind::Decrementer, false) => (mask, carry(false)),
+            (Kind::Subtractor, true) => return borrowed(a, b, carry(false), mask),
+            (Kind::Decrementer, true) => return borrowed(a, 0, carry(true), mask),
         };
-        (total & mask, total >> n == 1)
+        let (sum, over) = a.overflowing_add(other);
+        let (sum, over_again) = sum.overflowing_add(u128::from(carry));
+        (sum & mask, over || over_again || sum > mask)
     }
 
-    /// Compares the values of 64 patterns with integer arithmetic; up to 126 bits.
+    /// Compares the values of 64 patterns with integer arithmetic; up to 128 bits.
     pub fn check(&self, values: &[u64]) -> Result<(), String> {
         let read = |nets: &[Net], lane: usize| read(values, nets, lane);
         for lane in 0..64 {
@@ -112,8 +113,10 @@ pub(super) fn read(values: &[u64], nets: &[Net], lane: usize) -> u128 {
     })
 }
 
-fn borrowed(a: u128, taken: u128, mask: u128) -> (u128, bool) {
-    (a.wrapping_sub(taken) & mask, a < taken)
+/// `a - b - borrow`, and whether it is below 0.
+fn borrowed(a: u128, b: u128, borrow: bool, mask: u128) -> (u128, bool) {
+    let difference = a.wrapping_sub(b).wrapping_sub(u128::from(borrow));
+    (difference & mask, a < b || borrow && a == b)
 }
 
 impl Generated {

@@ -282,6 +282,18 @@ pub fn tide_logger() -> Audit {
                 before: at(33),
                 after: at(11),
             },
+            path_kind: Some("input→register".into()),
+            kind_depth: Some(Change {
+                before: at(33),
+                after: at(11),
+            }),
+            gates_added: 110,
+            gates_removed: 48,
+            gate_equivalents_added: 52,
+            largest_fan_in: 2,
+            largest_fan_out: 9,
+            takes_over: Some("input→register to alarm, beside the chain".into()),
+            chains_left: Vec::new(),
             sentence: "Rebuild C1 as sklansky (C1/P2): the block goes from 33 to 11 gate delays \
                        for 110 gates built and 48 removed."
                 .into(),

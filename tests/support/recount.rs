@@ -10,7 +10,9 @@ use carrywise::format::{ReadOptions, read};
 use carrywise::netlist::{Driver, Netlist, Signal, Topology, histogram};
 use carrywise::network::Propagate;
 use carrywise::network::schemes::candidates;
-use carrywise::plan::{DryRun, Ground, NewGates, Request, Settings, Site, materialise};
+use carrywise::plan::{
+    DryRun, Estimate, Ground, NewGates, Rebuilt, Request, Settings, Site, materialise,
+};
 use carrywise::timing::{DelayModel, Timing};
 
 pub fn parse(name: &str, bytes: &[u8]) -> Netlist {
@@ -102,10 +104,20 @@ pub fn equivalents(netlist: &Netlist) -> usize {
 
 /// Compares one dry run with the netlist made from it.
 pub fn compare(ground: &Ground<'_>, run: &DryRun<'_, '_>, chain: &Chain, what: &str) {
-    let old = ground.netlist;
     let rebuilt = materialise(run, "cw_").unwrap();
+    compare_rebuilt(ground, &rebuilt, run.estimate(), &[chain], what);
+}
+
+/// Compares an estimate for some chains with the netlist made from it.
+pub fn compare_rebuilt(
+    ground: &Ground<'_>,
+    rebuilt: &Rebuilt,
+    estimate: &Estimate,
+    chains: &[&Chain],
+    what: &str,
+) {
+    let old = ground.netlist;
     let new = &rebuilt.netlist;
-    let estimate = run.estimate();
     let topology = Topology::of(new);
     assert_eq!(topology.loops.len(), ground.topology.loops.len(), "{what}");
     // Gates.
@@ -175,7 +187,8 @@ pub fn compare(ground: &Ground<'_>, run: &DryRun<'_, '_>, chain: &Chain, what: &
         let now = rebuilt.nets[signal.net.index()]?;
         timing.arrivals.at(now.net)
     };
-    let signals = chain.positions.iter().flat_map(results_of).flatten();
+    let positions = chains.iter().flat_map(|chain| &chain.positions);
+    let signals = positions.flat_map(results_of).flatten();
     // Operands that equal a result are not replaced and no later than it.
     let latest = signals.filter_map(arrival).max();
     assert_eq!(latest, Some(estimate.chain_after), "{what}: chain depth");

@@ -342,6 +342,24 @@ pub struct RecommendedSet {
     pub proposals: Vec<String>,
     /// Depth of the block without and with them.
     pub block_depth: Change,
+    /// The kind of path they shorten; null when there are none.
+    pub path_kind: Option<String>,
+    /// Depth of that kind without and with them.
+    pub kind_depth: Option<Change>,
+    /// Gates built for all of them, dry-run together.
+    pub gates_added: u64,
+    /// Gates that lose their last use.
+    pub gates_removed: u64,
+    /// The difference when a gate of k inputs counts k - 1.
+    pub gate_equivalents_added: i64,
+    /// Most inputs of a new gate.
+    pub largest_fan_in: u64,
+    /// Most readers of a net of the rebuild.
+    pub largest_fan_out: u64,
+    /// The path of that kind that is longest afterwards.
+    pub takes_over: Option<String>,
+    /// Chains on it, as `C2`.
+    pub chains_left: Vec<String>,
     /// Why this set, or why none.
     pub sentence: String,
 }

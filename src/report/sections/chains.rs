@@ -231,10 +231,13 @@ pub fn rebuild(chains: &[ChainRecord], set: &RecommendedSet, caps: Caps) -> Opti
     }
     let RecommendedSet {
         proposals: chosen,
-        block_depth: _,
         sentence,
+        ..
     } = set;
     let mut blocks = vec![Block::Text(clipped(sentence, caps.sentence))];
+    if chosen.len() > 1 {
+        blocks.push(Block::Text(together(set, caps)));
+    }
     let mut rows = Vec::new();
     let mut total = 0;
     let mut afterwards = Vec::new();
@@ -276,6 +279,62 @@ pub fn rebuild(chains: &[ChainRecord], set: &RecommendedSet, caps: Caps) -> Opti
         aside: false,
         blocks,
     })
+}
+
+/// What the members of a set of several bring and cost together.
+fn together(set: &RecommendedSet, caps: Caps) -> String {
+    let RecommendedSet {
+        proposals: _,
+        block_depth: _,
+        path_kind,
+        kind_depth,
+        gates_added: _,
+        gates_removed: _,
+        gate_equivalents_added,
+        largest_fan_in,
+        largest_fan_out,
+        takes_over,
+        chains_left,
+        sentence: _,
+    } = set;
+    let mut parts = Vec::new();
+    if let (Some(kind), Some(depth)) = (path_kind, kind_depth) {
+        parts.push(format!(
+            "the longest {} path {}",
+            clipped(kind, caps.name),
+            change(*depth)
+        ));
+    }
+    parts.push(format!(
+        "{} gate equivalents",
+        signed(*gate_equivalents_added)
+    ));
+    parts.push(format!(
+        "no new gate wider than {}",
+        counted(*largest_fan_in, "input", "inputs")
+    ));
+    parts.push(format!(
+        "no new net with more than {}",
+        counted(*largest_fan_out, "reader", "readers")
+    ));
+    if let Some(path) = takes_over {
+        parts.push(format!(
+            "afterwards the longest path is {}",
+            clipped(path, caps.sentence)
+        ));
+    }
+    if !chains_left.is_empty() {
+        let mut left: Vec<String> = chains_left
+            .iter()
+            .take(6)
+            .map(|chain| clipped(chain, caps.name))
+            .collect();
+        if chains_left.len() > left.len() {
+            left.push(format!("{} more", chains_left.len() - left.len()));
+        }
+        parts.push(format!("with {} on it", listed(&left)));
+    }
+    format!("Together: {}.", parts.join("; "))
 }
 
 fn proposal_row(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Vec<String> {
