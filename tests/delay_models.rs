@@ -138,3 +138,91 @@ fn the_kinds_of_path_add_up_under_every_model() {
         assert_eq!(last.arrival, audit.depth.longest);
     }
 }
+
+/// Whichever scheme another model would choose, the record
+/// says of every model that needs no file whether the choice stays, as audits under
+/// those models say too, and the forms for people repeat it.
+#[test]
+fn a_recommendation_says_which_models_it_holds_under() {
+    for (name, model) in [
+        ("tide_logger.blif", DelayModel::Unit),
+        ("tide_logger.blif", DelayModel::LogicalEffort),
+    ] {
+        let path = format!("{}/fixtures/{name}", env!("CARGO_MANIFEST_DIR"));
+        let text = std::fs::read_to_string(path).expect("the fixture is there");
+        let audit = audited(&text, model);
+        let proposals = audit.chains.iter().flat_map(|chain| &chain.proposals);
+        let chosen: Vec<_> = proposals.filter(|p| p.recommended).collect();
+        assert!(!chosen.is_empty());
+        for proposal in chosen {
+            let mut told: Vec<&str> = proposal
+                .holds_under
+                .iter()
+                .chain(&proposal.flips_under)
+                .map(String::as_str)
+                .collect();
+            assert_eq!(told.first(), Some(&model.name()));
+            told.sort_unstable();
+            assert_eq!(told, ["logical-effort", "pairs", "unit"]);
+            // The same question asked from scratch under every other model.
+            for other in DelayModel::ALL {
+                let again = audited(&text, other);
+                let again = again.chains[0].proposals.iter().find(|p| p.recommended);
+                let same = again.is_some_and(|again| {
+                    (&again.scheme, again.group) == (&proposal.scheme, proposal.group)
+                });
+                let holds = proposal
+                    .holds_under
+                    .iter()
+                    .any(|known| known == other.name());
+                assert_eq!(holds, same, "{}", other.name());
+            }
+        }
+        let table = shown(&audit, Form::Table);
+        assert!(table.contains("the choice holds under"), "{table}");
+    }
+}
+
+/// Arrival times are asserted in whole units of the model, whatever its ticks are:
+/// the same netlist is 7 τ deep, and 3 later when its input is ready at 3.
+#[test]
+fn asserted_times_count_in_the_unit_of_the_model() {
+    let text = "arrival: [{ports: \"a\", at: 3, why: \"a slow float\"}]\n\
+                required: [{ports: \"w\", at: 8, why: \"the siren samples early\"}]\n";
+    let file = carrywise::format::assumptions::read(Source {
+        name: "a.yaml".to_owned(),
+        bytes: text.as_bytes().to_vec(),
+    });
+    let Ok(file) = file else { panic!("it reads") };
+    let source = Source {
+        name: "test.blif".to_owned(),
+        bytes: FOUR.as_bytes().to_vec(),
+    };
+    let netlist = read(&source, &ReadOptions::default())
+        .expect("it parses")
+        .netlist;
+    let origin = Origin {
+        file: source.name,
+        format: Format::Blif,
+        sha256: String::new(),
+    };
+    for (model, longest, late) in [
+        (DelayModel::Unit, 5, false),
+        (DelayModel::LogicalEffort, 10, true),
+    ] {
+        let options = Options {
+            request: Request::new(model),
+            ..Options::default()
+        };
+        let asserting = audit::Asserting {
+            assumptions: &file.assumptions,
+            sha256: String::new(),
+        };
+        let audit = audit::audit_under(&netlist, &origin, &options, Some(&asserting));
+        let audit = audit.expect("it fits");
+        assert_eq!(audit.depth.longest, longest);
+        assert_eq!(audit.findings.iter().any(|f| f.rule == "too-deep"), late);
+        let effect = audit.assumed.iter().find_map(|each| each.effect.clone());
+        assert!(effect.is_some_and(|effect| effect.contains(&format!("ready at {longest}"))));
+    }
+}

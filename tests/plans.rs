@@ -84,6 +84,7 @@ fn reuses_what_stays_and_removes_what_loses_its_last_use() {
         carry_form: chain::CarryForm::Carry,
         built_as: chain::BuiltAs::Ripple,
         comparison: None,
+        construction: chain::Construction::default(),
         mode: None,
     };
     let settings = Settings::resolve(Request::new(DelayModel::Unit), &netlist).unwrap();
@@ -175,6 +176,7 @@ fn an_operand_that_no_new_gate_reads_is_swept() {
         carry_form: chain::CarryForm::Carry,
         built_as: chain::BuiltAs::Ripple,
         comparison: None,
+        construction: chain::Construction::default(),
         mode: None,
     };
     let settings = Settings::resolve(Request::new(DelayModel::Unit), &netlist).unwrap();
@@ -225,6 +227,7 @@ fn refuses_a_chain_whose_operand_depends_on_it() {
         carry_form: chain::CarryForm::Carry,
         built_as: chain::BuiltAs::Mixed,
         comparison: None,
+        construction: chain::Construction::default(),
         mode: None,
     };
     let settings = Settings::resolve(Request::new(DelayModel::Unit), &netlist).unwrap();

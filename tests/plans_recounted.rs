@@ -54,6 +54,36 @@ fn every_estimate_among_other_logic_is_what_is_built() {
     }
 }
 
+/// Under a table and under a library, whose curves bend.
+#[test]
+fn every_estimate_under_files_of_delays_is_what_is_built() {
+    for name in ["harbour.yaml", "harbour.lib"] {
+        let path = format!("{}/fixtures/delays/{name}", env!("CARGO_MANIFEST_DIR"));
+        let bytes = std::fs::read(path).expect("the fixture is there");
+        let source = carrywise::source::read(name, &bytes[..]).unwrap();
+        let Ok(table) = carrywise::format::delays::read(&source) else {
+            panic!("{name} reads");
+        };
+        let model = DelayModel::table(table);
+        let word = Word {
+            carry_in: true,
+            ..Word::new(generators::Kind::Adder, 7, Cell::PropagateXor)
+        };
+        for generated in [
+            generators::gated_operands(word),
+            generators::with_overflow(6, Cell::PropagateXor),
+            generators::counter(6, true, Cell::PropagateXor),
+        ] {
+            let netlist = blif(&generated.circuit);
+            for (new_gates, inputs) in [(NewGates::SingleOperator, 4), (NewGates::Cover, 6)] {
+                let compared = compare_all(&netlist, request(model, new_gates, inputs), name);
+                assert!(compared > 0, "{name}: no chain in {}", generated.label);
+            }
+            assert!(compare_all(&aiger(&generated.circuit), Request::new(model), name) > 0);
+        }
+    }
+}
+
 /// Operands, sums and inner nets read by loops, nets driven twice, boxes, random
 /// gates and registers, and results that nothing reads.
 #[test]
@@ -95,7 +125,7 @@ fn every_estimate_in_hostile_surroundings_is_what_is_built() {
             &text[ports..end]
         );
         let netlist = parse("surrounded.blif", text.as_bytes());
-        for model in exact_models() {
+        for model in DelayModel::ALL {
             let request = request(model, NewGates::SingleOperator, 3);
             compared += compare_all(&netlist, request, &format!("seed {seed}"));
         }
@@ -108,7 +138,7 @@ fn every_estimate_on_the_fixtures_is_what_is_built() {
     let mut compared = 0;
     for (name, bytes) in generators::gauge::files() {
         let netlist = parse(name, &bytes);
-        for model in exact_models() {
+        for model in DelayModel::ALL {
             compared += compare_all(&netlist, Request::new(model), name);
         }
     }
@@ -133,6 +163,9 @@ fn every_estimate_on_open_circuits_is_what_is_built() {
         let file = format!("{name}.blif");
         let netlist = parse(&file, &std::fs::read(folder.join(&file)).unwrap());
         let compared = compare_all(&netlist, Request::new(DelayModel::Unit), name);
+        if netlist.gate_count() < 500 {
+            compare_all(&netlist, Request::new(DelayModel::LogicalEffort), name);
+        }
         eprintln!("{name}: {compared} dry runs");
         if name == "mcnc/my_adder" || name == "iscas85/c6288" {
             assert!(compared > 10, "{name}: {compared}");

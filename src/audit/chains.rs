@@ -1,19 +1,20 @@
 //! Proven chains into the record: order, ids, names, place, times, feedback.
 //!
 //! Chains are ordered widest first, then by their lowest operand net, which is
-//! the same on every run. A fingerprint is made from ports and registers only,
-//! so that it survives a revision that renumbers lines and internal nets.
+//! the same on every run.
 
 use super::carried::{Cones, operand_nets};
+use super::fingerprint::Prints;
 use super::names::{operand, wire};
 use super::rebuilds;
-use super::record::{BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, Place, Wire};
-use crate::chain::{BuiltAs, CarryForm, Chain, Kind};
+use super::record::{
+    BuiltAsRecord, ChainDepth, ChainRecord, Feedback, Operand, Place, TaxonomyRecord, Wire,
+};
+use crate::chain::{CarryForm, Chain, Construction, Kind};
 use crate::netlist::{Bit, Driver, GateId, NetId, Netlist, ScopeId, Signal, Topology, histogram};
 use crate::plan::ChainPlan;
-use crate::timing::{Spares, Time, Timing};
+use crate::timing::{Spares, Timing};
 use rustc_hash::{FxHashMap, FxHashSet};
-use sha2::{Digest, Sha256};
 use std::cmp::Reverse;
 use std::fmt::Write;
 
@@ -66,23 +67,31 @@ impl<'a> Sources<'a> {
         spares: &'a Spares<'a>,
     ) -> Self {
         let all = || chains.iter().flat_map(|chain| &chain.positions);
-        let results: FxHashSet<NetId> = all()
+        let shown: FxHashSet<NetId> = all()
             .flat_map(|bits| bits.sums.iter().chain(&bits.carries))
             .map(|signal| signal.net)
+            .chain(chains.iter().flat_map(operand_nets))
             .collect();
-        let mut shown_by = FxHashMap::default();
+        // Of several, the first by name: their order in the file may change.
+        let mut shown_by: FxHashMap<NetId, String> = FxHashMap::default();
+        let mut show = |net: NetId, name: String| {
+            let known = shown_by.entry(net).or_insert_with(|| name.clone());
+            if name < *known {
+                *known = name;
+            }
+        };
         for output in netlist.outputs() {
-            if results.contains(&output.signal.net) {
-                shown_by
-                    .entry(output.signal.net)
-                    .or_insert_with(|| format!("out {}", netlist.output_name(output)));
+            if shown.contains(&output.signal.net) {
+                show(
+                    output.signal.net,
+                    format!("out {}", netlist.output_name(output)),
+                );
             }
         }
         for register in netlist.registers() {
-            if results.contains(&register.input.net) {
-                shown_by
-                    .entry(register.input.net)
-                    .or_insert_with(|| format!("reg {}", netlist.net_name(register.output)));
+            if shown.contains(&register.input.net) {
+                let name = netlist.net_name(register.output);
+                show(register.input.net, format!("reg {name}"));
             }
         }
         let mut pins: FxHashMap<NetId, Vec<_>> = all()
@@ -124,12 +133,16 @@ impl<'a> Sources<'a> {
             .enumerate()
             .map(|(i, register)| (register.output, i))
             .collect();
-        let mut prints = FxHashMap::default();
-        chains
-            .iter()
-            .enumerate()
-            .map(|(index, chain)| self.record(index, chain, &plans[index], &registers, &mut prints))
-            .collect()
+        let mut prints = Prints::of(self.netlist, self.topology, &self.shown_by);
+        let earlier = duplicates(chains);
+        let each = chains.iter().enumerate();
+        each.map(|(index, chain)| {
+            let place = self.place(chain);
+            let fingerprint = prints.fingerprint(chain, &place.instance);
+            let marks = (fingerprint, earlier[index].map(id));
+            self.record(index, chain, &plans[index], &registers, place, marks)
+        })
+        .collect()
     }
 
     fn record(
@@ -138,7 +151,8 @@ impl<'a> Sources<'a> {
         chain: &Chain,
         plan: &ChainPlan,
         registers: &FxHashMap<NetId, usize>,
-        prints: &mut FxHashMap<String, u32>,
+        place: Place,
+        (fingerprint, duplicates): (String, Option<String>),
     ) -> ChainRecord {
         let netlist = self.netlist;
         let name = |signal: Signal| netlist.signal_name(signal);
@@ -158,7 +172,7 @@ impl<'a> Sources<'a> {
         let own: FxHashSet<_> = self.cones.gates[index].iter().copied().collect();
         ChainRecord {
             id: id(index),
-            fingerprint: self.fingerprint(chain, prints),
+            fingerprint,
             array: None,
             kind: chain.kind.word().to_owned(),
             bits: bits(chain),
@@ -181,10 +195,10 @@ impl<'a> Sources<'a> {
             signed: chain.comparison.map(|compared| compared.signed),
             mode: chain.mode.map(name),
             feedback: self.feedback(chain, registers),
-            duplicates: None,
-            built_as: self.built_as(index, chain, &depth),
+            duplicates,
+            built_as: self.built_as(index, chain),
             proven: true,
-            place: self.place(chain),
+            place,
             depth,
             on_longest_path: self.on_longest_path(chain),
             slack: spare.map(|spare| self.timing.time(spare.ticks)),
@@ -224,33 +238,31 @@ impl<'a> Sources<'a> {
             .collect()
     }
 
-    fn built_as(&self, index: usize, chain: &Chain, depth: &ChainDepth) -> BuiltAsRecord {
-        let (name, nearest, detail) = match chain.built_as {
-            BuiltAs::Ripple => (
-                "ripple",
-                Some("ripple".to_owned()),
-                "every carry is made from the carry just below it",
-            ),
-            BuiltAs::CarryCell => (
-                "carry-cell",
-                None,
-                "its carries run inside cells declared carry cells, with their declared delays",
-            ),
-            BuiltAs::Mixed => (
-                "mixed",
-                None,
-                "not every carry is made from the carry just below it",
-            ),
-        };
+    fn built_as(&self, index: usize, chain: &Chain) -> BuiltAsRecord {
         let outputs = self.cones.gates[index].iter();
         let readers = outputs.map(|&gate| self.readers[self.netlist.gate_output(gate).index()]);
-        BuiltAsRecord {
-            name: name.to_owned(),
+        let Construction {
             nearest,
-            group: None,
-            levels: Some((depth.leaves - depth.arrives).max(Time::ZERO)),
+            group,
+            levels,
+            cells,
+            taxonomy,
+            detail,
+        } = &chain.construction;
+        let count = |n: Option<usize>| n.map(|n| n as u64);
+        BuiltAsRecord {
+            name: chain.built_as.word().to_owned(),
+            nearest: nearest.map(str::to_owned),
+            group: count(*group),
+            levels: count(*levels),
+            cells: count(*cells),
             largest_fan_out: readers.max().map(u64::from),
-            detail: detail.to_owned(),
+            taxonomy: taxonomy.map(|place| TaxonomyRecord {
+                l: place.extra_levels as u64,
+                f: place.fan_out as u64,
+                t: place.tracks as u64,
+            }),
+            detail: detail.clone(),
         }
     }
 
@@ -350,33 +362,26 @@ impl<'a> Sources<'a> {
         }
         false
     }
+}
 
-    /// Sixteen hexadecimal digits of SHA-256 over kind, ports and registers, and
-    /// an ordinal that tells equal ones apart.
-    fn fingerprint(&self, chain: &Chain, prints: &mut FxHashMap<String, u32>) -> String {
-        let mut points = format!("{}\n", chain.kind.word());
-        for bits in &chain.positions {
-            let source = |bit: Bit| match bit {
-                Bit::Constant(value) => u8::from(value).to_string(),
-                Bit::Signal(signal) => match self.netlist.driver(signal.net) {
-                    Driver::Input(_) => format!("in {}", self.netlist.signal_name(signal)),
-                    Driver::Register(_) => format!("reg {}", self.netlist.signal_name(signal)),
-                    _ => "-".to_owned(),
-                },
-            };
-            let results = match chain.kind {
-                Kind::Comparator => &bits.carries,
-                _ => &bits.sums,
-            };
-            let shown = results.iter().find_map(|net| self.shown_by.get(&net.net));
-            let shown = shown.map_or("-", String::as_str);
-            let _ = writeln!(points, "{}\t{}\t{shown}", source(bits.a), source(bits.b));
-        }
-        let ordinal = prints.entry(points.clone()).or_insert(0);
-        let _ = writeln!(points, "{ordinal}");
-        *ordinal += 1;
-        hexadecimal(&Sha256::digest(points.as_bytes())[..8])
-    }
+/// By chain, the first earlier one with the same operands and carry-in, and so
+/// the same function.
+fn duplicates(chains: &[Chain]) -> Vec<Option<usize>> {
+    type Function = (Kind, Option<Signal>, Bit, Vec<[Bit; 2]>);
+    let mut first: FxHashMap<Function, usize> = FxHashMap::default();
+    let each = chains.iter().enumerate().map(|(index, chain)| {
+        let operands = chain.positions.iter().map(|bits| {
+            let mut pair = [bits.a, bits.b];
+            if !matches!(chain.kind, Kind::Subtractor | Kind::AdderSubtractor) {
+                pair.sort_unstable();
+            }
+            pair
+        });
+        let key = (chain.kind, chain.mode, chain.carry_in, operands.collect());
+        let earlier = *first.entry(key).or_insert(index);
+        (earlier != index).then_some(earlier)
+    });
+    each.collect()
 }
 
 /// Bytes in hexadecimal digits.

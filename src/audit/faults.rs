@@ -338,6 +338,33 @@ impl<'a> Findings<'a> {
         self.left_out += unproven.len().saturating_sub(PLACES) as u64;
     }
 
+    /// Chains that compute what an earlier one computes.
+    pub fn add_duplicates(&mut self, records: &[ChainRecord]) {
+        let twins = records.iter().filter_map(|record| {
+            let earlier = record.duplicates.as_ref()?;
+            Some((record, earlier))
+        });
+        let mut listed = 0;
+        for (record, earlier) in twins {
+            if listed == PLACES {
+                self.left_out += 1;
+                continue;
+            }
+            listed += 1;
+            let message = format!(
+                "{} computes {} a second time; {earlier} has the same operands",
+                record.id,
+                record.formula(),
+            );
+            let line = record
+                .place
+                .line_first
+                .and_then(|line| u32::try_from(line).ok());
+            let finding = self.add("duplicate-chain", None, line.unwrap_or(0), message);
+            finding.chain = Some(record.id.clone());
+        }
+    }
+
     /// Ripple chains with two carries or more on a longest path.
     pub fn add_ripples(&mut self, timing: &Timing, chains: &[Chain], records: &[ChainRecord]) {
         let mut listed = 0;

@@ -100,6 +100,20 @@ pub const RULES: &[Rule] = &[
         example: ".names a b c d e f y\nwith a dozen rows, in a netlist mapped to six-input tables.",
     },
     Rule {
+        slug: "duplicate-chain",
+        severity: Severity::Note,
+        what: "Two chains add the same operands with the same carry-in, each in gates of \
+               its own.",
+        why: "One of them is area and load for nothing: every operand bit has the readers \
+              of both. A rebuild of one alone leaves the other as slow as it was.",
+        advice: "Let what reads the later chain read the earlier one, and drop the later. \
+                 Where it was doubled on purpose, to share a load or for safety, accept it.",
+        leaves_alone: "Chains that share gates between operands and results, chains with \
+                       another carry-in (a + b and a + b + 1), and one that is only as \
+                       wide as the lower part of another.",
+        example: "`total + level` once for the display and once for the alarm.",
+    },
+    Rule {
         slug: "gate-too-wide",
         severity: Severity::Note,
         what: "A gate has more than four inputs.",

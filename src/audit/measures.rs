@@ -97,7 +97,7 @@ pub fn depth(
         unit: model.unit_word().to_owned(),
         longest_free_buffers: match model {
             DelayModel::Unit => Some(model.time(longest_free_buffers(netlist, topology))),
-            DelayModel::Pairs | DelayModel::LogicalEffort => None,
+            DelayModel::Pairs | DelayModel::LogicalEffort | DelayModel::Table(_) => None,
         },
         longest_in_fo4: in_fo4(model, timing.longest()),
         histogram: bars.into_iter().map(bar).collect(),

@@ -8,8 +8,10 @@
 mod assumed;
 mod carried;
 mod chains;
+mod exercised;
 mod faults;
 pub mod findings;
+mod fingerprint;
 mod free_carry;
 mod gate_words;
 mod goals;
@@ -158,10 +160,24 @@ pub fn audit_under(
     drop(sources);
     drop(spares);
     drop(timing);
-    rebuilds::note_models(netlist, &topology, &settings, &chains, &mut records);
+    rebuilds::note_models(netlist, &topology, &settings, &chains, &plans, &mut records);
     let timing = Timing::of(netlist, &topology, model);
+    exercised::note(
+        netlist,
+        &topology,
+        &timing,
+        &chains,
+        options.chains.effort,
+        &mut records,
+    );
     let mut recommended_set =
         rebuilds::recommended_set(netlist, &records, &plans, together.as_ref(), &timing, unit);
+    if model.depends_on_load() && !recommended_set.proposals.is_empty() {
+        recommended_set.sentence.push_str(
+            " Loads as they are today and a usual load of new gates are assumed of the set; a \
+             proposal's own figures have the loads of its rebuild.",
+        );
+    }
     if let Some((asserting, _)) = &applied {
         assumed::hold_under_ties(asserting.assumptions, &mut recommended_set);
     }
@@ -226,6 +242,7 @@ pub fn audit_under(
     }
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
+    findings.add_duplicates(&records);
     findings.add_unproven(&unproven);
     let misfit = model_fit::misfit(read, model);
     findings.add_misfit(misfit.as_deref());
@@ -316,6 +333,7 @@ fn settings_record(
         delay_model: DelayModelFacts {
             name: settings.model.name().to_owned(),
             unit: settings.model.unit_word().to_owned(),
+            note: settings.model.as_table().map(|table| table.note.clone()),
             misfit,
         },
         new_gates: settings.new_gates.word().to_owned(),

@@ -1,13 +1,13 @@
 //! Names of operands: many nets told as one bus.
 //!
-//! A bus is read from the spelling of its bits (`a[3]`, `a<3>`, `a(3)`, `a_3_`,
-//! `a_3`, `a3`; common practice, no source) and told as `a[15:0]`, most
-//! significant bit first, only when every bit agrees and the indices run up or
-//! down by one. Anything else is told by its highest and lowest bit, in that
-//! order too, so that no name claims indices the netlist does not have.
+//! A bus is read from the spelling of its bits (see `netlist::bus`) and told as
+//! `a[15:0]`, most significant bit first, only when every bit agrees and the
+//! indices run up or down by one; up to three gaps are told, `a[15:8,6:0]`.
+//! Anything else is told by its highest and lowest bit, in that order too, so
+//! that no name claims indices the netlist does not have.
 
 use super::record::{Operand, Wire};
-use crate::netlist::bus::bus_bit;
+use crate::netlist::bus::{bus_bit, difference};
 use crate::netlist::{Bit, NetId, Netlist, Signal};
 
 /// A bit as it is written in a record.
@@ -87,26 +87,55 @@ fn constant_name(bits: &[Bit]) -> String {
 
 fn bus_name(netlist: &Netlist, signals: &[Signal]) -> Option<String> {
     let inverted = signals[0].inverted;
-    let mut base = String::new();
-    let mut indices = Vec::with_capacity(signals.len());
-    for signal in signals {
-        let name = named(netlist, signal.net)?;
-        let (stem, index) = split(&name)?;
-        if signal.inverted != inverted || (!indices.is_empty() && stem != base) {
-            return None;
-        }
-        if indices.is_empty() {
-            stem.clone_into(&mut base);
-        }
-        indices.push(index);
-    }
-    let step = indices[1] - indices[0];
-    if step.abs() != 1 || indices.windows(2).any(|pair| pair[1] - pair[0] != step) {
+    if signals.iter().any(|signal| signal.inverted != inverted) {
         return None;
     }
+    let names = signals.iter().map(|signal| named(netlist, signal.net));
+    let names: Vec<String> = names.collect::<Option<_>>()?;
     let mark = if inverted { "~" } else { "" };
-    let (low, high) = (indices[0], indices[indices.len() - 1]);
-    Some(format!("{mark}{base}[{high}:{low}]"))
+    let (base, indices, tail) = by_last_index(&names).or_else(|| by_difference(&names))?;
+    Some(format!("{mark}{base}[{}]{tail}", ranges(&indices)?))
+}
+
+/// The base, the indices and what follows them.
+type Indexed<'a> = (&'a str, Vec<i64>, &'a str);
+
+fn by_last_index(names: &[String]) -> Option<Indexed<'_>> {
+    let (base, _) = split(&names[0])?;
+    let indices = names.iter().map(|name| {
+        let (stem, index) = split(name)?;
+        (stem == base).then_some(index)
+    });
+    Some((base, indices.collect::<Option<_>>()?, ""))
+}
+
+fn by_difference(names: &[String]) -> Option<Indexed<'_>> {
+    let bus = difference(&names[0], &names[1])?;
+    let indices = names.iter().map(|name| bus.index_of(name).map(i64::from));
+    Some((bus.base, indices.collect::<Option<_>>()?, bus.tail))
+}
+
+/// Ranges of a bus told at most.
+const RANGES: usize = 4;
+
+/// Indices given from the least significant bit as ranges from the most
+/// significant: `15:0`, or `15:8,6:0` with a gap. They run one way.
+fn ranges(indices: &[i64]) -> Option<String> {
+    let step = (indices[1] - indices[0]).signum();
+    let runs_one_way = |pair: &[i64]| (pair[1] - pair[0]).signum() == step && step != 0;
+    if !indices.windows(2).all(runs_one_way) {
+        return None;
+    }
+    let runs = indices.chunk_by(|low, high| high - low == step);
+    let mut told: Vec<String> = runs
+        .map(|run| match run {
+            [only] => only.to_string(),
+            _ => format!("{}:{}", run[run.len() - 1], run[0]),
+        })
+        .collect();
+    told.reverse();
+    // Single bits far apart are no bus.
+    (told.len() <= RANGES && 2 * told.len() <= indices.len()).then(|| told.join(","))
 }
 
 /// The net's name, unless it is only its number.

@@ -10,11 +10,8 @@ use super::words::{counted, depth_in, grouped, listed};
 use crate::chain::Chain;
 use crate::netlist::{Netlist, Topology};
 use crate::network::{CarryNetwork, Node};
-use crate::plan::{self, ChainPlan, Ground, Proposal, Settings, TakesOver, Together};
-use crate::timing::{DelayModel, Timing};
-
-/// Chains whose recommendation is tried under the other delay models.
-const CHAINS_UNDER_OTHER_MODELS: usize = 16;
+use crate::plan::{self, ChainPlan, Proposal, Settings, TakesOver, Together};
+use crate::timing::Timing;
 
 /// Why a chain was not planned.
 pub fn not_planned(timing: &Timing, plan: &ChainPlan) -> Option<NotPlanned> {
@@ -69,6 +66,7 @@ fn proposal_record(
         recommended,
         reason,
         holds_under: Vec::new(),
+        flips_under: Vec::new(),
         chain_depth: change(estimate.chain_before, estimate.chain_after),
         block_depth: change(estimate.block_before, estimate.block_after),
         takes_over,
@@ -258,48 +256,22 @@ fn no_set_sentence(records: &[ChainRecord], plans: &[ChainPlan]) -> String {
     }
 }
 
-/// Notes for each recommended proposal under which delay models the same scheme
-/// is chosen.
+/// Notes for each recommended proposal under which delay models it stays the choice.
 pub fn note_models(
     netlist: &Netlist,
     topology: &Topology,
     settings: &Settings,
     chains: &[Chain],
+    plans: &[ChainPlan],
     records: &mut [ChainRecord],
 ) {
-    let mut chosen: Vec<(usize, usize)> = Vec::new();
-    for (index, chain) in records.iter_mut().enumerate() {
-        if let Some(at) = chain.proposals.iter().position(|p| p.recommended) {
-            chain.proposals[at]
-                .holds_under
-                .push(settings.model.name().to_owned());
-            chosen.push((index, at));
-        }
-    }
-    chosen.truncate(CHAINS_UNDER_OTHER_MODELS);
-    if chosen.is_empty() {
-        return;
-    }
-    for model in DelayModel::ALL {
-        if model == settings.model {
-            continue;
-        }
-        let timing = Timing::of(netlist, topology, model);
-        let settings = Settings {
-            model,
-            ..settings.clone()
-        };
-        let ground = Ground::of(netlist, topology, &timing, &settings);
-        for &(index, at) in &chosen {
-            let other = plan::plan(&ground, &chains[index]);
-            let Some(choice) = other.recommended.map(|i| &other.proposals[i].fitted) else {
-                continue;
-            };
-            let proposal = &mut records[index].proposals[at];
-            let group = choice.group.map(|group| group as u64);
-            if proposal.scheme == choice.scheme && proposal.group == group {
-                proposal.holds_under.push(model.name().to_owned());
-            }
+    let answers = plan::holds_under(netlist, topology, settings, chains, plans);
+    for (chain, answer) in records.iter_mut().zip(answers) {
+        let proposal = chain.proposals.iter_mut().find(|p| p.recommended);
+        if let (Some(proposal), Some(answer)) = (proposal, answer) {
+            let words = |models: Vec<&str>| models.into_iter().map(str::to_owned).collect();
+            proposal.holds_under = words(answer.holds);
+            proposal.flips_under = words(answer.flips);
         }
     }
 }

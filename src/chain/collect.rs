@@ -7,7 +7,8 @@ use super::built_as::built_as;
 use super::carry_cells::in_carry_cells;
 use super::kinds::{mode_of, order_operands, read};
 use super::label::Labels;
-use super::model::{BuiltAs, CarryForm, Chain, Kind, Position};
+use super::model::{BuiltAs, CarryForm, Chain, Construction, Kind, Position};
+use super::twins::twins;
 use super::verify::Theorem;
 use crate::netlist::{Bit, Driver, NetId, Netlist, Signal};
 use crate::subject::{Literal, NodeId, NodeKind, Subject};
@@ -77,15 +78,16 @@ pub(super) fn collect(
     // Each theorem is given up as its chain is made: both at once are large.
     let mut chains: Vec<Chain> = theorems
         .into_iter()
-        .filter_map(|theorem| {
+        .flat_map(|theorem| {
             let (kind, mut theorem) = read(subject, labels, theorem);
             if kind != Kind::Subtractor {
                 order_operands(labels, &mut theorem);
             }
-            collector.chain(kind, &theorem)
+            collector.twins(kind, &theorem)
         })
         .collect();
     sort(&mut chains);
+    drop_repeated(&mut chains);
     chains
 }
 
@@ -100,6 +102,25 @@ pub(super) fn sort(chains: &mut [Chain]) {
     });
 }
 
+/// Each copy of a theorem, or a stretch of it, may have been found as one of its
+/// own: a chain goes when every sum of it is a wider chain's sum of the same two
+/// operands.
+fn drop_repeated(chains: &mut Vec<Chain>) {
+    let net = |bit: Bit| bit.signal().map(|signal| signal.net);
+    let mut known: FxHashSet<(NetId, [Option<NetId>; 2])> = FxHashSet::default();
+    chains.retain(|chain| {
+        let mut is_new = false;
+        for position in &chain.positions {
+            let mut operands = [net(position.a), net(position.b)];
+            operands.sort_unstable();
+            for sum in &position.sums {
+                is_new |= known.insert((sum.net, operands));
+            }
+        }
+        is_new
+    });
+}
+
 struct Collector<'a> {
     netlist: &'a Netlist,
     subject: &'a Subject,
@@ -108,9 +129,30 @@ struct Collector<'a> {
 }
 
 impl Collector<'_> {
+    /// The chain of a theorem, or one for each time it is built.
+    fn twins(&self, kind: Kind, theorem: &Theorem) -> Vec<Chain> {
+        let nets = |node| self.nets.of_node(node).collect();
+        let Some((count, copy)) = twins(self.netlist, self.subject, theorem, nets) else {
+            return self.chain(kind, theorem, &|_| true).into_iter().collect();
+        };
+        let one = |at: usize| {
+            let own = |net: NetId| copy.get(&net).is_none_or(|&copy| copy == at);
+            let has_own = |literal: &Literal| self.nets.of_node(literal.node()).any(own);
+            let mut theorem = theorem.clone();
+            for literals in theorem.sums.iter_mut().chain(&mut theorem.carries) {
+                literals.retain(has_own);
+            }
+            for (bits, sums) in theorem.bits.iter_mut().zip(&theorem.sums) {
+                bits.sum = sums.first().copied().unwrap_or(bits.sum);
+            }
+            self.chain(kind, &theorem, &own)
+        };
+        (0..count).filter_map(one).collect()
+    }
+
     /// `None` for a theorem about operands that no net carries and no mode
-    /// explains.
-    fn chain(&self, kind: Kind, theorem: &Theorem) -> Option<Chain> {
+    /// explains. `own` says which nets are the chain's.
+    fn chain(&self, kind: Kind, theorem: &Theorem, own: &dyn Fn(NetId) -> bool) -> Option<Chain> {
         let operands: FxHashSet<NodeId> = theorem
             .bits
             .iter()
@@ -123,7 +165,7 @@ impl Collector<'_> {
                     let inverted = self.subject.of_net(net) != *literal;
                     let copy = operands.contains(&literal.node()) && inverted;
                     let driven = matches!(self.netlist.driver(net), Driver::Gate(_));
-                    if driven && !copy {
+                    if driven && !copy && own(net) {
                         signals.push(Signal { net, inverted });
                     }
                 }
@@ -180,16 +222,19 @@ impl Collector<'_> {
             }
             _ => CarryForm::Carry,
         };
+        let on_net = |node| self.labels.net(node).is_some();
+        let (built_as, construction) = if in_carry_cells(self.netlist, &positions) {
+            (BuiltAs::CarryCell, Construction::of_carry_cells())
+        } else {
+            built_as(self.subject, theorem, on_net)
+        };
         Some(Chain {
             kind,
             carry_in: bit(self.labels, carry_in),
             has_carry_out,
             carry_form,
-            built_as: if in_carry_cells(self.netlist, &positions) {
-                BuiltAs::CarryCell
-            } else {
-                built_as(self.subject, theorem)
-            },
+            built_as,
+            construction,
             mode: mode.and_then(|mode| self.labels.signal(mode)),
             positions,
             comparison: None,

@@ -23,7 +23,10 @@ mod links;
 mod model;
 mod modes;
 mod trim;
+mod twins;
 mod verify;
 
 pub use find::{Found, Options, Unproven, find};
-pub use model::{BuiltAs, CarryForm, Chain, Comparison, Kind, Position, Relation};
+pub use model::{
+    BuiltAs, CarryForm, Chain, Comparison, Construction, Kind, Position, Relation, Taxonomy,
+};

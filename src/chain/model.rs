@@ -43,14 +43,87 @@ pub enum CarryForm {
 }
 
 /// How a chain is built today.
-#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+#[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
 pub enum BuiltAs {
     /// Every carry is made from the carry just below it.
     Ripple,
+    /// Carries are written out over their positions, at once or in groups.
+    Lookahead,
+    /// A ripple whose carries may pass whole blocks.
+    Skip,
+    /// Blocks are computed for both carries and chosen by the real one.
+    Select,
+    /// Blocks are computed without a carry; what comes in is passed on by their
+    /// propagates.
+    Increment,
+    /// Both results of every block are chosen among those of its halves.
+    ConditionalSum,
+    /// Spans are joined in a network, each carry from spans that meet.
+    Prefix,
+    /// Only the last carry is made, from spans joined in a tree.
+    Tree,
     /// The carries run inside cells declared carry cells.
     CarryCell,
-    /// Anything else.
+    /// None of these, or not understood.
     Mixed,
+}
+
+impl BuiltAs {
+    /// The word used in records and reports.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Ripple => "ripple",
+            Self::Lookahead => "lookahead",
+            Self::Skip => "skip",
+            Self::Select => "select",
+            Self::Increment => "increment",
+            Self::ConditionalSum => "conditional-sum",
+            Self::Prefix => "prefix",
+            Self::Tree => "tree",
+            Self::CarryCell => "carry-cell",
+            Self::Mixed => "mixed",
+        }
+    }
+}
+
+/// The place of a prefix network of valency 2 in the taxonomy of D. Harris ("A
+/// Taxonomy of Parallel Prefix Networks", Asilomar 2003), read off the network.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct Taxonomy {
+    /// Levels beyond the logarithm of the number of positions.
+    pub extra_levels: usize,
+    /// The logarithm of the most nodes that read one node in one row.
+    pub fan_out: usize,
+    /// The logarithm of the most wires side by side in one row.
+    pub tracks: usize,
+}
+
+/// More about how a chain is built, where it was understood.
+#[derive(Clone, PartialEq, Eq, Default, Debug)]
+pub struct Construction {
+    /// The published scheme whose spans are most like it.
+    pub nearest: Option<&'static str>,
+    /// Positions of one group or block.
+    pub group: Option<usize>,
+    /// Nodes of the carry network on the longest way to a result.
+    pub levels: Option<usize>,
+    /// Nodes of the carry network.
+    pub cells: Option<usize>,
+    /// Its place among prefix networks.
+    pub taxonomy: Option<Taxonomy>,
+    /// A few words more.
+    pub detail: String,
+}
+
+impl Construction {
+    /// What is known of a chain inside carry cells.
+    pub(super) fn of_carry_cells() -> Self {
+        Self {
+            detail: "its carries run inside cells declared carry cells, with their declared delays"
+                .to_owned(),
+            ..Self::default()
+        }
+    }
 }
 
 /// One bit position of a chain, least significant first.
@@ -132,6 +205,8 @@ pub struct Chain {
     pub carry_form: CarryForm,
     /// How it is built today.
     pub built_as: BuiltAs,
+    /// More about that.
+    pub construction: Construction,
     /// What complements every `b` of an adder-subtractor.
     pub mode: Option<Signal>,
     /// What a comparator tells; of the others nothing.

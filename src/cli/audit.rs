@@ -2,7 +2,7 @@
 //! file that fails does not stop the others.
 
 use super::Status;
-use super::options::AuditArguments;
+use super::options::{AuditArguments, Delay};
 use super::search::SearchFolders;
 use super::targets::{self, Target};
 use super::terminal::{colour_on_stderr, complain, page, say};
@@ -14,6 +14,7 @@ use crate::format::{self, Parsed};
 use crate::netlist::cell::{Cells, Unbound};
 use crate::report::{self, Form, MOST_CHARACTERS, Page};
 use crate::source::{self, Diagnostic, Limits, Place, ReadError, Source};
+use crate::timing::DelayModel;
 use std::fs::File;
 use std::io::{self, BufWriter, ErrorKind, Write};
 use std::panic::{AssertUnwindSafe, catch_unwind};
@@ -38,7 +39,15 @@ pub fn run(arguments: &AuditArguments) -> Status {
         .filter(|f| !is_stdin(f))
         .cloned()
         .collect();
-    let besides = arguments.assume.iter().chain(&arguments.cells);
+    let delays = match &arguments.delay {
+        Delay::File(path) => Some(path),
+        Delay::Model(_) => None,
+    };
+    let besides = arguments
+        .assume
+        .iter()
+        .chain(&arguments.cells)
+        .chain(delays);
     let read_besides = named.iter().chain(besides).cloned();
     let read_besides: Vec<PathBuf> = read_besides.collect();
     let mut targets = match targets::open(&arguments.report, &read_besides) {
@@ -50,7 +59,13 @@ pub fn run(arguments: &AuditArguments) -> Status {
     };
     let quiet = arguments.quiet;
     let library = |file: &PathBuf| cells(file, quiet);
-    let mut cells = match arguments.cells.as_ref().map(library).transpose() {
+    let (model, gives_cells) = match delay_model(&arguments.delay) {
+        Ok(found) => found,
+        Err(worse) => return worse,
+    };
+    // A library of delays also says what its cells do.
+    let from = arguments.cells.as_ref().or(delays.filter(|_| gives_cells));
+    let mut cells = match from.map(library).transpose() {
         Ok(cells) => cells,
         Err(worse) => return worse,
     };
@@ -73,7 +88,8 @@ pub fn run(arguments: &AuditArguments) -> Status {
     for file in &arguments.files {
         // A fault of ours in one netlist is told as such, and the others go on.
         let audited = catch_unwind(AssertUnwindSafe(|| {
-            audit_file(file, arguments, asserted.as_ref(), cells.as_ref())
+            let options = arguments.auditing(model);
+            audit_file(file, arguments, &options, asserted.as_ref(), cells.as_ref())
         }));
         let audited = audited.unwrap_or_else(|_| {
             complain(&format!(
@@ -162,6 +178,26 @@ fn declare_carry(
     })
 }
 
+/// The delay model asked for, and whether its file also gives functions of cells.
+fn delay_model(delay: &Delay) -> Result<(DelayModel, bool), Status> {
+    let file = match delay {
+        Delay::Model(model) => return Ok((*model, false)),
+        Delay::File(file) => file,
+    };
+    let name = file.to_string_lossy();
+    let source = load_or_say(file, &name, Limits::for_gates(0))?;
+    match format::delays::read(&source) {
+        Ok(table) => {
+            let gives_cells = format::delays::is_library(&source);
+            Ok((DelayModel::table(table), gives_cells))
+        }
+        Err(error) => {
+            say(&error.render(&source, colour_on_stderr()));
+            Err(Status::Unusable)
+        }
+    }
+}
+
 /// Reads a file of assumptions.
 fn assume(file: &Path) -> Result<AssumptionsFile, Status> {
     let name = file.to_string_lossy();
@@ -175,6 +211,7 @@ fn assume(file: &Path) -> Result<AssumptionsFile, Status> {
 fn audit_file(
     file: &Path,
     arguments: &AuditArguments,
+    options: &audit::Options,
     asserted: Option<&AssumptionsFile>,
     cells: Option<&Cells>,
 ) -> Result<Audit, Status> {
@@ -244,7 +281,7 @@ fn audit_file(
         assumptions: &file.assumptions,
         sha256: audit::digest(&file.source().bytes),
     });
-    let audited = audit::audit_under(&netlist, &origin, &arguments.auditing(), asserting.as_ref());
+    let audited = audit::audit_under(&netlist, &origin, options, asserting.as_ref());
     audited.map_err(|error| {
         match (&error, asserted) {
             (AuditError::Misfit(misfit), Some(file)) => {

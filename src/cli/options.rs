@@ -44,7 +44,7 @@ pub struct CommandLine {
 pub enum Command {
     /// Audit netlists: depth, proven carry chains, what a rebuild would bring
     #[command(after_help = AUDIT_EXAMPLES)]
-    Audit(AuditArguments),
+    Audit(Box<AuditArguments>),
     /// Say what a finding means and what to do about it
     #[command(after_help = "Example:\n  carrywise explain net-driven-twice")]
     Explain {
@@ -75,8 +75,9 @@ pub struct AuditArguments {
     pub report: Vec<PathBuf>,
 
     /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates,
-    /// `logical-effort` is about static CMOS gates and what each drives, in units of τ
-    #[arg(long, value_name = "MODEL", default_value = "unit", value_parser = delay)]
+    /// `logical-effort` is about static CMOS gates and what each drives, in units of τ; a file is
+    /// a YAML table of delays, or a Liberty library with delays
+    #[arg(long, value_name = "MODEL|PATH", default_value = "unit", value_parser = delay)]
     pub delay: Delay,
 
     /// Most inputs of one new gate [default: the widest gate of the netlist, at most 4 for
@@ -165,17 +166,24 @@ impl FormWord {
 pub enum Delay {
     /// A model that needs no file.
     Model(DelayModel),
+    /// A delay table, or a library with delays.
+    File(PathBuf),
 }
 
 fn delay(text: &str) -> Result<Delay, String> {
     if let Some(model) = DelayModel::from_name(text) {
         return Ok(Delay::Model(model));
     }
+    if text.contains(['.', '/', '\\']) {
+        return Ok(Delay::File(PathBuf::from(text)));
+    }
     let words = DelayModel::ALL.map(DelayModel::name);
     let hint =
         nearest(text, &words).map_or_else(String::new, |word| format!("; did you mean `{word}`?"));
     let known = words.map(|word| format!("`{word}`")).join(", ");
-    Err(format!("expected one of {known}{hint}"))
+    Err(format!(
+        "expected one of {known}, or a file, as ./delays.yaml or ./cells.lib{hint}"
+    ))
 }
 
 /// Words of `--fail-on`.
@@ -220,8 +228,7 @@ impl AuditArguments {
     }
 
     /// How to audit.
-    pub fn auditing(&self) -> audit::Options {
-        let Delay::Model(model) = self.delay;
+    pub fn auditing(&self, model: DelayModel) -> audit::Options {
         let whole = |n: u64| usize::try_from(n).unwrap_or(usize::MAX);
         audit::Options {
             request: Request {

@@ -15,6 +15,7 @@ pub mod assumptions;
 pub mod blif;
 pub mod cells;
 pub mod constraints;
+pub mod delays;
 pub mod files;
 mod names;
 mod yaml;

@@ -1,7 +1,7 @@
 //! Builds a [`Netlist`] piece by piece, in the order of the source.
 
 use super::declared::Declared;
-use super::function::{Function, Functions};
+use super::function::{CellPins, Function, Functions};
 use super::id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 use super::model::{
     BlackBox, Contention, Driver, Netlist, Output, Property, Register, Scope, Signal,
@@ -258,11 +258,27 @@ impl NetlistBuilder {
     /// Interns a function of another netlist, with its delays where it has some of
     /// its own.
     pub fn function_from(&mut self, other: &Netlist, id: FunctionId) -> FunctionId {
-        let function = other.function_of(id).clone();
-        match other.declared_delays(id) {
-            Some(delays) => self.function_with_delays(function, delays),
-            None => self.function(function),
+        self.function_like(other, id, other.function_of(id).clone())
+    }
+
+    /// Interns `function` with what is kept of a function of another netlist: its
+    /// declared delays, or the cell it belongs to.
+    pub fn function_like(
+        &mut self,
+        other: &Netlist,
+        id: FunctionId,
+        function: Function,
+    ) -> FunctionId {
+        match (other.declared_delays(id), other.cell_pins(id)) {
+            (Some(delays), _) => self.function_with_delays(function, delays),
+            (None, Some(pins)) => self.function_of_cell(function, pins.clone()),
+            (None, None) => self.function(function),
         }
+    }
+
+    /// Interns a function as an output of a cell.
+    pub fn function_of_cell(&mut self, function: Function, pins: CellPins) -> FunctionId {
+        FunctionId(self.netlist.functions.intern_of_cell(function, pins))
     }
 
     /// The gate that the next one will be.

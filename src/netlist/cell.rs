@@ -10,7 +10,8 @@
 //! come after them.
 
 use super::builder::{NetlistBuilder, TooLarge};
-use super::id::NetId;
+use super::function::CellPins;
+use super::id::{FunctionId, GateId, NetId};
 use super::model::{BlackBox, BoxKind, Driver, Initial, Netlist, Register, Signal};
 use rustc_hash::{FxHashMap, FxHashSet};
 
@@ -171,6 +172,30 @@ fn guess(builder: &NetlistBuilder, mut each: BlackBox) -> BlackBox {
     each
 }
 
+/// The function of a gate of a cell, with the pins it stands between. What is
+/// declared about its delays goes before.
+fn cell_function(
+    builder: &mut NetlistBuilder,
+    each: &BlackBox,
+    cell: &Netlist,
+    gate: GateId,
+) -> FunctionId {
+    let id = cell.function_id(gate);
+    if cell.declared_delays(id).is_some() {
+        return builder.function_from(cell, id);
+    }
+    let name = |net: NetId| match cell.local_name(net) {
+        Some(name) => cell.names().bytes(name).to_vec(),
+        None => Vec::new(),
+    };
+    let pins = CellPins {
+        cell: builder.names().bytes(each.model).to_vec(),
+        output: name(cell.gate_output(gate)),
+        inputs: cell.fan_ins(gate).iter().map(|&net| name(net)).collect(),
+    };
+    builder.function_of_cell(cell.function_of(id).clone(), pins)
+}
+
 fn place(builder: &mut NetlistBuilder, each: &BlackBox, cell: &Netlist) -> Result<(), Unbound> {
     let mut nets: Vec<Option<NetId>> = vec![None; cell.net_count()];
     let mut copies: Vec<(NetId, NetId)> = Vec::new();
@@ -234,7 +259,7 @@ fn place(builder: &mut NetlistBuilder, each: &BlackBox, cell: &Netlist) -> Resul
     }
     let first = builder.next_gate();
     for gate in cell.gates() {
-        let function = builder.function_from(cell, cell.function_id(gate));
+        let function = cell_function(builder, each, cell, gate);
         let fan_ins: Vec<NetId> = cell
             .fan_ins(gate)
             .iter()

@@ -365,6 +365,19 @@ pub(super) struct Functions {
     index: FxHashMap<Function, u32>,
     declared: FxHashMap<u32, Box<[i32]>>,
     declared_index: FxHashMap<(Function, Box<[i32]>), u32>,
+    cells: FxHashMap<u32, CellPins>,
+    cell_index: FxHashMap<(Function, CellPins), u32>,
+}
+
+/// Which output of which cell of a library a gate is.
+#[derive(Clone, PartialEq, Eq, Hash, Debug)]
+pub struct CellPins {
+    /// The cell.
+    pub cell: Vec<u8>,
+    /// The output pin; empty where the gate is inside.
+    pub output: Vec<u8>,
+    /// The pins its fan-ins are, in their order; empty where one is inside.
+    pub inputs: Vec<Vec<u8>>,
 }
 
 impl Functions {
@@ -389,6 +402,23 @@ impl Functions {
         self.declared.insert(id, key.1.clone());
         self.declared_index.insert(key, id);
         id
+    }
+
+    /// As [`Self::intern`], for an output of a cell.
+    pub(super) fn intern_of_cell(&mut self, function: Function, pins: CellPins) -> u32 {
+        let key = (function, pins);
+        if let Some(&id) = self.cell_index.get(&key) {
+            return id;
+        }
+        let id = self.list.len() as u32;
+        self.list.push(key.0.clone());
+        self.cells.insert(id, key.1.clone());
+        self.cell_index.insert(key, id);
+        id
+    }
+
+    pub(super) fn cell_pins(&self, id: u32) -> Option<&CellPins> {
+        self.cells.get(&id)
     }
 
     pub(super) fn get(&self, id: u32) -> &Function {

@@ -2,7 +2,7 @@
 
 use super::asserted::Asserted;
 use super::declared::Declared;
-use super::function::{Function, Functions};
+use super::function::{CellPins, Function, Functions};
 use super::id::{BoxId, FunctionId, GateId, NetId, RegisterId, ScopeId};
 use super::names::{NameId, Names};
 use super::times::FileTimes;
@@ -316,6 +316,11 @@ impl Netlist {
     /// to the delay model, in whole units of it.
     pub fn declared_delays(&self, id: FunctionId) -> Option<&[i32]> {
         self.functions.declared_delays(id.0)
+    }
+
+    /// Which cell's output a gate of an interned function is, when it is one.
+    pub fn cell_pins(&self, id: FunctionId) -> Option<&CellPins> {
+        self.functions.cell_pins(id.0)
     }
 
     /// Number of distinct functions; ids run from 0.

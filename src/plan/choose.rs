@@ -111,7 +111,7 @@ fn recommend(ground: &Ground<'_>, tried: &[Proposal], kind: PathKind) -> (Option
     let Some((block, own)) = gaining.iter().map(depth).min() else {
         return (None, nothing_gained(ground, tried, kind));
     };
-    let level = ground.settings.model.ticks_per_unit();
+    let level = ground.settings.model.level();
     let near: Vec<usize> = gaining
         .iter()
         .copied()

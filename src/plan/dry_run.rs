@@ -9,11 +9,13 @@
 //! every path there is, since no operand depends on a replaced net.
 
 use super::made::Made;
-use super::overlay::{Literal, Overlay};
+use super::overlay::{GateStyle, Literal, Node, Overlay};
+use super::retime::Retimed;
 use super::site::Site;
 use crate::netlist::{GateId, NetId};
 use crate::network::{CarryNetwork, Propagate, build};
 use crate::timing::{End, EndGroup, NEVER, PathKind};
+use rustc_hash::FxHashMap;
 
 /// What becomes of the longest path of one kind.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
@@ -82,13 +84,24 @@ pub struct DryRun<'s, 'a> {
     pub(super) made: Made,
     /// Gates removed beyond the site's.
     pub(super) swept: Vec<GateId>,
-    carries: Vec<Literal>,
+    pub(super) carries: Vec<Literal>,
+    /// The times under load, where the model asks for them.
+    retimed: Option<Retimed>,
     estimate: Estimate,
 }
 
 impl<'s, 'a> DryRun<'s, 'a> {
     /// Makes `network` for the chain of `site`.
     pub fn of(site: &'s Site<'a>, network: &CarryNetwork, propagate: Propagate) -> Self {
+        let mut run = Self::sketch(site, network, propagate);
+        run.retime();
+        run
+    }
+
+    /// The same without timing again what changes its load: where delay depends on
+    /// load, everything that stays keeps the delay it has today and new gates have
+    /// that of an assumed load. Good for telling apart what to look at.
+    pub(super) fn sketch(site: &'s Site<'a>, network: &CarryNetwork, propagate: Propagate) -> Self {
         let mut overlay = site.base.clone();
         let limits = site.ground.settings.limits();
         let built = build(network, &site.addends, limits, propagate, &mut overlay);
@@ -117,6 +130,7 @@ impl<'s, 'a> DryRun<'s, 'a> {
             made,
             swept,
             carries,
+            retimed: None,
             estimate: Estimate {
                 chain_before: NEVER,
                 chain_after: NEVER,
@@ -136,6 +150,31 @@ impl<'s, 'a> DryRun<'s, 'a> {
         run
     }
 
+    fn retime(&mut self) {
+        let Some(retimed) = Retimed::of(self) else {
+            return;
+        };
+        self.estimate.chain_after = retimed.chain_after;
+        self.estimate.kinds = retimed.changes(self);
+        let after = self.estimate.kinds.iter().map(|change| change.after);
+        self.estimate.block_after = after.max().unwrap_or(0);
+        self.retimed = Some(retimed);
+    }
+
+    /// By node that needed nets are gates of: the first of them, by its place in
+    /// the site's list, and whether it shows the node inverted. None in AIGER,
+    /// where readers are redirected.
+    pub(super) fn first_nets(&self) -> FxHashMap<Node, (usize, bool)> {
+        let mut first: FxHashMap<Node, (usize, bool)> = FxHashMap::default();
+        if self.overlay.style() != GateStyle::AndInverter {
+            for (index, literal) in self.literals.iter().enumerate() {
+                let entry = first.entry(literal.node());
+                entry.or_insert((index, literal.is_inverted()));
+            }
+        }
+        first
+    }
+
     /// The figures.
     pub fn estimate(&self) -> &Estimate {
         &self.estimate
@@ -144,6 +183,9 @@ impl<'s, 'a> DryRun<'s, 'a> {
     /// When the carry out of each position is ready; `None` for constants.
     pub fn carry_arrivals(&self) -> Vec<Option<i32>> {
         use crate::network::GateSink;
+        if let Some(retimed) = &self.retimed {
+            return retimed.carries.clone();
+        }
         let times = self.carries.iter().map(|&c| self.overlay.arrival(c));
         times.map(|time| (time != NEVER).then_some(time)).collect()
     }
@@ -218,6 +260,16 @@ impl<'s, 'a> DryRun<'s, 'a> {
     /// chain where it is as long.
     pub fn takes_over(&self, kind: PathKind) -> Option<TakesOver> {
         let change = self.estimate.kinds.iter().find(|each| each.kind == kind)?;
+        if let Some(retimed) = &self.retimed {
+            let paths = retimed.kinds.iter().find(|each| each.kind == kind)?;
+            let beside = paths.beside.filter(|&(time, _)| time == change.after);
+            let (_, end) = beside.or(paths.through)?;
+            return Some(TakesOver {
+                kind,
+                end,
+                through_chain: beside.is_none(),
+            });
+        }
         let beside = self.site.beside.iter().find(|each| each.kind == kind)?;
         if let Some((time, end)) = beside.longest
             && time == change.after

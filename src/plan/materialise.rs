@@ -256,11 +256,8 @@ impl<'p> Writer<'p> {
         }
         let output = self.net_now(self.old.gate_output(gate));
         let scope = self.scope(self.old.gate_scope(gate));
-        let own = self.old.declared_delays(self.old.function_id(gate));
-        let id = match own {
-            Some(delays) => self.builder.function_with_delays(function, delays),
-            None => self.builder.function(function),
-        };
+        let own = self.old.function_id(gate);
+        let id = self.builder.function_like(self.old, own, function);
         let line = self.old.gate_line(gate);
         self.builder.add_gate(id, &pins, output, scope, line)?;
         Ok(())
@@ -341,21 +338,7 @@ impl<'p> Writer<'p> {
             pins.push(self.show(input)?);
         }
         let flags: Vec<bool> = pins.iter().map(|pin| pin.inverted).collect();
-        let function = match overlay.operator(node) {
-            Operator::And => Function::product(&flags, inverted),
-            Operator::Xor => {
-                let odd = flags.iter().fold(inverted, |odd, &flag| odd != flag);
-                Function::parity(flags.len(), odd)
-            }
-            Operator::Cover(table) => {
-                let mut table = table;
-                for (pin, _) in flags.iter().enumerate().filter(|&(_, &flag)| flag) {
-                    table = table.flip(pin);
-                }
-                Function::Table(if inverted { table.complement() } else { table })
-            }
-            Operator::Constant | Operator::Net(_) => unreachable!("only gates are made"),
-        };
+        let function = overlay.operator(node).written(&flags, inverted);
         let nets: Vec<NetId> = pins.iter().map(|pin| pin.net).collect();
         let id = self.builder.function(function);
         self.builder

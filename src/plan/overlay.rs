@@ -90,6 +90,28 @@ pub(super) enum Operator {
     Cover(TruthTable),
 }
 
+impl Operator {
+    /// The function of a gate of this operator whose inputs are read inverted where
+    /// `flags` says so, its output complemented when `inverted` is set.
+    pub(super) fn written(self, flags: &[bool], inverted: bool) -> Function {
+        match self {
+            Self::And => Function::product(flags, inverted),
+            Self::Xor => {
+                let odd = flags.iter().fold(inverted, |odd, &flag| odd != flag);
+                Function::parity(flags.len(), odd)
+            }
+            Self::Cover(table) => {
+                let mut table = table;
+                for (pin, _) in flags.iter().enumerate().filter(|&(_, &flag)| flag) {
+                    table = table.flip(pin);
+                }
+                Function::Table(if inverted { table.complement() } else { table })
+            }
+            Self::Constant | Self::Net(_) => unreachable!("only gates are written"),
+        }
+    }
+}
+
 /// An existing net that shows a node, read inverted or not.
 #[derive(Clone, Copy, PartialEq, Eq, Debug)]
 pub(super) struct Shown {

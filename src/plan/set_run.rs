@@ -7,6 +7,10 @@
 //! level, and behind a fast one its whole length. Depth is one pass over members
 //! and stretches for each group of starts, beside the ends that nothing of the set
 //! reaches.
+//!
+//! Where delay depends on load the figures of a set are a sketch: what stays keeps
+//! the delay it has today and new gates have that of an assumed load. Only the dry
+//! run of one chain is timed again with the loads of its rebuild.
 
 use super::cone::{Rooted, sweep_unread};
 use super::dry_run::{Estimate, KindChange, TakesOver};

@@ -229,7 +229,7 @@ impl<'a> Site<'a> {
     }
 
     /// Whether paths to `end` may pass a replaced net.
-    fn is_behind(&self, end: End) -> bool {
+    pub(super) fn is_behind(&self, end: End) -> bool {
         match (end, end_net(self.ground.netlist, end)) {
             (End::Cut(gate), _) => self.region_set.contains(&gate),
             (_, Some(net)) => {

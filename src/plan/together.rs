@@ -363,7 +363,7 @@ impl Search<'_, '_> {
         let gaining = || tried.iter().filter(|outcome| gains(outcome));
         let best = gaining().map(|outcome| outcome.after).min()?;
         let cost = |outcome: &&Outcome| (outcome.estimate.cost(), outcome.progress());
-        let level = self.ground.settings.model.ticks_per_unit();
+        let level = self.ground.settings.model.level();
         let off = gaining().any(|outcome| outcome.on.is_empty());
         let holds = |outcome: &Outcome| {
             gains(outcome)

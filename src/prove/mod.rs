@@ -7,7 +7,10 @@
 //! after the cone has grown down to the free nets.
 
 mod diagram;
+mod primes;
 mod prover;
+mod timed;
 
 pub use diagram::{Claim, Witness, witness};
 pub use prover::{Answer, Counterexample, Effort, Fact, Prover};
+pub use timed::{Settles, Timed};

@@ -47,9 +47,20 @@ pub enum Answer {
 }
 
 /// Counts conflicts and stops the search at the limit.
-struct Budget {
+pub(super) struct Budget {
     spent: u64,
     limit: u64,
+}
+
+impl Budget {
+    pub(super) fn new(limit: u64) -> Self {
+        Self { spent: 0, limit }
+    }
+
+    /// Allows `limit` conflicts from here on.
+    pub(super) fn restart(&mut self, limit: u64) {
+        *self = Self::new(limit);
+    }
 }
 
 impl Callbacks for Budget {

@@ -222,7 +222,13 @@ fn settings_sentence(
     caps: Caps,
 ) -> String {
     let Settings {
-        delay_model: DelayModelFacts { name, unit, misfit },
+        delay_model:
+            DelayModelFacts {
+                name,
+                unit,
+                note,
+                misfit,
+            },
         new_gates,
         new_gates_reason,
         gate_inputs,
@@ -239,6 +245,9 @@ fn settings_sentence(
         sha256,
         ..
     } = netlist;
+    let note = note.as_ref().map_or_else(String::new, |note| {
+        format!(": {}", clipped(note, caps.sentence))
+    });
     let misfit = misfit.as_ref().map_or_else(String::new, |why| {
         format!("; {}", clipped(why, caps.sentence))
     });
@@ -256,7 +265,7 @@ fn settings_sentence(
         Some(hash) => format!("; assumptions SHA-256 {hash}"),
     };
     format!(
-        "{} {}; {}. Depths in {unit} (delay model {name}{misfit}). New gates are \
+        "{} {}; {}. Depths in {unit} (delay model {name}{note}{misfit}). New gates are \
          {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up; {} per \
          proof; pattern seed {patterns_seed}{target}{assumed}.",
         tool.name,

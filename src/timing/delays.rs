@@ -7,8 +7,7 @@
 //! passes over the gates look the same.
 
 use super::model::DelayModel;
-use super::price::PinPrice;
-use crate::netlist::{FunctionId, GateId, Netlist, Shape};
+use crate::netlist::{FunctionId, GateId, Netlist, PinPrice, Shape};
 
 /// See the head of the module.
 pub struct PinDelays {
@@ -83,7 +82,7 @@ impl PinDelays {
             let id = FunctionId::new(id);
             match netlist.declared_delays(id) {
                 Some(own) => prices.extend(own.iter().map(|&own| model.declared_price(own))),
-                None => prices.extend(model.prices(netlist.function_of(id), free_inversions)),
+                None => prices.extend(model.prices_in(netlist, id, free_inversions)),
             }
             starts.push(prices.len() as u32);
         }

@@ -18,7 +18,6 @@ mod model;
 mod near;
 mod passes;
 mod path;
-mod price;
 mod report;
 mod time;
 
@@ -28,10 +27,9 @@ pub use ends::{
     start_group, start_time,
 };
 pub use goals::{Basis, Goals, Spare, Spares};
-pub use model::DelayModel;
+pub use model::{DelayModel, TableModel};
 pub use near::{MANY, Near};
 pub use passes::{Arrivals, NEVER, Tails, end_arrival, gate_arrival, start_times};
 pub use path::{PathStep, longest_path};
-pub use price::{Curve, PinPrice};
 pub use report::{KindTiming, Slack, Timing, depth_histogram, longest_free_buffers};
 pub use time::Time;

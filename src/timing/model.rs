@@ -11,9 +11,8 @@
 
 use super::effort;
 use super::factored;
-use super::price::PinPrice;
 use super::time::Time;
-use crate::netlist::{Function, Shape, TruthTable};
+use crate::netlist::{DelayTable, Function, FunctionId, Netlist, PinPrice, Shape, TruthTable};
 
 /// How gates are priced.
 #[derive(Clone, Copy, PartialEq, Eq, Hash, Debug)]
@@ -25,11 +24,45 @@ pub enum DelayModel {
     Pairs,
     /// d = g·h + p in τ, every gate at unit drive and h from what reads it.
     LogicalEffort,
+    /// What a file says.
+    Table(TableModel),
+}
+
+/// A table as a model. It is kept for as long as the program runs, so that a model
+/// stays a plain copy; a run reads one.
+#[derive(Clone, Copy, Debug)]
+pub struct TableModel(&'static DelayTable);
+
+impl PartialEq for TableModel {
+    fn eq(&self, other: &Self) -> bool {
+        std::ptr::eq(self.0, other.0)
+    }
+}
+
+impl Eq for TableModel {}
+
+impl std::hash::Hash for TableModel {
+    fn hash<H: std::hash::Hasher>(&self, state: &mut H) {
+        std::ptr::hash(self.0, state);
+    }
 }
 
 impl DelayModel {
     /// Every model that needs no file, in the order they are offered.
     pub const ALL: [Self; 3] = [Self::Unit, Self::Pairs, Self::LogicalEffort];
+
+    /// The model of a table.
+    pub fn table(table: DelayTable) -> Self {
+        Self::Table(TableModel(Box::leak(Box::new(table))))
+    }
+
+    /// The table of the model, when it is one.
+    pub fn as_table(self) -> Option<&'static DelayTable> {
+        match self {
+            Self::Table(TableModel(table)) => Some(table),
+            _ => None,
+        }
+    }
 
     /// The word used on the command line and in records.
     pub fn name(self) -> &'static str {
@@ -37,6 +70,7 @@ impl DelayModel {
             Self::Unit => "unit",
             Self::Pairs => "pairs",
             Self::LogicalEffort => "logical-effort",
+            Self::Table(TableModel(table)) => table.kind,
         }
     }
 
@@ -51,6 +85,7 @@ impl DelayModel {
             Self::Unit => "gate delays",
             Self::Pairs => "two-input levels",
             Self::LogicalEffort => "τ",
+            Self::Table(TableModel(table)) => &table.unit,
         }
     }
 
@@ -58,7 +93,7 @@ impl DelayModel {
     pub fn ticks_per_unit(self) -> i32 {
         match self {
             Self::Unit | Self::Pairs => 1,
-            Self::LogicalEffort => 1000,
+            Self::LogicalEffort | Self::Table(_) => 1000,
         }
     }
 
@@ -66,7 +101,7 @@ impl DelayModel {
     pub fn depends_on_load(self) -> bool {
         match self {
             Self::Unit | Self::Pairs => false,
-            Self::LogicalEffort => true,
+            Self::LogicalEffort | Self::Table(_) => true,
         }
     }
 
@@ -76,6 +111,7 @@ impl DelayModel {
             Self::Unit | Self::Pairs => 0,
             // One inverter; common practice, no source.
             Self::LogicalEffort => 1000,
+            Self::Table(TableModel(table)) => table.end_load,
         }
     }
 
@@ -85,6 +121,18 @@ impl DelayModel {
         match self {
             Self::Unit | Self::Pairs => 0,
             Self::LogicalEffort => 2667,
+            Self::Table(TableModel(table)) => table.pin_load.saturating_mul(2),
+        }
+    }
+
+    /// What counts as one level, in ticks: a gate where gates are counted, an inverter
+    /// that drives four under logical effort, and a two-input gate under the load
+    /// assumed where a file says what it takes.
+    pub fn level(self) -> i32 {
+        match self {
+            Self::Unit | Self::Pairs => 1,
+            Self::LogicalEffort => effort::FO4 as i32 * self.ticks_per_unit(),
+            Self::Table(_) => self.pin_delay(&Function::product(&[false; 2], true), 0),
         }
     }
 
@@ -135,6 +183,23 @@ impl DelayModel {
                 .map(PinPrice::without_load)
                 .collect(),
             Self::LogicalEffort => effort::prices(function, free_inversions),
+            Self::Table(TableModel(table)) => table.of_function(function),
+        }
+    }
+
+    /// The same for an interned function, which may be that of a cell.
+    pub(super) fn prices_in(
+        self,
+        netlist: &Netlist,
+        id: FunctionId,
+        free_inversions: bool,
+    ) -> Vec<PinPrice> {
+        let function = netlist.function_of(id);
+        match (self, netlist.cell_pins(id)) {
+            (Self::Table(TableModel(table)), Some(pins)) => {
+                table.of_cell(function, &pins.cell, &pins.output, &pins.inputs)
+            }
+            _ => self.prices(function, free_inversions),
         }
     }
 
@@ -159,7 +224,7 @@ impl DelayModel {
                 Shape::Other => factored::pin_depths(function),
             },
             // Polarities are not settled either, so inversions count as free.
-            Self::LogicalEffort => self
+            Self::LogicalEffort | Self::Table(_) => self
                 .prices(function, true)
                 .iter()
                 .map(|price| price.delay.at(self.assumed_load()))

@@ -50,8 +50,10 @@ pub fn tide_logger() -> Audit {
             name: "ripple".into(),
             nearest: Some("ripple".into()),
             group: None,
-            levels: Some(at(31)),
+            levels: Some(31),
+            cells: Some(31),
             largest_fan_out: Some(3),
+            taxonomy: None,
             detail: String::new(),
         },
         proven: true,
@@ -160,6 +162,7 @@ pub fn tide_logger() -> Audit {
             delay_model: DelayModelFacts {
                 name: "unit".into(),
                 unit: "gate delays".into(),
+                note: None,
                 misfit: None,
             },
             new_gates: "single-operator".into(),
@@ -346,6 +349,7 @@ fn proposal(
         } else {
             vec![]
         },
+        flips_under: vec![],
         chain_depth: Change {
             before: at(31),
             after: at(chain),

@@ -141,18 +141,34 @@ pub struct Feedback {
 /// How a chain is built today.
 #[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct BuiltAsRecord {
-    /// `ripple` or `mixed`.
+    /// `ripple`, `lookahead`, `skip`, `select`, `increment`, `conditional-sum`,
+    /// `prefix`, `tree` or `mixed`.
     pub name: String,
-    /// The nearest scheme with a name.
+    /// The published scheme it is most like, when it is like one.
     pub nearest: Option<String>,
-    /// Group size.
+    /// Positions of one group or block.
     pub group: Option<u64>,
-    /// From its latest operand to its last result, in the unit of the record.
-    pub levels: Option<Time>,
+    /// Nodes of its carry network on the longest way to a result.
+    pub levels: Option<u64>,
+    /// Nodes of its carry network.
+    pub cells: Option<u64>,
     /// Most readers of one net inside the chain.
     pub largest_fan_out: Option<u64>,
+    /// Of a prefix network, its place in Harris' taxonomy.
+    pub taxonomy: Option<TaxonomyRecord>,
     /// A few words more.
     pub detail: String,
+}
+
+/// The place of a prefix network in the taxonomy of D. Harris (2003).
+#[derive(Clone, Copy, PartialEq, Eq, Debug, Serialize, Deserialize)]
+pub struct TaxonomyRecord {
+    /// Levels beyond the fewest possible.
+    pub l: u64,
+    /// The logarithm of the fan-out.
+    pub f: u64,
+    /// The logarithm of the wiring tracks.
+    pub t: u64,
 }
 
 /// Where a chain stands in the source.
@@ -229,6 +245,9 @@ pub struct ProposalRecord {
     pub reason: Option<String>,
     /// Delay models under which the recommendation is the same.
     pub holds_under: Vec<String>,
+    /// Delay models under which another scheme is recommended, or none; models in
+    /// neither list were not tried.
+    pub flips_under: Vec<String>,
     /// Depth at the chain's latest result.
     pub chain_depth: Change,
     /// Depth of the block.

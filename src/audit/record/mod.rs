@@ -16,7 +16,7 @@ mod time;
 
 pub use chain::{
     BuiltAsRecord, ChainDepth, ChainRecord, Change, Exercised, Feedback, NotPlanned, Operand,
-    Place, ProposalRecord,
+    Place, ProposalRecord, TaxonomyRecord,
 };
 
 use crate::timing::Time;
@@ -139,10 +139,12 @@ pub struct Settings {
 /// The delay model.
 #[derive(Clone, PartialEq, Eq, Debug, Serialize, Deserialize)]
 pub struct DelayModelFacts {
-    /// `unit`, `pairs` or `logical-effort`.
+    /// `unit`, `pairs`, `logical-effort`, `delay-table` or `library`.
     pub name: String,
     /// What one step counts, in the plural: `gate delays`.
     pub unit: String,
+    /// How the figures of a file came about; null without one.
+    pub note: Option<String>,
     /// Why the model does not fit the netlist; null where it does.
     pub misfit: Option<String>,
 }

@@ -129,13 +129,16 @@ impl Reader<'_> {
                 carries: self.signals(carries, &operands),
             })
             .collect();
+        let is_named = |node| self.labels.net(node).is_some();
+        let (built_as, construction) = built_as(self.subject, &theorem, is_named);
         Some(Chain {
             kind: Kind::Comparator,
             positions,
             carry_in: self.carry_in(theorem.carry_in)?,
             has_carry_out: true,
             carry_form: CarryForm::Carry,
-            built_as: built_as(self.subject, &theorem),
+            built_as,
+            construction,
             mode: None,
             comparison: Some(Comparison {
                 result,

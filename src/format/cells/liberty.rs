@@ -29,7 +29,7 @@ use std::collections::BTreeMap;
 const DEEPEST: usize = 256;
 
 /// Whether the text is a Liberty library.
-pub(super) fn is_liberty(bytes: &[u8]) -> bool {
+pub(in crate::format) fn is_liberty(bytes: &[u8]) -> bool {
     let text = String::from_utf8_lossy(&bytes[..bytes.len().min(1 << 16)]);
     let Ok((rest, _)) = blank(&text) else {
         return false;
@@ -39,7 +39,7 @@ pub(super) fn is_liberty(bytes: &[u8]) -> bool {
 }
 
 /// Blanks, comments and continued lines.
-fn blank(text: &str) -> IResult<&str, ()> {
+pub(in crate::format) fn blank(text: &str) -> IResult<&str, ()> {
     let comment = delimited(tag("/*"), take_until("*/"), tag("*/"));
     let continued = preceded(char('\\'), multispace1);
     value(
@@ -50,7 +50,7 @@ fn blank(text: &str) -> IResult<&str, ()> {
 }
 
 /// A word, or a text in quotes.
-fn word(text: &str) -> IResult<&str, &str> {
+pub(in crate::format) fn word(text: &str) -> IResult<&str, &str> {
     let quoted = delimited(char('"'), opt(take_until("\"")), char('"'));
     let bare = take_while1(|c: char| !c.is_whitespace() && !"(){};:,\"\\".contains(c));
     alt((quoted.map(Option::unwrap_or_default), bare)).parse(text)

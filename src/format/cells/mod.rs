@@ -9,7 +9,10 @@
 mod expression;
 mod liberty;
 
+pub(super) use liberty::{blank, is_liberty, word};
+
 use super::{ReadOptions, blif};
+use crate::netlist::Shape;
 use crate::netlist::cell::Cells;
 use crate::source::{Diagnostic, Place, Source};
 
@@ -26,7 +29,7 @@ pub struct Library {
 /// # Errors
 /// Located errors.
 pub fn read(source: &Source) -> Result<Library, Vec<Diagnostic>> {
-    let library = if liberty::is_liberty(&source.bytes) {
+    let library = if is_liberty(&source.bytes) {
         liberty::read(source).map_err(|error| vec![error])?
     } else {
         read_blif(source)?
@@ -40,6 +43,12 @@ pub fn read(source: &Source) -> Result<Library, Vec<Diagnostic>> {
         )]);
     }
     Ok(library)
+}
+
+/// The shape of a function as a library writes it, and how many pins it reads.
+pub(super) fn shape_of(function: &str) -> Option<(Shape, usize)> {
+    let read = expression::read(function).ok()?;
+    Some((read.function.shape(), read.pins.len()))
 }
 
 /// Every `.model` of the text is read by itself: a cell holds no instances.

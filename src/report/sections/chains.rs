@@ -40,6 +40,7 @@ pub fn chains(
     if let Some(totals) = totals(chains) {
         blocks.push(Block::Text(totals));
     }
+    blocks.extend(constructions(chains, caps).map(Block::Text));
     for array in arrays.iter().take(caps.rows) {
         let ArrayRecord {
             id,
@@ -59,6 +60,7 @@ pub fn chains(
             counted(chains.len() as u64, "chain", "chains"),
         )));
     }
+    blocks.extend(exercised(chains, caps).map(Block::Text));
     blocks.extend(against(chains).map(Block::Text));
     if recurrences_not_listed > 0 {
         blocks.push(Block::Text(format!(
@@ -71,6 +73,28 @@ pub fn chains(
         aside: false,
         blocks,
     })
+}
+
+/// Chains whose longest path no values exercise, or may not.
+fn exercised(chains: &[ChainRecord], caps: Caps) -> Option<String> {
+    let told = chains.iter().filter_map(|chain| {
+        let found = chain.depth.exercised.as_ref()?;
+        let id = clipped(&chain.id, caps.name);
+        match (found.verdict.as_str(), found.depth) {
+            ("impossible", Some(depth)) => Some(format!(
+                "The longest path to the results of {id} ({}) is one that no values exercise: \
+                 they have settled after {depth}.",
+                chain.depth.leaves
+            )),
+            ("undecided", _) => Some(format!(
+                "Whether values exercise the longest path to the results of {id} was not settled \
+                 within the effort."
+            )),
+            _ => None,
+        }
+    });
+    let told: Vec<String> = told.take(caps.rows).collect();
+    (!told.is_empty()).then(|| told.join(" "))
 }
 
 /// What is to spare counts against, unless it is the longest path of the kind.
@@ -124,7 +148,7 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
         mode: _,
         feedback,
         duplicates,
-        built_as: BuiltAsRecord { name, .. },
+        built_as,
         proven: _,
         place,
         depth: ChainDepth {
@@ -171,11 +195,84 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
         what,
         clipped(id, caps.name),
         grouped(*bits),
-        clipped(name, caps.name),
+        built(built_as, caps),
         span(*arrives, *leaves),
         spare,
         lines,
     ]
+}
+
+/// The build in a word, with what tells it from others of the name.
+fn built(built_as: &BuiltAsRecord, caps: Caps) -> String {
+    let BuiltAsRecord {
+        name,
+        nearest,
+        group,
+        ..
+    } = built_as;
+    let name = clipped(name, caps.name);
+    match (nearest, group) {
+        (Some(scheme), None) if name == "prefix" => {
+            format!("{name}, {}", clipped(scheme, caps.name))
+        }
+        (_, Some(group)) => format!("{name} by {}", grouped(*group)),
+        _ => name,
+    }
+}
+
+/// What is behind every build that is not a plain ripple; chains built alike are
+/// told together.
+fn constructions(chains: &[ChainRecord], caps: Caps) -> impl Iterator<Item = String> {
+    let mut alike: Vec<(&BuiltAsRecord, Vec<&str>)> = Vec::new();
+    for chain in urgent_first(chains) {
+        let own = &chain.built_as;
+        if own.name == "ripple" || own.detail.is_empty() {
+            continue;
+        }
+        match alike.iter().position(|(known, _)| *known == own) {
+            Some(at) => alike[at].1.push(&chain.id),
+            None if alike.len() < caps.rows => alike.push((own, vec![&chain.id])),
+            None => {}
+        }
+    }
+    alike.into_iter().map(move |(built_as, ids)| {
+        let BuiltAsRecord {
+            name: _,
+            nearest: _,
+            group: _,
+            levels,
+            cells,
+            largest_fan_out,
+            taxonomy: _,
+            detail,
+        } = built_as;
+        let mut names: Vec<String> = ids
+            .iter()
+            .take(4)
+            .map(|id| clipped(id, caps.name))
+            .collect();
+        if ids.len() > names.len() {
+            names.push(format!(
+                "{} more",
+                grouped((ids.len() - names.len()) as u64)
+            ));
+        }
+        let mut parts = vec![clipped(detail, caps.sentence)];
+        if let (Some(levels), Some(cells)) = (levels, cells) {
+            parts.push(format!(
+                "{} and {} in the carry network",
+                counted(*levels, "level", "levels"),
+                counted(*cells, "cell", "cells"),
+            ));
+        }
+        if let Some(readers) = largest_fan_out {
+            parts.push(format!(
+                "at most {} of one net",
+                counted(*readers, "reader", "readers")
+            ));
+        }
+        format!("{}: {}.", listed(&names), parts.join("; "))
+    })
 }
 
 fn totals(chains: &[ChainRecord]) -> Option<String> {
@@ -349,6 +446,7 @@ fn proposal_row(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> V
         recommended,
         reason: _,
         holds_under: _,
+        flips_under: _,
         chain_depth,
         block_depth,
         takes_over: _,
@@ -423,7 +521,16 @@ fn aftermath(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> Stri
             .iter()
             .map(|model| clipped(model, caps.name))
             .collect();
-        parts.push(format!("the choice holds under {}", listed(&models)));
+        let mut text = format!("the choice holds under {}", listed(&models));
+        if !proposal.flips_under.is_empty() {
+            let flips: Vec<String> = proposal
+                .flips_under
+                .iter()
+                .map(|model| clipped(model, caps.name))
+                .collect();
+            text.push_str(&format!(" and not under {}", listed(&flips)));
+        }
+        parts.push(text);
     }
     text.push_str(&parts.join("; "));
     text.push('.');

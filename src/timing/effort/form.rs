@@ -15,9 +15,8 @@
 //! Where inversions are free (AIGER) every product is a NAND.
 
 use super::super::factored::{Cubes, rows_of, sum_of_products};
-use super::super::price::{Curve, PinPrice};
 use super::cell::EffortCell;
-use crate::netlist::{Function, Shape, TruthTable};
+use crate::netlist::{Curve, Function, PinPrice, Shape, TruthTable};
 
 /// τ in ticks.
 const TAU: i32 = 1000;

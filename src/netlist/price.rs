@@ -21,6 +21,23 @@ pub enum Curve {
 }
 
 impl Curve {
+    /// The same curve, so many ticks later.
+    #[must_use]
+    pub fn later(&self, ticks: i32) -> Self {
+        match self {
+            Self::Line { fixed, slope } => Self::Line {
+                fixed: fixed.saturating_add(ticks),
+                slope: *slope,
+            },
+            Self::Points(points) => {
+                let moved = points
+                    .iter()
+                    .map(|&(load, at)| (load, at.saturating_add(ticks)));
+                Self::Points(moved.collect())
+            }
+        }
+    }
+
     /// The delay in ticks at `load`, never below zero.
     pub fn at(&self, load: i32) -> i32 {
         let value = match self {

@@ -1,17 +1,15 @@
-//! How a chain is built today: by each carry's distance to the nearest lower
-//! carries it is made from. In a ripple every carry net is made from the carry
-//! one position below and from no other. Everything else is `mixed`.
+//! Whether every carry net is made from the carry one position below and from no
+//! other: the quick test, by structure alone, that most chains end at.
 
-use super::model::BuiltAs;
-use super::verify::Theorem;
+use super::super::verify::Theorem;
 use crate::subject::{NodeId, NodeKind, Subject};
 use rustc_hash::{FxHashMap, FxHashSet};
 
 /// A carry's own logic in a ripple is a handful of nodes; more is not followed.
 const NEAR: usize = 64;
 
-/// Classifies a proven chain.
-pub(super) fn built_as(subject: &Subject, theorem: &Theorem) -> BuiltAs {
+/// See the head of the module.
+pub(super) fn is_ripple(subject: &Subject, theorem: &Theorem) -> bool {
     let mut position_of: FxHashMap<NodeId, usize> = FxHashMap::default();
     for (i, carries) in theorem.carries.iter().enumerate() {
         for literal in carries {
@@ -31,14 +29,14 @@ pub(super) fn built_as(subject: &Subject, theorem: &Theorem) -> BuiltAs {
     let last = theorem.bits.len() - 1;
     for (i, carries) in theorem.carries.iter().enumerate() {
         if carries.is_empty() && i != last {
-            return BuiltAs::Mixed;
+            return false;
         }
         // Without carry-in the carry out of position 0 is made from operands.
         let from_below = i > 0 || has_carry_in;
         for carry in carries {
             let Some(found) = nearest_carries(subject, carry.node(), &position_of, &operands)
             else {
-                return BuiltAs::Mixed;
+                return false;
             };
             // A second net of the same carry may be made from the first, or from
             // sums above it.
@@ -46,11 +44,11 @@ pub(super) fn built_as(subject: &Subject, theorem: &Theorem) -> BuiltAs {
             // An incrementer's lowest carries may be operands themselves.
             let may_be_first = !from_below || i <= 1;
             if !is_next || (found.is_empty() && !may_be_first) {
-                return BuiltAs::Mixed;
+                return false;
             }
         }
     }
-    BuiltAs::Ripple
+    true
 }
 
 /// Positions of the carries met first when walking back from `carry`; `None`
