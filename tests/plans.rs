@@ -134,7 +134,7 @@ fn a_result_that_nothing_reads_stays() {
     let timing = Timing::of(&netlist, &topology, DelayModel::Unit);
     let ground = Ground::of(&netlist, &topology, &timing, &settings);
     let site = Site::of(&ground, &chain).unwrap();
-    for (fitted, propagate) in options(&chain, settings.gate_inputs) {
+    for (fitted, propagate) in options(&site) {
         let run = DryRun::of(&site, &fitted.network, propagate);
         assert_eq!(run.estimate().gates_removed, 6);
         compare(&ground, &run, &chain, fitted.scheme);
@@ -184,7 +184,7 @@ fn an_operand_that_no_new_gate_reads_is_swept() {
     let timing = Timing::of(&netlist, &topology, DelayModel::Unit);
     let ground = Ground::of(&netlist, &topology, &timing, &settings);
     let site = Site::of(&ground, &chain).unwrap();
-    for (fitted, propagate) in options(&chain, 2) {
+    for (fitted, propagate) in options(&site) {
         let run = DryRun::of(&site, &fitted.network, propagate);
         compare(&ground, &run, &chain, fitted.scheme);
         // All but 14, which s0 reads anew.

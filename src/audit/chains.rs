@@ -204,6 +204,7 @@ impl<'a> Sources<'a> {
             slack: spare.map(|spare| self.timing.time(spare.ticks)),
             slack_against: spare.map(|spare| spare.basis.words().to_owned()),
             not_planned: rebuilds::not_planned(self.timing, plan),
+            cheaper: plan.cheaper.map(|index| format!("P{}", index + 1)),
             proposals: rebuilds::proposals(netlist, self.timing, plan),
         }
     }

@@ -7,6 +7,7 @@
 use super::assumed::{late_ports, per_cycle};
 use super::findings::{self, MANY_READERS, RULES, Rule, WIDE_GATE};
 use super::goals::Standing;
+use super::rebuilds::scheme_phrase;
 use super::record::{ChainRecord, Finding, UnprovenRecord};
 use super::verdict::cut_on;
 use super::words::{counted, depth_in, grouped, listed};
@@ -15,7 +16,7 @@ use crate::netlist::Assumptions;
 use crate::netlist::assume::Assumed;
 use crate::netlist::health::{Fault, FaultKind, Health};
 use crate::netlist::{Driver, NetId, Netlist, RegisterId, Topology, Trigger, histogram};
-use crate::timing::{KindTiming, PathStep, Timing, end_net};
+use crate::timing::{KindTiming, PathStep, Time, Timing, end_net};
 use std::cmp::Reverse;
 
 /// Places listed of one rule.
@@ -336,6 +337,37 @@ impl<'a> Findings<'a> {
             self.add("chain-unproven", None, 0, message);
         }
         self.left_out += unproven.len().saturating_sub(PLACES) as u64;
+    }
+
+    /// Chains that a cheaper build would serve as well.
+    pub fn add_faster(&mut self, records: &[ChainRecord]) {
+        let mut listed = 0;
+        for record in records {
+            let Some(id) = &record.cheaper else { continue };
+            let Some(cheaper) = record.proposals.iter().find(|each| each.id == *id) else {
+                continue;
+            };
+            if listed == PLACES {
+                self.left_out += 1;
+                continue;
+            }
+            listed += 1;
+            let saved = cheaper.gate_equivalents_added.unsigned_abs();
+            let message = format!(
+                "{} of {} has {} to spare; as {} ({}/{id}) it takes {} fewer, and no kind of \
+                 path gets longer",
+                record.id,
+                record.formula(),
+                record.slack.unwrap_or(Time::ZERO),
+                scheme_phrase(cheaper),
+                record.id,
+                counted(saved, "gate equivalent", "gate equivalents"),
+            );
+            let line = record.place.line_first;
+            let line = line.and_then(|line| u32::try_from(line).ok());
+            let finding = self.add("faster-than-needed", None, line.unwrap_or(0), message);
+            finding.chain = Some(record.id.clone());
+        }
     }
 
     /// Chains that compute what an earlier one computes.

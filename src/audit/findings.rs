@@ -114,6 +114,19 @@ pub const RULES: &[Rule] = &[
         example: "`total + level` once for the display and once for the alarm.",
     },
     Rule {
+        slug: "faster-than-needed",
+        severity: Severity::Note,
+        what: "A chain is built for speed, has time to spare, and a cheaper build would serve as \
+               well.",
+        why: "Its gates cost area and power, and no path of the block is shorter for them.",
+        advice: "Take the cheaper build where the time to spare is not meant for what comes \
+                 next; check after any other rebuild, which may use that time up.",
+        leaves_alone: "Ripple chains, carry cells, chains on a longest path, chains in the \
+                       recommended set, and proposals that would make any kind of path longer. \
+                       At most 64 chains are looked at, those with the most to spare.",
+        example: "A prefix adder for a 12-bit sample count, next to a 24-bit ripple total.",
+    },
+    Rule {
         slug: "gate-too-wide",
         severity: Severity::Note,
         what: "A gate has more than four inputs.",

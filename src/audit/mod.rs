@@ -8,6 +8,7 @@
 mod assumed;
 mod carried;
 mod chains;
+pub mod closeup;
 mod exercised;
 mod faults;
 pub mod findings;
@@ -20,7 +21,9 @@ mod model_fit;
 mod names;
 mod rebuilds;
 pub mod record;
+mod shape;
 mod sight;
+pub mod tradeoff;
 mod verdict;
 pub mod words;
 
@@ -242,6 +245,7 @@ pub fn audit_under(
     }
     findings.add_cut_path(&topology, longest_path);
     findings.add_ripples(&timing, &chains, &records);
+    findings.add_faster(&records);
     findings.add_duplicates(&records);
     findings.add_unproven(&unproven);
     let misfit = model_fit::misfit(read, model);
@@ -305,6 +309,7 @@ fn plans(
     let ground = Ground::of(netlist, topology, timing, settings);
     let mut plans = plan::plan_all(&ground, chains);
     let together = plan::choose_together(&ground, chains, &mut plans);
+    plan::note_savings(&ground, chains, &mut plans);
     (plans, together)
 }
 
@@ -340,6 +345,8 @@ fn settings_record(
         new_gates_reason: settings.new_gates_reason.clone(),
         gate_inputs: settings.gate_inputs as u64,
         gate_inputs_reason: settings.gate_inputs_reason.clone(),
+        plan_margin_percent: (!settings.plans_all())
+            .then_some(plan::DEFAULT_MARGIN_PERCENT.unsigned_abs().into()),
         min_bits: options.chains.min_bits as u64,
         effort: options.chains.effort,
         patterns_seed: options.chains.seed,

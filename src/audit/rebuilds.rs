@@ -6,10 +6,10 @@
 
 use super::chains::id;
 use super::record::{ChainRecord, Change, NotPlanned, ProposalRecord, RecommendedSet};
+use super::shape;
 use super::words::{counted, depth_in, grouped, listed};
 use crate::chain::Chain;
 use crate::netlist::{Netlist, Topology};
-use crate::network::{CarryNetwork, Node};
 use crate::plan::{self, ChainPlan, Proposal, Settings, TakesOver, Together};
 use crate::timing::Timing;
 
@@ -61,7 +61,7 @@ fn proposal_record(
         group: fitted.group.map(|group| group as u64),
         levels: fitted.levels as u64,
         valency: fitted.valency as u64,
-        select_end: false,
+        select_end: fitted.select_end,
         on_front: proposal.on_front,
         recommended,
         reason,
@@ -76,30 +76,14 @@ fn proposal_record(
             - estimate.gate_equivalents_removed as i64,
         largest_fan_in: estimate.largest_fan_in as u64,
         largest_fan_out: estimate.largest_fan_out as u64,
-        wire_tracks: None,
+        wire_tracks: fitted
+            .network
+            .is_prefix()
+            .then(|| fitted.network.wire_tracks() as u64),
         above_bound: Some(timing.time(proposal.above_bound)),
         carries: recommended.then(|| arrivals.collect()),
-        network: recommended.then(|| spans(&fitted.network)),
+        network: recommended.then(|| shape::lines(&fitted.network)),
     }
-}
-
-/// The combine nodes a network uses, in an order in which parts come first.
-fn spans(network: &CarryNetwork) -> Vec<String> {
-    let used = network.used();
-    let text = |node| {
-        let span = network.span(node);
-        format!("[{}:{}]", span.high, span.low)
-    };
-    let combined = network.nodes().filter(|node| used[node.index()]);
-    combined
-        .filter_map(|node| match network.node(node) {
-            Node::Combine(parts) => {
-                let parts: Vec<String> = parts.iter().map(|&part| text(part)).collect();
-                Some(format!("{} = {}", text(node), parts.join(" ")))
-            }
-            Node::CarryIn | Node::Leaf(_) => None,
-        })
-        .collect()
 }
 
 /// The set to take, from the records of all chains.

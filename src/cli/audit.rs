@@ -2,7 +2,7 @@
 //! file that fails does not stop the others.
 
 use super::Status;
-use super::options::{AuditArguments, Delay};
+use super::options::{AuditArguments, Delay, SharedArguments};
 use super::search::SearchFolders;
 use super::targets::{self, Target};
 use super::terminal::{colour_on_stderr, complain, page, say};
@@ -11,6 +11,7 @@ use crate::audit::{self, Asserting, AuditError, Origin};
 use crate::format::assumptions::{self, AssumptionsFile};
 use crate::format::files::FileAccess;
 use crate::format::{self, Parsed};
+use crate::netlist::Netlist;
 use crate::netlist::cell::{Cells, Unbound};
 use crate::report::{self, Form, MOST_CHARACTERS, Page};
 use crate::source::{self, Diagnostic, Limits, Place, ReadError, Source};
@@ -39,14 +40,15 @@ pub fn run(arguments: &AuditArguments) -> Status {
         .filter(|f| !is_stdin(f))
         .cloned()
         .collect();
-    let delays = match &arguments.delay {
+    let delays = match &arguments.shared.delay {
         Delay::File(path) => Some(path),
         Delay::Model(_) => None,
     };
     let besides = arguments
+        .shared
         .assume
         .iter()
-        .chain(&arguments.cells)
+        .chain(&arguments.shared.cells)
         .chain(delays);
     let read_besides = named.iter().chain(besides).cloned();
     let read_besides: Vec<PathBuf> = read_besides.collect();
@@ -57,39 +59,33 @@ pub fn run(arguments: &AuditArguments) -> Status {
             return Status::Unusable;
         }
     };
-    let quiet = arguments.quiet;
-    let library = |file: &PathBuf| cells(file, quiet);
-    let (model, gives_cells) = match delay_model(&arguments.delay) {
-        Ok(found) => found,
+    let inputs = match Inputs::of(&arguments.shared) {
+        Ok(inputs) => inputs,
         Err(worse) => return worse,
     };
-    // A library of delays also says what its cells do.
-    let from = arguments.cells.as_ref().or(delays.filter(|_| gives_cells));
-    let mut cells = match from.map(library).transpose() {
-        Ok(cells) => cells,
-        Err(worse) => return worse,
-    };
-    let asserted = match arguments.assume.as_deref().map(assume).transpose() {
-        Ok(asserted) => asserted,
-        Err(worse) => return worse,
-    };
-    if let Some(file) = &asserted
-        && let Err(worse) = declare_carry(file, cells.as_mut(), arguments)
-    {
-        return worse;
-    }
     let share = (MOST_CHARACTERS / arguments.files.len()).max(FEWEST_CHARACTERS);
     let page = Page {
         characters: share.min(MOST_CHARACTERS),
         ..page()
     };
-    let mut stdout = Stdout::new(arguments.form.form());
+    let mut stdout = Stdout::new(arguments.shared.form.form());
     let mut status = Status::Done;
     for file in &arguments.files {
         // A fault of ours in one netlist is told as such, and the others go on.
         let audited = catch_unwind(AssertUnwindSafe(|| {
-            let options = arguments.auditing(model);
-            audit_file(file, arguments, &options, asserted.as_ref(), cells.as_ref())
+            with_netlist(
+                file,
+                &arguments.shared,
+                &inputs,
+                |netlist, origin, asserting| {
+                    audit::audit_under(
+                        netlist,
+                        origin,
+                        &arguments.auditing(inputs.model),
+                        asserting,
+                    )
+                },
+            )
         }));
         let audited = audited.unwrap_or_else(|_| {
             complain(&format!(
@@ -121,6 +117,36 @@ pub fn run(arguments: &AuditArguments) -> Status {
         }
     }
     status
+}
+
+/// What is read beside the netlists, once for all of them.
+pub(super) struct Inputs {
+    pub(super) model: DelayModel,
+    cells: Option<Cells>,
+    asserted: Option<AssumptionsFile>,
+}
+
+impl Inputs {
+    pub(super) fn of(arguments: &SharedArguments) -> Result<Self, Status> {
+        let (model, gives_cells) = delay_model(&arguments.delay)?;
+        let delays = match &arguments.delay {
+            Delay::File(path) => Some(path),
+            Delay::Model(_) => None,
+        };
+        // A library of delays also says what its cells do.
+        let from = arguments.cells.as_ref().or(delays.filter(|_| gives_cells));
+        let library = |file: &PathBuf| cells(file, arguments.quiet);
+        let mut cells = from.map(library).transpose()?;
+        let asserted = arguments.assume.as_deref().map(assume).transpose()?;
+        if let Some(file) = &asserted {
+            declare_carry(file, cells.as_mut(), arguments)?;
+        }
+        Ok(Self {
+            model,
+            cells,
+            asserted,
+        })
+    }
 }
 
 fn is_stdin(file: &Path) -> bool {
@@ -161,7 +187,7 @@ fn cells(file: &Path, quiet: bool) -> Result<Cells, Status> {
 fn declare_carry(
     file: &AssumptionsFile,
     cells: Option<&mut Cells>,
-    arguments: &AuditArguments,
+    arguments: &SharedArguments,
 ) -> Result<(), Status> {
     let declared = &file.assumptions.carry_cells;
     if declared.is_empty() {
@@ -179,7 +205,7 @@ fn declare_carry(
 }
 
 /// The delay model asked for, and whether its file also gives functions of cells.
-fn delay_model(delay: &Delay) -> Result<(DelayModel, bool), Status> {
+pub(super) fn delay_model(delay: &Delay) -> Result<(DelayModel, bool), Status> {
     let file = match delay {
         Delay::Model(model) => return Ok((*model, false)),
         Delay::File(file) => file,
@@ -208,13 +234,15 @@ fn assume(file: &Path) -> Result<AssumptionsFile, Status> {
     })
 }
 
-fn audit_file(
+/// Reads one netlist and gives it to `make` with where it came from and what is
+/// assumed of it. What goes wrong is told.
+pub(super) fn with_netlist<T>(
     file: &Path,
-    arguments: &AuditArguments,
-    options: &audit::Options,
-    asserted: Option<&AssumptionsFile>,
-    cells: Option<&Cells>,
-) -> Result<Audit, Status> {
+    arguments: &SharedArguments,
+    inputs: &Inputs,
+    make: impl FnOnce(&Netlist, &Origin, Option<&Asserting<'_>>) -> Result<T, AuditError>,
+) -> Result<T, Status> {
+    let (cells, asserted) = (inputs.cells.as_ref(), inputs.asserted.as_ref());
     let colour = colour_on_stderr();
     let name = file.to_string_lossy().into_owned();
     let limits = Limits::for_gates(arguments.max_gates);
@@ -281,8 +309,7 @@ fn audit_file(
         assumptions: &file.assumptions,
         sha256: audit::digest(&file.source().bytes),
     });
-    let audited = audit::audit_under(&netlist, &origin, options, asserting.as_ref());
-    audited.map_err(|error| {
+    make(&netlist, &origin, asserting.as_ref()).map_err(|error| {
         match (&error, asserted) {
             (AuditError::Misfit(misfit), Some(file)) => {
                 let told = file.misfit(misfit, &origin.file);
@@ -294,7 +321,7 @@ fn audit_file(
     })
 }
 
-fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
+pub(super) fn load_or_say(file: &Path, name: &str, limits: Limits) -> Result<Source, Status> {
     load(file, name, limits).map_err(|error| {
         let nothing = Source {
             name: name.to_owned(),

@@ -5,11 +5,13 @@
 //! goes to standard error. One runner per command.
 
 mod audit;
+mod closeup;
 mod explain;
 mod options;
 mod search;
 mod targets;
 mod terminal;
+mod tradeoff;
 
 use clap::Parser;
 use options::{Command, CommandLine};
@@ -45,6 +47,8 @@ pub fn run() -> ExitCode {
     let status = match CommandLine::try_parse() {
         Ok(line) => match line.command {
             Command::Audit(arguments) => audit::run(&arguments),
+            Command::Closeup(arguments) => closeup::run(&arguments),
+            Command::Tradeoff(arguments) => tradeoff::run(&arguments),
             Command::Explain { rule } => explain::run(rule.as_deref()),
         },
         Err(answer) => {

@@ -8,7 +8,7 @@ use crate::chain;
 use crate::format::ReadOptions;
 use crate::format::files::FileAccess;
 use crate::plan::{NewGates, Request};
-use crate::report::Form;
+use crate::report::{Form, TradeoffForm};
 use crate::source::nearest;
 use crate::timing::DelayModel;
 use clap::{Args, Parser, Subcommand, ValueEnum};
@@ -29,6 +29,7 @@ use std::sync::Arc;
     after_long_help = "Examples:\n  \
         carrywise audit tide_logger.blif\n  \
         carrywise audit old/*.blif --report review.md --report record.yaml\n  \
+        carrywise closeup tide_logger.blif C1\n  \
         carrywise explain ripple-on-longest-path\n\n\
         Exit status: 0 done; 1 what was asked to hold does not; 2 an input or the command line\n\
         could not be used; 4 a fault of carrywise itself. Several files give the worst of theirs."
@@ -45,6 +46,12 @@ pub enum Command {
     /// Audit netlists: depth, proven carry chains, what a rebuild would bring
     #[command(after_help = AUDIT_EXAMPLES)]
     Audit(Box<AuditArguments>),
+    /// Look at one chain bit by bit: arrivals, carries today, the best of every scheme
+    #[command(after_help = "Example:\n  carrywise closeup tide_logger.blif C1")]
+    Closeup(Box<CloseupArguments>),
+    /// Compare schemes without a netlist: delay against the largest fan-in
+    #[command(after_help = TRADEOFF_EXAMPLES)]
+    Tradeoff(TradeoffArguments),
     /// Say what a finding means and what to do about it
     #[command(after_help = "Example:\n  carrywise explain net-driven-twice")]
     Explain {
@@ -58,6 +65,72 @@ const AUDIT_EXAMPLES: &str = "Examples:\n  \
     carrywise audit tide_logger.aig --delay pairs --as markdown\n  \
     carrywise audit tide_logger.blif.gz --as json --report review.md";
 
+const TRADEOFF_EXAMPLES: &str = "Examples:\n  \
+    carrywise tradeoff --bits 32\n  \
+    carrywise tradeoff --bits 16 --carry-in --delay pairs --gate-inputs 4\n  \
+    carrywise tradeoff --bits 16 --arrivals late_levels.yaml --as yaml";
+
+/// What `tradeoff` takes.
+#[derive(Args, Debug)]
+pub struct TradeoffArguments {
+    /// Positions added
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(1..=4096))]
+    pub bits: u64,
+
+    /// With a carry-in
+    #[arg(long)]
+    pub carry_in: bool,
+
+    /// A YAML file of when the bits of `a`, `b` and `carry_in` are ready, in units of the delay
+    /// model [default: all at 0]
+    #[arg(long, value_name = "FILE")]
+    pub arrivals: Option<PathBuf>,
+
+    /// What a gate costs, as for `audit`; where that depends on load, each gate is priced as if it
+    /// drove two others
+    #[arg(long, value_name = "MODEL", default_value = "unit", value_parser = delay)]
+    pub delay: Delay,
+
+    /// Most inputs of a gate that are tried [default: as many as some scheme can use]
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(2..))]
+    pub gate_inputs: Option<u64>,
+
+    /// What one gate may be
+    #[arg(
+        long,
+        value_name = "KIND",
+        value_enum,
+        default_value = "single-operator"
+    )]
+    pub new_gates: NewGatesWord,
+
+    /// Form of the answer on standard output
+    #[arg(long = "as", value_name = "FORM", value_enum, default_value = "table")]
+    pub form: TradeoffWord,
+}
+
+/// Words of `--as` of `tradeoff`.
+#[derive(ValueEnum, Clone, Copy, Debug)]
+pub enum TradeoffWord {
+    /// For a terminal
+    Table,
+    /// The whole record, one document
+    Yaml,
+    /// The whole record, one line
+    Json,
+}
+
+impl TradeoffWord {
+    /// The form it means.
+    pub fn form(self) -> TradeoffForm {
+        match self {
+            Self::Table => TradeoffForm::Table,
+            Self::Yaml => TradeoffForm::Yaml,
+            Self::Json => TradeoffForm::Json,
+        }
+    }
+}
+
 /// What `audit` takes.
 #[derive(Args, Debug)]
 pub struct AuditArguments {
@@ -66,13 +139,45 @@ pub struct AuditArguments {
     #[arg(required = true, value_name = "FILE")]
     pub files: Vec<PathBuf>,
 
-    /// Form of the report on standard output
-    #[arg(long = "as", value_name = "FORM", value_enum, default_value = "table")]
-    pub form: FormWord,
-
     /// Also write the report to PATH; .md, .yaml and .json say in which form. May be repeated
     #[arg(long, value_name = "PATH")]
     pub report: Vec<PathBuf>,
+
+    /// Exit with 1 when a finding is at least this bad
+    #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
+    pub fail_on: FailWord,
+
+    /// Plan every chain, whatever it has to spare
+    #[arg(long)]
+    pub plan_all: bool,
+
+    /// What other commands take too.
+    #[command(flatten)]
+    pub shared: SharedArguments,
+}
+
+/// What `closeup` takes.
+#[derive(Args, Debug)]
+pub struct CloseupArguments {
+    /// A BLIF or AIGER file, plain or packed; `-` is standard input
+    #[arg(value_name = "FILE")]
+    pub file: PathBuf,
+
+    /// The chain: its id (`C1`), its fingerprint, or any of its nets
+    #[arg(value_name = "CHAIN")]
+    pub chain: String,
+
+    /// What other commands take too.
+    #[command(flatten)]
+    pub shared: SharedArguments,
+}
+
+/// How to read a netlist, what to look for, and in which form to tell it.
+#[derive(Args, Debug)]
+pub struct SharedArguments {
+    /// Form of the report on standard output
+    #[arg(long = "as", value_name = "FORM", value_enum, default_value = "table")]
+    pub form: FormWord,
 
     /// What a gate costs: `unit` counts every gate 1, `pairs` counts levels of two-input gates,
     /// `logical-effort` is about static CMOS gates and what each drives, in units of τ; a file is
@@ -126,10 +231,6 @@ pub struct AuditArguments {
     /// of the delay model
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u64).range(..=1 << 24))]
     pub target_depth: Option<u64>,
-
-    /// Exit with 1 when a finding is at least this bad
-    #[arg(long, value_name = "LEVEL", value_enum, default_value = "never")]
-    pub fail_on: FailWord,
 
     /// No warnings on standard error; errors still
     #[arg(long, short)]
@@ -218,6 +319,17 @@ pub enum NewGatesWord {
 }
 
 impl AuditArguments {
+    /// How to audit.
+    pub fn auditing(&self, model: DelayModel) -> audit::Options {
+        let mut options = self.shared.auditing(model);
+        if self.plan_all {
+            options.request.margin = Some(i32::MAX);
+        }
+        options
+    }
+}
+
+impl SharedArguments {
     /// How to read, with access to further files.
     pub fn reading(&self, files: Arc<dyn FileAccess>) -> ReadOptions {
         ReadOptions {

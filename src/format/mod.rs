@@ -11,6 +11,7 @@
 //! what a hierarchy expands to before it builds any of it.
 
 pub mod aiger;
+pub mod arrivals;
 pub mod assumptions;
 pub mod blif;
 pub mod cells;

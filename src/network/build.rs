@@ -1,8 +1,9 @@
 //! From a carry network to gates, through a caller's [`GateSink`].
 //!
 //! Leaves are `g = a·b` and `p = a + b` or `a ⊕ b`; a sum is `(a ⊕ b) ⊕ c`, with
-//! `c` the carry into its position. Nodes are taken in the network's order, by
-//! loops alone, so equal calls make equal gates in equal order whatever the depth.
+//! `c` the carry into its position, unless the network states another. Spans and
+//! then signals are taken in the network's order, by loops alone, so equal calls
+//! make equal gates in equal order whatever the depth.
 //! Invariant: only what some carry needs is made, and no gate has more inputs
 //! than the limit.
 //!
@@ -11,7 +12,9 @@
 //! 1958).
 
 use super::carry_network::{CarryNetwork, Node, NodeId};
+use super::cover_signals::SignalCovers;
 use super::gates::Gates;
+use super::signals::{Carry, SignalId, SignalNode};
 use crate::netlist::{Function, TruthTable};
 
 /// Where the builder's gates go. Inversion of a signal is free: a sink whose
@@ -103,7 +106,8 @@ pub fn build<K: GateSink>(
         "a carry of the network is not stated"
     );
     let mut spans = Spans::new(network, addends, limits, propagate, sink);
-    let needs = spans.needs();
+    let covers = SignalCovers::of(&spans);
+    let needs = spans.needs(covers.as_ref());
     for node in network.nodes() {
         if let Node::Combine(parts) = network.node(node) {
             let need = needs[node.index()];
@@ -117,7 +121,11 @@ pub fn build<K: GateSink>(
             }
         }
     }
-    let carries = (0..positions).map(|i| spans.generate(network.carry(i)));
+    match &covers {
+        Some(covers) => spans.cover_signals(covers),
+        None => spans.make_signals(),
+    }
+    let carries = (0..positions).map(|i| spans.carry(network.carry(i)));
     let carries: Vec<_> = carries.collect();
     let sums = (0..positions).map(|i| spans.make_sum(i)).collect();
     Built { sums, carries }
@@ -126,11 +134,11 @@ pub fn build<K: GateSink>(
 /// What of a combine node has to be made.
 #[derive(Clone, Copy, Default)]
 pub(super) struct Need {
-    generate: bool,
-    propagate: bool,
+    pub(super) generate: bool,
+    pub(super) propagate: bool,
 }
 
-/// G and P of the spans, as far as they are made.
+/// G and P of the spans and the signals, as far as they are made.
 pub(super) struct Spans<'a, K: GateSink> {
     pub(super) network: &'a CarryNetwork,
     pub(super) addends: &'a Addends<K::Signal>,
@@ -140,6 +148,7 @@ pub(super) struct Spans<'a, K: GateSink> {
     pub(super) cover_width: Option<usize>,
     generate: Vec<Option<K::Signal>>,
     propagate: Vec<Option<K::Signal>>,
+    pub(super) signals: Vec<Option<K::Signal>>,
 }
 
 impl<'a, K: GateSink> Spans<'a, K> {
@@ -161,15 +170,31 @@ impl<'a, K: GateSink> Spans<'a, K> {
             cover_width: (limits.covers && width >= 3).then_some(width),
             generate: vec![None; nodes],
             propagate: vec![None; nodes],
+            signals: vec![None; network.signal_ids().len()],
         }
     }
 
     /// A P is needed where the part is not the lowest of some combine node, and
     /// of all parts of a node whose P is needed: so never with the carry-in in.
-    fn needs(&self) -> Vec<Need> {
-        let mut needs = vec![Need::default(); self.network.nodes().len()];
-        for position in 0..self.network.positions() {
-            needs[self.network.carry(position).index()].generate = true;
+    /// Beside that, what the signals read.
+    fn needs(&self, covers: Option<&SignalCovers>) -> Vec<Need> {
+        let network = self.network;
+        let mut needs = vec![Need::default(); network.nodes().len()];
+        for carry in (0..network.positions()).filter_map(|i| network.carry_span(i)) {
+            needs[carry.index()].generate = true;
+        }
+        match covers {
+            Some(covers) => covers.mark_spans(&mut needs),
+            None => {
+                let used = network.used_signals();
+                for signal in network.signal_ids().filter(|id| used[id.index()]) {
+                    match network.signal(signal) {
+                        SignalNode::Generate(node) => needs[node.index()].generate = true,
+                        SignalNode::Propagate(node) => needs[node.index()].propagate = true,
+                        _ => {}
+                    }
+                }
+            }
         }
         for node in self.network.nodes().rev() {
             let need = needs[node.index()];
@@ -244,18 +269,70 @@ impl<'a, K: GateSink> Spans<'a, K> {
         self.gates.and(&signals)
     }
 
+    /// Makes every signal that some carry or sum needs.
+    fn make_signals(&mut self) {
+        let network = self.network;
+        let used = network.used_signals();
+        for signal in network.signal_ids().filter(|id| used[id.index()]) {
+            self.signals[signal.index()] = Some(self.make_signal(signal));
+        }
+    }
+
+    /// One signal by single-operator gates.
+    pub(super) fn make_signal(&mut self, signal: SignalId) -> K::Signal {
+        match self.network.signal(signal) {
+            SignalNode::Generate(node) => self.generate(node),
+            SignalNode::Propagate(node) => self.propagate(node),
+            SignalNode::Either(i) => self.gates.or(&[self.addends.a[i], self.addends.b[i]]),
+            SignalNode::HalfSum(position) => self.half_sum(position),
+            SignalNode::And(list) => {
+                let list: Vec<_> = list.iter().map(|&id| self.made(id)).collect();
+                self.gates.and(&list)
+            }
+            SignalNode::Or(list) => {
+                let list: Vec<_> = list.iter().map(|&id| self.made(id)).collect();
+                self.gates.or(&list)
+            }
+            SignalNode::Xor(left, right) => {
+                let (left, right) = (self.made(left), self.made(right));
+                self.gates.xor(left, right)
+            }
+            SignalNode::Select {
+                choose,
+                if_one,
+                if_zero,
+            } => {
+                let choose = self.made(choose);
+                let (one, zero) = (self.made(if_one), self.made(if_zero));
+                self.gates.select(choose, one, zero)
+            }
+        }
+    }
+
+    /// A signal made before.
+    pub(super) fn made(&self, signal: SignalId) -> K::Signal {
+        self.signals[signal.index()].expect("what a signal reads is made first")
+    }
+
+    fn carry(&mut self, carry: Carry) -> K::Signal {
+        match carry {
+            Carry::Span(node) => self.generate(node),
+            Carry::Signal(signal) => self.made(signal),
+        }
+    }
+
     fn make_sum(&mut self, position: usize) -> K::Signal {
-        let into = match position.checked_sub(1) {
-            Some(below) => Some(self.network.carry(below)),
-            None => self.network.carry_in(),
-        };
-        if let (Some(width), Some(node)) = (self.cover_width, into) {
+        if let Some(signal) = self.network.sum(position) {
+            return self.made(signal);
+        }
+        let into = self.network.carry_into(position);
+        if let (Some(width), Some(Carry::Span(node))) = (self.cover_width, into) {
             return self.cover_sum(position, node, width);
         }
         let half = self.half_sum(position);
         match into {
-            Some(node) => {
-                let carry = self.generate(node);
+            Some(carry) => {
+                let carry = self.carry(carry);
                 self.gates.xor(half, carry)
             }
             None => half,

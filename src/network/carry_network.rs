@@ -1,11 +1,16 @@
-//! The carry network: a DAG of span nodes over the positions of a chain.
+//! The carry network: a DAG of span nodes over the positions of a chain, and of
+//! signals over the spans ([`super::signals`]).
 //!
 //! A node stands for the group generate G and group propagate P of its span;
 //! position -1 is the carry-in, whose G is the carry-in itself. A combine node
 //! joins adjacent spans, most significant first:
 //! `G = G1 + P1·G2 + P1·P2·G3 …`, `P = P1·P2·P3 …` (the group terms of
-//! carry-lookahead; Weinberger and Smith 1958). The carry out of position `i`
-//! is the G of a node that spans from `i` down to the lowest position.
+//! carry-lookahead; Weinberger and Smith 1958). Adjacent spans may overlap: G and
+//! P are idempotent, so what two parts share counts once. The carry out of
+//! position `i` is the G of a node that spans from `i` down to the lowest
+//! position, or a signal.
+
+use super::signals::{Carry, SignalNode, Signals};
 
 /// One node of a [`CarryNetwork`].
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
@@ -46,7 +51,12 @@ pub struct CarryNetwork {
     spans: Vec<Span>,
     part_starts: Vec<u32>,
     parts: Vec<NodeId>,
+    /// Rows a scheme draws its network in: of each combine node, where rows are
+    /// stated, and whether the next one begins another.
+    rows: Vec<u32>,
+    row_begins: bool,
     carries: Vec<NodeId>,
+    pub(super) signals: Signals,
 }
 
 impl CarryNetwork {
@@ -68,7 +78,10 @@ impl CarryNetwork {
             spans,
             part_starts,
             parts: Vec::new(),
+            rows: Vec::new(),
+            row_begins: false,
             carries,
+            signals: Signals::default(),
         }
     }
 
@@ -115,14 +128,30 @@ impl CarryNetwork {
         (0..self.spans.len() as u32).map(NodeId)
     }
 
+    /// Lets the combine nodes that follow stand in a row of their own, as the
+    /// scheme's publication draws them. Nothing is built differently by it.
+    pub fn begin_row(&mut self) {
+        self.row_begins = true;
+    }
+
+    /// The row of a combine node, from 1; its level where no rows are stated.
+    pub(super) fn row(&self, node: NodeId, levels: &[u32]) -> u32 {
+        let stated = self.rows.last().is_some_and(|&last| last > 0);
+        if stated {
+            self.rows[node.index() - self.leaf_count()]
+        } else {
+            levels[node.index()]
+        }
+    }
+
     /// Joins spans, most significant first. Panics unless there are at least
-    /// two and each ends just above the next.
+    /// two and each meets or overlaps the next, which reaches further down.
     pub fn combine(&mut self, parts: &[NodeId]) -> NodeId {
         assert!(parts.len() >= 2, "a combine node joins at least two spans");
         for pair in parts.windows(2) {
             let (upper, lower) = (self.span(pair[0]), self.span(pair[1]));
             assert!(
-                upper.low == lower.high + 1,
+                upper.low <= lower.high + 1 && lower.high < upper.high && lower.low < upper.low,
                 "spans {upper:?} and {lower:?} do not meet"
             );
         }
@@ -131,6 +160,9 @@ impl CarryNetwork {
             low: self.span(parts[parts.len() - 1]).low,
         };
         let id = NodeId(u32::try_from(self.spans.len()).expect("fewer than 2^32 nodes"));
+        let row = self.rows.last().copied().unwrap_or(0);
+        self.rows
+            .push(row + u32::from(std::mem::take(&mut self.row_begins)));
         self.spans.push(span);
         self.parts.extend_from_slice(parts);
         let end = u32::try_from(self.parts.len()).expect("fewer than 2^32 parts");
@@ -147,27 +179,48 @@ impl CarryNetwork {
             "span {span:?} is not the carry out of {position}"
         );
         self.carries[position] = node;
+        self.forget_carry_signal(position);
     }
 
-    /// The node whose G is the carry out of `position`.
-    pub fn carry(&self, position: usize) -> NodeId {
-        self.carries[position]
+    /// The carry out of `position`.
+    pub fn carry(&self, position: usize) -> Carry {
+        match self.carry_as_signal(position) {
+            Some(signal) => Carry::Signal(signal),
+            None => Carry::Span(self.carries[position]),
+        }
     }
 
-    /// Whether every carry spans down to the lowest position, so that a scheme
-    /// has left none as [`Self::new`] put it.
+    /// The span whose G is the carry out of `position`, unless it is a signal.
+    pub fn carry_span(&self, position: usize) -> Option<NodeId> {
+        match self.carry(position) {
+            Carry::Span(node) => Some(node),
+            Carry::Signal(_) => None,
+        }
+    }
+
+    /// Whether every carry is a signal or spans down to the lowest position, so
+    /// that a scheme has left none as [`Self::new`] put it.
     pub fn is_complete(&self) -> bool {
         (0..self.positions).all(|position| {
+            if self.carry_as_signal(position).is_some() {
+                return true;
+            }
             let span = self.span(self.carries[position]);
             span.high == position as i32 && span.low == self.lowest()
         })
     }
 
-    /// For each node, whether some carry is made from it.
+    /// For each node, whether some carry or sum is made from it.
     pub fn used(&self) -> Vec<bool> {
         let mut used = vec![false; self.spans.len()];
-        for carry in &self.carries {
+        for carry in (0..self.positions).filter_map(|i| self.carry_span(i)) {
             used[carry.index()] = true;
+        }
+        let used_signals = self.used_signals();
+        for signal in self.signal_ids().filter(|id| used_signals[id.index()]) {
+            if let SignalNode::Generate(node) | SignalNode::Propagate(node) = self.signal(signal) {
+                used[node.index()] = true;
+            }
         }
         for i in (self.leaf_count()..used.len()).rev() {
             if used[i] {
@@ -179,58 +232,11 @@ impl CarryNetwork {
         used
     }
 
-    /// Combine nodes some carry is made from: the cells of a prefix network.
-    pub fn cells(&self) -> usize {
-        let used = self.used();
-        used[self.leaf_count()..].iter().filter(|&&u| u).count()
-    }
-
-    /// Combine nodes on the longest path to each node.
-    pub fn node_levels(&self) -> Vec<u32> {
-        let mut levels = vec![0; self.spans.len()];
-        for i in self.leaf_count()..levels.len() {
-            let deepest = self.parts_at(i).iter().map(|part| levels[part.index()]);
-            levels[i] = 1 + deepest.max().unwrap_or(0);
-        }
-        levels
-    }
-
-    /// Combine nodes on the longest path to any carry.
-    pub fn levels(&self) -> usize {
-        let levels = self.node_levels();
-        let deepest = self.carries.iter().map(|carry| levels[carry.index()]);
-        deepest.max().unwrap_or(0) as usize
-    }
-
-    /// Most readers of one node: combine nodes that some carry needs, and one
-    /// more where the node is itself a carry (its sum reads it). Drawn networks
-    /// put buffers between rows; here there are none.
-    pub fn largest_fan_out(&self) -> usize {
-        let used = self.used();
-        let mut readers = vec![0usize; self.spans.len()];
-        for carry in &self.carries {
-            readers[carry.index()] += 1;
-        }
-        for i in (self.leaf_count()..used.len()).filter(|&i| used[i]) {
-            for part in self.parts_at(i) {
-                readers[part.index()] += 1;
-            }
-        }
-        readers.into_iter().max().unwrap_or(0)
-    }
-
-    /// Most parts of one combine node some carry needs; 1 when there is none.
-    pub fn largest_valency(&self) -> usize {
-        let used = self.used();
-        let combines = (self.leaf_count()..used.len()).filter(|&i| used[i]);
-        combines.map(|i| self.parts_at(i).len()).max().unwrap_or(1)
-    }
-
-    fn leaf_count(&self) -> usize {
+    pub(super) fn leaf_count(&self) -> usize {
         self.positions + usize::from(self.has_carry_in)
     }
 
-    fn parts_at(&self, node: usize) -> &[NodeId] {
+    pub(super) fn parts_at(&self, node: usize) -> &[NodeId] {
         let (start, end) = (self.part_starts[node], self.part_starts[node + 1]);
         &self.parts[start as usize..end as usize]
     }

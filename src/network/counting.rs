@@ -1,12 +1,14 @@
 //! A sink that only counts: for comparing networks where there is no netlist.
 //!
-//! Every gate costs one delay; an XOR is one gate, or three two-input ANDs in two
-//! levels as in an AND/inverter graph. Inversion is free. Gates are hashed, so
+//! Every gate costs one delay, or what a caller's price says; an XOR is one gate,
+//! or three two-input ANDs in two levels as in an AND/inverter graph. Inversion is
+//! free. Gates are hashed, so
 //! equal ones are one; figures are taken over what given outputs need, so gates
 //! nobody reads do not count. Gates evaluate on 64 input vectors at once.
 //! Invariant: a gate comes after the gates it reads.
 
 use std::hash::{Hash, Hasher};
+use std::rc::Rc;
 
 use hashbrown::HashTable;
 use rustc_hash::FxHasher;
@@ -70,6 +72,33 @@ pub struct CountingSink {
     inputs: Vec<u32>,
     functions: Vec<Function>,
     shared: HashTable<u32>,
+    prices: Option<Prices>,
+}
+
+/// Prices a function, pin by pin, in ticks.
+pub type Price = Rc<dyn Fn(&Function) -> Vec<i32>>;
+
+/// Pin delays by kind of gate, asked of the caller once each.
+struct Prices {
+    price: Price,
+    /// By number of inputs, from its latest pin.
+    ands: Vec<Option<i32>>,
+    xor: i32,
+    /// By place in the list of functions, pin by pin.
+    covers: Vec<Vec<i32>>,
+}
+
+impl Prices {
+    fn and(&mut self, inputs: usize) -> i32 {
+        if self.ands.len() <= inputs {
+            self.ands.resize(inputs + 1, None);
+        }
+        let price = &self.price;
+        *self.ands[inputs].get_or_insert_with(|| {
+            let pins = price(&Function::product(&vec![false; inputs], false));
+            pins.into_iter().max().unwrap_or(0)
+        })
+    }
 }
 
 const FALSE: CountedSignal = CountedSignal(0);
@@ -86,9 +115,24 @@ impl CountingSink {
             inputs: Vec::new(),
             functions: Vec::new(),
             shared: HashTable::new(),
+            prices: None,
         };
         sink.push(Kind::Source, &[], i32::MIN);
         sink
+    }
+
+    /// An empty sink whose gates cost what `price` says, pin by pin, in ticks.
+    pub fn priced(xor_form: XorForm, price: Price) -> Self {
+        let xor = price(&Function::parity(2, false));
+        Self {
+            prices: Some(Prices {
+                xor: xor.into_iter().max().unwrap_or(0),
+                price,
+                ands: Vec::new(),
+                covers: Vec::new(),
+            }),
+            ..Self::new(xor_form)
+        }
     }
 
     /// A new input, ready at `arrival`.
@@ -200,14 +244,39 @@ impl CountingSink {
         if let Some(&net) = self.shared.find(hash, equal) {
             return CountedSignal(net << 1);
         }
-        let latest = pins.iter().map(|&pin| self.arrival(pin)).max();
-        let net = self.push(kind, pins, latest.unwrap_or(i32::MIN).saturating_add(1));
+        let ready = self.ready(kind, pins);
+        let net = self.push(kind, pins, ready);
         let (kinds, ends, all) = (&self.kinds, &self.pin_ends, &self.pins);
         self.shared.insert_unique(hash, net, |&net| {
             let net = net as usize;
             hash_of(kinds[net], pins_between(ends, all, net))
         });
         CountedSignal(net << 1)
+    }
+
+    /// When a gate is ready.
+    fn ready(&mut self, kind: Kind, pins: &[CountedSignal]) -> i32 {
+        let times = pins.iter().map(|pin| self.arrivals[pin.net()]);
+        let latest = || times.clone().max().unwrap_or(i32::MIN);
+        let Some(prices) = &mut self.prices else {
+            return latest().saturating_add(1);
+        };
+        match kind {
+            Kind::Source => latest(),
+            Kind::And => latest().saturating_add(prices.and(pins.len())),
+            Kind::Xor => latest().saturating_add(prices.xor),
+            Kind::Cover(function) => {
+                for known in prices.covers.len()..=function as usize {
+                    let delays = (prices.price)(&self.functions[known]);
+                    prices.covers.push(delays);
+                }
+                let delays = &prices.covers[function as usize];
+                let delayed = times
+                    .zip(delays)
+                    .map(|(at, &delay)| at.saturating_add(delay));
+                delayed.max().unwrap_or(i32::MIN)
+            }
+        }
     }
 
     fn push(&mut self, kind: Kind, pins: &[CountedSignal], arrival: i32) -> u32 {

@@ -64,6 +64,23 @@ impl<'a, K: GateSink> Gates<'a, K> {
         }
     }
 
+    /// `choose ? one : zero`, as an OR of two ANDs.
+    pub(super) fn select(
+        &mut self,
+        choose: K::Signal,
+        one: K::Signal,
+        zero: K::Signal,
+    ) -> K::Signal {
+        if one == zero {
+            return one;
+        }
+        if one == !zero {
+            return self.xor(choose, zero);
+        }
+        let (upper, lower) = (self.and(&[choose, one]), self.and(&[!choose, zero]));
+        self.or(&[upper, lower])
+    }
+
     fn and_by_arrival(&mut self, inputs: &[K::Signal]) -> K::Signal {
         let mut signals = inputs.to_vec();
         let mut waiting: BinaryHeap<Reverse<(i32, usize)>> = BinaryHeap::new();

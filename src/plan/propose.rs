@@ -12,7 +12,7 @@ use super::site::Site;
 use crate::chain::Chain;
 use crate::netlist::Signal;
 use crate::network::Propagate;
-use crate::network::schemes::{Fitted, candidates};
+use crate::network::schemes::{Fitted, candidates_for, left_out};
 use crate::timing::{DelayModel, NEVER, PathKind, Slack};
 
 /// A scheme fitted to a chain and dry-run on its netlist.
@@ -77,6 +77,9 @@ pub struct ChainPlan {
     pub recommended: Option<usize>,
     /// Why that one, or why none.
     pub reason: String,
+    /// The one that saves gates while nothing needs the chain to be so fast, as an
+    /// index into `proposals`.
+    pub cheaper: Option<usize>,
 }
 
 /// Most chains that are planned in one netlist, the most critical first: past
@@ -86,16 +89,16 @@ pub const MOST_PLANNED: usize = 256;
 
 /// Plans the chains of a netlist, in their order.
 pub fn plan_all(ground: &Ground<'_>, chains: &[Chain]) -> Vec<ChainPlan> {
-    let mut plans: Vec<ChainPlan> = chains.iter().map(|chain| today(ground, chain)).collect();
+    let mut plans: Vec<ChainPlan> = chains.iter().map(|chain| as_it_is(ground, chain)).collect();
     let mut order: Vec<usize> = (0..plans.len()).collect();
     order.sort_by_key(|&i| (plans[i].slack.map_or(i32::MAX, |slack| slack.ticks), i));
     for (rank, i) in order.into_iter().enumerate() {
-        let today = plans[i].clone();
-        plans[i] = if rank < MOST_PLANNED {
-            plan_from(ground, &chains[i], today)
+        let now = plans[i].clone();
+        plans[i] = if rank < MOST_PLANNED || ground.settings.plans_all() {
+            plan_from(ground, &chains[i], now)
         } else {
             let why = format!("the {MOST_PLANNED} chains nearest to a longest path were planned");
-            refuse(today, why)
+            refuse(now, why)
         };
     }
     plans
@@ -103,7 +106,7 @@ pub fn plan_all(ground: &Ground<'_>, chains: &[Chain]) -> Vec<ChainPlan> {
 
 /// Plans one chain.
 pub fn plan(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
-    plan_from(ground, chain, today(ground, chain))
+    plan_from(ground, chain, as_it_is(ground, chain))
 }
 
 fn refuse(mut plan: ChainPlan, why: String) -> ChainPlan {
@@ -135,6 +138,9 @@ fn plan_from(ground: &Ground<'_>, chain: &Chain, mut plan: ChainPlan) -> ChainPl
         Ok(site) => {
             let tried = try_all(&site, slack.kind);
             choose(ground, &mut plan, tried, slack.kind);
+            if let Some(left_out) = left_out(site.addends.a.len()) {
+                plan.reason = format!("{}; {left_out}", plan.reason);
+            }
             for proposal in plan.proposals.iter_mut().chain(&mut plan.best_of_scheme) {
                 complete(&site, proposal);
             }
@@ -143,8 +149,8 @@ fn plan_from(ground: &Ground<'_>, chain: &Chain, mut plan: ChainPlan) -> ChainPl
     }
 }
 
-/// The chain as it is.
-fn today(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
+/// The chain as it is, with no plan for it.
+pub fn as_it_is(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
     let at = |signal: &Signal| ground.timing.arrivals.at(signal.net);
     let bits = chain.positions.iter().flat_map(|p| [p.a, p.b]);
     let operands = bits.chain([chain.carry_in]).filter_map(|bit| bit.signal());
@@ -178,14 +184,13 @@ fn today(ground: &Ground<'_>, chain: &Chain) -> ChainPlan {
         best_of_scheme: Vec::new(),
         recommended: None,
         reason: String::new(),
+        cheaper: None,
     }
 }
 
 /// Every candidate with the better of the two propagates, in order.
-fn try_all(site: &Site<'_>, kind: PathKind) -> Vec<Proposal> {
-    let limits = site.ground.settings.limits();
-    let has_carry_in = site.addends.carry_in.is_some();
-    let fitted = candidates(site.addends.a.len(), has_carry_in, limits.gate_inputs);
+pub(super) fn try_all(site: &Site<'_>, kind: PathKind) -> Vec<Proposal> {
+    let fitted = candidates_for(&site.profile());
     let bound = lower_bound(site);
     let mut proposals = Vec::with_capacity(fitted.len());
     for (i, fitted) in fitted.into_iter().enumerate() {
@@ -215,7 +220,7 @@ fn try_all(site: &Site<'_>, kind: PathKind) -> Vec<Proposal> {
 }
 
 /// What only listed proposals need.
-fn complete(site: &Site<'_>, proposal: &mut Proposal) {
+pub(super) fn complete(site: &Site<'_>, proposal: &mut Proposal) {
     let run = DryRun::of(site, &proposal.fitted.network, proposal.propagate);
     proposal.takes_over = run.takes_over(proposal.kind.kind);
     proposal.carries = run.carry_arrivals();

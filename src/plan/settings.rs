@@ -171,6 +171,11 @@ impl Settings {
         }
     }
 
+    /// Whether every chain is planned, whatever it has to spare.
+    pub fn plans_all(&self) -> bool {
+        self.margin == Some(i32::MAX)
+    }
+
     /// The margin against a longest path of `longest` ticks.
     pub fn margin_at(&self, longest: i32) -> i32 {
         self.margin

@@ -18,6 +18,7 @@ use super::choose::rank;
 use super::dry_run::TakesOver;
 use super::ground::Ground;
 use super::propose::{ChainPlan, Proposal};
+use super::saving::added;
 use super::set_run::{SetEstimate, SetRun, depth_by_itself};
 use super::set_site::{MOST_TOGETHER, SetSite};
 use super::trace::{Results, chains_on_longest};
@@ -91,12 +92,6 @@ impl Pool {
         }
         list
     }
-}
-
-/// Gate equivalents added less those removed.
-fn added(proposal: &Proposal) -> i64 {
-    let estimate = &proposal.estimate;
-    estimate.gate_equivalents_added as i64 - estimate.gate_equivalents_removed as i64
 }
 
 /// A recommended set.

@@ -6,8 +6,9 @@
 //! under a bound in characters whatever the netlist: tables shrink until it
 //! does, and say what they left out.
 
+use super::closeup;
 use super::outline::{Block, Caps, Grid, Outline};
-use crate::audit::record::Audit;
+use crate::audit::record::{Audit, Closeup};
 use std::fmt::Write;
 
 /// Most characters of one Markdown document. The tightest of the large forges
@@ -17,13 +18,22 @@ pub const MOST_CHARACTERS: usize = 60_000;
 /// The Markdown form of `audit` in fewer than `most` characters, as far as the
 /// opening sentences allow.
 pub fn render(audit: &Audit, most: usize) -> String {
+    fitted(most, |caps| laid_out(&Outline::of(audit, caps)))
+}
+
+/// The Markdown form of `closeup`, in the same bounds.
+pub fn render_closeup(closeup: &Closeup, most: usize) -> String {
+    fitted(most, |caps| laid_out(&closeup::outline(closeup, caps)))
+}
+
+fn fitted(most: usize, make: impl Fn(Caps) -> String) -> String {
     let mut caps = Caps {
         rows: 64,
         name: 64,
         sentence: 900,
     };
     loop {
-        let text = laid_out(&Outline::of(audit, caps));
+        let text = make(caps);
         if text.chars().count() < most || caps.rows == 0 {
             return text;
         }

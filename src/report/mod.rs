@@ -5,6 +5,7 @@
 //! for people print one [outline](outline::Outline), the two for programs print
 //! every field.
 
+mod closeup;
 mod json;
 mod markdown;
 pub mod number;
@@ -12,11 +13,13 @@ mod outline;
 mod sections;
 mod table;
 mod text;
+mod tradeoff;
 mod yaml;
 
 pub use markdown::MOST_CHARACTERS;
+pub use tradeoff::{TradeoffForm, write_tradeoff};
 
-use crate::audit::record::Audit;
+use crate::audit::record::{Audit, Closeup};
 use std::io::{self, Write};
 
 /// The forms of a report.
@@ -63,5 +66,25 @@ pub fn write(audit: &Audit, form: Form, page: Page, out: &mut dyn Write) -> io::
         Form::Markdown => out.write_all(markdown::render(audit, page.characters).as_bytes()),
         Form::Yaml => yaml::write(audit, out),
         Form::Json => json::write(audit, out),
+    }
+}
+
+/// Writes the closeup of one chain.
+///
+/// # Errors
+/// When `out` cannot be written; the error keeps its kind.
+pub fn write_closeup(
+    closeup: &Closeup,
+    form: Form,
+    page: Page,
+    out: &mut dyn Write,
+) -> io::Result<()> {
+    match form {
+        Form::Table => out.write_all(table::render_closeup(closeup, page).as_bytes()),
+        Form::Markdown => {
+            out.write_all(markdown::render_closeup(closeup, page.characters).as_bytes())
+        }
+        Form::Yaml => yaml::write(closeup, out),
+        Form::Json => json::write(closeup, out),
     }
 }

@@ -122,7 +122,7 @@ impl Outline {
 }
 
 /// Drops the columns of which every row says `-`.
-fn without_blanks(mut section: Section) -> Section {
+pub(super) fn without_blanks(mut section: Section) -> Section {
     for block in &mut section.blocks {
         let Block::Grid(Grid { columns, rows }) = block else {
             continue;
@@ -215,7 +215,7 @@ fn seen_sentence(seen: &Seen, netlist: &NetlistFacts) -> String {
     )
 }
 
-fn settings_sentence(
+pub(super) fn settings_sentence(
     settings: &Settings,
     tool: &Tool,
     netlist: &NetlistFacts,
@@ -233,6 +233,7 @@ fn settings_sentence(
         new_gates_reason,
         gate_inputs,
         gate_inputs_reason,
+        plan_margin_percent,
         min_bits,
         effort,
         patterns_seed,
@@ -260,13 +261,19 @@ fn settings_sentence(
         None => String::new(),
         Some(depth) => format!("; target depth {}", grouped(*depth)),
     };
+    let planned = match plan_margin_percent {
+        None => "; every chain is planned".to_owned(),
+        Some(percent) => format!(
+            "; not planned with more than {percent} % of the longest path of its kind to spare"
+        ),
+    };
     let assumed = match assumptions_sha256 {
         None => String::new(),
         Some(hash) => format!("; assumptions SHA-256 {hash}"),
     };
     format!(
         "{} {}; {}. Depths in {unit} (delay model {name}{note}{misfit}). New gates are \
-         {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up; {} per \
+         {new_gates} ({}) with at most {gate_inputs} inputs ({}). Chains from {} up{planned}; {} per \
          proof; pattern seed {patterns_seed}{target}{assumed}.",
         tool.name,
         tool.version,

@@ -5,8 +5,9 @@
 //! asks no terminal.
 
 use super::Page;
+use super::closeup;
 use super::outline::{Block, Caps, Grid, Outline};
-use crate::audit::record::Audit;
+use crate::audit::record::{Audit, Closeup};
 use comfy_table::{CellAlignment, ColumnConstraint, ContentArrangement, Table, Width};
 
 const CAPS: Caps = Caps {
@@ -26,7 +27,20 @@ const INDENT: &str = "  ";
 
 /// The terminal form of `audit`.
 pub fn render(audit: &Audit, page: Page) -> String {
-    let outline = Outline::of(audit, CAPS);
+    laid_out(&Outline::of(audit, CAPS), page)
+}
+
+/// The terminal form of `closeup`, every bit of it.
+pub fn render_closeup(closeup: &Closeup, page: Page) -> String {
+    let caps = Caps {
+        rows: usize::MAX,
+        name: 24,
+        ..CAPS
+    };
+    laid_out(&closeup::outline(closeup, caps), page)
+}
+
+fn laid_out(outline: &Outline, page: Page) -> String {
     let width = usize::from(page.width.max(40));
     let mut text = String::new();
     paragraph(&mut text, &outline.read, width);
@@ -73,7 +87,7 @@ fn paragraph(text: &mut String, sentence: &str, width: usize) {
 
 /// Lines of at most `width` characters, broken at blanks, and inside a word
 /// only when it is longer than a line.
-fn wrapped(sentence: &str, width: usize) -> Vec<String> {
+pub(super) fn wrapped(sentence: &str, width: usize) -> Vec<String> {
     let mut lines = Vec::new();
     let mut line = String::new();
     let mut used = 0;

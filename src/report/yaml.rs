@@ -3,17 +3,17 @@
 //! The only place that writes YAML, so that another library would be a change
 //! to this file: the author of the one used has declared it finished.
 
-use crate::audit::record::Audit;
+use serde::Serialize;
 use std::io::{self, Write};
 
-/// Writes `audit` as one document, its opening mark included.
+/// Writes `record` as one document, its opening mark included.
 ///
 /// # Errors
 /// When `out` cannot be written; the error keeps its kind.
-pub fn write(audit: &Audit, out: &mut dyn Write) -> io::Result<()> {
+pub fn write(record: &impl Serialize, out: &mut dyn Write) -> io::Result<()> {
     out.write_all(b"---\n")?;
     let mut sink = Sink { out, failed: None };
-    match serde_yaml::to_writer(&mut sink, audit) {
+    match serde_yaml::to_writer(&mut sink, record) {
         Ok(()) => Ok(()),
         Err(error) => Err(sink.failed.unwrap_or_else(|| io::Error::other(error))),
     }

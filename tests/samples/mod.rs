@@ -71,6 +71,7 @@ pub fn tide_logger() -> Audit {
         on_longest_path: true,
         slack: Some(at(0)),
         slack_against: Some("longest path of the kind".into()),
+        cheaper: None,
         not_planned: None,
         proposals: vec![
             proposal("P1", "brent-kung", 12, 14, 92, false),
@@ -107,6 +108,7 @@ pub fn tide_logger() -> Audit {
         on_longest_path: false,
         slack: Some(at(25)),
         slack_against: Some("longest path of the kind".into()),
+        cheaper: None,
         not_planned: Some(NotPlanned {
             why: "25 gate delays to spare".into(),
             slack: Some(at(25)),
@@ -169,6 +171,7 @@ pub fn tide_logger() -> Audit {
             new_gates_reason: "the netlist uses no other function of three or more inputs".into(),
             gate_inputs: 4,
             gate_inputs_reason: "the widest gate of the netlist has 4".into(),
+            plan_margin_percent: Some(10),
             min_bits: 4,
             effort: 100_000,
             patterns_seed: 1,

@@ -9,7 +9,7 @@ use carrywise::chain::{self, Chain, Position};
 use carrywise::format::{ReadOptions, read};
 use carrywise::netlist::{Driver, Netlist, Signal, Topology, histogram};
 use carrywise::network::Propagate;
-use carrywise::network::schemes::candidates;
+use carrywise::network::schemes::candidates_for;
 use carrywise::plan::{
     DryRun, Estimate, Ground, NewGates, Rebuilt, Request, Settings, Site, materialise,
 };
@@ -230,10 +230,10 @@ pub fn compare_all(netlist: &Netlist, request: Request, what: &str) -> usize {
             Ok(site) => site,
             Err(refused) => panic!("{what}: chain {number}: {refused}"),
         };
-        for (fitted, propagate) in options(chain, settings.gate_inputs) {
+        for (fitted, propagate) in options(&site) {
             let what = format!(
                 "{what}: {number} {} {:?} {propagate:?} F={}",
-                fitted.scheme, fitted.group, settings.gate_inputs
+                fitted.scheme, fitted.settings, settings.gate_inputs
             );
             let run = DryRun::of(&site, &fitted.network, propagate);
             compare(&ground, &run, chain, &what);
@@ -244,11 +244,9 @@ pub fn compare_all(netlist: &Netlist, request: Request, what: &str) -> usize {
 }
 
 pub fn options(
-    chain: &Chain,
-    gate_inputs: usize,
+    site: &Site<'_>,
 ) -> impl Iterator<Item = (carrywise::network::schemes::Fitted, Propagate)> {
-    let has_carry_in = chain.carry_in.signal().is_some();
-    candidates(chain.positions.len(), has_carry_in, gate_inputs)
+    candidates_for(&site.profile())
         .into_iter()
         .flat_map(|fitted| {
             [Propagate::Or, Propagate::Xor].map(|propagate| (fitted.clone(), propagate))

@@ -66,6 +66,8 @@ pub struct ChainRecord {
     pub slack_against: Option<String>,
     /// Why no rebuild was tried; null when some were.
     pub not_planned: Option<NotPlanned>,
+    /// The rebuild that saves gates while nothing needs the chain to be so fast, as `P3`.
+    pub cheaper: Option<String>,
     /// The rebuilds worth choosing between.
     pub proposals: Vec<ProposalRecord>,
 }

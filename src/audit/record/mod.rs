@@ -12,6 +12,7 @@
 //! number 0 or 1, never a string, so that a net called `1` stays apart from it.
 
 mod chain;
+mod closeup;
 mod time;
 
 pub use chain::{
@@ -20,6 +21,7 @@ pub use chain::{
 };
 
 use crate::timing::Time;
+pub use closeup::{BitRecord, Closeup, SchemeBest};
 use serde::{Deserialize, Serialize};
 
 /// The schema this version writes.
@@ -124,6 +126,9 @@ pub struct Settings {
     pub gate_inputs: u64,
     /// Why.
     pub gate_inputs_reason: String,
+    /// Chains with more than this share of the longest path of their kind to spare are
+    /// not planned; null when all are.
+    pub plan_margin_percent: Option<u64>,
     /// Chains below this width are left out.
     pub min_bits: u64,
     /// Solver conflicts allowed per proof.

@@ -39,6 +39,8 @@ pub(super) fn nearest(made: &MadeFrom, valency: usize) -> Option<Likeness> {
             Growth::Linear => true,
             Growth::LogLinear => made.positions <= MOST_POSITIONS,
             Growth::Cubic => made.positions <= MOST_CUBIC,
+            // Fitted to arrivals, and mostly no spans: nothing to compare with.
+            Growth::Quadratic | Growth::Quartic => false,
         };
         if !fits {
             continue;
@@ -77,6 +79,7 @@ fn variations(scheme: &Scheme, positions: i32, valency: usize) -> Vec<Settings> 
                     valency,
                     group,
                     extra_levels,
+                    ..usual
                 });
             }
         }
@@ -194,8 +197,9 @@ impl Way {
 fn made_by(network: &CarryNetwork, carries: usize) -> BTreeSet<Ends> {
     let nodes: Vec<_> = network.nodes().collect();
     let mut used = vec![false; nodes.len()];
-    for position in 0..carries {
-        used[network.carry(position).index()] = true;
+    // A carry that is no span has none to compare.
+    for carry in (0..carries).filter_map(|position| network.carry_span(position)) {
+        used[carry.index()] = true;
     }
     let mut spans = BTreeSet::new();
     for &id in nodes.iter().rev() {

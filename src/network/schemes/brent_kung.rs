@@ -13,7 +13,7 @@ pub(super) const SCHEME: Scheme = Scheme {
     source: "Brent and Kung 1982",
     growth: Growth::Linear,
     takes: VALENCY,
-    shape: |network, settings| {
+    shape: |network, settings, _| {
         let items = items(network);
         let prefixes = folded(
             network,

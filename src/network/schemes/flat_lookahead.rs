@@ -17,7 +17,7 @@ pub(super) const SCHEME: Scheme = Scheme {
     source: "Weinberger and Smith 1958",
     growth: Growth::Cubic,
     takes: NOTHING,
-    shape: |network, _| {
+    shape: |network, _, _| {
         let items = items(network);
         let prefixes = (1..=items.len()).map(|end| join(network, items[..end].iter().copied()));
         let prefixes: Vec<_> = prefixes.collect();

@@ -5,7 +5,7 @@
 //! Invariant: no combine node has more than `valency` parts, unless the inner
 //! scheme makes one.
 
-use super::{CarryNetwork, NodeId, Prefixes, join};
+use super::{CarryNetwork, NodeId, join};
 
 /// The prefixes of `items`, lowest first, by at most `folds` folds around
 /// `inner`.
@@ -14,11 +14,12 @@ pub(super) fn folded(
     items: &[NodeId],
     valency: usize,
     folds: usize,
-    inner: Prefixes,
+    inner: impl FnOnce(&mut CarryNetwork, &[NodeId], usize) -> Vec<NodeId>,
 ) -> Vec<NodeId> {
     let mut row = items.to_vec();
     let mut wider_rows = Vec::new();
     while row.len() > 1 && wider_rows.len() < folds {
+        network.begin_row();
         let joined = row.chunks(valency);
         let shorter = joined.map(|chunk| join(network, chunk.iter().copied()));
         let shorter = shorter.collect();
@@ -26,6 +27,7 @@ pub(super) fn folded(
     }
     let mut prefixes = inner(network, &row, valency);
     while let Some(row) = wider_rows.pop() {
+        network.begin_row();
         prefixes = widened(network, &row, valency, &prefixes);
     }
     prefixes

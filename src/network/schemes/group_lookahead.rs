@@ -12,18 +12,17 @@
 //! Bureau of Standards Circular 591, 1958; in groups of four the lookahead of
 //! Hamacher, Vranesic and Zaky, "Computer Organization".
 
-use super::{CarryNetwork, Growth, NodeId, Scheme, Takes, join};
+use super::{CarryNetwork, Growth, NOTHING, NodeId, Scheme, Takes, join};
 
 pub(super) const SCHEME: Scheme = Scheme {
     name: "group-lookahead",
     source: "Weinberger and Smith 1958",
     growth: Growth::Linear,
     takes: Takes {
-        valency: false,
         group: true,
-        extra_levels: false,
+        ..NOTHING
     },
-    shape: |network, settings| shape(network, settings.group),
+    shape: |network, settings, _| shape(network, settings.group),
 };
 
 /// Levels of lookahead over `positions` in groups of `size`.

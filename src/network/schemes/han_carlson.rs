@@ -13,7 +13,7 @@ pub(super) const SCHEME: Scheme = Scheme {
     source: "Han and Carlson 1987",
     growth: Growth::LogLinear,
     takes: VALENCY,
-    shape: |network, settings| {
+    shape: |network, settings, _| {
         let items = items(network);
         let prefixes = folded(network, &items, settings.valency, 1, kogge_stone::prefixes);
         set_carries(network, &prefixes);

@@ -15,7 +15,7 @@ pub(super) const SCHEME: Scheme = Scheme {
     source: "Kogge and Stone 1973",
     growth: Growth::LogLinear,
     takes: VALENCY,
-    shape: |network, settings| {
+    shape: |network, settings, _| {
         let items = items(network);
         let prefixes = prefixes(network, &items, settings.valency);
         set_carries(network, &prefixes);
@@ -32,6 +32,7 @@ pub(super) fn prefixes(
     let mut length = 1;
     while length < row.len() {
         let above = row.clone();
+        network.begin_row();
         for (i, slot) in row.iter_mut().enumerate().skip(length) {
             let reach = (i / length).min(valency - 1);
             let spans = (0..=reach).rev().map(|k| above[i - k * length]);

@@ -10,18 +10,17 @@
 //! ACM 27, 1980.
 
 use super::fold::folded;
-use super::{Growth, Scheme, Takes, items, set_carries, sklansky};
+use super::{Growth, Scheme, Takes, VALENCY, items, set_carries, sklansky};
 
 pub(super) const SCHEME: Scheme = Scheme {
     name: "ladner-fischer",
     source: "Ladner and Fischer 1980",
     growth: Growth::LogLinear,
     takes: Takes {
-        valency: true,
-        group: false,
         extra_levels: true,
+        ..VALENCY
     },
-    shape: |network, settings| {
+    shape: |network, settings, _| {
         let items = items(network);
         let (valency, folds) = (settings.valency, settings.extra_levels);
         let prefixes = folded(network, &items, valency, folds, sklansky::prefixes);

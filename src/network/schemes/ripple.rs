@@ -10,7 +10,7 @@ pub(super) const SCHEME: Scheme = Scheme {
     source: "common practice",
     growth: Growth::Linear,
     takes: NOTHING,
-    shape: |network, _| {
+    shape: |network, _, _| {
         let mut prefixes = items(network);
         for i in 1..prefixes.len() {
             prefixes[i] = join(network, [prefixes[i - 1], prefixes[i]]);

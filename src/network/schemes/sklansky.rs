@@ -14,7 +14,7 @@ pub(super) const SCHEME: Scheme = Scheme {
     source: "Sklansky 1960",
     growth: Growth::LogLinear,
     takes: VALENCY,
-    shape: |network, settings| {
+    shape: |network, settings, _| {
         let items = items(network);
         let prefixes = prefixes(network, &items, settings.valency);
         set_carries(network, &prefixes);
@@ -31,6 +31,7 @@ pub(super) fn prefixes(
     let mut size = 1;
     while size < row.len() {
         let above = row.clone();
+        network.begin_row();
         for (i, slot) in row.iter_mut().enumerate() {
             let block = i - i % (size * valency);
             let lower = (i - block) / size;

@@ -158,6 +158,7 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
         slack,
         slack_against: _,
         not_planned: _,
+        cheaper: _,
         proposals: _,
     } = chain;
     let signed = if *signed == Some(true) { "signed " } else { "" };
@@ -347,7 +348,8 @@ pub fn rebuild(chains: &[ChainRecord], set: &RecommendedSet, caps: Caps) -> Opti
     for chain in order {
         for proposal in &chain.proposals {
             // Of the other chains only what is recommended, if anything is.
-            if !chosen.is_empty() && !concerned(chain) && !proposal.recommended {
+            let wanted = proposal.recommended || chain.cheaper.as_ref() == Some(&proposal.id);
+            if !chosen.is_empty() && !concerned(chain) && !wanted {
                 continue;
             }
             total += 1;
@@ -471,6 +473,9 @@ fn proposal_row(chain: &ChainRecord, proposal: &ProposalRecord, caps: Caps) -> V
     }
     if *recommended {
         what.push_str(" (recommended)");
+    }
+    if chain.cheaper.as_ref() == Some(id) {
+        what.push_str(" (saves gates)");
     }
     vec![
         format!(

@@ -19,7 +19,7 @@ use super::number::grouped;
 use super::outline::{Block, Grid};
 
 /// A table cut to `most` rows, and the sentence that says so.
-fn cut(
+pub(super) fn cut(
     columns: Vec<(&'static str, bool)>,
     mut rows: Vec<Vec<String>>,
     total: usize,
