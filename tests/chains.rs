@@ -311,11 +311,13 @@ fn reports_every_fixture_the_same_in_all_its_forms() {
     };
     let flat = seen("tide_logger.blif");
     // What the generator of the fixture puts in (tests/generators/gauge.rs): the
-    // running total, the sample divider and the sample counter.
+    // running total, the alarm's threshold, the sample divider and the sample
+    // counter.
     assert_eq!(
         flat,
         [
             ("adder", 24, BuiltAs::Ripple),
+            ("comparator", 16, BuiltAs::Ripple),
             ("incrementer", 6, BuiltAs::Ripple),
             ("incrementer", 12, BuiltAs::Ripple),
         ]

@@ -83,6 +83,7 @@ fn reuses_what_stays_and_removes_what_loses_its_last_use() {
         has_carry_out: true,
         carry_form: chain::CarryForm::Carry,
         built_as: chain::BuiltAs::Ripple,
+        comparison: None,
         construction: chain::Construction::default(),
         mode: None,
     };
@@ -174,6 +175,7 @@ fn an_operand_that_no_new_gate_reads_is_swept() {
         has_carry_out: false,
         carry_form: chain::CarryForm::Carry,
         built_as: chain::BuiltAs::Ripple,
+        comparison: None,
         construction: chain::Construction::default(),
         mode: None,
     };
@@ -224,6 +226,7 @@ fn refuses_a_chain_whose_operand_depends_on_it() {
         has_carry_out: false,
         carry_form: chain::CarryForm::Carry,
         built_as: chain::BuiltAs::Mixed,
+        comparison: None,
         construction: chain::Construction::default(),
         mode: None,
     };

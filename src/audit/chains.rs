@@ -188,11 +188,11 @@ impl<'a> Sources<'a> {
             sums: chain
                 .positions
                 .iter()
-                .map(|bits| name(bits.sums[0]))
+                .filter_map(|bits| bits.sums.first().copied().map(name))
                 .collect(),
-            result: None,
-            relation: None,
-            signed: None,
+            result: chain.comparison.map(|compared| name(compared.result)),
+            relation: (chain.comparison).map(|compared| compared.relation.word().to_owned()),
+            signed: chain.comparison.map(|compared| compared.signed),
             mode: chain.mode.map(name),
             feedback: self.feedback(chain, registers),
             duplicates,
@@ -210,6 +210,9 @@ impl<'a> Sources<'a> {
     }
 
     fn carry_out(&self, chain: &Chain) -> Option<String> {
+        if chain.kind == Kind::Comparator {
+            return None;
+        }
         let carry = *chain.positions.last()?.carries.first()?;
         // A borrow is the complement of the carry of a + ~b + 1.
         let shown = match chain.carry_form {
@@ -330,6 +333,7 @@ impl<'a> Sources<'a> {
             let role = match chain.kind {
                 Kind::Adder | Kind::Subtractor | Kind::AdderSubtractor => "accumulator",
                 Kind::Incrementer | Kind::Decrementer => "counter",
+                Kind::Comparator => return None,
             };
             (!outputs.is_empty()).then(|| Feedback {
                 role: role.to_owned(),
@@ -399,9 +403,24 @@ fn operands(netlist: &Netlist, chain: &Chain) -> Vec<Operand> {
         }
         // As it is subtracted: what is added is its complement.
         Kind::Subtractor => operands.push(operand(netlist, &b.map(complement).collect::<Vec<_>>())),
+        Kind::Comparator => return compared(netlist, chain),
         Kind::Incrementer | Kind::Decrementer => {}
     }
     operands
+}
+
+/// The operands of a comparator as they are compared: the chain holds the second
+/// complemented, and the sign bits of a signed one exchanged.
+fn compared(netlist: &Netlist, chain: &Chain) -> Vec<Operand> {
+    let signed = chain.comparison.is_some_and(|compared| compared.signed);
+    let top = chain.positions.len() - 1;
+    let bits = chain.positions.iter().enumerate();
+    let pairs = bits.map(|(i, bits)| match signed && i == top {
+        true => (complement(bits.a), bits.b),
+        false => (bits.a, complement(bits.b)),
+    });
+    let (a, b): (Vec<Bit>, Vec<Bit>) = pairs.unzip();
+    vec![operand(netlist, &a), operand(netlist, &b)]
 }
 
 fn complement(bit: Bit) -> Bit {
@@ -414,6 +433,8 @@ fn complement(bit: Bit) -> Bit {
 fn carry_in(netlist: &Netlist, chain: &Chain) -> Option<Wire> {
     match (chain.kind, chain.carry_in) {
         (Kind::Adder, Bit::Constant(false)) => None,
+        // Of a comparator the relation says it.
+        (Kind::Comparator, Bit::Constant(_)) => None,
         (_, bit) => Some(wire(netlist, bit)),
     }
 }

@@ -58,6 +58,12 @@ impl<'a> Prints<'a> {
             let _ = writeln!(points, "{mode}");
         }
         let mut is_stable = false;
+        if let Some(compared) = chain.comparison {
+            let shown = self.shown_by.get(&compared.result.net);
+            is_stable |= shown.is_some();
+            let shown = shown.map_or("-", String::as_str);
+            let _ = writeln!(points, "{}\t{shown}", compared.relation.word());
+        }
         for bits in &chain.positions {
             let mut sources = [self.source(bits.a), self.source(bits.b)];
             if !matches!(chain.kind, Kind::Subtractor | Kind::AdderSubtractor) {

@@ -144,6 +144,7 @@ pub fn audit_under(
         chains,
         unproven,
         witnessed,
+        recurrences_not_listed,
     } = chain::find(netlist, &topology, options.chains);
     let timing = Timing::of(netlist, &topology, model);
     let chains = chains::ordered(chains);
@@ -286,7 +287,7 @@ pub fn audit_under(
         chains: records,
         recommended_set,
         arrays: Vec::new(),
-        recurrences_not_listed: 0,
+        recurrences_not_listed,
         unproven,
         findings,
         findings_left_out,

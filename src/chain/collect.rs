@@ -34,10 +34,10 @@ pub(super) fn nearest_bit(labels: &Labels<'_>, subject: &Subject, literal: Liter
 }
 
 /// The nets of some nodes, sorted by node.
-struct Nets(Vec<(NodeId, NetId)>);
+pub(super) struct Nets(Vec<(NodeId, NetId)>);
 
 impl Nets {
-    fn of(netlist: &Netlist, subject: &Subject, theorems: &[Theorem]) -> Self {
+    pub(super) fn of(netlist: &Netlist, subject: &Subject, theorems: &[Theorem]) -> Self {
         let mut wanted = FixedBitSet::with_capacity(subject.node_count());
         for theorem in theorems {
             for literal in theorem.sums.iter().chain(&theorem.carries).flatten() {
@@ -52,7 +52,7 @@ impl Nets {
         Self(nets)
     }
 
-    fn of_node(&self, node: NodeId) -> impl Iterator<Item = NetId> + '_ {
+    pub(super) fn of_node(&self, node: NodeId) -> impl Iterator<Item = NetId> + '_ {
         let start = self.0.partition_point(|&(n, _)| n < node);
         self.0[start..]
             .iter()
@@ -86,13 +86,20 @@ pub(super) fn collect(
             collector.twins(kind, &theorem)
         })
         .collect();
-    chains.sort_by_cached_key(|chain| {
-        let sums = chain.positions.iter().flat_map(|p| &p.sums);
-        let lowest = sums.map(|s| s.net).min();
-        (std::cmp::Reverse(chain.positions.len()), lowest)
-    });
+    sort(&mut chains);
     drop_repeated(&mut chains);
     chains
+}
+
+/// Widest first, then by the lowest net of a sum or, without sums, of a carry.
+pub(super) fn sort(chains: &mut [Chain]) {
+    chains.sort_by_cached_key(|chain| {
+        let sums = chain.positions.iter().flat_map(|p| &p.sums);
+        let carries = chain.positions.iter().flat_map(|p| &p.carries);
+        let lowest = sums.map(|s| s.net).min();
+        let lowest = lowest.or_else(|| carries.map(|s| s.net).min());
+        (std::cmp::Reverse(chain.positions.len()), lowest)
+    });
 }
 
 /// Each copy of a theorem, or a stretch of it, may have been found as one of its
@@ -230,6 +237,7 @@ impl Collector<'_> {
             construction,
             mode: mode.and_then(|mode| self.labels.signal(mode)),
             positions,
+            comparison: None,
         })
     }
 }

@@ -2,7 +2,8 @@
 //! the ends, and collect the nets.
 
 use super::candidate::{Bits, Context, Lookup};
-use super::collect::{collect, nearest_bit};
+use super::carry_only::{self, Ground};
+use super::collect::{bit, collect, nearest_bit, sort};
 use super::copies::fold_copies;
 use super::entries::{Entries, EntryId};
 use super::label::{BusPreference, Labels};
@@ -73,6 +74,8 @@ pub struct Found {
     pub unproven: Vec<Unproven>,
     /// Chains that decision diagrams confirmed a second time.
     pub witnessed: usize,
+    /// Recurrences that are there and not listed as chains.
+    pub recurrences_not_listed: u64,
 }
 
 /// Finds and proves the carry chains of a netlist.
@@ -137,19 +140,40 @@ pub fn find(netlist: &Netlist, topology: &Topology, options: Options) -> Found {
     let Search {
         ends,
         mut theorems,
-        unproven,
+        mut unproven,
         ..
     } = search;
     ends.trim_shared_tops(&mut theorems);
     theorems.retain(|theorem| live_bits(&theorem.bits) >= options.min_bits);
+    let ground = Ground {
+        netlist,
+        subject: &subject,
+        signatures: &signatures,
+        patterns: &patterns,
+        on_net: &on_net,
+        labels: &labels,
+        options,
+        proof_nodes: PROOF_NODES,
+    };
+    // Before copies are folded: what they own is no comparator either.
+    let carry_only = carry_only::find(&ground, &theorems);
     fold_copies(&subject, &labels, &mut theorems, options.min_bits);
-    let mut unproven = unproven;
     let witnessed = witness_all(&subject, &labels, &mut theorems, &mut unproven);
-    let chains = collect(netlist, &subject, &labels, theorems);
+    let mut chains = collect(netlist, &subject, &labels, theorems);
+    chains.extend(carry_only.chains);
+    sort(&mut chains);
+    let bit = |literal| bit(&labels, literal);
+    unproven.extend(carry_only.open.into_iter().map(|open| Unproven {
+        bits: open.bits.len(),
+        operands: open.bits.iter().map(|&(a, b)| (bit(a), bit(b))).collect(),
+        reason: "not settled within the effort",
+        effort: open.conflicts,
+    }));
     Found {
         chains,
         unproven,
         witnessed,
+        recurrences_not_listed: carry_only.not_listed,
     }
 }
 

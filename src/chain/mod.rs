@@ -7,11 +7,12 @@
 //! looks like an adder.
 //!
 //! `entries` → `links` → `candidate` → `verify` → `trim` → `kinds` and `built_as` →
-//! `collect`; `find` runs them.
+//! `collect`; then `carry_only` for carries without sums; `find` runs them.
 
 mod built_as;
 mod candidate;
 mod carry_cells;
+mod carry_only;
 mod collect;
 mod copies;
 mod entries;
@@ -26,4 +27,6 @@ mod twins;
 mod verify;
 
 pub use find::{Found, Options, Unproven, find};
-pub use model::{BuiltAs, CarryForm, Chain, Construction, Kind, Position, Taxonomy};
+pub use model::{
+    BuiltAs, CarryForm, Chain, Comparison, Construction, Kind, Position, Relation, Taxonomy,
+};

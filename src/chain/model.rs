@@ -15,6 +15,8 @@ pub enum Kind {
     Decrementer,
     /// `a + (b ⊕ mode) + carry-in`: adds or subtracts as the mode says.
     AdderSubtractor,
+    /// Compares `a` with `b`; only carries, no sums.
+    Comparator,
 }
 
 impl Kind {
@@ -26,6 +28,7 @@ impl Kind {
             Self::Incrementer => "incrementer",
             Self::Decrementer => "decrementer",
             Self::AdderSubtractor => "adder-subtractor",
+            Self::Comparator => "comparator",
         }
     }
 }
@@ -129,7 +132,9 @@ impl Construction {
 /// it is proven that every signal of `sums` equals `a ⊕ b ⊕ c` and every signal
 /// of `carries` equals the majority of `a`, `b` and `c`. Both `a` and `b` are
 /// what enters the *addition*: of a subtractor, `b` is the inverted subtrahend;
-/// of an incrementer `b` is constant 0, of a decrementer constant 1. Only of an
+/// of an incrementer `b` is constant 0, of a decrementer constant 1; of a
+/// comparator `b` is the complement of the second operand, and in the top
+/// position of a signed one both are complemented once more. Only of an
 /// adder-subtractor is `b` what stands before the exclusive or with the mode.
 #[derive(Clone, PartialEq, Eq, Debug)]
 pub struct Position {
@@ -138,11 +143,50 @@ pub struct Position {
     /// Second addend.
     pub b: Bit,
     /// Every net proven equal to the sum, in either polarity; the preferred
-    /// name first. Never empty.
+    /// name first. Empty only where a chain has no sums.
     pub sums: Vec<Signal>,
     /// Every net proven equal to the carry out of this position, in either
     /// polarity; empty when no net carries it.
     pub carries: Vec<Signal>,
+}
+
+/// How the first operand of a comparator stands to the second when its result
+/// is 1.
+#[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash, Debug)]
+pub enum Relation {
+    /// `a < b`.
+    Less,
+    /// `a <= b`.
+    LessOrEqual,
+    /// `a > b`.
+    Greater,
+    /// `a >= b`.
+    GreaterOrEqual,
+}
+
+impl Relation {
+    /// The word used in records and reports.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Less => "less",
+            Self::LessOrEqual => "less-or-equal",
+            Self::Greater => "greater",
+            Self::GreaterOrEqual => "greater-or-equal",
+        }
+    }
+}
+
+/// What a comparator tells.
+#[derive(Clone, Copy, PartialEq, Eq, Debug)]
+pub struct Comparison {
+    /// The net that tells it: the carry out of the last position, in the
+    /// polarity in which a port or register shows it.
+    pub result: Signal,
+    /// What it tells. With a carry-in that is a net, the carry-in counts with
+    /// the first operand.
+    pub relation: Relation,
+    /// Whether the operands are read as two's complement.
+    pub signed: bool,
 }
 
 /// A proven carry chain.
@@ -165,4 +209,6 @@ pub struct Chain {
     pub construction: Construction,
     /// What complements every `b` of an adder-subtractor.
     pub mode: Option<Signal>,
+    /// What a comparator tells; of the others nothing.
+    pub comparison: Option<Comparison>,
 }

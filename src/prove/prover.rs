@@ -269,6 +269,11 @@ impl<'a> Prover<'a> {
         self.ask(left, right, NEARBY)
     }
 
+    /// As [`Self::equal_nearby`], `levels` levels below the stops at most.
+    pub fn equal_within(&mut self, left: Fact, right: Fact, levels: usize) -> Answer {
+        self.ask(left, right, levels)
+    }
+
     fn ask(&mut self, left: Fact, right: Fact, deepest: usize) -> Answer {
         let differ = self.xor(left, right).0;
         self.solver.cb_mut().spent = 0;

@@ -210,8 +210,8 @@ fn seen_sentence(seen: &Seen, netlist: &NetlistFacts) -> String {
     };
     format!(
         "What could be seen: {gates}; {cut}; {proven}{twice}, {open}. Looked for are chains with \
-         sums (adders, subtractors, incrementers, decrementers); carries without sums, as in a \
-         comparator, are not."
+         sums (adders, subtractors, incrementers, decrementers) and ripple comparators; \
+         comparators built as trees are not."
     )
 }
 

@@ -4,7 +4,7 @@
 #![allow(dead_code)]
 
 use crate::generators::Random;
-use carrywise::chain::{Chain, Found, Options, find};
+use carrywise::chain::{Chain, Found, Options, Relation, find};
 use carrywise::format::{ReadOptions, read};
 use carrywise::netlist::{Bit, Driver, Netlist, Signal, Topology};
 use carrywise::source::Source;
@@ -61,7 +61,7 @@ pub fn check_theorems(label: &str, netlist: &Netlist, chains: &[Chain]) {
                 let mode = chain.mode.map_or(0, signal);
                 let (a, b) = (bit(position.a), bit(position.b) ^ mode);
                 assert!(
-                    !position.sums.is_empty(),
+                    chain.comparison.is_some() || !position.sums.is_empty(),
                     "{label}: position {i} has no sum"
                 );
                 for &sum in &position.sums {
@@ -72,6 +72,20 @@ pub fn check_theorems(label: &str, netlist: &Netlist, chains: &[Chain]) {
                     assert_eq!(signal(net), carry, "{label}: carry {i}");
                 }
             }
+            check_comparison(label, chain, carry, signal);
         }
+    }
+}
+
+/// Holds a comparator's result to the carry it is said to be: the relation says
+/// in which polarity.
+fn check_comparison(label: &str, chain: &Chain, carry: u64, signal: impl Fn(Signal) -> u64) {
+    if let Some(compared) = chain.comparison {
+        let is_carry = matches!(
+            compared.relation,
+            Relation::Greater | Relation::GreaterOrEqual
+        );
+        let told = signal(compared.result) ^ if is_carry { 0 } else { !0 };
+        assert_eq!(told, carry, "{label}: result");
     }
 }

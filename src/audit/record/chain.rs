@@ -20,7 +20,7 @@ pub struct ChainRecord {
     pub fingerprint: String,
     /// The array it is a row of.
     pub array: Option<String>,
-    /// `adder`, `subtractor`, `incrementer` or `decrementer`.
+    /// `adder`, `subtractor`, `incrementer`, `decrementer` or `comparator`.
     pub kind: String,
     /// Positions with an operand bit that is not constant.
     pub bits: u64,
@@ -75,9 +75,22 @@ pub struct ChainRecord {
 impl ChainRecord {
     /// What is computed, written as arithmetic on the operands' names:
     /// `level[15:0] + offset[15:0]`, `count[7:0] + 1`, `a - b - 1 + borrow_in`,
-    /// `a +/- b, minus when sub`.
+    /// `a +/- b, minus when sub`, `level[15:0] > limit[15:0]`.
     pub fn formula(&self) -> String {
         let names: Vec<&str> = self.operands.iter().map(|o| o.name.as_str()).collect();
+        if let ([a, b], Some(relation)) = (names.as_slice(), &self.relation) {
+            let sign = match relation.as_str() {
+                "less" => "<",
+                "less-or-equal" => "<=",
+                "greater" => ">",
+                "greater-or-equal" => ">=",
+                other => other,
+            };
+            return match &self.carry_in {
+                Some(Wire::Net(net)) => format!("{a} + {net} {sign} {b}"),
+                _ => format!("{a} {sign} {b}"),
+            };
+        }
         if let (Some(mode), [a, b]) = (&self.mode, &names[..]) {
             return match &self.carry_in {
                 Some(Wire::Net(net)) if net == mode => format!("{a} +/- {b}, minus when {mode}"),

@@ -64,7 +64,7 @@ pub fn chains(
     blocks.extend(against(chains).map(Block::Text));
     if recurrences_not_listed > 0 {
         blocks.push(Block::Text(format!(
-            "{} that compute no sum are counted and not listed.",
+            "{} that compute no sum and compare nothing are counted and not listed.",
             counted(recurrences_not_listed, "recurrence", "recurrences"),
         )));
     }
@@ -128,8 +128,8 @@ fn urgent_first(chains: &[ChainRecord]) -> Vec<&ChainRecord> {
 }
 
 fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
-    // Operands, carry-in and kind are told by the formula; nets, taps, the
-    // parts of a comparator and a fingerprint are for the data forms.
+    // Operands, carry-in, relation and kind are told by the formula; nets, taps
+    // and a fingerprint are for the data forms.
     let ChainRecord {
         id,
         fingerprint: _,
@@ -144,7 +144,7 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
         sums: _,
         result: _,
         relation: _,
-        signed: _,
+        signed,
         mode: _,
         feedback,
         duplicates,
@@ -161,7 +161,11 @@ fn chain_row(chain: &ChainRecord, caps: Caps) -> Vec<String> {
         cheaper: _,
         proposals: _,
     } = chain;
-    let mut what = format!("{} ({kind})", clipped(&chain.formula(), 2 * caps.name));
+    let signed = if *signed == Some(true) { "signed " } else { "" };
+    let mut what = format!(
+        "{} ({signed}{kind})",
+        clipped(&chain.formula(), 2 * caps.name)
+    );
     if let Some(feedback) = feedback {
         what.push_str(&format!(", {}", feedback.role));
     }
