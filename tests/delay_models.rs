@@ -178,8 +178,13 @@ fn a_recommendation_says_which_models_it_holds_under() {
                 assert_eq!(holds, same, "{}", other.name());
             }
         }
+        // Where the table wraps does not matter.
         let table = shown(&audit, Form::Table);
-        assert!(table.contains("the choice holds under"), "{table}");
+        let words: Vec<&str> = table.split_whitespace().collect();
+        assert!(
+            words.join(" ").contains("the choice holds under"),
+            "{table}"
+        );
     }
 }
 
